@@ -1,0 +1,4 @@
+declare module '*?nodeworker' {
+	const source: string;
+	export default source;
+}
