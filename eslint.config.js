@@ -65,7 +65,20 @@ export default ts.config(
 				{
 					patterns: [
 						{
-							group: ['$lib/server/*', '$lib/server', '$lib/components/*', '$lib/client/*', '$app/*', '$env/*', 'svelte', 'svelte/*', 'node:*', 'sequelize', 'sqlite3', '**/server/**'],
+							group: [
+								'$lib/server/*',
+								'$lib/server',
+								'$lib/components/*',
+								'$lib/client/*',
+								'$app/*',
+								'$env/*',
+								'svelte',
+								'svelte/*',
+								'node:*',
+								'sequelize',
+								'sqlite3',
+								'**/server/**'
+							],
 							message: 'The pure core imports nothing from the server, Svelte, Node or Sequelize.'
 						}
 					]
@@ -94,7 +107,14 @@ export default ts.config(
 		rules: {
 			'no-restricted-imports': [
 				'error',
-				{ patterns: [{ group: ['sequelize', '$lib/server/database/models/*', '$lib/server/database/models'], message: 'A route calls a use case; it does not query.' }] }
+				{
+					patterns: [
+						{
+							group: ['sequelize', '$lib/server/database/models/*', '$lib/server/database/models'],
+							message: 'A route calls a use case; it does not query.'
+						}
+					]
+				}
 			]
 		}
 	}

@@ -13,20 +13,28 @@ export const fitOptions = z.strictObject({
 		.array(z.strictObject({ parameter: z.string(), to: z.string(), factor: z.number().default(1) }))
 		.max(100)
 		.default([]),
-	bounds: z.record(z.string(), z.strictObject({ lower: quantity.optional(), upper: quantity.optional() })).default({}),
+	bounds: z
+		.record(z.string(), z.strictObject({ lower: quantity.optional(), upper: quantity.optional() }))
+		.default({}),
 	weighting: z
 		.strictObject({
 			model: z.enum(['constant', 'proportional', 'combined', 'replicates']),
 			/** Channel's constant and proportional parts for `combined`, in the channel's unit and as a fraction. */
 			a: z.number().positive().optional(),
 			b: z.number().nonnegative().optional(),
-			perChannel: z.record(z.string(), z.strictObject({ a: z.number().positive(), b: z.number().nonnegative() })).optional()
+			perChannel: z
+				.record(z.string(), z.strictObject({ a: z.number().positive(), b: z.number().nonnegative() }))
+				.optional()
 		})
 		.default({ model: 'constant' }),
 	/** Whether an observed row at time zero counts as data; off where the charge is fixed. */
 	useTimeZeroRow: z.boolean().optional(),
 	starts: z.int().min(1).max(500).default(20),
-	seed: z.int().min(0).max(2 ** 31 - 1).default(1),
+	seed: z
+		.int()
+		.min(0)
+		.max(2 ** 31 - 1)
+		.default(1),
 	profiles: z.boolean().default(true),
 	confidenceLevel: z.number().min(0.5).max(0.999).default(0.95)
 });
@@ -102,10 +110,20 @@ export interface FitReport {
 	lackOfFit: { f: number; df1: number; df2: number; p: number; critical: number } | null;
 	runsTest: { z: number; p: number } | null;
 	lag1: number | null;
-	alternatives: { parameters: Record<string, number>; weightedSsr: number; starts: number; deltaAicc: number }[];
+	alternatives: {
+		parameters: Record<string, number>;
+		weightedSsr: number;
+		starts: number;
+		deltaAicc: number;
+	}[];
 	residuals: FitResidual[];
 	singularValues: number[];
-	massBalance: { run: string; percent: { time: number; value: number }[]; slopePerHour: number | null; slopeCi95: [number, number] | null }[];
+	massBalance: {
+		run: string;
+		percent: { time: number; value: number }[];
+		slopePerHour: number | null;
+		slopeCi95: [number, number] | null;
+	}[];
 	findings: FitFinding[];
 	evaluations: number;
 	optimality: number;
@@ -114,5 +132,9 @@ export interface FitReport {
 	engineVersion: string;
 	seed: number;
 	/** Lowest and highest run temperature and charge, SI and °C, for "studied range". */
-	studied: { temperatureC: [number, number]; chargeMolPerL: Record<string, [number, number]>; lastTimeH: number };
+	studied: {
+		temperatureC: [number, number];
+		chargeMolPerL: Record<string, [number, number]>;
+		lastTimeH: number;
+	};
 }

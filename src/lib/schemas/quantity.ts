@@ -21,4 +21,7 @@ export const id = z
 	.min(1)
 	.max(40)
 	.regex(/^[A-Za-z][A-Za-z0-9_-]*$/, 'Use letters, digits, - and _, beginning with a letter.')
-	.refine((s) => !['__proto__', 'constructor', 'prototype'].includes(s), 'This word cannot be used as an id.');
+	.refine(
+		(s) => !['__proto__', 'constructor', 'prototype'].includes(s),
+		'This word cannot be used as an id.'
+	);

@@ -43,7 +43,14 @@ export type TimepointContent = z.infer<typeof timepointSchema>;
 export const exclusionSchema = z.strictObject({
 	index: z.int().nonnegative(),
 	channel: z.string().nullable(),
-	reasonCode: z.enum(['sampling error', 'assay error', 'temperature excursion', 'transcription error', 'outside the method', 'other']),
+	reasonCode: z.enum([
+		'sampling error',
+		'assay error',
+		'temperature excursion',
+		'transcription error',
+		'outside the method',
+		'other'
+	]),
 	reason: z.string().trim().min(5, 'Say why in at least five letters.').max(500),
 	by: z.string().max(120).optional(),
 	at: z.string().max(40).optional()
@@ -66,7 +73,10 @@ export const runContent = z.strictObject({
 	id: id.optional(),
 	temperature: quantity,
 	/** Measured temperature log in the run's time unit and °C, where there is one. */
-	temperatureLog: z.array(z.strictObject({ time: z.number(), celsius: z.number() })).max(20_000).optional(),
+	temperatureLog: z
+		.array(z.strictObject({ time: z.number(), celsius: z.number() }))
+		.max(20_000)
+		.optional(),
 	/** Charge of each species, mol/L unless the unit says otherwise. */
 	initial: z.record(z.string(), fittable),
 	/** Species held constant in excess. */

@@ -1,7 +1,13 @@
 import { z } from 'zod';
 import { fittable, id, quantity } from './quantity';
 
-export const SPECIES_ROLES = ['starting material', 'intermediate', 'product', 'impurity', 'reagent in excess'] as const;
+export const SPECIES_ROLES = [
+	'starting material',
+	'intermediate',
+	'product',
+	'impurity',
+	'reagent in excess'
+] as const;
 
 export const speciesSchema = z.strictObject({
 	/** Short symbol used in formulas and steps, e.g. A. */

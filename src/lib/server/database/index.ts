@@ -1,0 +1,97 @@
+import { AsyncLocalStorage } from 'node:async_hooks';
+import { mkdirSync } from 'node:fs';
+import { dirname } from 'node:path';
+import { Sequelize, Transaction } from 'sequelize';
+import sqlite3 from 'sqlite3';
+import { SequelizeStorage, Umzug } from 'umzug';
+import { settings } from '../settings';
+import { migrations } from './migrations';
+import { initModels } from './models';
+
+export type Tx = Transaction;
+
+export interface Database {
+	sequelize: Sequelize;
+	/**
+	 * Runs one write transaction (BEGIN IMMEDIATE), one after the other within this process.
+	 * Every query inside must be given the transaction. Never nest.
+	 */
+	write<T>(work: (tx: Tx) => Promise<T>): Promise<T>;
+	close(): Promise<void>;
+}
+
+type Connection = sqlite3.Database & { prepared?: boolean };
+
+/** Sequelize's SQLite dialect calls no afterConnect hook and opens a connection per transaction: set each up here. */
+function prepareEveryConnection(sequelize: Sequelize): void {
+	const manager = sequelize.connectionManager as unknown as {
+		getConnection(options?: object): Promise<Connection>;
+	};
+	const original = manager.getConnection.bind(manager);
+	manager.getConnection = async (options) => {
+		const connection = await original(options);
+		if (!connection.prepared) {
+			connection.prepared = true;
+			connection.configure('busyTimeout', 5000);
+			connection.run('PRAGMA synchronous = FULL');
+			connection.run('PRAGMA foreign_keys = ON');
+		}
+		return connection;
+	};
+}
+
+/** One write at a time: SQLite has one writer, and waiting here leaves the thread pool to the readers. */
+function writeQueue(sequelize: Sequelize): Database['write'] {
+	const inside = new AsyncLocalStorage<true>();
+	let tail: Promise<unknown> = Promise.resolve();
+	return (work) => {
+		if (inside.getStore()) throw new Error('write() must not be nested: pass the transaction on instead.');
+		const run = () => inside.run(true, () => sequelize.transaction(work));
+		const result = tail.then(run, run);
+		tail = result.catch(() => undefined);
+		return result;
+	};
+}
+
+export async function openDatabase(file: string): Promise<Database> {
+	mkdirSync(dirname(file), { recursive: true });
+	const sequelize = new Sequelize({
+		dialect: 'sqlite',
+		dialectModule: sqlite3,
+		storage: file,
+		logging: false,
+		transactionType: Transaction.TYPES.IMMEDIATE
+	});
+	prepareEveryConnection(sequelize);
+	await sequelize.query('PRAGMA journal_mode = WAL');
+	initModels(sequelize);
+	await new Umzug({
+		migrations,
+		context: sequelize.getQueryInterface(),
+		storage: new SequelizeStorage({ sequelize }),
+		logger: undefined
+	}).up();
+	return { sequelize, write: writeQueue(sequelize), close: () => sequelize.close() };
+}
+
+// One database a process, kept over hot reloads in development.
+const globals = globalThis as { ratewrightDatabase?: Promise<Database> };
+
+export function database(): Promise<Database> {
+	return (globals.ratewrightDatabase ??= openDatabase(settings().DATABASE_FILE));
+}
+
+/** For tests and commands: use this database from here on. */
+export function useDatabase(db: Database): void {
+	globals.ratewrightDatabase = Promise.resolve(db);
+}
+
+export async function write<T>(work: (tx: Tx) => Promise<T>): Promise<T> {
+	return (await database()).write(work);
+}
+
+export async function closeDatabase(): Promise<void> {
+	const open = globals.ratewrightDatabase;
+	globals.ratewrightDatabase = undefined;
+	if (open) await (await open).close();
+}
