@@ -1,0 +1,39 @@
+import { Group, Membership, User } from '../database/models';
+import type { Actor } from '../policy';
+
+/** What a session proves; whether it still holds is asked of the database at each request. */
+export interface SessionPerson {
+	userId: string;
+	epoch: number;
+	/** ISO 8601 time at which the password was given. */
+	signedInAt: string;
+}
+
+export async function membershipsOf(userId: string): Promise<Actor['memberships']> {
+	const rows = await Membership.findAll({ where: { userId } });
+	const groups = await Group.findAll({ where: { id: rows.map((m) => m.groupId) }, order: [['name', 'ASC']] });
+	return groups.map((group) => ({
+		groupId: group.id,
+		groupName: group.name,
+		role: rows.find((m) => m.groupId === group.id)!.role
+	}));
+}
+
+export async function toActor(user: User, source: string, signedInAt: Date | null): Promise<Actor> {
+	return {
+		userId: user.id,
+		name: user.name,
+		email: user.email,
+		siteAdmin: user.siteAdmin,
+		memberships: await membershipsOf(user.id),
+		source,
+		signedInAt
+	};
+}
+
+/** The person of a session, or null when disabled since, or when every session was ended. */
+export async function readActor(session: SessionPerson): Promise<Actor | null> {
+	const user = await User.findByPk(session.userId);
+	if (!user || user.disabledAt || user.sessionEpoch !== session.epoch) return null;
+	return toActor(user, 'screen', new Date(session.signedInAt));
+}
