@@ -15,9 +15,10 @@ export default {
 				soft: token('soft'),
 				rule: token('rule'),
 				hair: token('hair'),
+				edge: token('edge'),
 				verdigris: { DEFAULT: token('verdigris'), pale: token('verdigris-pale'), ink: token('on-verdigris') },
 				amber: { DEFAULT: token('amber'), pale: token('amber-pale') },
-				brick: { DEFAULT: token('brick'), pale: token('brick-pale') }
+				brick: { DEFAULT: token('brick'), pale: token('brick-pale'), ink: token('on-brick') }
 			},
 			fontFamily: { sans: ['"Lexend Variable"', 'Lexend', 'system-ui', 'sans-serif'] }
 		}
