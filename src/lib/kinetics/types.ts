@@ -103,8 +103,17 @@ export interface RateConstants {
  */
 export interface LinearSystem {
 	n: number;
-	transfers: { from: number; to: number; rate: number; coefficient: number; step: number; direction: 'forward' | 'reverse' }[];
+	transfers: {
+		from: number;
+		to: number;
+		rate: number;
+		coefficient: number;
+		step: number;
+		direction: 'forward' | 'reverse';
+	}[];
 	outflow: Float64Array;
+	/** Each step-direction that carries anything, once, losses included: `rate` leaves `from`. Absent in hand-made systems. */
+	flows?: { step: number; direction: 'forward' | 'reverse'; from: number; rate: number }[];
 }
 
 export type SolveMethod =

@@ -1,0 +1,18 @@
+/**
+ * The kinetics engine. From a scheme to a curve:
+ *
+ *     toNetwork(scheme) → checkNetwork(network) → rateConstants(network, conditions) → linearSystem(network, constants)
+ *     → solve(system, charge) → solution.curves(timesS), .modes, .final
+ */
+export * from './types';
+export * from './units';
+export * from './from-scheme';
+export { checkNetwork, type ChargeById, type CheckOptions } from './checks';
+export { reversibleCycles, type ReversibleCycle } from './cycles';
+export * from './rate-laws';
+export * from './linear-system';
+export { conservedTotals, type ConservedTotal } from './conserved';
+export { finalComposition, type FinalComposition } from './final-composition';
+export { solve } from './solve';
+export * from './sensitivity';
+export { ENGINE_VERSION } from './version';
