@@ -181,8 +181,7 @@ export function chargesAt(
 		};
 	});
 	fillUp(lines, new Map(charges.map((c) => [c.id, c])));
-	for (const f of lines)
-		f.equivalents = f.amountMol === null ? null : f.amountMol / reference.amountMol;
+	for (const f of lines) f.equivalents = f.amountMol === null ? null : f.amountMol / reference.amountMol;
 	return {
 		lines,
 		limiting:

@@ -21,7 +21,10 @@ const finite = z.number({ error: 'A number is expected here.' });
 /** Lower and upper end, in the unit of the record that it belongs to; an open end is null. */
 export const rangeSchema = z
 	.tuple([finite.nullable(), finite.nullable()])
-	.refine(([low, high]) => low === null || high === null || low <= high, 'The lower end lies above the upper.');
+	.refine(
+		([low, high]) => low === null || high === null || low <= high,
+		'The lower end lies above the upper.'
+	);
 export type Range = z.infer<typeof rangeSchema>;
 
 export const SET_POINT_KINDS = ['temperature', 'time', 'charge', 'excess', 'other'] as const;
@@ -181,7 +184,9 @@ export const basisSchema = z.strictObject({
 	fitNumber: z.int().positive(),
 	schemeName: line(120),
 	schemeNumber: z.int().positive(),
-	runs: z.array(z.strictObject({ id: z.uuid(), number: z.int(), revision: z.int(), name: line(120) })).max(100),
+	runs: z
+		.array(z.strictObject({ id: z.uuid(), number: z.int(), revision: z.int(), name: line(120) }))
+		.max(100),
 	windowNumber: z.int().positive().nullable().default(null),
 	inputHash: line(64),
 	engineVersion: line(40),
@@ -201,7 +206,10 @@ export const recipeContent = z.strictObject({
 	hold: holdSchema.nullable().default(null),
 	scale: scaleSchema,
 	charges: z.array(chargeSchema).max(60).default([]),
-	equipment: z.array(z.strictObject({ id, text: line(300).min(1) })).max(40).default([]),
+	equipment: z
+		.array(z.strictObject({ id, text: line(300).min(1) }))
+		.max(40)
+		.default([]),
 	procedure: z.array(operationSchema).max(100).default([]),
 	ipc: z.array(ipcSchema).max(40).default([]),
 	hazards: z.array(hazardSchema).max(40).default([]),
