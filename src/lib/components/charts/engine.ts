@@ -1,0 +1,13 @@
+import {
+	Chart,
+	Filler,
+	LinearScale,
+	LineElement,
+	LogarithmicScale,
+	PointElement,
+	ScatterController
+} from 'chart.js';
+
+Chart.register(ScatterController, LineElement, PointElement, LinearScale, LogarithmicScale, Filler);
+
+export { Chart };
