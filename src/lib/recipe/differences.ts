@@ -31,7 +31,7 @@ const show = (value: unknown): string | null => {
 	if (typeof value === 'string') return value;
 	if (typeof value === 'number' || typeof value === 'boolean') return String(value);
 	if (Array.isArray(value)) return value.map((v) => show(v) ?? '–').join(' to ');
-	return Object.values(value as object)
+	return Object.values(value)
 		.map(show)
 		.filter((v) => v !== null)
 		.join(' ');
