@@ -1,0 +1,352 @@
+/**
+ * Nonlinear least squares: minimise ½‖r(x)‖² within bounds, with an analytic Jacobian.
+ *
+ * Each iteration solves min ‖J p + r‖ subject to ‖D p‖ ≤ Δ, where D holds the largest column norms seen so far, so that
+ * the path does not depend on the units of the parameters. Inside the trust region the Gauss–Newton step is taken;
+ * otherwise (JᵀJ + μ D²) p = −Jᵀ r with μ found by a safeguarded Newton iteration on ‖D p(μ)‖ = Δ (`trust-step.ts`).
+ * Ratio ρ = actual / predicted reduction steers Δ; a worse point is never kept.
+ *
+ * | symbol | variable |
+ * | ------ | -------- |
+ * | r, J   | `residuals`, `jacobian` (column-major, J[j·m + i] = ∂rᵢ/∂xⱼ) |
+ * | D      | `scale` |
+ * | Δ      | `radius` |
+ * | p      | `step` |
+ *
+ * Sources: Moré, "The Levenberg–Marquardt algorithm: implementation and theory", Lecture Notes in Mathematics 630 (1978)
+ * 105–116. Bounds: active-set projection, Kanzow, Yamashita & Fukushima, J. Comput. Appl. Math. 172 (2004) 375.
+ * Departure: residuals and Jacobian are computed together at a trial point, because the closed form gives both at little
+ * more than the cost of one.
+ */
+import { norm } from './linear-algebra';
+import { TrustStep } from './trust-step';
+
+export interface LeastSquaresProblem {
+	/** Residuals. */
+	m: number;
+	/** Parameters. */
+	p: number;
+	/**
+	 * Fills `residuals` (m) and `jacobian` (m × p, column-major) at x.
+	 * Returns false where the model cannot be evaluated; the step is then shortened.
+	 */
+	evaluate(x: Float64Array, residuals: Float64Array, jacobian: Float64Array): boolean;
+}
+
+export interface LeastSquaresOptions {
+	/** Length p; −Infinity where unbounded. Equal bounds hold a parameter fixed. */
+	lower?: ArrayLike<number>;
+	upper?: ArrayLike<number>;
+	/** Relative reduction of the sum of squares below which the search has converged. */
+	ftol?: number;
+	/** Relative change of the scaled parameters below which the search has converged. */
+	xtol?: number;
+	/** Cosine of the largest angle between the residual vector and a column of J below which it has converged. */
+	gtol?: number;
+	maxEvaluations?: number;
+	/** First trust radius as a multiple of ‖D x₀‖ (or itself where that is zero). */
+	factor?: number;
+	/** Asked before every evaluation; true stops at once with status 'cancelled'. */
+	cancelled?: () => boolean;
+}
+
+export type LeastSquaresStatus =
+	| 'gradient' // optimality reached
+	| 'reduction' // the sum of squares changes no more
+	| 'step' // the parameters change no more
+	| 'rounding' // no further progress in double precision
+	| 'evaluations' // the limit on evaluations
+	| 'not finite' // the model cannot be evaluated at the start
+	| 'cancelled';
+
+export interface LeastSquaresResult {
+	status: LeastSquaresStatus;
+	converged: boolean;
+	x: Float64Array;
+	residuals: Float64Array;
+	jacobian: Float64Array;
+	/** Sum of squared residuals. */
+	ssr: number;
+	evaluations: number;
+	iterations: number;
+	/** Largest cosine between the residual vector and a free column of J; 0 for a zero residual. */
+	optimality: number;
+	/** −1, +1 for a parameter held at its lower or upper bound at the end, else 0. */
+	activeBounds: Int8Array;
+}
+
+const EPSILON = 2.220446049250313e-16;
+
+/** Reusable storage for problems of one shape, so that many starts allocate nothing in their loops. */
+export class LeastSquaresWorkspace {
+	readonly residuals: [Float64Array, Float64Array];
+	readonly jacobians: [Float64Array, Float64Array];
+	readonly x: Float64Array;
+	readonly trial: Float64Array;
+	readonly step: Float64Array;
+	readonly scale: Float64Array;
+	readonly gradient: Float64Array;
+	readonly free: Int32Array;
+	readonly linear: Float64Array;
+	readonly trust: TrustStep;
+
+	constructor(
+		readonly m: number,
+		readonly p: number
+	) {
+		this.residuals = [new Float64Array(m), new Float64Array(m)];
+		this.jacobians = [new Float64Array(m * p), new Float64Array(m * p)];
+		this.x = new Float64Array(p);
+		this.trial = new Float64Array(p);
+		this.step = new Float64Array(p);
+		this.scale = new Float64Array(p);
+		this.gradient = new Float64Array(p);
+		this.free = new Int32Array(p);
+		this.linear = new Float64Array(m);
+		this.trust = new TrustStep(m, p);
+	}
+}
+
+const finite = (v: Float64Array): boolean => {
+	for (let i = 0; i < v.length; i++) if (!Number.isFinite(v[i])) return false;
+	return true;
+};
+
+/**
+ * Minimises the sum of squares from `start`.
+ * The arrays of the result are fresh copies. Never throws for numerical reasons and never returns a point worse than the start.
+ */
+export function leastSquares(
+	problem: LeastSquaresProblem,
+	start: ArrayLike<number>,
+	options: LeastSquaresOptions = {},
+	workspace = new LeastSquaresWorkspace(problem.m, problem.p)
+): LeastSquaresResult {
+	return new Search(problem, options, workspace).run(start);
+}
+
+class Search {
+	private readonly lower: ArrayLike<number>;
+	private readonly upper: ArrayLike<number>;
+	private readonly ftol: number;
+	private readonly xtol: number;
+	private readonly gtol: number;
+	private readonly maxEvaluations: number;
+	private current = 0;
+	private ssr = Infinity;
+	private radius = 0;
+	private mu = 0;
+	private evaluations = 0;
+	private iterations = 0;
+	private optimality = Infinity;
+	private freeCount = 0;
+	private clipped = false;
+	private predicted = 0;
+
+	constructor(
+		private readonly problem: LeastSquaresProblem,
+		private readonly options: LeastSquaresOptions,
+		private readonly w: LeastSquaresWorkspace
+	) {
+		const p = problem.p;
+		this.lower = options.lower ?? new Float64Array(p).fill(-Infinity);
+		this.upper = options.upper ?? new Float64Array(p).fill(Infinity);
+		this.ftol = options.ftol ?? 1e-17;
+		this.xtol = options.xtol ?? 1e-12;
+		this.gtol = options.gtol ?? 1e-13;
+		this.maxEvaluations = options.maxEvaluations ?? 200 * (p + 1);
+	}
+
+	run(start: ArrayLike<number>): LeastSquaresResult {
+		const { problem, w } = this;
+		for (let j = 0; j < problem.p; j++) w.x[j] = Math.min(Math.max(start[j], this.lower[j]), this.upper[j]);
+		if (this.options.cancelled?.()) return this.finish('cancelled');
+		this.evaluations++;
+		const ok = problem.evaluate(w.x, w.residuals[0], w.jacobians[0]);
+		if (!ok || !finite(w.residuals[0]) || !finite(w.jacobians[0])) return this.finish('not finite');
+		this.ssr = norm(w.residuals[0]) ** 2;
+		w.scale.fill(0);
+		for (;;) {
+			const status = this.iterate();
+			if (status) return this.finish(status);
+		}
+	}
+
+	/** One outer iteration: a new linearisation, then trial steps until one is accepted. */
+	private iterate(): LeastSquaresStatus | null {
+		this.iterations++;
+		this.measure();
+		if (this.freeCount === 0 || this.ssr === 0 || this.optimality <= this.gtol) return 'gradient';
+		this.rescale();
+		const { w, problem } = this;
+		w.trust.factor(w.jacobians[this.current], w.residuals[this.current], w.free, this.freeCount);
+		for (;;) {
+			const length = this.propose();
+			if (this.iterations === 1) this.radius = Math.min(this.radius, length || this.radius);
+			if (this.evaluations >= this.maxEvaluations) return 'evaluations';
+			if (this.options.cancelled?.()) return 'cancelled';
+			const next = 1 - this.current;
+			this.evaluations++;
+			const ok = problem.evaluate(w.trial, w.residuals[next], w.jacobians[next]);
+			const size = ok ? norm(w.residuals[next]) : NaN;
+			const trialSsr = ok && Number.isFinite(size) && finite(w.jacobians[next]) ? size * size : Infinity;
+			const actual = trialSsr === Infinity ? -1 : 1 - trialSsr / this.ssr;
+			const ratio = this.predicted > 0 ? actual / this.predicted : 0;
+			this.resize(ratio, actual, length, trialSsr);
+			const verdict = this.verdict(actual, ratio, length);
+			// The last step moves the parameters by less than the sum of squares can show: its digits are kept all the same.
+			const better = trialSsr < this.ssr || (verdict === 'reduction' && trialSsr <= this.ssr * (1 + 1e-14));
+			if (better && (ratio >= 1e-4 || verdict)) {
+				w.x.set(w.trial);
+				this.current = next;
+				this.ssr = trialSsr;
+				if (verdict) this.measure();
+				return verdict;
+			}
+			if (verdict) return verdict;
+		}
+	}
+
+	/** Gradient, free set and optimality at the current point. */
+	private measure(): void {
+		const { w, problem } = this;
+		const r = w.residuals[this.current];
+		const jac = w.jacobians[this.current];
+		const size = Math.sqrt(this.ssr);
+		this.freeCount = 0;
+		this.optimality = 0;
+		for (let j = 0; j < problem.p; j++) {
+			let dot = 0;
+			for (let i = 0, c = j * problem.m; i < problem.m; i++) dot += jac[c + i] * r[i];
+			w.gradient[j] = dot;
+			if (this.held(j, dot)) continue;
+			w.free[this.freeCount++] = j;
+			const length = norm(jac, j * problem.m, problem.m);
+			if (length > 0 && size > 0)
+				this.optimality = Math.max(this.optimality, Math.abs(dot) / (length * size));
+		}
+	}
+
+	private held(j: number, gradient: number): boolean {
+		const x = this.w.x[j];
+		if (this.lower[j] === this.upper[j]) return true;
+		return (x <= this.lower[j] && gradient >= 0) || (x >= this.upper[j] && gradient <= 0);
+	}
+
+	/** D grows to the largest column norms; the first radius is set from D x. */
+	private rescale(): void {
+		const { w, problem } = this;
+		const jac = w.jacobians[this.current];
+		for (let j = 0; j < problem.p; j++)
+			w.scale[j] = Math.max(w.scale[j], norm(jac, j * problem.m, problem.m));
+		if (this.iterations > 1) return;
+		const factor = this.options.factor ?? 100;
+		this.radius = factor * (this.scaledNorm(w.x) || 1);
+	}
+
+	private scaledNorm(v: Float64Array): number {
+		let sum = 0;
+		for (let j = 0; j < this.problem.p; j++) sum += ((this.w.scale[j] || 1) * v[j]) ** 2;
+		return Math.sqrt(sum);
+	}
+
+	/** Fills `trial` and `step`, sets `predicted` (relative) and returns ‖D step‖. */
+	private propose(): number {
+		const { w, problem } = this;
+		this.mu = w.trust.solve(w.scale, this.radius, this.mu);
+		w.step.fill(0);
+		this.clipped = false;
+		for (let k = 0; k < this.freeCount; k++) w.step[w.free[k]] = w.trust.step[k];
+		for (let j = 0; j < problem.p; j++) {
+			const moved = w.x[j] + w.step[j];
+			w.trial[j] = Math.min(Math.max(moved, this.lower[j]), this.upper[j]);
+			if (w.trial[j] !== moved) {
+				this.clipped = true;
+				w.step[j] = w.trial[j] - w.x[j];
+			}
+		}
+		const length = this.scaledNorm(w.step);
+		this.predict(length);
+		return length;
+	}
+
+	/** (‖r‖² − ‖r + J p‖²)/‖r‖², without cancellation where the step is the solver's own. */
+	private predict(length: number): void {
+		const { w, problem } = this;
+		const jac = w.jacobians[this.current];
+		w.linear.fill(0);
+		let slope = 0;
+		for (let j = 0; j < problem.p; j++) {
+			const s = w.step[j];
+			if (s === 0) continue;
+			slope += s * w.gradient[j];
+			for (let i = 0, c = j * problem.m; i < problem.m; i++) w.linear[i] += s * jac[c + i];
+		}
+		const along = norm(w.linear) ** 2;
+		this.predicted = this.clipped
+			? (-2 * slope - along) / this.ssr
+			: (along + 2 * this.mu * length * length) / this.ssr;
+	}
+
+	private resize(ratio: number, actual: number, length: number, trialSsr: number): void {
+		if (trialSsr === Infinity || this.predicted <= 0) {
+			this.radius = 0.1 * Math.min(this.radius, length);
+			this.mu *= 10;
+			return;
+		}
+		if (ratio <= 0.25) {
+			let shrink = 0.5;
+			if (actual < 0) {
+				const slope = this.relativeSlope();
+				shrink = (0.5 * slope) / (slope + 0.5 * actual);
+				if (!(shrink >= 0.1)) shrink = 0.1;
+				if (shrink > 0.5) shrink = 0.5;
+			}
+			this.radius = shrink * Math.min(this.radius, 10 * length);
+			this.mu /= shrink;
+		} else if (this.mu === 0 || ratio >= 0.75) {
+			this.radius = Math.max(this.radius, 2 * length);
+			this.mu *= 0.5;
+		}
+	}
+
+	private relativeSlope(): number {
+		let slope = 0;
+		for (let j = 0; j < this.problem.p; j++) slope += this.w.step[j] * this.w.gradient[j];
+		return slope / this.ssr;
+	}
+
+	private verdict(actual: number, ratio: number, length: number): LeastSquaresStatus | null {
+		const still = Math.max(this.ftol, 8 * EPSILON);
+		if (Math.abs(actual) <= still && this.predicted <= this.ftol && (still > this.ftol || ratio <= 2))
+			return 'reduction';
+		const reach = this.scaledNorm(this.w.x);
+		if (this.radius <= this.xtol * reach) return 'step';
+		if (length <= EPSILON * reach || this.radius <= EPSILON * reach) return 'rounding';
+		if (Math.abs(actual) <= EPSILON && this.predicted <= EPSILON && ratio < 1e-4) return 'rounding';
+		return null;
+	}
+
+	private finish(status: LeastSquaresStatus): LeastSquaresResult {
+		const { w, problem } = this;
+		const activeBounds = new Int8Array(problem.p);
+		for (let j = 0; j < problem.p; j++) {
+			if (this.lower[j] === this.upper[j]) continue;
+			if (w.x[j] <= this.lower[j]) activeBounds[j] = -1;
+			else if (w.x[j] >= this.upper[j]) activeBounds[j] = 1;
+		}
+		return {
+			status,
+			converged:
+				status === 'gradient' || status === 'reduction' || status === 'step' || status === 'rounding',
+			x: w.x.slice(),
+			residuals: w.residuals[this.current].slice(),
+			jacobian: w.jacobians[this.current].slice(),
+			ssr: this.ssr,
+			evaluations: this.evaluations,
+			iterations: this.iterations,
+			optimality: this.optimality,
+			activeBounds
+		};
+	}
+}
