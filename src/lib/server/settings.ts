@@ -6,6 +6,8 @@ const flag = z
 	.optional();
 
 const schema = z.object({
+	/** 'production' where people work; set by `npm start`. */
+	NODE_ENV: z.string().optional(),
 	/** Address that people type, e.g. https://ratewright.example.com; needed behind a proxy. */
 	ORIGIN: z
 		.url({ message: 'ORIGIN must be the full address, e.g. http://localhost:4300' })

@@ -1,3 +1,5 @@
+import { mailSender } from './mail/sender';
+
 /** Something that runs beside the requests for as long as the service does. */
 export interface BackgroundService {
 	name: string;
@@ -9,4 +11,4 @@ export interface BackgroundService {
 }
 
 /** Started in this order once the database is open and migrated; stopped in the reverse order. */
-export const BACKGROUND_SERVICES: BackgroundService[] = [];
+export const BACKGROUND_SERVICES: BackgroundService[] = [mailSender];

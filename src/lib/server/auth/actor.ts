@@ -1,3 +1,4 @@
+import type { AuditActor } from '../audit/append';
 import { Group, Membership, User } from '../database/models';
 import type { Actor } from '../policy';
 
@@ -37,3 +38,12 @@ export async function readActor(session: SessionPerson): Promise<Actor | null> {
 	if (!user || user.disabledAt || user.sessionEpoch !== session.epoch) return null;
 	return toActor(user, 'screen', new Date(session.signedInAt));
 }
+
+/** For the trail: somebody who acts on a page without being signed in, such as by a link from a mail. */
+export const asPerson = (user: User): AuditActor => ({
+	userId: user.id,
+	name: user.name,
+	source: 'screen',
+	memberships: [],
+	siteAdmin: false
+});

@@ -1,10 +1,8 @@
 import { hash, verify } from '@node-rs/argon2';
+import { PASSWORD_MAX } from '$lib/schemas/people';
 
 /** argon2id (the library's default algorithm) with the parameters of the OWASP password storage guide (19 MiB, two passes, one lane). */
 const PARAMETERS = { memoryCost: 19_456, timeCost: 2, parallelism: 1 };
-
-export const PASSWORD_MIN = 12;
-export const PASSWORD_MAX = 200;
 
 export const hashPassword = (password: string): Promise<string> =>
 	hash(password.normalize('NFKC'), PARAMETERS);

@@ -3,7 +3,7 @@ import { appendAudit, SYSTEM, type AuditActor } from '../audit/append';
 import { write } from '../database';
 import { User } from '../database/models';
 import { AppError } from '../errors';
-import { toActor } from './actor';
+import { asPerson } from './actor';
 import {
 	addressRule,
 	beginAttempt,
@@ -44,9 +44,7 @@ const forTrail = (email: string): string =>
 	z.email().max(254).safeParse(email).success ? email : '(not an e-mail address)';
 
 async function noteFailure(user: User | null, email: string, attempt: Attempt): Promise<void> {
-	const actor: AuditActor = user
-		? { ...SYSTEM, userId: user.id, name: user.name, source: 'screen' }
-		: { ...SYSTEM, name: 'Unknown person', source: 'screen' };
+	const actor: AuditActor = user ? asPerson(user) : { ...SYSTEM, name: 'Unknown person', source: 'screen' };
 	await write((tx) =>
 		appendAudit(tx, actor, {
 			type: 'person.sign-in-failed',
@@ -75,11 +73,10 @@ export async function signIn({ email: typed, password, address }: SignInInput): 
 		await noteFailure(user, email, byEmail);
 		throw refused();
 	}
-	const actor = await toActor(user, 'screen', now);
 	await write(async (tx) => {
 		await clearAttempts(tx, emailKey(email));
 		await takeBackAttempt(tx, addressKey(address));
-		await appendAudit(tx, actor, {
+		await appendAudit(tx, asPerson(user), {
 			type: 'person.signed-in',
 			objectType: 'person',
 			objectId: user.id,

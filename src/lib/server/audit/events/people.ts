@@ -3,6 +3,7 @@ import { z } from 'zod';
 export const peopleEvents = {
 	'person.signed-in': z.object({}),
 	'person.sign-in-failed': z.object({ email: z.string(), lockedUntil: z.string().nullable() }),
+	'person.password-check-failed': z.object({ failures: z.number(), lockedUntil: z.string().nullable() }),
 	'person.signed-out': z.object({ everywhere: z.boolean() }),
 	'person.created': z.object({ email: z.string(), name: z.string(), siteAdmin: z.boolean() }),
 	'person.renamed': z.object({ from: z.string(), to: z.string() }),
@@ -23,5 +24,12 @@ export const peopleEvents = {
 	'member.removed': z.object({ name: z.string(), role: z.string() }),
 	'token.created': z.object({ name: z.string(), scopes: z.array(z.string()), expiresAt: z.string() }),
 	'token.revoked': z.object({ name: z.string() }),
+	'mail.tried-again': z.object({ subject: z.string() }),
+	'audit.verified': z.object({
+		entries: z.number(),
+		lastHash: z.string(),
+		firstBad: z.object({ seq: z.number(), why: z.string() }).nullable()
+	}),
+	'audit.exported': z.object({ entries: z.number(), filter: z.record(z.string(), z.unknown()) }),
 	'setting.changed': z.object({ key: z.string(), from: z.unknown(), to: z.unknown() })
 };

@@ -14,6 +14,7 @@ export const recipeEvents = {
 		printedName: z.string()
 	}),
 	'recipe.signing-failed': z.object({ number: z.number(), why: z.string() }),
+	'recipe.taken-back': z.object({ number: z.number() }),
 	'recipe.superseded': z.object({ number: z.number(), by: z.number() }),
 	'recipe.withdrawn': z.object({ number: z.number() }),
 	'recipe.shared': z.object({ number: z.number(), withGroupId: z.string(), withGroupName: z.string() }),
