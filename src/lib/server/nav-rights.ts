@@ -1,0 +1,13 @@
+import { can, roleIn, type Actor } from './policy';
+
+/** Which sections of the service the person may open in this group; each use case asks the permission table again. */
+export function navRights(actor: Actor, groupId: string | null) {
+	const may = (action: Parameters<typeof can>[2]) => groupId !== null && can(actor, groupId, action);
+	return {
+		studies: may('study.read'),
+		recipes: may('recipe.read'),
+		records: may('audit.read'),
+		group: groupId !== null && roleIn(actor, groupId) !== null,
+		admin: actor.siteAdmin
+	};
+}
