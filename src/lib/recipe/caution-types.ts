@@ -2,12 +2,16 @@ import type { RecipeContent } from '$lib/schemas/recipe';
 
 /** A rule of the site, entered by its admin: the tool defers to it and never replaces it. */
 export interface SiteRule {
-	/** What it is about; a caution looks for its own topic first and for "general" then. */
-	topic: string;
-	name: string;
+	/** The site's own key, for example PS-04. */
+	key: string;
+	title: string;
 	link: string;
 	contact: string;
 }
+
+/** What a caution is about, to find the site rule that concerns it. */
+export type Topic =
+	'heat' | 'gas' | 'kinetics' | 'autocatalysis' | 'extrapolation' | 'scale-up' | 'ipc' | 'hazard-statements';
 
 /** Site thresholds: common practice, never constants of the tool. */
 export interface CautionThresholds {

@@ -4,8 +4,8 @@ import { cautions, DEFAULT_THRESHOLDS, type CautionFacts } from './cautions';
 import { sampleRecipe } from './fixture';
 
 const rule = {
-	topic: 'heat',
-	name: 'PS-04',
+	key: 'PS-04',
+	title: 'Thermal process safety before scale-up',
 	link: 'https://rules.example.invalid/ps-04',
 	contact: 'process safety, ext. 4410'
 };

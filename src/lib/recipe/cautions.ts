@@ -1,17 +1,32 @@
 import type { RecipeContent, SetPoint } from '$lib/schemas/recipe';
-import type { Caution, CautionFacts, SiteRule } from './caution-types';
+import type { Caution, CautionFacts, SiteRule, Topic } from './caution-types';
 import { heatCautions } from './cautions-heat';
 import { plain } from './rounding';
 import { stableKey } from './stable-key';
 
 export * from './caution-types';
 
-/** Rule of the caution's own topic, else the site's general one, else none. */
-export function ruleFor(rules: readonly SiteRule[], topic: string): SiteRule | null {
-	return rules.find((r) => r.topic === topic) ?? rules.find((r) => r.topic === 'general') ?? null;
+/** Words by which the title of a site rule shows that it concerns a topic. */
+const WORDS: Record<Topic, RegExp> = {
+	heat: /heat|thermal|exotherm|calorimet|runaway/i,
+	gas: /gas|vent|relief|pressure/i,
+	autocatalysis: /autocatal|thermal|heat|decompos/i,
+	'hazard-statements': /hazard|chemical|substance|data sheet|sds/i,
+	'scale-up': /scale|plant|pilot|transfer/i,
+	kinetics: /scale|kinetic|process safety/i,
+	extrapolation: /scale|kinetic|process safety/i,
+	ipc: /sampl|control|analy/i
+};
+
+/** The site's rule on this topic by its title; else the first rule of the site; else none. */
+export function ruleFor(rules: readonly SiteRule[], topic: Topic): SiteRule | null {
+	return rules.find((r) => WORDS[topic].test(r.title)) ?? rules[0] ?? null;
 }
 
-export type CautionDraft = Omit<Caution, 'key' | 'rule'> & { topic: string; inputs: unknown };
+export type CautionDraft = Omit<Caution, 'key' | 'rule'> & {
+	topic: Topic;
+	inputs: unknown;
+};
 
 const outside = (point: SetPoint): string[] => {
 	if (!point.studied) return [];
@@ -34,7 +49,7 @@ function extrapolation(content: RecipeContent): CautionDraft[] {
 		const [low, high] = point.studied!;
 		return [
 			{
-				topic: 'extrapolation',
+				topic: 'extrapolation' as const,
 				code: 'outside-studied-range',
 				kind: 'caution' as const,
 				title: `${point.parameter} leaves the studied range.`,
@@ -99,7 +114,7 @@ function ipcLag(content: RecipeContent): CautionDraft[] {
 		if (ipc.lagMin === null || ipc.lagMin <= widthMin) return [];
 		return [
 			{
-				topic: 'ipc',
+				topic: 'ipc' as const,
 				code: 'ipc-lag-exceeds-window',
 				kind: 'caution' as const,
 				title: 'The result comes later than the window is wide.',

@@ -253,6 +253,7 @@ const TABLES: Record<string, Parameters<QueryInterface['createTable']>[1]> = {
 		version: { type: DataTypes.INTEGER, allowNull: false, defaultValue: 1 },
 		reason: { type: DataTypes.TEXT, allowNull: true },
 		author_id: { type: DataTypes.UUID, allowNull: false, references: { model: 'users', key: 'id' } },
+		contributor_ids: { type: DataTypes.JSON, allowNull: false },
 		submitted_at: { type: DataTypes.DATE, allowNull: true },
 		updated_at: { type: DataTypes.DATE, allowNull: false },
 		created_at

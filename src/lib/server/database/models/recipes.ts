@@ -53,6 +53,8 @@ export class RecipeVersion extends Model<
 	declare version: CreationOptional<number>;
 	declare reason: CreationOptional<string | null>;
 	declare authorId: string;
+	/** Everybody who wrote content of this version: none of them may validate it. */
+	declare contributorIds: CreationOptional<string[]>;
 	declare submittedAt: CreationOptional<Date | null>;
 	declare updatedAt: Date;
 	declare createdAt: CreationOptional<Date>;
@@ -72,6 +74,7 @@ function initRecipeVersion(sequelize: Sequelize): void {
 			version: { type: DataTypes.INTEGER, allowNull: false, defaultValue: 1 },
 			reason: { type: DataTypes.TEXT, allowNull: true },
 			authorId: { type: DataTypes.UUID, allowNull: false },
+			contributorIds: { type: DataTypes.JSON, allowNull: false, defaultValue: [] },
 			submittedAt: { type: DataTypes.DATE, allowNull: true },
 			updatedAt: { type: DataTypes.DATE, allowNull: false },
 			createdAt: { type: DataTypes.DATE, allowNull: false, defaultValue: DataTypes.NOW }
