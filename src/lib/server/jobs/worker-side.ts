@@ -1,0 +1,51 @@
+import { parentPort, workerData } from 'node:worker_threads';
+import type { ThreadMessage } from './thread';
+
+export interface WorkerHooks {
+	/** Tells how far the work is; thinned out, so that a tight loop may call it as it likes. */
+	progress(progress: unknown): void;
+	/** Whether the work was called off. */
+	cancelled(): boolean;
+}
+
+/** Problems of the input have one of these marks; everything else is a fault of ours and crashes the thread. */
+function asRefusal(caught: unknown): ThreadMessage | null {
+	if (!(caught instanceof Error)) return null;
+	const { code, fields } = caught as { code?: unknown; fields?: unknown };
+	if (typeof code !== 'string' && !(caught instanceof RangeError)) return null;
+	return {
+		type: 'refused',
+		message: caught.message,
+		code: typeof code === 'string' ? code : 'range',
+		...(Array.isArray(fields) ? { fields: fields as { field: string; message: string }[] } : {})
+	};
+}
+
+const PROGRESS_EVERY_MS = 100;
+
+/** The frame of every worker: reads the task, runs the work, sends the result or the refusal home. */
+export function serveTask<T, R>(work: (task: T, hooks: WorkerHooks) => R | Promise<R>): void {
+	const { task, stop } = workerData as { task: T; stop: SharedArrayBuffer };
+	const flag = new Int32Array(stop);
+	const send = (message: ThreadMessage) => parentPort?.postMessage(message);
+	let last = -Infinity;
+	const hooks: WorkerHooks = {
+		cancelled: () => Atomics.load(flag, 0) === 1,
+		progress(progress) {
+			const now = performance.now();
+			if (now - last < PROGRESS_EVERY_MS) return;
+			last = now;
+			send({ type: 'progress', progress });
+		}
+	};
+	void (async () => {
+		try {
+			send({ type: 'result', result: await work(task, hooks) });
+		} catch (caught) {
+			if (hooks.cancelled()) return send({ type: 'refused', message: 'called off', code: 'cancelled' });
+			const refusal = asRefusal(caught);
+			if (!refusal) throw caught;
+			send(refusal);
+		}
+	})();
+}
