@@ -1,0 +1,36 @@
+import { fail, redirect } from '@sveltejs/kit';
+import { isEmptyRow, messagesOf, rowsOf, toCriterion } from '$lib/components/study/criteria-form';
+import { studyForm } from '$lib/schemas/study';
+import { requireActor, requireGroup } from '$lib/server/hooks/actor';
+import { page } from '$lib/server/http';
+import { requireCan } from '$lib/server/policy';
+import { createStudy } from '$lib/server/studies/create-study';
+import type { PageServerLoadEvent, RequestEvent } from './$types';
+
+export const load = page((event: PageServerLoadEvent) => {
+	requireCan(requireActor(event), requireGroup(event), 'study.write', 'group');
+	return {};
+});
+
+const text = (form: FormData, name: string): string => {
+	const value = form.get(name);
+	return typeof value === 'string' ? value : '';
+};
+
+export const actions = {
+	default: page(async (event: RequestEvent) => {
+		const actor = requireActor(event);
+		const groupId = requireGroup(event);
+		const form = await event.request.formData();
+		const rows = rowsOf(form).filter((row) => !isEmptyRow(row));
+		const typed = { name: text(form, 'name'), decision: text(form, 'decision'), rows };
+		const read = studyForm.safeParse({
+			name: typed.name,
+			decision: typed.decision,
+			criteria: rows.map(toCriterion)
+		});
+		if (!read.success) return fail(400, { typed, errors: messagesOf(read.error.issues) });
+		const study = await createStudy(actor, { ...read.data, groupId });
+		redirect(303, `/studies/${study.id}/scheme`);
+	})
+};
