@@ -80,6 +80,22 @@ async function grant(tx: Tx, actor: AuditActor, user: User, row: Invitation): Pr
 	});
 }
 
+/** A person made beforehand (the first site admin) only sets a password; anybody else is new. */
+function noteArrival(tx: Tx, user: User, madeBefore: boolean): Promise<void> {
+	const about = { objectType: 'person', objectId: user.id };
+	if (madeBefore)
+		return appendAudit(tx, asPerson(user), {
+			...about,
+			type: 'person.password-changed',
+			payload: { by: 'invitation' }
+		});
+	return appendAudit(tx, asPerson(user), {
+		...about,
+		type: 'person.created',
+		payload: { email: user.email, name: user.name, siteAdmin: user.siteAdmin }
+	});
+}
+
 /** A new person takes the invitation up: name and password are theirs, the e-mail address is the invited one. */
 export async function acceptInvitation(
 	secret: string,
@@ -99,12 +115,7 @@ export async function acceptInvitation(
 			? await existing.update({ name, passwordHash }, { transaction: tx })
 			: await User.create({ email: row.email, name, passwordHash }, { transaction: tx });
 		const actor = asPerson(user);
-		await appendAudit(tx, actor, {
-			type: 'person.created',
-			objectType: 'person',
-			objectId: user.id,
-			payload: { email: user.email, name, siteAdmin: user.siteAdmin }
-		});
+		await noteArrival(tx, user, existing !== null);
 		await grant(tx, actor, user, row);
 		return { email: user.email };
 	});
