@@ -101,3 +101,19 @@ export function symbolicMatrix(network: Network): SymbolicTerm[][][] {
 	});
 	return cells;
 }
+
+/** The system beside n collectors that gather ∫₀ᵗ c dt of each species without consuming it; species n + i collects i. */
+export function withIntegrals(system: LinearSystem): LinearSystem {
+	const { n } = system;
+	const outflow = new Float64Array(2 * n);
+	outflow.set(system.outflow);
+	const collectors = Array.from({ length: n }, (_, i) => ({
+		from: i,
+		to: n + i,
+		rate: 1,
+		coefficient: 1,
+		step: -1,
+		direction: 'forward' as const
+	}));
+	return { n: 2 * n, transfers: [...system.transfers, ...collectors], outflow, flows: system.flows };
+}

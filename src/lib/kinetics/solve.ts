@@ -1,10 +1,37 @@
 /**
- * The closed-form solution of one batch under constant conditions, first form: evaluation by the non-negative propagator.
+ * The closed-form solution of one batch under constant conditions, and the choice among ways of evaluating it.
+ *
+ *     dc/dt = K c,  c(0) = charge   →   c(t) = Σ_j a_j(t) e^{λ_j t}
+ *
+ * 1. The structure of K gives the modes (`mode-space.ts`, `mode-groups.ts`, `triangular-modes.ts`) and with them the closed
+ *    form (`closed-form.ts`), fast to evaluate, with a running bound on its own rounding.
+ * 2. Where that bound alone keeps the error below 1e-13 of the total charge, it is used as it is. Otherwise it is compared, at
+ *    times spread over every mode, with the independent non-negative evaluation (`propagator.ts`), whose error is some 1e-14
+ *    whatever the scheme; only agreement lets it stand, else the non-negative evaluation draws the curves
+ *    (`method: 'uniformisation'`). If the two differ by more than both their bounds, extended precision decides
+ *    (`method: 'extended'`).
+ * 3. Even then, a concentration that is small beside the terms it is made of (early times: c ∝ t⁴ four steps down a chain) is
+ *    evaluated by the non-negative way, so that trace amounts keep their *relative* accuracy.
+ *
+ * t = 0 returns the charge itself; nothing is negative, NaN or infinite for a non-negative charge and bounded schemes.
+ *
+ * | symbol | name here |
+ * | --- | --- |
+ * | A[s][l], φ_l | `form.amplitudes`, `basis()` |
+ * | bound on Σ|terms| of a species | `size[s]` |
  */
+import { blockWeights } from './block-weights';
+import { basis, basisSlope, closedForm, type ClosedForm } from './closed-form';
 import { components } from './components';
 import { finalComposition } from './final-composition';
+import { modeGroups, type ModeGroup } from './mode-groups';
+import { modeSpace, type ModeSpace } from './mode-space';
+import { modesOf } from './modes';
 import { Propagator } from './propagator';
+import { withIntegrals } from './linear-system';
+import { triangularModes } from './triangular-modes';
 import type { LinearSystem, Mode, Solution, SolveMethod } from './types';
+import { judge, type Judgement } from './verdict';
 
 /**
  * Solves dc/dt = K c for one charge.
@@ -13,7 +40,7 @@ import type { LinearSystem, Mode, Solution, SolveMethod } from './types';
  * @throws RangeError when the charge has the wrong length or is not finite, or products multiply round a loop without limit.
  */
 export function solve(system: LinearSystem, charge: ArrayLike<number>): Solution {
-	return new PropagatedSolution(system, checkedCharge(system, charge));
+	return new NetworkSolution(system, checkedCharge(system, charge));
 }
 
 function checkedCharge(system: LinearSystem, charge: ArrayLike<number>): Float64Array {
@@ -27,14 +54,20 @@ function checkedCharge(system: LinearSystem, charge: ArrayLike<number>): Float64
 	return own;
 }
 
-class PropagatedSolution implements Solution {
+class NetworkSolution implements Solution {
 	readonly n: number;
-	readonly modes: Mode[] = [];
-	readonly method: SolveMethod = 'uniformisation';
-	readonly errorEstimate = 1e-13;
-	readonly final: Float64Array;
-	private readonly propagator: Propagator;
+	readonly method: SolveMethod;
+	readonly errorEstimate: number;
+	readonly form: ClosedForm;
+	private readonly verdict: Judgement;
+	private readonly space: ModeSpace;
+	private readonly groups: ModeGroup[];
+	private readonly phi: Float64Array;
+	private readonly work: Float64Array;
+	private propagator: Propagator | null = null;
 	private integrator: Propagator | null = null;
+	private finalValue: Float64Array | null = null;
+	private modeList: Mode[] | null = null;
 
 	constructor(
 		private readonly system: LinearSystem,
@@ -42,14 +75,27 @@ class PropagatedSolution implements Solution {
 	) {
 		this.n = system.n;
 		const parts = components(system);
-		this.propagator = new Propagator(system, parts);
-		this.final = finalComposition(system, charge, parts).final;
+		this.space = modeSpace(system, parts, blockWeights(system, parts));
+		const { groups, groupOf } = modeGroups(this.space);
+		this.groups = groups;
+		this.form = closedForm(this.space, groups, triangularModes(this.space, groups, groupOf, charge));
+		this.phi = new Float64Array(this.form.width);
+		this.work = new Float64Array(Math.max(this.form.width, this.n));
+		this.verdict = judge(system, charge, this.space, groups, this.form, () => this.exact());
+		this.method = this.verdict.method;
+		this.errorEstimate = this.verdict.errorEstimate;
+	}
+
+	get final(): Float64Array {
+		return (this.finalValue ??= finalComposition(this.system, this.charge).final);
+	}
+
+	get modes(): Mode[] {
+		return (this.modeList ??= modesOf(this.form));
 	}
 
 	at(timeS: number, out: Float64Array = new Float64Array(this.n)): Float64Array {
-		if (!(timeS >= 0)) throw new RangeError(`A time ≥ 0 s is expected; found ${timeS} s.`);
-		if (timeS === Infinity) out.set(this.final);
-		else this.propagator.apply(timeS, this.charge, out);
+		this.write(timeS, out, 0);
 		return out;
 	}
 
@@ -57,42 +103,97 @@ class PropagatedSolution implements Solution {
 		timesS: ArrayLike<number>,
 		out: Float64Array = new Float64Array(this.n * timesS.length)
 	): Float64Array {
-		for (let k = 0; k < timesS.length; k++) this.at(timesS[k], out.subarray(k * this.n, (k + 1) * this.n));
+		for (let k = 0; k < timesS.length; k++) this.write(timesS[k], out, k * this.n);
 		return out;
 	}
 
 	slope(timeS: number, out: Float64Array = new Float64Array(this.n)): Float64Array {
+		checkTime(timeS);
+		if (timeS === Infinity) return out.fill(0);
+		if (this.verdict.useClosedForm && this.closedFormHolds(timeS)) return this.closedSlope(out);
 		const c = this.at(timeS);
-		for (let i = 0; i < this.n; i++) out[i] = -this.system.outflow[i] * c[i];
-		for (const { from, to, rate, coefficient } of this.system.transfers)
-			out[to] += rate * coefficient * c[from];
+		const { outflow, transfers } = this.system;
+		for (let i = 0; i < this.n; i++) out[i] = -outflow[i] * c[i];
+		for (const { from, to, rate, coefficient } of transfers) out[to] += rate * coefficient * c[from];
 		return out;
 	}
 
 	integral(timeS: number, out: Float64Array = new Float64Array(this.n)): Float64Array {
-		const { n, system } = this;
-		if (!this.integrator) {
-			const outflow = new Float64Array(2 * n);
-			outflow.set(system.outflow);
-			const collectors = Array.from({ length: n }, (_, i) => ({
-				from: i,
-				to: n + i,
-				rate: 1,
-				coefficient: 1,
-				step: -1,
-				direction: 'forward' as const
-			}));
-			this.integrator = new Propagator({
-				n: 2 * n,
-				transfers: [...system.transfers, ...collectors],
-				outflow,
-				flows: system.flows
-			});
+		checkTime(timeS);
+		if (timeS === Infinity) {
+			out.set(finalComposition(this.system, this.charge).throughput);
+			return out;
 		}
-		const start = new Float64Array(2 * n);
-		start.set(this.charge);
-		const end = this.integrator.apply(timeS, start, start);
-		out.set(end.subarray(n));
+		this.integrator ??= new Propagator(withIntegrals(this.system));
+		const both = new Float64Array(2 * this.n);
+		both.set(this.charge);
+		this.integrator.apply(timeS, both, both);
+		out.set(both.subarray(this.n));
 		return out;
 	}
+
+	private exact(): Propagator {
+		return (this.propagator ??= new Propagator(this.system));
+	}
+
+	private write(timeS: number, out: Float64Array, start: number): void {
+		checkTime(timeS);
+		if (timeS === 0) out.set(this.charge, start);
+		else if (timeS === Infinity) out.set(this.final, start);
+		else if (!this.verdict.useClosedForm || !this.closedForm(timeS, out, start)) {
+			const target = out.subarray(start, start + this.n);
+			this.exact().apply(timeS, this.charge, target);
+		}
+	}
+
+	/** Closed form into out; false when some species needs the non-negative evaluation. */
+	private closedForm(timeS: number, out: Float64Array, start: number): boolean {
+		const { n, form, phi } = this;
+		const { width, amplitudes } = form;
+		const { trusted } = this.verdict;
+		basis(form, timeS, phi);
+		let sure = true;
+		for (let s = 0, at = 0; s < n; s++) {
+			let sum = 0;
+			for (let l = 0; l < width; l++, at++) sum += amplitudes[at] * phi[l];
+			out[start + s] = sum;
+			if (!(Math.abs(sum) >= trusted[s])) sure = false;
+		}
+		return sure || this.allDecayed(out, start);
+	}
+
+	/** Second look at small values: fine where the terms themselves have decayed as much. */
+	private allDecayed(out: Float64Array, start: number): boolean {
+		const { n, form, phi } = this;
+		const { trusted, exactAmplitudes, smallest } = this.verdict;
+		for (let s = 0; s < n; s++) {
+			const value = Math.abs(out[start + s]);
+			if (value >= trusted[s]) continue;
+			if (!exactAmplitudes) return false;
+			let size = 0;
+			for (let l = 0, at = s * form.width; l < form.width; l++, at++)
+				size += form.sizes[at] * Math.abs(phi[l]);
+			if (!(value >= smallest * size)) return false;
+		}
+		return true;
+	}
+
+	private closedFormHolds(timeS: number): boolean {
+		return timeS > 0 && this.closedForm(timeS, this.work, 0);
+	}
+
+	private closedSlope(out: Float64Array): Float64Array {
+		const { form, phi, work, n } = this;
+		basisSlope(form, phi, work);
+		for (let s = 0, at = 0; s < n; s++) {
+			let sum = 0;
+			for (let l = 0; l < form.width; l++, at++) sum += form.amplitudes[at] * work[l];
+			out[s] = sum;
+		}
+		return out;
+	}
+}
+
+function checkTime(timeS: number): void {
+	if (!(timeS >= 0)) throw new RangeError(`A time ≥ 0 s is expected; found ${timeS} s.`);
 }

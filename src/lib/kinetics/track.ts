@@ -1,0 +1,240 @@
+/**
+ * A trajectory as piecewise polynomials, so that every crossing of every limit can be found, not only those that a grid hits.
+ *
+ * Problem: the roots of sums of exponentials (with polynomials, cosines and sines) over [0, ∞), for any number of criteria on
+ * the same curve, whichever way the curve was solved. The curve is interpolated at Chebyshev points on intervals that double
+ * in length, [0, h], [h, 2h], [2h, 4h], …: on [l, 2l] degree 20 represents every e^{−λt}, λ ≥ 0, to 4e-16 (see
+ * `chebyshev.ts`), so about log₂(slowest/fastest) pieces serve the stiffest scheme. Oscillating loops, and anything else that
+ * does not show the expected fall of its coefficients, make the piece split in two until it does. The last piece ends where
+ * every species has reached its limit t → ∞ to rounding; from there the curve is that limit (e^{Kt} does not expand
+ * distances in the weighted 1-norm).
+ *
+ * Each species is resolved relative to the largest value that it has had so far, so that a trace at early times keeps its
+ * digits.
+ *
+ * | symbol | name here |
+ * | --- | --- |
+ * | l, 2l | `edges[p]`, `edges[p + 1]`, s |
+ * | a_k of species i on piece p | `coefficients[(p·n + i)·SIZE + k]` |
+ * | largest value so far | `scales[p·n + i]` |
+ *
+ * Sources: J. P. Boyd, SIAM J. Numer. Anal. 40 (2002) 1666 (roots through Chebyshev interpolants and subdivision);
+ * Z. Battles and L. N. Trefethen, SIAM J. Sci. Comput. 25 (2004) 1743; error bound: Trefethen (2013), theorem 8.2.
+ */
+import { clenshaw, coefficients as interpolate, DEGREE, NODES, SIZE } from './chebyshev';
+import type { Solution } from './types';
+
+/** Anything that has concentrations at a time. */
+export interface Trajectory {
+	readonly n: number;
+	at(timeS: number, out?: Float64Array): Float64Array;
+}
+
+export interface TrackOptions {
+	/** Latest time that counts, s; Infinity (the default) needs `final`. */
+	horizonS?: number;
+	/** Limit t → ∞ of every species. */
+	final?: ArrayLike<number>;
+	/** Upper bound on |rate| of any mode, 1/s, where known: saves a search for the first piece. */
+	fastestPerS?: number;
+	/** Times at which the conditions jump or their slope does (programs, shots), s. */
+	breaksS?: readonly number[];
+}
+
+export interface Track {
+	readonly n: number;
+	readonly pieces: number;
+	/** pieces + 1 times, from 0 on, s. */
+	readonly edges: Float64Array;
+	readonly coefficients: Float64Array;
+	readonly scales: Float64Array;
+	/** Where the curve ends: the horizon, or the time from which it is `beyond`. */
+	readonly endS: number;
+	/** Value from `endS` on; null where the horizon ends the curve. */
+	readonly beyond: Float64Array | null;
+}
+
+/** Relative size of the last coefficients at which a piece counts as resolved. */
+const RESOLVED = 2e-15;
+/** Relative distance from the limit at which the curve has arrived. */
+const ARRIVED = 4e-15;
+const MOST_PIECES = 20_000;
+
+/** The track of a closed-form solution up to a horizon, or for ever. */
+export function trackOf(solution: Solution, horizonS = Infinity): Track {
+	let fastestPerS = 0;
+	for (const mode of solution.modes) fastestPerS = Math.max(fastestPerS, Math.hypot(mode.re, mode.im));
+	return track(solution, {
+		horizonS,
+		final: solution.final,
+		...(fastestPerS > 0 ? { fastestPerS } : {})
+	});
+}
+
+/**
+ * The track of any trajectory.
+ * @throws RangeError when the horizon is not above 0, or is infinite without a finite limit t → ∞.
+ */
+export function track(trajectory: Trajectory, options: TrackOptions = {}): Track {
+	return new TrackBuilder(trajectory, options).build();
+}
+
+class TrackBuilder {
+	private readonly n: number;
+	private readonly horizon: number;
+	private readonly final: Float64Array | null;
+	private readonly breaks: number[];
+	private edges: number[] = [0];
+	private store = new Float64Array(0);
+	private scaleStore: number[] = [];
+	private readonly values: Float64Array;
+	private readonly piece: Float64Array;
+	private readonly running: Float64Array;
+	private readonly here: Float64Array;
+	private lastTail = Infinity;
+
+	constructor(
+		private readonly trajectory: Trajectory,
+		private readonly options: TrackOptions
+	) {
+		this.n = trajectory.n;
+		this.horizon = options.horizonS ?? Infinity;
+		if (!(this.horizon > 0))
+			throw new RangeError(`A horizon above 0 s is expected; found ${this.horizon} s.`);
+		const final = options.final ? Float64Array.from(options.final) : null;
+		this.final = final?.every(Number.isFinite) ? final : null;
+		if (this.horizon === Infinity && !this.final)
+			throw new RangeError('Without a horizon the curve needs a finite limit. Give a latest time.');
+		this.breaks = [...(options.breaksS ?? [])].filter((t) => t > 0 && t < this.horizon).sort((a, b) => a - b);
+		this.values = new Float64Array(SIZE * this.n);
+		this.piece = new Float64Array(SIZE * this.n);
+		this.running = new Float64Array(this.n);
+		this.here = trajectory.at(0).slice();
+	}
+
+	build(): Track {
+		let arrived = this.arrived();
+		for (const end of [...this.breaks, this.horizon]) {
+			if (arrived && this.breaks.length === 0) break;
+			arrived = this.segment(this.edges[this.edges.length - 1], end);
+		}
+		const endS = this.edges[this.edges.length - 1];
+		return {
+			n: this.n,
+			pieces: this.edges.length - 1,
+			edges: Float64Array.from(this.edges),
+			coefficients: this.store.slice(0, (this.edges.length - 1) * this.n * SIZE),
+			scales: Float64Array.from(this.scaleStore),
+			endS: arrived && this.final ? endS : Math.min(endS, this.horizon),
+			beyond: arrived ? this.final : null
+		};
+	}
+
+	/** Pieces from `start` to `end` (a break or the horizon); true when the limit was reached in the last segment. */
+	private segment(start: number, end: number): boolean {
+		let left = start;
+		let width = Math.min(this.firstWidth(), end - start);
+		let splits = 0;
+		while (left < end) {
+			if (this.edges.length > MOST_PIECES)
+				throw new RangeError(`The curve could not be followed beyond ${left} s. Give an earlier latest time.`);
+			const right = left + width > end * (1 - 1e-12) ? end : left + width;
+			if (!this.resolve(left, right) && splits < 60) {
+				width = (right - left) / 2;
+				splits++;
+				continue;
+			}
+			this.keep(right);
+			if (end === this.horizon && this.arrived()) return true;
+			if (splits > 0) splits--;
+			this.lastTail = Infinity;
+			left = right;
+			width = Math.min(2 * width, Math.max(right - start, width));
+		}
+		return this.horizon === Infinity ? this.arrived() : false;
+	}
+
+	private firstWidth(): number {
+		if (this.options.fastestPerS) return 3 / this.options.fastestPerS;
+		const finite = Number.isFinite(this.horizon) ? this.horizon : 1e6;
+		return this.breaks.length > 0 ? finite / 8 : finite;
+	}
+
+	/** Interpolates one piece; true when the last coefficients are down to rounding, or stop falling when it is halved. */
+	private resolve(left: number, right: number): boolean {
+		const { n, values, piece, running } = this;
+		const middle = (left + right) / 2;
+		const half = (right - left) / 2;
+		for (let j = 0; j < SIZE; j++) {
+			const t = j === 0 ? right : j === DEGREE ? left : middle + half * NODES[j];
+			this.trajectory.at(t, values.subarray(j * n, (j + 1) * n));
+		}
+		let tail = 0;
+		for (let i = 0; i < n; i++) {
+			interpolate(values, i, n, piece, i * SIZE);
+			let largest = running[i];
+			for (let j = 0; j < SIZE; j++) largest = Math.max(largest, Math.abs(values[j * n + i]));
+			if (largest === 0) continue;
+			const end = i * SIZE + DEGREE;
+			const last = Math.abs(piece[end]) + Math.abs(piece[end - 1]) + Math.abs(piece[end - 2]);
+			tail = Math.max(tail, last / largest);
+		}
+		const stuck = tail < 1e-11 && tail > this.lastTail / 4;
+		this.lastTail = tail;
+		return tail <= RESOLVED || stuck;
+	}
+
+	private keep(right: number): void {
+		const { n, values, piece, running } = this;
+		const at = (this.edges.length - 1) * n * SIZE;
+		if (at + n * SIZE > this.store.length) {
+			const larger = new Float64Array(Math.max(16 * n * SIZE, 2 * this.store.length));
+			larger.set(this.store);
+			this.store = larger;
+		}
+		this.store.set(piece, at);
+		for (let i = 0; i < n; i++) {
+			for (let j = 0; j < SIZE; j++) running[i] = Math.max(running[i], Math.abs(values[j * n + i]));
+			this.scaleStore.push(running[i]);
+			this.here[i] = values[i];
+		}
+		this.edges.push(right);
+	}
+
+	private arrived(): boolean {
+		const { final, here, running, n } = this;
+		if (!final) return false;
+		let total = 0;
+		for (let i = 0; i < n; i++) total = Math.max(total, Math.abs(here[i]), running[i]);
+		for (let i = 0; i < n; i++) {
+			const scale = Math.max(running[i], Math.abs(here[i]));
+			if (Math.abs(here[i] - final[i]) > ARRIVED * scale + 1e-15 * total) return false;
+		}
+		return true;
+	}
+}
+
+/** Σ w_i c_i(t) + constant from a track. */
+export function formAt(
+	track: Track,
+	weights: ArrayLike<number>,
+	constant: number,
+	timeS: number
+): number {
+	const { n, edges, pieces, beyond } = track;
+	let sum = constant;
+	if (pieces === 0 || (timeS >= track.endS && beyond)) {
+		for (let i = 0; i < n; i++) sum += weights[i] * (beyond ? beyond[i] : NaN);
+		return sum;
+	}
+	let p = 0;
+	for (let high = pieces - 1; p < high; ) {
+		const mid = (p + high + 1) >> 1;
+		if (edges[mid] <= timeS) p = mid;
+		else high = mid - 1;
+	}
+	const x = Math.max(-1, Math.min(1, (2 * timeS - edges[p] - edges[p + 1]) / (edges[p + 1] - edges[p])));
+	for (let i = 0; i < n; i++)
+		if (weights[i] !== 0) sum += weights[i] * clenshaw(track.coefficients, x, (p * n + i) * SIZE);
+	return sum;
+}
