@@ -1,2 +1,3 @@
 export * from './database';
 export * from './people';
+export * from './refusal';
