@@ -48,6 +48,7 @@ const TABLE = {
 	'recipe.read': { roles: insight, scope: 'read' },
 	'recipe.write': { roles: content, scope: 'write' },
 	'recipe.submit': { roles: content, scope: 'write' },
+	'recipe.comment': { roles: insight, scope: 'write' },
 	'recipe.return': { roles: ['group_lead'], scope: 'write' },
 	'recipe.validate': { roles: ['group_lead'], scope: null },
 	'recipe.verify': { roles: ['qa_reviewer'], scope: null },
