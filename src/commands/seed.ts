@@ -7,13 +7,17 @@ import { seedDemo } from '$lib/server/demo/seed';
 function announce(fresh: boolean): void {
 	const width = Math.max(...PEOPLE.map((p) => p.email.length));
 	const rows = PEOPLE.map((p) => {
-		const roles = p.siteAdmin ? 'site admin' : p.roles.map(([g, r]) => `${r.replace('_', ' ')} in ${g}`).join(', ');
+		const roles = p.siteAdmin
+			? 'site admin'
+			: p.roles.map(([g, r]) => `${r.replace('_', ' ')} in ${g}`).join(', ');
 		return `  ${p.email.padEnd(width)}  ${p.name}, ${roles}`;
 	});
 	console.log(
 		[
 			'',
-			fresh ? 'The demonstration has been filled in (people, groups and compounds are invented).' : 'The demonstration data are kept as they were; --fresh starts over.',
+			fresh
+				? 'The demonstration has been filled in (people, groups and compounds are invented).'
+				: 'The demonstration data are kept as they were; --fresh starts over.',
 			'',
 			`  Ratewright: ${process.env.ORIGIN ?? 'http://localhost:4300'}`,
 			'',
