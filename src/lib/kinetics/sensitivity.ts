@@ -1,10 +1,29 @@
 /**
- * Curves and their analytic derivatives, for the fit: see `SensitivityWorkspace`.
+ * Curves and their analytic derivatives: with respect to ln k of any step-direction, and to any initial amount.
  *
- * First form: the derivative with respect to ln k of one step-direction j → Σ ν_i i obeys
- *     d(s)/dt = K s + k (Σ ν_i e_i − e_j) c_j(t),   s(0) = 0
- * and is the difference of two non-negative solutions, one fed by the products and one by the reactant.
+ * The derivative s = ∂c/∂ln k of a step-direction j → Σ ν_i i with constant k obeys
+ *
+ *     ds/dt = K s + k (Σ ν_i e_i − e_j) c_j(t),  s(0) = 0
+ *
+ * 1. Where K = X Λ Y with a good basis (Daleckii and Krein):
+ *        s(t) = X z,  z_a = u_a Σ_b φ_ab X_jb y_b,   u = k Y (Σ ν_i e_i − e_j),  y = Y c₀,
+ *    with φ the divided differences of e^{λt}; the sums over b are shared by all steps of one reactant.
+ * 2. Elsewhere (equal or nearly equal coupled rates, ill-conditioned bases): the system beside a copy of itself that is fed by
+ *    c_j — Van Loan's block triangular matrix — evaluated by the non-negative propagator, once fed by the products and once by
+ *    the reactant; the derivative is their difference. No cancellation but that one.
+ * The derivative with respect to c₀_j is column j of e^{Kt}.
+ *
+ * | symbol | name here |
+ * | --- | --- |
+ * | X, Y, Λ | `Eigenbasis.x`, `.y`, `.lambda` |
+ * | φ | `PairTable` |
+ * | u | `weightRe`, `weightIm` |
+ *
+ * Sources: Ju. L. Daleckii and S. G. Krein, AMS Transl. 47 (1965) 1; C. F. Van Loan, IEEE Trans. Autom. Control 23 (1978) 395;
+ * N. J. Higham, Functions of Matrices, SIAM 2008, ch. 10.
  */
+import { fillPairs, pairTable, type PairTable } from './divided-differences';
+import { eigenbasis, type Eigenbasis } from './eigenbasis';
 import { Propagator } from './propagator';
 import type { LinearSystem } from './types';
 
@@ -21,6 +40,9 @@ export interface SensitivityResult {
 	derivatives: Float64Array;
 }
 
+/** Agreement with the non-negative evaluation, of the total charge, that a basis without relative accuracy must show. */
+const AGREEMENT = 1e-12;
+
 /**
  * Curves and derivatives for one linear system, charge and list of times. Keep one workspace per (times, parameters) and call
  * `evaluate` for each new set of constants: the arrays of the result are the workspace's own and are overwritten by the next
@@ -29,6 +51,15 @@ export interface SensitivityResult {
 export class SensitivityWorkspace implements SensitivityResult {
 	readonly curves: Float64Array;
 	readonly derivatives: Float64Array;
+	/** Which way the last call took. */
+	method: 'divided differences' | 'block matrix' = 'block matrix';
+	private readonly pairs: PairTable;
+	private readonly startRe: Float64Array;
+	private readonly startIm: Float64Array;
+	private readonly weightRe: Float64Array;
+	private readonly weightIm: Float64Array;
+	private readonly innerRe: Float64Array;
+	private readonly innerIm: Float64Array;
 
 	/**
 	 * @param n number of species
@@ -42,41 +73,167 @@ export class SensitivityWorkspace implements SensitivityResult {
 	) {
 		this.curves = new Float64Array(timesS.length * n);
 		this.derivatives = new Float64Array(parameters.length * timesS.length * n);
+		this.pairs = pairTable(n);
+		this.startRe = new Float64Array(n);
+		this.startIm = new Float64Array(n);
+		this.weightRe = new Float64Array(parameters.length * n);
+		this.weightIm = new Float64Array(parameters.length * n);
+		this.innerRe = new Float64Array(n * n);
+		this.innerIm = new Float64Array(n * n);
 	}
 
 	/** Fills `curves` and `derivatives`. A parameter whose constant is zero or absent has derivative 0. */
 	evaluate(system: LinearSystem, charge: ArrayLike<number>): this {
+		const basis = eigenbasis(system);
+		if (basis && this.byBasis(basis, system, charge)) this.method = 'divided differences';
+		else {
+			this.method = 'block matrix';
+			this.byBlockMatrix(system, charge);
+		}
+		return this;
+	}
+
+	private byBasis(basis: Eigenbasis, system: LinearSystem, charge: ArrayLike<number>): boolean {
+		const { n, timesS, startRe, startIm } = this;
+		startRe.fill(0);
+		startIm.fill(0);
+		for (let a = 0; a < n; a++)
+			for (let s = 0; s < n; s++) {
+				startRe[a] += basis.y.re[a * n + s] * charge[s];
+				startIm[a] += basis.y.im[a * n + s] * charge[s];
+			}
+		const reactants = this.weights(basis, system);
+		for (let k = 0; k < timesS.length; k++) {
+			fillPairs(this.pairs, basis.lambda.re, basis.lambda.im, timesS[k]);
+			this.curveAt(basis, k);
+			for (const reactant of new Set(reactants)) if (reactant >= 0) this.innerSums(basis, reactant);
+			for (let p = 0; p < reactants.length; p++) this.derivativeAt(basis, p, reactants[p], k);
+		}
+		return !basis.general || this.agrees(system, charge);
+	}
+
+	/** u of each parameter; returns its reactant, −1 for a charge, −2 for a step that carries nothing. */
+	private weights(basis: Eigenbasis, system: LinearSystem): Int32Array {
+		const { n, weightRe, weightIm } = this;
+		weightRe.fill(0);
+		weightIm.fill(0);
+		const add = (p: number, species: number, amount: number) => {
+			for (let a = 0; a < n; a++) {
+				weightRe[p * n + a] += basis.y.re[a * n + species] * amount;
+				weightIm[p * n + a] += basis.y.im[a * n + species] * amount;
+			}
+		};
+		return Int32Array.from(this.parameters, (parameter, p) => {
+			if (parameter.kind === 'charge') {
+				add(p, parameter.species, 1);
+				return -1;
+			}
+			const flow = flowOf(system, parameter);
+			if (!flow) return -2;
+			add(p, flow.from, -flow.rate);
+			for (const product of flow.products) add(p, product.to, product.rate);
+			return flow.from;
+		});
+	}
+
+	private curveAt({ x }: Eigenbasis, k: number): void {
+		const { n, curves, startRe, startIm, pairs } = this;
+		for (let s = 0; s < n; s++) {
+			let sum = 0;
+			for (let a = 0; a < n; a++) {
+				const re = startRe[a] * pairs.expRe[a] - startIm[a] * pairs.expIm[a];
+				const im = startRe[a] * pairs.expIm[a] + startIm[a] * pairs.expRe[a];
+				sum += x.re[s * n + a] * re - x.im[s * n + a] * im;
+			}
+			curves[k * n + s] = sum;
+		}
+	}
+
+	/** inner[j][a] = Σ_b φ_ab X_jb y_b for reactant j. */
+	private innerSums({ x }: Eigenbasis, reactant: number): void {
+		const { n, pairs, startRe, startIm, innerRe, innerIm } = this;
+		const row = reactant * n;
+		for (let a = 0; a < n; a++) {
+			let re = 0;
+			let im = 0;
+			for (let b = 0; b < n; b++) {
+				const vRe = x.re[row + b] * startRe[b] - x.im[row + b] * startIm[b];
+				const vIm = x.re[row + b] * startIm[b] + x.im[row + b] * startRe[b];
+				re += pairs.re[a * n + b] * vRe - pairs.im[a * n + b] * vIm;
+				im += pairs.re[a * n + b] * vIm + pairs.im[a * n + b] * vRe;
+			}
+			innerRe[row + a] = re;
+			innerIm[row + a] = im;
+		}
+	}
+
+	private derivativeAt({ x }: Eigenbasis, p: number, reactant: number, k: number): void {
+		const { n, derivatives, weightRe, weightIm, innerRe, innerIm, pairs } = this;
+		const out = (p * this.timesS.length + k) * n;
+		const timeRe = reactant < 0 ? pairs.expRe : innerRe;
+		const timeIm = reactant < 0 ? pairs.expIm : innerIm;
+		const row = Math.max(reactant, 0) * n;
+		for (let s = 0; s < n; s++) {
+			let sum = 0;
+			for (let a = 0; a < n; a++) {
+				const uRe = weightRe[p * n + a];
+				const uIm = weightIm[p * n + a];
+				const zRe = uRe * timeRe[row + a] - uIm * timeIm[row + a];
+				const zIm = uRe * timeIm[row + a] + uIm * timeRe[row + a];
+				sum += x.re[s * n + a] * zRe - x.im[s * n + a] * zIm;
+			}
+			derivatives[out + s] = sum;
+		}
+	}
+
+	/** Compares the latest and a middle time with the non-negative evaluation. */
+	private agrees(system: LinearSystem, charge: ArrayLike<number>): boolean {
+		const { n, timesS, curves } = this;
+		if (timesS.length === 0) return true;
+		const exact = new Propagator(system);
+		let total = 0;
+		for (let i = 0; i < n; i++) total += Math.abs(charge[i]);
+		let latest = 0;
+		for (let k = 1; k < timesS.length; k++) if (timesS[k] > timesS[latest]) latest = k;
+		for (const k of [latest, timesS.length >> 1]) {
+			const truth = exact.apply(timesS[k], charge);
+			for (let i = 0; i < n; i++)
+				if (!(Math.abs(truth[i] - curves[k * n + i]) <= AGREEMENT * total)) return false;
+		}
+		return true;
+	}
+
+	private byBlockMatrix(system: LinearSystem, charge: ArrayLike<number>): void {
 		const { n, timesS, curves, derivatives } = this;
 		const plain = new Propagator(system);
 		const times = timesS.length;
 		for (let k = 0; k < times; k++) plain.apply(timesS[k], charge, curves.subarray(k * n, (k + 1) * n));
 		this.parameters.forEach((parameter, p) => {
-			const out = derivatives.subarray(p * times * n, (p + 1) * times * n);
-			if (parameter.kind === 'charge') {
-				const unit = new Float64Array(n);
-				unit[parameter.species] = 1;
-				for (let k = 0; k < times; k++) plain.apply(timesS[k], unit, out.subarray(k * n, (k + 1) * n));
-			} else this.rateDerivative(system, charge, parameter, out);
+			if (parameter.kind === 'rate') return this.parameterByFeeding(system, charge, p);
+			const unit = new Float64Array(n);
+			unit[parameter.species] = 1;
+			for (let k = 0, at = p * times * n; k < times; k++, at += n)
+				plain.apply(timesS[k], unit, derivatives.subarray(at, at + n));
 		});
-		return this;
 	}
 
-	private rateDerivative(
+	private parameterByFeeding(system: LinearSystem, charge: ArrayLike<number>, p: number): void {
+		const parameter = this.parameters[p];
+		const length = this.timesS.length * this.n;
+		const out = this.derivatives.subarray(p * length, (p + 1) * length);
+		if (parameter.kind === 'rate') this.fedDerivative(system, charge, flowOf(system, parameter), out);
+	}
+
+	private fedDerivative(
 		system: LinearSystem,
 		charge: ArrayLike<number>,
-		{ step, direction }: { step: number; direction: 'forward' | 'reverse' },
+		flow: StepFlow | null,
 		out: Float64Array
 	): void {
 		const { n, timesS } = this;
 		out.fill(0);
-		const flow = system.flows?.find((f) => f.step === step && f.direction === direction);
 		if (!flow) return;
-		const products = system.transfers.filter((t) => t.step === step && t.direction === direction);
-		const gain = fed(
-			system,
-			flow.from,
-			products.map((t) => ({ to: t.to, rate: t.rate * t.coefficient }))
-		);
+		const gain = fed(system, flow.from, flow.products);
 		const loss = fed(system, flow.from, [{ to: flow.from, rate: flow.rate }]);
 		const start = new Float64Array(2 * n);
 		for (let i = 0; i < n; i++) start[i] = charge[i];
@@ -90,16 +247,37 @@ export class SensitivityWorkspace implements SensitivityResult {
 	}
 }
 
+interface StepFlow {
+	from: number;
+	rate: number;
+	/** rate is already multiplied by the coefficient. */
+	products: { to: number; rate: number }[];
+}
+
+function flowOf(
+	system: LinearSystem,
+	{ step, direction }: { step: number; direction: 'forward' | 'reverse' }
+): StepFlow | null {
+	const own = system.transfers.filter((t) => t.step === step && t.direction === direction);
+	const flow = system.flows?.find((f) => f.step === step && f.direction === direction) ?? own[0];
+	if (!flow) return null;
+	return {
+		from: flow.from,
+		rate: flow.rate,
+		products: own.map((t) => ({ to: t.to, rate: t.rate * t.coefficient }))
+	};
+}
+
 /** The system beside a copy of itself that is fed from species `from` without consuming it. */
 function fed(system: LinearSystem, from: number, feeds: { to: number; rate: number }[]): Propagator {
 	const { n } = system;
 	const outflow = new Float64Array(2 * n);
 	outflow.set(system.outflow);
 	outflow.set(system.outflow, n);
-	const copies = system.transfers.map((t) => ({ ...t, from: t.from + n, to: t.to + n, step: t.step + 1e6 }));
+	const copies = system.transfers.map((t) => ({ ...t, from: t.from + n, to: t.to + n, step: t.step + COPY }));
 	const flows = system.flows && [
 		...system.flows,
-		...system.flows.map((f) => ({ ...f, from: f.from + n, step: f.step + 1e6 }))
+		...system.flows.map((f) => ({ ...f, from: f.from + n, step: f.step + COPY }))
 	];
 	const sources = feeds.map(({ to, rate }) => ({
 		from,
@@ -116,6 +294,9 @@ function fed(system: LinearSystem, from: number, feeds: { to: number; rate: numb
 		flows
 	});
 }
+
+/** Added to the step numbers of the copy, so that they differ from the system's own. */
+const COPY = 1e6;
 
 /** Curves and derivatives once; see `SensitivityWorkspace` for shapes and for repeated use. */
 export function sensitivities(
