@@ -1,0 +1,11 @@
+/** Fitting: from a request to a report. Start with `plan`, then `fit`. */
+export { fit, FitCancelled, FitRequestError, type FitHooks, type FitProgress } from './fit';
+export { plan, type FitPlan, type PlannedParameter } from './plan';
+export {
+	straightLine,
+	lineAt,
+	temperatureLine,
+	type StraightLine,
+	type TemperatureLine
+} from './straight-line';
+export * from './distributions';

@@ -1,0 +1,128 @@
+/**
+ * Many starts, few answers: runs Levenberg–Marquardt from every starting point, gathers the distinct minima and polishes them.
+ *
+ * Two end points are the same minimum when their parameters agree, or when the misfit between them (at the midpoint) is no
+ * larger than at both: then they lie in one flat valley. Everything is in a fixed order, so the same seed gives the same bits.
+ */
+import type { KineticModel } from './model';
+import { LeastSquaresWorkspace, leastSquares, type LeastSquaresResult } from './levenberg-marquardt';
+import type { SearchBox } from './starts';
+
+export class FitCancelled extends Error {
+	constructor() {
+		super('The fit was cancelled.');
+		this.name = 'FitCancelled';
+	}
+}
+
+export interface Minimum {
+	result: LeastSquaresResult;
+	/** How many starts ended here. */
+	starts: number;
+	/** The first of them. */
+	firstStart: number;
+}
+
+export interface SearchOutcome {
+	/** Best first. */
+	minima: Minimum[];
+	startsRun: number;
+	startsConverged: number;
+	evaluations: number;
+}
+
+export interface SearchHooks {
+	onStart?: (done: number, total: number, best: number) => void;
+	cancelled?: () => boolean;
+}
+
+/**
+ * @param model evaluated in place
+ * @param starts points on the scale of estimation
+ * @throws FitCancelled
+ */
+export function searchMinima(
+	model: KineticModel,
+	box: SearchBox,
+	starts: Float64Array[],
+	hooks: SearchHooks = {}
+): SearchOutcome {
+	const workspace = new LeastSquaresWorkspace(model.m, model.p);
+	const cancelled = hooks.cancelled;
+	const found: Minimum[] = [];
+	let startsConverged = 0;
+	let evaluations = 0;
+	let best = Infinity;
+	const common = { lower: box.lower, upper: box.upper, cancelled };
+	starts.forEach((start, k) => {
+		const rough = leastSquares(
+			model,
+			start,
+			{ ...common, ftol: 1e-8, xtol: 1e-5, maxEvaluations: 120, factor: 10 },
+			workspace
+		);
+		evaluations += rough.evaluations;
+		if (rough.status === 'cancelled') throw new FitCancelled();
+		if (rough.converged) startsConverged++;
+		if (Number.isFinite(rough.ssr)) gather(model, found, rough, k, box);
+		best = Math.min(best, rough.ssr);
+		hooks.onStart?.(k + 1, starts.length, best);
+	});
+	found.sort((a, b) => a.result.ssr - b.result.ssr);
+	const minima: Minimum[] = [];
+	for (const candidate of found.slice(0, 12)) {
+		const fine = leastSquares(
+			model,
+			candidate.result.x,
+			{ ...common, maxEvaluations: 400, factor: 10 },
+			workspace
+		);
+		evaluations += fine.evaluations;
+		if (fine.status === 'cancelled') throw new FitCancelled();
+		const same = minima.find((m) => sameMinimum(model, m.result, fine, box));
+		if (!same) minima.push({ ...candidate, result: fine });
+		else {
+			same.starts += candidate.starts;
+			if (fine.ssr < same.result.ssr) same.result = fine;
+		}
+	}
+	minima.sort((a, b) => a.result.ssr - b.result.ssr);
+	return { minima, startsRun: starts.length, startsConverged, evaluations };
+}
+
+function gather(
+	model: KineticModel,
+	found: Minimum[],
+	result: LeastSquaresResult,
+	start: number,
+	box: SearchBox
+): void {
+	for (const other of found) {
+		if (!sameMinimum(model, other.result, result, box)) continue;
+		other.starts++;
+		if (result.ssr < other.result.ssr) other.result = result;
+		return;
+	}
+	found.push({ result, starts: 1, firstStart: start });
+}
+
+function sameMinimum(
+	model: KineticModel,
+	a: LeastSquaresResult,
+	b: LeastSquaresResult,
+	box: SearchBox
+): boolean {
+	const high = Math.max(a.ssr, b.ssr);
+	const low = Math.min(a.ssr, b.ssr);
+	let apart = 0;
+	for (let j = 0; j < model.p; j++)
+		apart = Math.max(apart, Math.abs(a.x[j] - b.x[j]) / (Math.abs(box.to[j] - box.from[j]) || 1));
+	if (apart < 1e-3) return true;
+	if (high > low * 1.02 + 1e-300) return false;
+	const middle = a.x.map((v, j) => 0.5 * (v + b.x[j]));
+	const residuals = new Float64Array(model.m);
+	if (!model.evaluate(middle, residuals, new Float64Array(model.m * model.p))) return false;
+	let ssr = 0;
+	for (let i = 0; i < model.m; i++) ssr += residuals[i] * residuals[i];
+	return ssr <= high * 1.001;
+}
