@@ -14,5 +14,6 @@ export * from './linear-system';
 export { conservedTotals, type ConservedTotal } from './conserved';
 export { finalComposition, type FinalComposition } from './final-composition';
 export { solve } from './solve';
+export { formulas, type FormulaOptions, type SpeciesFormula, type TimeUnit } from './formulas';
 export * from './sensitivity';
 export { ENGINE_VERSION } from './version';
