@@ -1,3 +1,4 @@
+import { jobService } from './jobs/service';
 import { mailSender } from './mail/sender';
 
 /** Something that runs beside the requests for as long as the service does. */
@@ -11,4 +12,4 @@ export interface BackgroundService {
 }
 
 /** Started in this order once the database is open and migrated; stopped in the reverse order. */
-export const BACKGROUND_SERVICES: BackgroundService[] = [mailSender];
+export const BACKGROUND_SERVICES: BackgroundService[] = [mailSender, jobService];

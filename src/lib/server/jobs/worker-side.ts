@@ -3,22 +3,30 @@ import type { ThreadMessage } from './thread';
 
 export interface WorkerHooks {
 	/** Tells how far the work is; thinned out, so that a tight loop may call it as it likes. */
-	progress(progress: unknown): void;
+	progress: (progress: unknown) => void;
 	/** Whether the work was called off. */
-	cancelled(): boolean;
+	cancelled: () => boolean;
 }
 
-/** Problems of the input have one of these marks; everything else is a fault of ours and crashes the thread. */
+/** The work says that its input cannot be computed, in words for the person, with the fields that it concerns. */
+export class Refused extends Error {
+	constructor(
+		message: string,
+		readonly fields: { field: string; message: string }[] = []
+	) {
+		super(message);
+	}
+}
+
+/** Problems of the input go home as such; everything else is a fault of ours and crashes the thread. */
 function asRefusal(caught: unknown): ThreadMessage | null {
+	if (caught instanceof Refused)
+		return { type: 'refused', message: caught.message, code: 'input', fields: caught.fields };
 	if (!(caught instanceof Error)) return null;
-	const { code, fields } = caught as { code?: unknown; fields?: unknown };
-	if (typeof code !== 'string' && !(caught instanceof RangeError)) return null;
-	return {
-		type: 'refused',
-		message: caught.message,
-		code: typeof code === 'string' ? code : 'range',
-		...(Array.isArray(fields) ? { fields: fields as { field: string; message: string }[] } : {})
-	};
+	const isUnit = (caught as { code?: unknown }).code === 'unit-invalid';
+	return isUnit || caught instanceof RangeError
+		? { type: 'refused', message: caught.message, code: 'input' }
+		: null;
 }
 
 const PROGRESS_EVERY_MS = 100;

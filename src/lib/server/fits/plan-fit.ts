@@ -1,0 +1,188 @@
+import { fitOptions, type FitFinding, type FitRequest } from '$lib/schemas/fit';
+import type { Quantity } from '$lib/schemas/quantity';
+import type { RunContent } from '$lib/schemas/run';
+import { checkNetwork } from '$lib/kinetics/checks';
+import { planIssues } from '$lib/kinetics/fit/checks';
+import { compileProblem } from '$lib/kinetics/fit/problem';
+import { toReported, type Slot } from '$lib/kinetics/fit/slots';
+import { toNetwork } from '$lib/kinetics/from-scheme';
+import { ENGINE_VERSION } from '$lib/kinetics/version';
+import { contentHash } from '../audit/canonical';
+import type { Tx } from '../database';
+import type { Scheme, SchemeVersion, Study } from '../database/models';
+import { AppError, notFound } from '../errors';
+import type { Actor } from '../policy';
+import { currentRevisions, type RunWithRevision } from '../runs/find';
+import { findScheme, findStudy } from '../studies/find';
+import { newestVersions } from '../studies/scheme-versions';
+import { buildRequest, type EnergiesChoice, type OpenedQuantities } from './request';
+
+export interface PlanFitInput {
+	studyId: string;
+	schemeId: string;
+	runIds: string[];
+	/** As `options` of the API; what is left out takes its default. */
+	options?: unknown;
+	/** Which activation energies are fitted when the runs differ in temperature; those missing, unless said otherwise. */
+	energies?: EnergiesChoice;
+	/** Charges and time zero, fitted where asked for. */
+	opened?: OpenedQuantities;
+}
+
+export interface PlannedParameter {
+	id: string;
+	kind: Slot['kind'];
+	state: Slot['state'];
+	/** Starting or fixed value; null where the fit finds a start by itself. */
+	start: Quantity | null;
+	tiedTo: string | null;
+}
+
+export interface PlannedRun {
+	id: string;
+	/** Id of the run within the request and the report. */
+	requestId: string;
+	number: number;
+	name: string;
+	revisionId: string;
+	revision: number;
+	temperature: Quantity;
+	times: number;
+	values: number;
+	/** Values known only to lie below or above a limit. */
+	limits: number;
+	excluded: number;
+}
+
+export interface FitPlan {
+	studyId: string;
+	scheme: { id: string; name: string; number: number; versionId: string };
+	runs: PlannedRun[];
+	parameters: PlannedParameter[];
+	issues: FitFinding[];
+	/** Whether nothing stands in the way of starting. */
+	ready: boolean;
+	request: FitRequest;
+	inputHash: string;
+}
+
+const problem = (field: string, message: string): AppError =>
+	new AppError('invalid', message, { fields: [{ field, message }] });
+
+function isExcluded(content: RunContent, index: number, channel: string): boolean {
+	return (content.exclusions ?? []).some(
+		(e) => e.index === index && (e.channel === null || e.channel === channel)
+	);
+}
+
+/** How many values a run has for a fit. */
+export function countValues(
+	content: RunContent
+): Pick<PlannedRun, 'times' | 'values' | 'limits' | 'excluded'> {
+	const counts = { times: content.timepoints.length, values: 0, limits: 0, excluded: 0 };
+	content.timepoints.forEach((point, index) => {
+		for (const channel of content.channels) {
+			const value = point.values[channel.id] ?? null;
+			if (value === null) continue;
+			if (isExcluded(content, index, channel.id)) counts.excluded++;
+			else if (typeof value === 'number') counts.values++;
+			else counts.limits++;
+		}
+	});
+	return counts;
+}
+
+function plannedRun({ run, revision }: RunWithRevision): PlannedRun {
+	return {
+		id: run.id,
+		requestId: `r${run.number}`,
+		number: run.number,
+		name: run.name,
+		revisionId: revision.id,
+		revision: revision.number,
+		temperature: revision.content.temperature,
+		...countValues(revision.content)
+	};
+}
+
+function plannedParameters(slots: Iterable<Slot>): PlannedParameter[] {
+	return [...slots]
+		.filter((slot) => slot.reported || slot.state !== 'fixed')
+		.map((slot) => ({
+			id: slot.id,
+			kind: slot.kind,
+			state: slot.state,
+			start: Number.isFinite(slot.value) ? { value: toReported(slot, slot.value), unit: slot.unit } : null,
+			tiedTo: slot.tie?.to ?? null
+		}));
+}
+
+function schemeIssues(request: FitRequest): FitFinding[] {
+	const { network } = toNetwork(request);
+	return checkNetwork(network).map(({ level, code, message }) => ({ level, code, message }));
+}
+
+const LEVELS = ['stop', 'caution', 'note'];
+
+function checkAll(request: FitRequest, first: FitFinding[]) {
+	const { problem, slots, issues } = compileProblem(request);
+	const planned = problem ? planIssues(problem) : [];
+	const all = [...first, ...schemeIssues(request), ...issues, ...planned];
+	const each = new Map(all.map((issue) => [`${issue.code} ${issue.message}`, issue]));
+	const sorted = [...each.values()].sort((a, b) => LEVELS.indexOf(a.level) - LEVELS.indexOf(b.level));
+	return {
+		parameters: plannedParameters(slots.values()),
+		issues: sorted,
+		ready: !sorted.some((issue) => issue.level === 'stop')
+	};
+}
+
+async function chosenScheme(
+	actor: Actor,
+	study: Study,
+	schemeId: string,
+	tx?: Tx
+): Promise<{ scheme: Scheme; version: SchemeVersion }> {
+	const scheme = await findScheme(actor, schemeId, 'study.read', tx);
+	const version = (await newestVersions([scheme.id], tx)).get(scheme.id);
+	if (scheme.studyId !== study.id || !version) throw notFound('scheme of this study');
+	return { scheme, version };
+}
+
+/** The plan without the question who may ask for it. */
+export async function makePlan(actor: Actor, study: Study, input: PlanFitInput, tx?: Tx): Promise<FitPlan> {
+	const runIds = [...new Set(input.runIds)];
+	if (runIds.length === 0) throw problem('runIds', 'Choose at least one run.');
+	if (runIds.length > 100) throw problem('runIds', 'A fit takes at most 100 runs.');
+	const options = fitOptions.parse(input.options ?? {});
+	const { scheme, version } = await chosenScheme(actor, study, input.schemeId, tx);
+	const chosen = await currentRevisions(study.id, runIds, tx);
+	const built = buildRequest(
+		version.content,
+		chosen.map(({ run, revision }) => ({ number: run.number, content: revision.content })),
+		options,
+		input.energies,
+		input.opened
+	);
+	const runs = chosen.map(plannedRun);
+	const inputHash = contentHash({
+		request: built.request,
+		schemeVersionId: version.id,
+		runRevisionIds: runs.map((r) => r.revisionId),
+		engineVersion: ENGINE_VERSION
+	});
+	return {
+		studyId: study.id,
+		scheme: { id: scheme.id, name: scheme.name, number: version.number, versionId: version.id },
+		runs,
+		...checkAll(built.request, built.issues),
+		request: built.request,
+		inputHash
+	};
+}
+
+/** What a fit of these runs to this scheme would find and hold fixed, and what speaks against it. Nothing is started. */
+export async function planFit(actor: Actor, input: PlanFitInput): Promise<FitPlan> {
+	const study = await findStudy(actor, input.studyId, 'study.read');
+	return makePlan(actor, study, input);
+}
