@@ -53,8 +53,9 @@ function bernsteinWeights(): Float64Array {
 	return weights;
 }
 
-const chebyshevInBernstein = (k: number, j: number): number =>
-	((k - j) % 2 === 0 ? 1 : -1) * (choose(2 * k, 2 * j) / choose(k, j));
+function chebyshevInBernstein(k: number, j: number): number {
+	return ((k - j) % 2 === 0 ? 1 : -1) * (choose(2 * k, 2 * j) / choose(k, j));
+}
 
 function choose(n: number, k: number): number {
 	let result = 1;

@@ -37,6 +37,10 @@ export interface TrackOptions {
 	final?: ArrayLike<number>;
 	/** Upper bound on |rate| of any mode, 1/s, where known: saves a search for the first piece. */
 	fastestPerS?: number;
+	/** Time after which every mode is lost in rounding, s, where known; the curve then is its limit. */
+	settledS?: number;
+	/** Error of the trajectory itself as a fraction of the total charge. */
+	error?: number;
 	/** Times at which the conditions jump or their slope does (programs, shots), s. */
 	breaksS?: readonly number[];
 }
@@ -48,14 +52,16 @@ export interface Track {
 	readonly edges: Float64Array;
 	readonly coefficients: Float64Array;
 	readonly scales: Float64Array;
+	/** Exact value at t = 0. */
+	readonly start: Float64Array;
 	/** Where the curve ends: the horizon, or the time from which it is `beyond`. */
 	readonly endS: number;
 	/** Value from `endS` on; null where the horizon ends the curve. */
 	readonly beyond: Float64Array | null;
 }
 
-/** Relative size of the last coefficients at which a piece counts as resolved. */
-const RESOLVED = 2e-15;
+/** Relative size of the last three coefficients at which a piece counts as resolved; the error is then about 1e-16. */
+const RESOLVED = 6e-15;
 /** Relative distance from the limit at which the curve has arrived. */
 const ARRIVED = 4e-15;
 const MOST_PIECES = 20_000;
@@ -63,11 +69,20 @@ const MOST_PIECES = 20_000;
 /** The track of a closed-form solution up to a horizon, or for ever. */
 export function trackOf(solution: Solution, horizonS = Infinity): Track {
 	let fastestPerS = 0;
-	for (const mode of solution.modes) fastestPerS = Math.max(fastestPerS, Math.hypot(mode.re, mode.im));
+	let slowestS = 0;
+	let repeats = 1;
+	for (const { re, im, timeConstantS, multiplicity } of solution.modes) {
+		fastestPerS = Math.max(fastestPerS, Math.hypot(re, im));
+		if (Number.isFinite(timeConstantS)) slowestS = Math.max(slowestS, timeConstantS);
+		repeats = Math.max(repeats, multiplicity);
+	}
 	return track(solution, {
 		horizonS,
 		final: solution.final,
-		...(fastestPerS > 0 ? { fastestPerS } : {})
+		error: solution.errorEstimate,
+		...(fastestPerS > 0 ? { fastestPerS } : {}),
+		// t^m e^{−t/τ} needs longer: 36 + m ln 60 is more than enough for a rounding of 2e-16.
+		...(slowestS > 0 ? { settledS: (40 + 5 * repeats) * slowestS } : {})
 	});
 }
 
@@ -91,6 +106,8 @@ class TrackBuilder {
 	private readonly piece: Float64Array;
 	private readonly running: Float64Array;
 	private readonly here: Float64Array;
+	private readonly start: Float64Array;
+	private readonly settled: number;
 	private lastTail = Infinity;
 
 	constructor(
@@ -109,7 +126,9 @@ class TrackBuilder {
 		this.values = new Float64Array(SIZE * this.n);
 		this.piece = new Float64Array(SIZE * this.n);
 		this.running = new Float64Array(this.n);
-		this.here = trajectory.at(0).slice();
+		this.settled = options.settledS ?? Infinity;
+		this.start = trajectory.at(0).slice();
+		this.here = this.start.slice();
 	}
 
 	build(): Track {
@@ -125,6 +144,7 @@ class TrackBuilder {
 			edges: Float64Array.from(this.edges),
 			coefficients: this.store.slice(0, (this.edges.length - 1) * this.n * SIZE),
 			scales: Float64Array.from(this.scaleStore),
+			start: this.start,
 			endS: arrived && this.final ? endS : Math.min(endS, this.horizon),
 			beyond: arrived ? this.final : null
 		};
@@ -137,7 +157,9 @@ class TrackBuilder {
 		let splits = 0;
 		while (left < end) {
 			if (this.edges.length > MOST_PIECES)
-				throw new RangeError(`The curve could not be followed beyond ${left} s. Give an earlier latest time.`);
+				throw new RangeError(
+					`The curve could not be followed beyond ${left} s. Give an earlier latest time.`
+				);
 			const right = left + width > end * (1 - 1e-12) ? end : left + width;
 			if (!this.resolve(left, right) && splits < 60) {
 				width = (right - left) / 2;
@@ -145,13 +167,13 @@ class TrackBuilder {
 				continue;
 			}
 			this.keep(right);
-			if (end === this.horizon && this.arrived()) return true;
+			if (end === this.horizon && this.final && (this.arrived() || right >= this.settled)) return true;
 			if (splits > 0) splits--;
 			this.lastTail = Infinity;
 			left = right;
 			width = Math.min(2 * width, Math.max(right - start, width));
 		}
-		return this.horizon === Infinity ? this.arrived() : false;
+		return false;
 	}
 
 	private firstWidth(): number {
@@ -204,31 +226,31 @@ class TrackBuilder {
 	private arrived(): boolean {
 		const { final, here, running, n } = this;
 		if (!final) return false;
+		const near = this.settled < Infinity ? 1e-15 : Math.max(1e-15, Math.min(this.options.error ?? 0, 1e-12));
 		let total = 0;
 		for (let i = 0; i < n; i++) total = Math.max(total, Math.abs(here[i]), running[i]);
 		for (let i = 0; i < n; i++) {
 			const scale = Math.max(running[i], Math.abs(here[i]));
-			if (Math.abs(here[i] - final[i]) > ARRIVED * scale + 1e-15 * total) return false;
+			if (Math.abs(here[i] - final[i]) > ARRIVED * scale + near * total) return false;
 		}
 		return true;
 	}
 }
 
 /** Σ w_i c_i(t) + constant from a track. */
-export function formAt(
-	track: Track,
-	weights: ArrayLike<number>,
-	constant: number,
-	timeS: number
-): number {
+export function formAt(track: Track, weights: ArrayLike<number>, constant: number, timeS: number): number {
 	const { n, edges, pieces, beyond } = track;
 	let sum = constant;
+	if (timeS === 0) {
+		for (let i = 0; i < n; i++) sum += weights[i] * track.start[i];
+		return sum;
+	}
 	if (pieces === 0 || (timeS >= track.endS && beyond)) {
 		for (let i = 0; i < n; i++) sum += weights[i] * (beyond ? beyond[i] : NaN);
 		return sum;
 	}
 	let p = 0;
-	for (let high = pieces - 1; p < high; ) {
+	for (let high = pieces - 1; p < high;) {
 		const mid = (p + high + 1) >> 1;
 		if (edges[mid] <= timeS) p = mid;
 		else high = mid - 1;
