@@ -13,9 +13,9 @@
 import { norm, pivotedQr, singularValues } from './linear-algebra';
 
 export interface Spread {
-	/** p × p, for s = 1; entries of undetermined parameters are Infinity on the diagonal and 0 beside it. */
+	/** p × p, for s = 1; very large, but finite, along directions that the data do not determine. */
 	covariance: number[][];
-	/** Square roots of its diagonal. */
+	/** Standard errors for s = 1; Infinity for a parameter that takes part in a flat direction. */
 	errors: number[];
 	correlation: number[][];
 	/** Singular values of the Jacobian with columns scaled to one, largest first. */
@@ -42,13 +42,11 @@ export function covarianceFromJacobian(jacobian: Float64Array, m: number, p: num
 	const largest = values[0] || 1;
 	let rank = 0;
 	while (rank < p && values[rank] > FLAT * largest) rank++;
-	const covariance = assemble(values, vectors, columnNorms, rank, p);
-	const errors = covariance.map((row, j) => Math.sqrt(row[j]));
+	const covariance = assemble(values, vectors, columnNorms, p);
+	const flat = flatMembers(vectors, rank, p);
+	const errors = covariance.map((row, j) => (flat[j] ? Infinity : Math.sqrt(row[j])));
 	const correlation = covariance.map((row, i) =>
-		row.map((c, j) => {
-			if (i === j) return 1;
-			return Number.isFinite(errors[i]) && Number.isFinite(errors[j]) ? c / (errors[i] * errors[j]) : 0;
-		})
+		row.map((c, j) => (i === j ? 1 : c / Math.sqrt(covariance[i][i] * covariance[j][j])))
 	);
 	return {
 		covariance,
@@ -77,30 +75,50 @@ function triangleSingularValues(scaled: Float64Array, m: number, p: number) {
 	return singularValues(triangle, p, p);
 }
 
-function assemble(
-	values: Float64Array,
-	vectors: Float64Array,
-	columnNorms: number[],
-	rank: number,
-	p: number
-): number[][] {
-	const flat = new Array<boolean>(p).fill(false);
-	for (let k = rank; k < p; k++)
-		for (let j = 0; j < p; j++) if (Math.abs(vectors[k * p + j]) > 1e-6) flat[j] = true;
+/**
+ * V S⁻² Vᵀ in the parameters' own units. A flat direction takes the smallest singular value that counts as determined, so that
+ * the matrix stays finite and says "very wide"; the errors of its members are reported as infinite all the same.
+ */
+function assemble(values: Float64Array, vectors: Float64Array, columnNorms: number[], p: number): number[][] {
+	const floor = FLAT * (values[0] || 1);
 	const covariance = Array.from({ length: p }, () => new Array<number>(p).fill(0));
 	for (let i = 0; i < p; i++) {
-		for (let j = 0; j < p; j++) {
-			if (flat[i] || flat[j]) {
-				covariance[i][j] = i === j ? Infinity : 0;
-				continue;
-			}
+		for (let j = 0; j <= i; j++) {
 			let sum = 0;
-			for (let k = 0; k < rank; k++)
-				sum += (vectors[k * p + i] / values[k]) * (vectors[k * p + j] / values[k]);
-			covariance[i][j] = sum / (columnNorms[i] * columnNorms[j]);
+			for (let k = 0; k < p; k++) {
+				const size = Math.max(values[k], floor);
+				sum += (vectors[k * p + i] / size) * (vectors[k * p + j] / size);
+			}
+			covariance[i][j] = covariance[j][i] = sum / ((columnNorms[i] || 1) * (columnNorms[j] || 1));
 		}
 	}
 	return covariance;
+}
+
+/** Parameters that take part in a flat direction. */
+function flatMembers(vectors: Float64Array, rank: number, p: number): boolean[] {
+	const flat = new Array<boolean>(p).fill(false);
+	for (let k = rank; k < p; k++)
+		for (let j = 0; j < p; j++) if (Math.abs(vectors[k * p + j]) > 1e-6) flat[j] = true;
+	return flat;
+}
+
+/**
+ * Variance of a quantity with gradient g (per parameter), for s = 1: ‖S⁻¹ Vᵀ g‖² in scaled units; Infinity where g has a part
+ * along a flat direction.
+ */
+export function varianceAlong(spread: Spread, gradient: ArrayLike<number>): number {
+	const p = spread.columnNorms.length;
+	let size = 0;
+	for (let j = 0; j < p; j++) size = Math.max(size, Math.abs(gradient[j] / (spread.columnNorms[j] || 1)));
+	let variance = 0;
+	for (let k = 0; k < p; k++) {
+		let dot = 0;
+		for (let j = 0; j < p; j++) dot += (spread.directions[k][j] * gradient[j]) / (spread.columnNorms[j] || 1);
+		if (k < spread.rank) variance += (dot / spread.singularValues[k]) ** 2;
+		else if (Math.abs(dot) > 1e-7 * size) return Infinity;
+	}
+	return variance;
 }
 
 /** Leverage of every residual: the diagonal of the hat matrix J (JᵀJ)⁻¹ Jᵀ. */

@@ -24,7 +24,6 @@ const LN_SQRT_2PI = 0.9189385332046727;
 /** δ(n) = ln n! − ln(√(2πn) (n/e)ⁿ) for n > 0, not only whole. */
 function stirlingError(n: number): number {
 	if (n < 12) {
-		let shift = 0;
 		let z = n;
 		// ln Γ(n+1) = ln Γ(z+1) − Σ ln(k): climb to where the asymptotic series has all its digits.
 		let product = 1;
@@ -32,8 +31,7 @@ function stirlingError(n: number): number {
 			z += 1;
 			product *= z;
 		}
-		shift = Math.log(product);
-		const lnFactorial = stirlingError(z) + (z + 0.5) * Math.log(z) - z + LN_SQRT_2PI - shift;
+		const lnFactorial = stirlingError(z) + (z + 0.5) * Math.log(z) - z + LN_SQRT_2PI - Math.log(product);
 		return lnFactorial - ((n + 0.5) * Math.log(n) - n + LN_SQRT_2PI);
 	}
 	const r = 1 / (n * n);

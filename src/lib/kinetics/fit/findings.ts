@@ -6,7 +6,7 @@ import type { KineticProblem } from './problem';
 import type { ProfileInterval } from './profile';
 import type { SearchOutcome } from './search';
 import type { SearchBox } from './starts';
-import type { Uncertainty } from './fit';
+import type { Uncertainty } from './uncertainty';
 
 export interface FindingsInput {
 	report: FitReport;

@@ -9,7 +9,7 @@
 import type { FitFinding, FitParameter, FitReport, FitRequest } from '../../schemas/fit';
 import { ENGINE_VERSION } from '../version';
 import { evaluateLinear, linearOf } from './affine';
-import { covarianceFromJacobian, leverages, type Spread } from './covariance';
+import { leverages } from './covariance';
 import { studentQuantile } from './distributions';
 import { structuralFindings, planIssues } from './checks';
 import { collectFindings } from './findings';
@@ -21,6 +21,7 @@ import { profileIntervals, type ProfileInterval } from './profile';
 import { FitCancelled, searchMinima, type SearchOutcome } from './search';
 import { toReported, reportedFactor, type Slot } from './slots';
 import { searchBox, startingPoints, type SearchBox } from './starts';
+import { activeJacobian, uncertainty, type Uncertainty } from './uncertainty';
 import { aicc, bic, lackOfFit, lagOne, residualRows, residualSeries, runsTest } from './statistics';
 
 export { FitCancelled };
@@ -122,33 +123,6 @@ interface Context {
 	hooks: FitHooks;
 }
 
-/** Jacobian at the optimum without the columns of parameters that a bound holds. */
-export interface Uncertainty {
-	spread: Spread;
-	/** Positions of the estimated parameters that are free at the optimum. */
-	active: number[];
-	s: number | null;
-	degreesOfFreedom: number;
-	/** p × p over all estimated parameters, scale of estimation, with s² in it. NaN rows for those at a bound. */
-	covariance: number[][];
-}
-
-export function uncertainty(problem: KineticProblem, best: LeastSquaresResult): Uncertainty {
-	const m = problem.points.length;
-	const p = problem.free.length;
-	const active = Array.from({ length: p }, (_, j) => j).filter((j) => best.activeBounds[j] === 0);
-	const jacobian = new Float64Array(m * active.length);
-	active.forEach((j, k) => jacobian.set(best.jacobian.subarray(j * m, (j + 1) * m), k * m));
-	const spread = covarianceFromJacobian(jacobian, m, active.length);
-	const degreesOfFreedom = problem.counted - p;
-	const s = degreesOfFreedom > 0 ? Math.sqrt(best.ssr / degreesOfFreedom) : null;
-	const covariance = Array.from({ length: p }, () => new Array<number>(p).fill(0));
-	active.forEach((j, a) =>
-		active.forEach((k, b) => (covariance[j][k] = spread.covariance[a][b] * (s === null ? NaN : s * s)))
-	);
-	return { spread, active, s, degreesOfFreedom, covariance };
-}
-
 function report(context: Context): FitReport {
 	const { problem, model, outcome, box, hooks } = context;
 	const { options } = problem.request;
@@ -169,7 +143,7 @@ function report(context: Context): FitReport {
 			: null;
 	model.evaluate(best.x, new Float64Array(model.m), new Float64Array(model.m * model.p));
 	const m = problem.points.length;
-	const leverage = leverages(activeJacobian(best, u.active, m), m, u.active.length, u.spread);
+	const leverage = leverages(activeJacobian(best.jacobian, u.active, m), m, u.active.length, u.spread);
 	const series = residualSeries(problem, best.residuals);
 	const n = problem.counted;
 	const p = problem.free.length;
@@ -218,12 +192,6 @@ function report(context: Context): FitReport {
 	return base;
 }
 
-function activeJacobian(best: LeastSquaresResult, active: number[], m: number): Float64Array {
-	const jacobian = new Float64Array(m * active.length);
-	active.forEach((j, k) => jacobian.set(best.jacobian.subarray(j * m, (j + 1) * m), k * m));
-	return jacobian;
-}
-
 function statusMessage(best: LeastSquaresResult, outcome: SearchOutcome): string {
 	const found = `${outcome.startsConverged} of ${outcome.startsRun} starts converged; ${outcome.minima[0].starts} reached the reported minimum.`;
 	return best.converged
@@ -253,8 +221,7 @@ function reportedParameters(
 			const root = linear.terms[0];
 			const free = root ? root.free : -1;
 			const held = free >= 0 && best.activeBounds[free] !== 0;
-			const variance = free >= 0 && !held ? u.covariance[free][free] : NaN;
-			const innerError = free >= 0 ? Math.abs(root.coefficient) * Math.sqrt(variance) : NaN;
+			const innerError = free >= 0 && !held ? Math.abs(root.coefficient) * u.errors[free] : NaN;
 			const scale = slot.scale === 'ln' ? estimate : reportedFactor(slot);
 			const error = Number.isFinite(innerError) ? Math.abs(scale) * innerError : null;
 			const profile = profiles && free >= 0 ? profiles[free] : null;

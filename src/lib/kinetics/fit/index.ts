@@ -9,3 +9,13 @@ export {
 	type TemperatureLine
 } from './straight-line';
 export * from './distributions';
+export {
+	predict,
+	predictRestored,
+	confirmationRun,
+	type Prediction,
+	type PredictedSeries,
+	type Confirmation,
+	type ConfirmationPoint
+} from './bands';
+export { restoreFit, type RestoredFit } from './restore';

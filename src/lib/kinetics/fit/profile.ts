@@ -2,7 +2,7 @@
 import type { LeastSquaresResult } from './levenberg-marquardt';
 import type { KineticModel } from './model';
 import type { SearchBox } from './starts';
-import type { Uncertainty } from './fit';
+import type { Uncertainty } from './uncertainty';
 
 export interface ProfileInterval {
 	/** On the scale of estimation; null where the profile stays open. */

@@ -58,6 +58,10 @@ export const runId = (run: FitRequest['runs'][number], index: number): string =>
 export const toReported = (slot: Slot, si: number): number =>
 	slot.dimension ? fromSi(si, slot.unit, slot.dimension, slot.context) : si;
 
+/** Value in the engine's unit from the unit in which the slot is reported. */
+export const fromReported = (slot: Slot, reported: number): number =>
+	slot.dimension ? toSi({ value: reported, unit: slot.unit }, slot.dimension, slot.context) : reported;
+
 /** Length of one unit of the estimation scale, in the reported unit, for a linear slot (offsets such as 273.15 left out). */
 export const reportedFactor = (slot: Slot): number => toReported(slot, 1) - toReported(slot, 0);
 

@@ -76,12 +76,11 @@ export class TrustStep {
 		const { n, p } = this;
 		for (let k = 0; k < n; k++) this.d[k] = scale[this.free[this.pivot[k]]] || 1;
 		backSubstitute(this.r, n, this.rank, this.qtr, p);
-		let excess = this.scaledLength() - radius;
+		const excess = this.scaledLength() - radius;
 		let mu = 0;
 		if (excess > 0.1 * radius) {
 			const bounds = this.startingBounds(excess, radius);
 			mu = this.search(radius, guess, bounds);
-			excess = this.scaledLength() - radius;
 		}
 		for (let k = 0; k < n; k++) this.step[this.pivot[k]] = -p[k];
 		return mu;

@@ -12,7 +12,7 @@
  * Source: Bates & Watts (1988) 1.3 and 3.8; Draper & Smith, Applied Regression Analysis, 2.1 (pure error).
  */
 import type { FitFinding, FitRequest } from '../../schemas/fit';
-import type { RunModel } from './problem';
+import type { KineticProblem, RunModel } from './problem';
 import { replicateGroups } from './replicates';
 
 type Weighting = FitRequest['options']['weighting'];
@@ -110,4 +110,28 @@ function noteMixedUnits(runs: RunModel[], issues: FitFinding[]): void {
 		level: 'caution',
 		message: `Constant weights compare channels in different units (${[...units].join(', ')}) as they stand, so the one with the larger numbers rules. State an error per channel, or use proportional weights.`
 	});
+}
+
+/**
+ * Standard deviation that the fit's error model gives a new value of a channel, up to the factor s.
+ * A channel that the fit did not have takes the constant part of the model.
+ */
+export function sigmaFor(problem: KineticProblem, channelId: string, value: number): number {
+	const { weighting } = problem.request.options;
+	const own = weighting.perChannel?.[channelId];
+	const runs = problem.runs.filter((r) => r.channels.some((c) => c.id === channelId));
+	const points = runs.flatMap((r) => r.points.filter((p) => r.channels[p.channel].id === channelId));
+	switch (weighting.model) {
+		case 'proportional': {
+			const loq = runs[0]?.channels.find((c) => c.id === channelId)?.loq;
+			const floor = loq ?? 0.01 * Math.max(0, ...points.map((p) => Math.abs(p.observed)));
+			return Math.max(Math.abs(value), floor);
+		}
+		case 'combined':
+			return Math.hypot(own?.a ?? weighting.a ?? 0, (own?.b ?? weighting.b ?? 0) * value);
+		case 'replicates':
+			return points[0]?.sigma ?? 1;
+		case 'constant':
+			return own ? Math.hypot(own.a, own.b * value) : 1;
+	}
 }
