@@ -18,7 +18,7 @@ export class Job extends Model<InferAttributes<Job>, InferCreationAttributes<Job
 	declare status: JobStatus;
 	declare input: unknown;
 	declare inputHash: string;
-	declare progress: CreationOptional<unknown>;
+	declare progress: CreationOptional<object | null>;
 	declare error: CreationOptional<string | null>;
 	declare attempts: CreationOptional<number>;
 	declare heartbeatAt: CreationOptional<Date | null>;

@@ -119,7 +119,7 @@ export class Signature extends Model<InferAttributes<Signature>, InferCreationAt
 	declare meaning: string;
 	declare contentHash: string;
 	declare comment: CreationOptional<string | null>;
-	declare detail: CreationOptional<unknown>;
+	declare detail: CreationOptional<object | null>;
 	declare signedAt: Date;
 	declare createdAt: CreationOptional<Date>;
 }

@@ -73,7 +73,7 @@ export class IdempotencyKey extends Model<
 	declare key: string;
 	declare requestHash: string;
 	declare status: number;
-	declare body: CreationOptional<unknown>;
+	declare body: CreationOptional<object | null>;
 	declare createdAt: CreationOptional<Date>;
 }
 

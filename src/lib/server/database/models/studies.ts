@@ -129,8 +129,8 @@ export class Sheet extends Model<InferAttributes<Sheet>, InferCreationAttributes
 	declare size: number;
 	declare sha256: string;
 	declare bytes: Buffer;
-	declare reading: CreationOptional<unknown>;
-	declare work: CreationOptional<unknown>;
+	declare reading: CreationOptional<object | null>;
+	declare work: CreationOptional<object | null>;
 	declare version: CreationOptional<number>;
 	declare uploadedById: string;
 	declare createdAt: CreationOptional<Date>;
