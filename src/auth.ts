@@ -23,7 +23,7 @@ const IDLE_S = 8 * 3600;
 const LONGEST_MS = 7 * 24 * 3600 * 1000;
 
 /** Carries our own refusal through the library to the sign-in page. */
-export class SignInRefused extends CredentialsSignin {
+class SignInRefused extends CredentialsSignin {
 	constructor(readonly refusal: AppError) {
 		super(refusal.message);
 		this.code = refusal.code;
@@ -89,4 +89,34 @@ function configOf(event: RequestEvent): Promise<SvelteKitAuthConfig> {
 	});
 }
 
-export const { handle, signIn, signOut } = SvelteKitAuth(configOf);
+const auth = SvelteKitAuth(configOf);
+export const handle = auth.handle;
+
+/** The library reads its input from a form post: this is one, made from what the page's own form has checked. */
+function asFormPost(event: RequestEvent, fields: Record<string, string>): RequestEvent {
+	const headers = new Headers(event.request.headers);
+	headers.delete('content-type');
+	headers.delete('content-length');
+	const body = new URLSearchParams({ ...fields, redirect: '', redirectTo: '/' });
+	const request = new Request(event.url, { method: 'POST', headers, body });
+	return { ...event, request, url: event.url, cookies: event.cookies };
+}
+
+/** Signs in and sets the session's cookie, or throws the refusal as an AppError. */
+export async function openSession(
+	event: RequestEvent,
+	{ email, password }: { email: string; password: string }
+): Promise<void> {
+	try {
+		await auth.signIn(asFormPost(event, { providerId: 'credentials', email, password }));
+	} catch (caught) {
+		if (caught instanceof SignInRefused) throw caught.refusal;
+		const cause = (caught as { cause?: { err?: unknown } }).cause?.err;
+		throw cause instanceof SignInRefused ? cause.refusal : caught;
+	}
+}
+
+/** Takes the session's cookie away from this browser. */
+export async function closeSession(event: RequestEvent): Promise<void> {
+	await auth.signOut(asFormPost(event, {}));
+}

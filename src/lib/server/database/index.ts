@@ -77,12 +77,23 @@ export async function openDatabase(file: string): Promise<Database> {
 // One database a process, kept over hot reloads in development.
 const globals = globalThis as { ratewrightDatabase?: Promise<Database> };
 
+/** Whether this evaluation of the module has bound its models: a hot reload brings new classes to an open database. */
+let bound = false;
+
 export function database(): Promise<Database> {
+	const open = globals.ratewrightDatabase;
+	if (open && !bound)
+		globals.ratewrightDatabase = open.then((db) => {
+			initModels(db.sequelize);
+			return db;
+		});
+	bound = true;
 	return (globals.ratewrightDatabase ??= openDatabase(settings().DATABASE_FILE));
 }
 
 /** For tests and commands: use this database from here on. */
 export function useDatabase(db: Database): void {
+	bound = true;
 	globals.ratewrightDatabase = Promise.resolve(db);
 }
 

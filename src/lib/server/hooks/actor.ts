@@ -9,6 +9,8 @@ import { bearerOf } from './origin';
 /** Cookie with the group whose work is shown; only ever a choice among the person's own memberships. */
 export const GROUP_COOKIE = 'ratewright-group';
 
+const SESSION_COOKIE = 'authjs.session-token';
+
 export function chosenGroup(actor: Actor | null, cookie: string | undefined): string | null {
 	if (!actor) return null;
 	const own = actor.memberships.map((m) => m.groupId);
@@ -31,6 +33,8 @@ export function requireGroup(event: { locals: App.Locals }): string {
 async function whoAsks(event: RequestEvent): Promise<Actor | null> {
 	const bearer = bearerOf(event.request);
 	if (bearer && event.url.pathname.startsWith('/api/')) return actorOfToken(bearer);
+	// Without a session cookie there is nothing to look up, and the library would set cookies of its own.
+	if (!event.cookies.getAll().some(({ name }) => name.includes(SESSION_COOKIE))) return null;
 	const session = await event.locals.auth();
 	if (!session?.person) return null;
 	return readActor(session.person);

@@ -1,4 +1,3 @@
-import { Op } from 'sequelize';
 import { z } from 'zod';
 import { adminInviteForm, inviteForm } from '$lib/schemas/people';
 import { appendAudit } from '../audit/append';
@@ -133,12 +132,14 @@ export interface InvitationView {
 	expired: boolean;
 }
 
-/** Invitations that were neither accepted nor taken back, of one group or (null) of all. */
-export async function openInvitations(groupId: string | null): Promise<InvitationView[]> {
+const MOST_SHOWN = 200;
+
+/** Invitations that were neither accepted nor taken back, newest first. */
+async function stillOpen(where: { groupId?: string }): Promise<InvitationView[]> {
 	const rows = await Invitation.findAll({
-		where: { usedAt: null, revokedAt: null, ...(groupId ? { groupId } : { id: { [Op.ne]: '' } }) },
+		where: { ...where, usedAt: null, revokedAt: null },
 		order: [['id', 'DESC']],
-		limit: 200
+		limit: MOST_SHOWN
 	});
 	const now = new Date();
 	return rows.map((row) => ({
@@ -150,4 +151,13 @@ export async function openInvitations(groupId: string | null): Promise<Invitatio
 		expiresAt: row.expiresAt,
 		expired: row.expiresAt <= now
 	}));
+}
+
+/** Open invitations into one group; the caller has asked whether the actor may see them. */
+export const openInvitations = (groupId: string): Promise<InvitationView[]> => stillOpen({ groupId });
+
+/** Every open invitation of the site. */
+export function listInvitations(actor: Actor): Promise<InvitationView[]> {
+	requireSiteAdmin(actor);
+	return stillOpen({});
 }
