@@ -34,6 +34,9 @@ interface Level {
 	x: Float64Array;
 }
 
+/** Products in a row on a grid of times. */
+const RESTART = 16;
+
 export class Propagator {
 	readonly n: number;
 	readonly shift: number;
@@ -91,6 +94,40 @@ export class Propagator {
 		}
 		if (left > 0) this.uniformise(left, out);
 		return out;
+	}
+
+	/**
+	 * c at firstS + k·stepS for k = 0 … count − 1, times-major into `out`: one product with e^{K·stepS} a time, begun afresh
+	 * from the charge every RESTART times so that rounding does not add up.
+	 */
+	applyGrid(
+		{ firstS, stepS, count }: { firstS: number; stepS: number; count: number },
+		charge: ArrayLike<number>,
+		out: Float64Array
+	): Float64Array {
+		const { n } = this;
+		const step = this.matrix(stepS);
+		const c = new Float64Array(n);
+		for (let k = 0; k < count; k++) {
+			if (k % RESTART === 0) this.apply(firstS + k * stepS, charge, c);
+			else this.multiply(step, c);
+			out.set(c, k * n);
+		}
+		return out;
+	}
+
+	/** e^{Kt}, row-major n × n. */
+	matrix(timeS: number): Float64Array {
+		const { n } = this;
+		const result = new Float64Array(n * n);
+		const column = new Float64Array(n);
+		for (let j = 0; j < n; j++) {
+			column.fill(0);
+			column[j] = 1;
+			this.apply(timeS, column, column);
+			for (let i = 0; i < n; i++) result[i * n + j] = column[i];
+		}
+		return result;
 	}
 
 	/** e^{Kh} for h = baseStepS · 2^level, row-major n × n; the engine's own memory, not to be written to. */

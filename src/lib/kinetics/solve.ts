@@ -23,6 +23,7 @@
 import { blockWeights } from './block-weights';
 import { basis, basisSlope, closedForm, type ClosedForm } from './closed-form';
 import { components } from './components';
+import { curvesOnGrid, gridStep } from './grid';
 import { finalComposition } from './final-composition';
 import { modeGroups, type ModeGroup } from './mode-groups';
 import { modeSpace, type ModeSpace } from './mode-space';
@@ -103,7 +104,16 @@ class NetworkSolution implements Solution {
 		timesS: ArrayLike<number>,
 		out: Float64Array = new Float64Array(this.n * timesS.length)
 	): Float64Array {
-		for (let k = 0; k < timesS.length; k++) this.write(timesS[k], out, k * this.n);
+		const stepS = gridStep(timesS);
+		const { useClosedForm } = this.verdict;
+		if (stepS === 0 || (useClosedForm && !this.form.simple)) {
+			for (let k = 0; k < timesS.length; k++) this.write(timesS[k], out, k * this.n);
+			return out;
+		}
+		const grid = { firstS: timesS[0], stepS, count: timesS.length };
+		if (!useClosedForm) return this.exact().applyGrid(grid, this.charge, out);
+		for (const k of curvesOnGrid(this.form, grid, this.verdict, out)) this.write(timesS[k], out, k * this.n);
+		if (grid.firstS === 0) out.set(this.charge);
 		return out;
 	}
 

@@ -35,8 +35,10 @@ const TOLERANCE = 1e-13;
 const OWN_TOLERANCE = 5e-14;
 /** Error of the non-negative evaluation, of the total charge. */
 const PROPAGATOR_ERROR = 2e-14;
-/** A value this small beside its terms is evaluated by the non-negative way. */
-const SMALLEST = 1e-4;
+/** A value this small beside its terms is evaluated by the non-negative way: it keeps 1e-10 of itself by the bound … */
+const SMALLEST = 1e-5;
+/** … and 5e-10 where only the comparison vouches for it. */
+const SMALLEST_COMPARED = 1e-4;
 
 export function judge(
 	system: LinearSystem,
@@ -58,7 +60,7 @@ export function judge(
 			method: structure,
 			useClosedForm: true,
 			errorEstimate: Math.max(bound / total, 1e-15),
-			trusted: form.size.map((size) => size * SMALLEST)
+			trusted: trustedSizes(form, exactAmplitudes)
 		};
 	const sums = growth(system, charge, total);
 	const rejected = { ...base, useClosedForm: false, trusted: new Float64Array(form.n) };
@@ -68,14 +70,24 @@ export function judge(
 		return {
 			...base,
 			exactAmplitudes: false,
+			smallest: SMALLEST_COMPARED,
 			method: structure,
 			useClosedForm: true,
 			errorEstimate: Math.max((2 * found.error) / total, PROPAGATOR_ERROR * sums),
-			trusted: ownSizes(form).map((size) => size * SMALLEST)
+			trusted: ownSizes(form).map((size) => size * SMALLEST_COMPARED)
 		};
 	if (found.error > bound + PROPAGATOR_ERROR * sums * total && !space.kinds.includes('general'))
 		return { ...rejected, ...decide(system, charge, found.worstTimeS, exact(), total) };
 	return { ...rejected, method: 'uniformisation', errorEstimate: PROPAGATOR_ERROR * sums };
+}
+
+/** A species of a single exact term is right to rounding however small. */
+function trustedSizes(form: ClosedForm, exactAmplitudes: boolean): Float64Array {
+	return form.size.map((size, s) => {
+		let terms = 0;
+		for (let l = 0; l < form.width; l++) if (form.sizes[s * form.width + l] !== 0) terms++;
+		return exactAmplitudes && terms <= 1 ? 0 : size * SMALLEST;
+	});
 }
 
 /** How much larger than the charge the amounts may become where steps split (A → 2 B). */
