@@ -53,6 +53,7 @@ function chargesOf(run: RunContent): Map<string, number> {
 
 const criterionWords = (c: CriterionContent): string => `${c.species} ${c.relation} ${c.limit} ${c.unit}`;
 
+/** The hold ends at the adverse bound; where the bounds leave no time at all nothing is stated. */
 function holdOf(window: PrefillInput['window'], temperatureC: number): Hold | null {
 	const facts = window?.facts;
 	if (!window || !facts || facts.toH === null) return null;
@@ -61,18 +62,23 @@ function holdOf(window: PrefillInput['window'], temperatureC: number): Hold | nu
 	const basis =
 		facts.toBoundH === null
 			? `From window ${window.number}, from the estimates alone: no bound was computed. Rounded down.`
-			: `From window ${window.number}, at the one-sided 95 % bound of the parameters. Rounded down.`;
+			: `From window ${window.number}, at the one-sided ${facts.confidencePercent} % bound of the parameters. Rounded down.`;
+	const stated = used > 0 ? roundDown(used) : 0;
+	const notBefore = earliest === null || earliest <= 0 ? null : roundUp(earliest);
+	const none = notBefore !== null && notBefore > stated;
 	return {
 		temperatureC,
 		unit: 'h',
 		nominal: facts.toH,
 		bound: facts.toBoundH,
-		stated: used > 0 ? roundDown(used) : 0,
-		notBefore: earliest === null || earliest <= 0 ? null : roundUp(earliest),
+		stated: none ? null : stated,
+		notBefore: none ? null : notBefore,
 		limits: [facts.fromBinds && `${facts.fromBinds} below`, facts.toBinds && `${facts.toBinds} above`]
 			.filter(Boolean)
 			.join(', '),
-		basis
+		basis: none
+			? `From window ${window.number}: at the bounds of the parameters no time meets every criterion.`
+			: basis
 	};
 }
 

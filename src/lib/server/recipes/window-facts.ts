@@ -1,32 +1,44 @@
-import { z } from 'zod';
+import type { FirstFormResult, HoldSpan } from '$lib/schemas/window';
 
 /** What a recipe takes from a window: the span of time in which every criterion holds, at one temperature. */
 export interface WindowFacts {
-	temperatureC: number | null;
-	/** Hours; an open end is null. */
+	temperatureC: number;
+	/** Hours; an end that is open is null. At the estimates. */
 	fromH: number | null;
 	toH: number | null;
-	/** The same at the adverse one-sided 95 % bound, where the window has it. */
+	/** The same at the adverse one-sided bound of the parameters; null where none could be computed. */
 	fromBoundH: number | null;
 	toBoundH: number | null;
 	/** Criterion that sets each end, in words. */
 	fromBinds: string;
 	toBinds: string;
+	confidencePercent: number;
 }
 
-/** Shape that a window's result offers to recipes. */
-export const windowForRecipe = z.object({
-	temperatureC: z.number().nullable(),
-	fromH: z.number().nullable(),
-	toH: z.number().nullable(),
-	fromBoundH: z.number().nullable().default(null),
-	toBoundH: z.number().nullable().default(null),
-	fromBinds: z.string().default(''),
-	toBinds: z.string().default('')
-});
+const HOURS = { s: 1 / 3600, min: 1 / 60, h: 1, d: 24 } as const;
 
+const isFirstForm = (result: unknown): result is FirstFormResult =>
+	typeof result === 'object' && result !== null && (result as { kind?: unknown }).kind === 'first form';
+
+const longest = (spans: HoldSpan[]): HoldSpan | null =>
+	[...spans].sort((a, b) => (b.to ?? Infinity) - b.from - ((a.to ?? Infinity) - a.from))[0] ?? null;
+
+/** Null where the window's result is of a kind that gives no hold, or no time meets every criterion. */
 export function windowFacts(result: unknown): WindowFacts | null {
-	const offered = (result as { recipe?: unknown } | null)?.recipe ?? result;
-	const parsed = windowForRecipe.safeParse(offered);
-	return parsed.success ? parsed.data : null;
+	if (!isFirstForm(result) || !result.hold) return null;
+	const span = longest(result.hold.spans);
+	if (!span) return null;
+	const hours = (value: number | null | undefined) =>
+		value === null || value === undefined ? null : value * HOURS[result.timeUnit];
+	const text = (index: number | null) => (index === null ? '' : (result.criteria[index]?.text ?? ''));
+	return {
+		temperatureC: result.temperatureC,
+		fromH: hours(span.from),
+		toH: hours(span.to),
+		fromBoundH: hours(result.hold.from.upper),
+		toBoundH: hours(result.hold.to.lower),
+		fromBinds: text(span.bindsFrom),
+		toBinds: text(span.bindsTo),
+		confidencePercent: Math.round(result.confidenceLevel * 1000) / 10
+	};
 }

@@ -1,0 +1,4 @@
+import { version } from '../../../../package.json';
+
+/** Version of this service, printed on every export. */
+export const SOFTWARE_VERSION: string = version;
