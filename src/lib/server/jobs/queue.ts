@@ -130,7 +130,7 @@ function progressWriter(jobId: string): (progress: unknown) => void {
 		try {
 			const event = await write(async (tx) => {
 				const [count] = await Job.update(
-					{ progress, heartbeatAt: new Date() },
+					{ progress: progress as object, heartbeatAt: new Date() },
 					{ where: { id: jobId, status: 'running' }, transaction: tx }
 				);
 				return count === 1 ? addEvent(tx, jobId, 'progress', progress) : null;
