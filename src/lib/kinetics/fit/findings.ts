@@ -14,7 +14,7 @@ export interface FindingsInput {
 	model: KineticModel;
 	best: LeastSquaresResult;
 	uncertainty: Uncertainty;
-	profiles: (ProfileInterval | null)[] | null;
+	profiles: ProfileInterval[] | null;
 	outcome: SearchOutcome;
 	early: FitFinding[];
 	box: SearchBox;

@@ -123,24 +123,38 @@ interface Context {
 	hooks: FitHooks;
 }
 
-function report(context: Context): FitReport {
+/** Profile intervals, and a better optimum where a profile finds one: then search and profiles go on from there. */
+function profiled(context: Context): { u: Uncertainty; profiles: ProfileInterval[] | null } {
 	const { problem, model, outcome, box, hooks } = context;
 	const { options } = problem.request;
+	for (let round = 0; ; round++) {
+		const best = outcome.minima[0].result;
+		const u = uncertainty(problem, best);
+		if (!options.profiles || u.s === null || !(u.s > 0) || !best.converged || problem.free.length === 0)
+			return { u, profiles: null };
+		const { intervals, better, evaluations } = profileIntervals({
+			model,
+			box,
+			best,
+			uncertainty: u,
+			confidence: options.confidenceLevel,
+			cancelled: hooks.cancelled,
+			onParameter: (done, total) =>
+				hooks.onProgress?.({ stage: 'profile-likelihood intervals', done, total, best: best.ssr })
+		});
+		outcome.evaluations += evaluations;
+		if (!better || round === 3) return { u, profiles: better ? null : intervals };
+		const polished = searchMinima(model, box, [better], { cancelled: hooks.cancelled });
+		outcome.evaluations += polished.evaluations;
+		outcome.minima.unshift({ ...polished.minima[0], starts: 0 });
+	}
+}
+
+function report(context: Context): FitReport {
+	const { problem, model, outcome, box } = context;
+	const { options } = problem.request;
+	const { u, profiles } = profiled(context);
 	const best = outcome.minima[0].result;
-	const u = uncertainty(problem, best);
-	const profiles =
-		options.profiles && u.s !== null && best.converged && problem.free.length > 0
-			? profileIntervals({
-					model,
-					box,
-					best,
-					uncertainty: u,
-					confidence: options.confidenceLevel,
-					cancelled: hooks.cancelled,
-					onParameter: (done, total) =>
-						hooks.onProgress?.({ stage: 'profile-likelihood intervals', done, total, best: best.ssr })
-				})
-			: null;
 	model.evaluate(best.x, new Float64Array(model.m), new Float64Array(model.m * model.p));
 	const m = problem.points.length;
 	const leverage = leverages(activeJacobian(best.jacobian, u.active, m), m, u.active.length, u.spread);
@@ -205,7 +219,7 @@ function reportedParameters(
 	problem: KineticProblem,
 	best: LeastSquaresResult,
 	u: Uncertainty,
-	profiles: (ProfileInterval | null)[] | null
+	profiles: ProfileInterval[] | null
 ): FitParameter[] {
 	const t =
 		u.degreesOfFreedom > 0
