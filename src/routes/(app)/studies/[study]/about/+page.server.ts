@@ -31,7 +31,7 @@ export const actions = {
 			await updateStudy(actor, { ...read.data, studyId: event.params.study, version });
 		} catch (caught) {
 			if (!(caught instanceof AppError) || caught.code !== 'version-changed') throw caught;
-			return fail(409, { typed, errors: {} as Record<string, string>, conflict: caught.message });
+			return fail(409, { typed, errors: {}, conflict: caught.message });
 		}
 		redirect(303, `/studies/${event.params.study}/scheme`);
 	})
