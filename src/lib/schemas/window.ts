@@ -36,7 +36,9 @@ export type FirstFormRequestInput = z.input<typeof firstFormRequest>;
 
 /** A time or value with its interval from the fit. Times are in the answer's time unit. */
 export interface Figure {
-	/** At the estimates; null: never. */
+	/** At the estimates: reached (`value` is a number), without end, or never. */
+	state: 'reached' | 'no end' | 'never';
+	/** At the estimates; null: never, or without end. */
 	value: number | null;
 	/**
 	 * Two-sided interval at the confidence level, from the draws. Null: there is none at all (nothing was fitted that matters,
