@@ -153,7 +153,7 @@ export function layoutScheme(content: SchemeContent): DrawnScheme {
 	dagre.layout(graph);
 
 	const nodes = graph.nodes().map((id): DrawnNode => {
-		const { x, y, width, height } = graph.node(id);
+		const { x, y, width, height } = graph.node(id) as Point & { width: number; height: number };
 		const kind = id.startsWith('species:') ? 'species' : id.startsWith('loss:') ? 'loss' : 'junction';
 		return { id, kind, species: kind === 'species' ? id.slice(8) : undefined, x, y, width, height };
 	});
