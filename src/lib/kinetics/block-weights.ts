@@ -33,6 +33,10 @@ export function blockWeights(system: LinearSystem, parts: Components): BlockWeig
 	const weights = new Float64Array(n).fill(1);
 	const exits = new Float64Array(n);
 	const unit = unitBlocks(system, parts);
+	if (parts.blocks.length === n) {
+		exits.set(outflow);
+		return { weights, exits, unit };
+	}
 	parts.blocks.forEach((block, b) => {
 		if (!unit[b]) solveWeights(system, parts, block, weights);
 	});
@@ -51,16 +55,20 @@ export function blockWeights(system: LinearSystem, parts: Components): BlockWeig
 	return { weights, exits, unit };
 }
 
+/** One number per step-direction. */
+function flowKey({ step, direction }: { step: number; direction: 'forward' | 'reverse' }): number {
+	return 2 * step + (direction === 'reverse' ? 1 : 0);
+}
+
 function unitBlocks(system: LinearSystem, parts: Components): boolean[] {
 	const unit = parts.blocks.map(() => true);
-	const perFlow = new Map<string, number>();
+	const seen = new Set<number>();
 	for (const t of system.transfers) {
 		const b = parts.blockOf[t.from];
 		if (b !== parts.blockOf[t.to]) continue;
-		const key = `${t.step}/${t.direction}`;
-		const count = (perFlow.get(key) ?? 0) + 1;
-		perFlow.set(key, count);
-		if (t.coefficient !== 1 || (count > 1 && t.step >= 0)) unit[b] = false;
+		const key = flowKey(t);
+		if (t.coefficient !== 1 || (t.step >= 0 && seen.has(key))) unit[b] = false;
+		seen.add(key);
 	}
 	return unit;
 }
@@ -72,15 +80,15 @@ function unitBlocks(system: LinearSystem, parts: Components): boolean[] {
 function leavingRates(system: LinearSystem, parts: Components): Float64Array {
 	const { n, transfers, outflow, flows } = system;
 	const leaving = new Float64Array(n);
-	const stays = new Set<string>();
+	const stays = new Set<number>();
 	const staying = new Float64Array(n);
 	for (const t of transfers)
 		if (parts.blockOf[t.from] === parts.blockOf[t.to]) {
-			stays.add(`${t.step}/${t.direction}`);
+			stays.add(flowKey(t));
 			staying[t.from] += t.rate * t.coefficient;
 		}
 	if (flows) {
-		for (const f of flows) if (!stays.has(`${f.step}/${f.direction}`)) leaving[f.from] += f.rate;
+		for (const f of flows) if (!stays.has(flowKey(f))) leaving[f.from] += f.rate;
 		return leaving;
 	}
 	for (let j = 0; j < n; j++) {

@@ -36,22 +36,33 @@ export interface ClosedForm {
 }
 
 export function closedForm(space: ModeSpace, groups: ModeGroup[], c: ModeCoefficients): ClosedForm {
-	const kept = groups.map((_, g) => g).filter((g) => groups[g].im >= 0);
-	kept.sort((a, b) => groups[a].re - groups[b].re || groups[a].im - groups[b].im);
 	const { n } = space;
-	const width = kept.reduce((sum, g) => sum + (groups[g].degree + 1) * (groups[g].im > 0 ? 2 : 1), 0);
+	const kept: number[] = [];
+	let width = 0;
+	for (let g = 0; g < groups.length; g++) {
+		if (groups[g].im < 0) continue;
+		kept.push(g);
+		width += (groups[g].degree + 1) * (groups[g].im > 0 ? 2 : 1);
+	}
+	kept.sort((a, b) => groups[a].re - groups[b].re || groups[a].im - groups[b].im);
 	const form: ClosedForm = {
 		n,
 		width,
-		re: Float64Array.from(kept, (g) => groups[g].re),
-		im: Float64Array.from(kept, (g) => groups[g].im),
-		degree: Int32Array.from(kept, (g) => groups[g].degree),
-		members: Int32Array.from(kept, (g) => groups[g].members.length),
+		re: new Float64Array(kept.length),
+		im: new Float64Array(kept.length),
+		degree: new Int32Array(kept.length),
+		members: new Int32Array(kept.length),
 		amplitudes: new Float64Array(n * width),
 		sizes: new Float64Array(n * width),
 		size: new Float64Array(n),
-		simple: width === kept.length && kept.every((g) => groups[g].im === 0)
+		simple: width === kept.length
 	};
+	kept.forEach((g, i) => {
+		form.re[i] = groups[g].re;
+		form.im[i] = groups[g].im;
+		form.degree[i] = groups[g].degree;
+		form.members[i] = groups[g].members.length;
+	});
 	let column = 0;
 	for (const g of kept) {
 		for (let m = 0; m <= groups[g].degree; m++) {

@@ -55,72 +55,94 @@ export function curvesOnGrid(form: ClosedForm, grid: Grid, trust: GridTrust, out
 	for (let l = 0; l < width; l++)
 		for (let j = 0; j < block; j++) fine[l * block + j] = re[l] === 0 ? 1 : Math.exp(re[l] * (j * stepS));
 	const coarse = new Float64Array(width);
-	const modes = new Int32Array(width);
-	const scaled = new Float64Array(width);
+	const modes = new Int32Array(Math.max(width, 4));
+	const scaled = new Float64Array(Math.max(width, 4));
 	const unsure: number[] = [];
 	for (let start = 0; start < count; start += block) {
 		const rows = Math.min(block, count - start);
 		for (let l = 0; l < width; l++) coarse[l] = Math.exp(re[l] * (firstS + start * stepS));
+		let sure = true;
 		for (let s = 0; s < n; s++) {
+			let constant = 0;
 			let terms = 0;
 			for (let l = 0; l < width; l++) {
 				const amplitude = amplitudes[s * width + l];
 				if (amplitude === 0) continue;
-				modes[terms] = l * block;
-				scaled[terms++] = amplitude * coarse[l];
+				if (re[l] === 0) constant += amplitude;
+				else {
+					modes[terms] = l * block;
+					scaled[terms++] = amplitude * coarse[l];
+				}
 			}
-			sumTerms(fine, modes, scaled, terms, rows, out, start * n + s, n);
+			const column = { out, offset: start * n + s, stride: n, rows, constant };
+			const lowest = sumTerms(fine, modes, scaled, terms, column);
+			if (!(lowest >= trust.trusted[s])) sure = false;
 		}
-		gatherUnsure(form, trust, { fine, coarse, block, start, rows }, out, unsure);
+		if (!sure) gatherUnsure(form, trust, { fine, coarse, block, start, rows }, out, unsure);
 	}
 	return unsure;
 }
 
-/** out[offset + j·stride] = Σ scaled[i] fine[modes[i] + j], the first four terms at once so that the amplitudes stay in registers. */
+interface Column {
+	out: Float64Array;
+	offset: number;
+	stride: number;
+	rows: number;
+	constant: number;
+}
+
+/**
+ * out[offset + j·stride] = constant + Σ scaled[i] fine[modes[i] + j], up to three terms at once so that the amplitudes stay in
+ * registers. Returns the smallest value written.
+ */
 function sumTerms(
 	fine: Float64Array,
 	modes: Int32Array,
 	scaled: Float64Array,
 	terms: number,
-	rows: number,
-	out: Float64Array,
-	offset: number,
-	stride: number
-): void {
-	if (terms === 0) {
-		for (let j = 0, to = offset; j < rows; j++, to += stride) out[to] = 0;
-		return;
+	column: Column
+): number {
+	const { out, offset, stride, rows, constant } = column;
+	const first = Math.min(terms, 3);
+	const a0 = first > 0 ? scaled[0] : 0;
+	const a1 = first > 1 ? scaled[1] : 0;
+	const a2 = first > 2 ? scaled[2] : 0;
+	const m0 = first > 0 ? modes[0] : 0;
+	const m1 = first > 1 ? modes[1] : 0;
+	const m2 = first > 2 ? modes[2] : 0;
+	let lowest = Infinity;
+	for (let j = 0, to = offset; j < rows; j++, to += stride) {
+		let value = constant + a0 * fine[m0 + j];
+		if (first > 1) value += a1 * fine[m1 + j];
+		if (first > 2) value += a2 * fine[m2 + j];
+		out[to] = value;
+		if (value < lowest) lowest = value;
 	}
-	const m0 = modes[0];
-	const m1 = modes[1];
-	const m2 = modes[2];
-	const m3 = modes[3];
-	const a0 = scaled[0];
-	const a1 = scaled[1];
-	const a2 = scaled[2];
-	const a3 = scaled[3];
-	if (terms >= 4)
-		for (let j = 0, to = offset; j < rows; j++, to += stride)
-			out[to] = a0 * fine[m0 + j] + a1 * fine[m1 + j] + a2 * fine[m2 + j] + a3 * fine[m3 + j];
-	else if (terms === 3)
-		for (let j = 0, to = offset; j < rows; j++, to += stride)
-			out[to] = a0 * fine[m0 + j] + a1 * fine[m1 + j] + a2 * fine[m2 + j];
-	else if (terms === 2)
-		for (let j = 0, to = offset; j < rows; j++, to += stride) out[to] = a0 * fine[m0 + j] + a1 * fine[m1 + j];
-	else for (let j = 0, to = offset; j < rows; j++, to += stride) out[to] = a0 * fine[m0 + j];
-	for (let i = 4; i < terms; i++) addTerm(fine, modes[i], scaled[i], rows, out, offset, stride);
+	for (let i = 3; i < terms; i += 2)
+		lowest = addTerms(fine, modes, scaled, i, Math.min(2, terms - i), column);
+	return lowest;
 }
 
-function addTerm(
+/** Adds one or two more terms. */
+function addTerms(
 	fine: Float64Array,
-	mode: number,
-	amplitude: number,
-	rows: number,
-	out: Float64Array,
-	offset: number,
-	stride: number
-): void {
-	for (let j = 0, to = offset; j < rows; j++, to += stride) out[to] += amplitude * fine[mode + j];
+	modes: Int32Array,
+	scaled: Float64Array,
+	first: number,
+	count: number,
+	{ out, offset, stride, rows }: Column
+): number {
+	const a0 = scaled[first];
+	const m0 = modes[first];
+	const a1 = count > 1 ? scaled[first + 1] : 0;
+	const m1 = count > 1 ? modes[first + 1] : m0;
+	let lowest = Infinity;
+	for (let j = 0, to = offset; j < rows; j++, to += stride) {
+		const value = out[to] + a0 * fine[m0 + j] + a1 * fine[m1 + j];
+		out[to] = value;
+		if (value < lowest) lowest = value;
+	}
+	return lowest;
 }
 
 interface Block {

@@ -28,23 +28,26 @@ const MOST_EXTRA = 26;
 export function modeGroups(space: ModeSpace): { groups: ModeGroup[]; groupOf: Int32Array } {
 	const { n } = space;
 	const feeds = feedMatrix(space);
-	const leader = Int32Array.from({ length: n }, (_, i) => i);
+	const leader = new Int32Array(n);
+	for (let i = 0; i < n; i++) leader[i] = i;
 	const find = (i: number): number => (leader[i] === i ? i : (leader[i] = find(leader[i])));
 	for (let i = 0; i < n; i++)
 		for (let j = 0; j < i; j++) if (feeds[i * n + j] && near(space, i, j)) leader[find(i)] = find(j);
-	const groups: ModeGroup[] = [];
-	const groupOf = new Int32Array(n);
+	const memberLists: number[][] = [];
+	const groupOf = new Int32Array(n).fill(-1);
 	for (let i = 0; i < n; i++) {
-		if (find(i) !== i) continue;
-		const members = Array.from({ length: n }, (_, k) => k).filter((k) => find(k) === i);
-		members.forEach((k) => (groupOf[k] = groups.length));
-		groups.push(groupFrom(space, members));
+		const root = find(i);
+		if (groupOf[root] < 0) groupOf[root] = memberLists.push([]) - 1;
+		groupOf[i] = groupOf[root];
+		memberLists[groupOf[i]].push(i);
 	}
-	return { groups, groupOf };
+	return { groups: memberLists.map((members) => groupFrom(space, members)), groupOf };
 }
 
 function near({ lambda }: ModeSpace, i: number, j: number): boolean {
-	const gap = Math.hypot(lambda.re[i] - lambda.re[j], lambda.im[i] - lambda.im[j]);
+	const gapRe = Math.abs(lambda.re[i] - lambda.re[j]);
+	const gapIm = lambda.im[i] - lambda.im[j];
+	const gap = gapIm === 0 ? gapRe : Math.hypot(gapRe, gapIm);
 	return gap === 0 || gap <= NEAR * Math.max(Math.abs(lambda.re[i]), Math.abs(lambda.re[j]));
 }
 

@@ -49,16 +49,19 @@ const WIDEST_WEIGHTS = 1200;
 
 export function modeSpace(system: LinearSystem, parts: Components, balance: BlockWeights): ModeSpace {
 	const { n } = system;
-	const matrix = (): ComplexMatrix => ({ m: n, re: new Float64Array(n * n), im: new Float64Array(n * n) });
+	// One buffer for all: allocating is what costs here. Imaginary parts are shared zeros until a component needs them.
+	const own = new Float64Array(6 * n * n);
+	const part = (k: number) => own.subarray(k * n * n, (k + 1) * n * n);
+	const real = (k: number): ComplexMatrix => ({ m: n, re: part(k), im: zeros(n) });
 	const space: ModeSpace = {
 		n,
 		lambda: { re: new Float64Array(n), im: new Float64Array(n) },
-		v: matrix(),
-		w: matrix(),
-		t: matrix(),
-		vBound: new Float64Array(n * n),
-		wBound: new Float64Array(n * n),
-		tBound: new Float64Array(n * n),
+		v: real(0),
+		w: real(1),
+		t: real(2),
+		vBound: part(3),
+		wBound: part(4),
+		tBound: part(5),
 		kinds: new Array<BlockKind>(n).fill('single'),
 		complex: false,
 		usable: true
@@ -73,6 +76,19 @@ export function modeSpace(system: LinearSystem, parts: Components, balance: Bloc
 	});
 	couple(space, system, parts, modesOf);
 	return space;
+}
+
+const zeroMatrices: Float64Array[] = [];
+
+/** n × n zeros, shared and never written to. */
+function zeros(n: number): Float64Array {
+	return (zeroMatrices[n] ??= new Float64Array(n * n));
+}
+
+function makeComplex(space: ModeSpace): void {
+	if (space.complex) return;
+	space.complex = true;
+	for (const matrix of [space.v, space.w, space.t]) matrix.im = new Float64Array(space.n * space.n);
 }
 
 function singleBlock(space: ModeSpace, system: LinearSystem, species: number, mode: number): void {
@@ -143,7 +159,7 @@ function generalBlock(
 	block.forEach((species, i) => (matrix[i * m + i] = -system.outflow[species]));
 	const { scale, u, t, converged } = complexSchur(matrix, m);
 	if (!converged) space.usable = false;
-	space.complex = true;
+	makeComplex(space);
 	cleanEigenvalues(t, exits);
 	for (let j = 0; j < m; j++) placeSchurMode(space, block, first, j, scale, u, t);
 }
@@ -209,7 +225,7 @@ function couple(space: ModeSpace, system: LinearSystem, parts: Components, modes
 				const wIm = w.im[a * n + to] * k;
 				const at = a * n + b;
 				t.re[at] += wRe * v.re[from * n + b] - wIm * v.im[from * n + b];
-				t.im[at] += wRe * v.im[from * n + b] + wIm * v.re[from * n + b];
+				if (space.complex) t.im[at] += wRe * v.im[from * n + b] + wIm * v.re[from * n + b];
 				tBound[at] += wBound[a * n + to] * k * vBound[from * n + b];
 			}
 	}

@@ -34,6 +34,9 @@ interface Level {
 	x: Float64Array;
 }
 
+/** q·t up to which the series alone is used, so that early times need no powers. */
+const SHORT = 8;
+
 /** Products in a row on a grid of times. */
 const RESTART = 16;
 
@@ -85,6 +88,10 @@ export class Propagator {
 	): Float64Array {
 		for (let i = 0; i < this.n; i++) out[i] = charge[i];
 		let left = timeS;
+		if (this.levels.length === 0 && timeS * this.shift <= SHORT) {
+			if (timeS > 0) this.uniformise(timeS, out);
+			return out;
+		}
 		let level = Math.floor(Math.log2(timeS / this.baseStepS));
 		for (; level >= 0; level--) {
 			const step = this.baseStepS * Math.pow(2, level);
@@ -145,7 +152,7 @@ export class Propagator {
 		vector.set(nextTerm);
 	}
 
-	/** e^{Kr} on a vector by the non-negative series; r ≤ baseStepS. */
+	/** e^{Kr} on a vector by the non-negative series; q r ≤ SHORT. */
 	private uniformise(stepS: number, vector: Float64Array): void {
 		const { n, from, to, rate, stay, term, nextTerm } = this;
 		term.set(vector);

@@ -23,7 +23,7 @@
 import { blockWeights } from './block-weights';
 import { basis, basisSlope, closedForm, type ClosedForm } from './closed-form';
 import { components } from './components';
-import { curvesOnGrid, gridStep } from './grid';
+import { curvesOnGrid, gridStep, type Grid } from './grid';
 import { finalComposition } from './final-composition';
 import { modeGroups, type ModeGroup } from './mode-groups';
 import { modeSpace, type ModeSpace } from './mode-space';
@@ -54,6 +54,9 @@ function checkedCharge(system: LinearSystem, charge: ArrayLike<number>): Float64
 	});
 	return own;
 }
+
+/** Runs of at least this many times are worth the matrix of one step. */
+const LONG_RUN = 24;
 
 class NetworkSolution implements Solution {
 	readonly n: number;
@@ -105,14 +108,14 @@ class NetworkSolution implements Solution {
 		out: Float64Array = new Float64Array(this.n * timesS.length)
 	): Float64Array {
 		const stepS = gridStep(timesS);
-		const { useClosedForm } = this.verdict;
-		if (stepS === 0 || (useClosedForm && !this.form.simple)) {
+		if (stepS === 0) {
 			for (let k = 0; k < timesS.length; k++) this.write(timesS[k], out, k * this.n);
 			return out;
 		}
 		const grid = { firstS: timesS[0], stepS, count: timesS.length };
-		if (!useClosedForm) return this.exact().applyGrid(grid, this.charge, out);
-		for (const k of curvesOnGrid(this.form, grid, this.verdict, out)) this.write(timesS[k], out, k * this.n);
+		if (!this.verdict.useClosedForm) this.exact().applyGrid(grid, this.charge, out);
+		else if (this.form.simple) this.repair(grid, curvesOnGrid(this.form, grid, this.verdict, out), out);
+		else this.repair(grid, this.closedForms(timesS, out), out);
 		if (grid.firstS === 0) out.set(this.charge);
 		return out;
 	}
@@ -153,6 +156,29 @@ class NetworkSolution implements Solution {
 		else if (!this.verdict.useClosedForm || !this.closedForm(timeS, out, start)) {
 			const target = out.subarray(start, start + this.n);
 			this.exact().apply(timeS, this.charge, target);
+		}
+	}
+
+	/** Closed form at every time; returns the indices at which it is not to be trusted. */
+	private closedForms(timesS: ArrayLike<number>, out: Float64Array): number[] {
+		const unsure: number[] = [];
+		for (let k = 0; k < timesS.length; k++) if (!this.closedForm(timesS[k], out, k * this.n)) unsure.push(k);
+		return unsure;
+	}
+
+	/** Evaluates the given indices of a grid by the non-negative way, long runs of them as a grid of their own. */
+	private repair({ firstS, stepS }: Grid, unsure: number[], out: Float64Array): void {
+		const { n } = this;
+		for (let i = 0; i < unsure.length;) {
+			let end = i + 1;
+			while (end < unsure.length && unsure[end] === unsure[end - 1] + 1) end++;
+			const run = { firstS: firstS + unsure[i] * stepS, stepS, count: end - i };
+			const target = out.subarray(unsure[i] * n, (unsure[i] + run.count) * n);
+			if (run.count >= LONG_RUN) this.exact().applyGrid(run, this.charge, target);
+			else
+				for (let k = 0; k < run.count; k++)
+					this.exact().apply(run.firstS + k * stepS, this.charge, target.subarray(k * n, (k + 1) * n));
+			i = end;
 		}
 	}
 

@@ -37,13 +37,9 @@ export function triangularModes(
 	const offset = new Int32Array(groups.length + 1);
 	groups.forEach((group, g) => (offset[g + 1] = offset[g] + group.degree + 1));
 	const width = offset[groups.length];
-	const result: ModeCoefficients = {
-		width,
-		offset,
-		re: new Float64Array(n * width),
-		im: new Float64Array(n * width),
-		size: new Float64Array(n * width)
-	};
+	const own = new Float64Array(3 * n * width);
+	const part = (k: number) => own.subarray(k * n * width, (k + 1) * n * width);
+	const result: ModeCoefficients = { width, offset, re: part(0), im: part(1), size: part(2) };
 	const start = { re: 0, im: 0, size: 0 };
 	for (let i = 0; i < n; i++) {
 		gatherForcing(space, result, i);
@@ -104,7 +100,7 @@ function particular(
 	const dRe = group.re - lambda.re[i];
 	const dIm = group.im - lambda.im[i];
 	const square = dRe * dRe + dIm * dIm;
-	const distance = Math.sqrt(square);
+	const distance = dIm === 0 ? Math.abs(dRe) : Math.sqrt(square);
 	for (let m = group.degree; m >= 0; m--) {
 		const at = base + m;
 		if (size[at] === 0 && (m === group.degree || size[at + 1] === 0)) continue;
@@ -139,7 +135,7 @@ function ownGroup(
 	const base = i * width + offset;
 	const deltaRe = lambda.re[i] - group.re;
 	const deltaIm = lambda.im[i] - group.im;
-	const delta = Math.hypot(deltaRe, deltaIm);
+	const delta = deltaIm === 0 ? Math.abs(deltaRe) : Math.hypot(deltaRe, deltaIm);
 	let { re: r, im: q, size: s } = start;
 	for (let m = 0; m <= group.degree; m++) {
 		const at = base + m;

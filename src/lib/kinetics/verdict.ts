@@ -48,11 +48,15 @@ export function judge(
 	form: ClosedForm,
 	exact: () => Propagator
 ): Judgement {
-	const total = charge.reduce((sum, value) => sum + Math.abs(value), 0) || 1;
+	let total = 0;
+	for (const value of charge) total += Math.abs(value);
+	if (total === 0) total = 1;
 	const structure = structuralMethod(space, groups);
 	const exactAmplitudes = space.kinds.every((kind) => kind === 'single');
-	const bound = form.size.reduce((top, size) => Math.max(top, size), 0) * ROUNDING;
-	const finite = space.usable && Number.isFinite(bound) && form.amplitudes.every(Number.isFinite);
+	let top = 0;
+	for (const size of form.size) if (!(size <= top)) top = size;
+	const bound = top * ROUNDING;
+	const finite = space.usable && Number.isFinite(bound);
 	const base = { smallest: SMALLEST, exactAmplitudes };
 	if (finite && bound <= TOLERANCE * total && !space.kinds.includes('general'))
 		return {
@@ -83,11 +87,13 @@ export function judge(
 
 /** A species of a single exact term is right to rounding however small. */
 function trustedSizes(form: ClosedForm, exactAmplitudes: boolean): Float64Array {
-	return form.size.map((size, s) => {
+	const trusted = new Float64Array(form.n);
+	for (let s = 0; s < form.n; s++) {
 		let terms = 0;
 		for (let l = 0; l < form.width; l++) if (form.sizes[s * form.width + l] !== 0) terms++;
-		return exactAmplitudes && terms <= 1 ? 0 : size * SMALLEST;
-	});
+		trusted[s] = exactAmplitudes && terms <= 1 ? 0 : form.size[s] * SMALLEST;
+	}
+	return trusted;
 }
 
 /** How much larger than the charge the amounts may become where steps split (A → 2 B). */
