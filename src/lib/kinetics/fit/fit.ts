@@ -12,6 +12,7 @@ import { evaluateLinear, linearOf } from './affine';
 import { leverages } from './covariance';
 import { studentQuantile } from './distributions';
 import { structuralFindings, planIssues } from './checks';
+import { identifiabilityFindings } from './identifiability';
 import { collectFindings } from './findings';
 import type { LeastSquaresResult } from './levenberg-marquardt';
 import { massBalance } from './mass-balance';
@@ -61,9 +62,9 @@ export function fit(request: FitRequest, hooks: FitHooks = {}): FitReport {
 	const early = [...issues, ...planIssues(problem)];
 	const stops = early.filter((i) => i.level === 'stop');
 	if (stops.length) throw new FitRequestError(stops);
-	early.push(...structuralFindings(problem));
 	const model = new KineticModel(problem);
 	const box = searchBox(problem);
+	early.push(...identifiabilityFindings(problem, box), ...structuralFindings(problem));
 	const outcome = problem.free.length > 0 ? runSearch(model, box, request, hooks) : nothingToSearch(model);
 	if (outcome.minima.length === 0) throw new FitRequestError([noFiniteStart()]);
 	return report({ problem, model, box, outcome, early, hooks });

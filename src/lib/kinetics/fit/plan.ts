@@ -4,6 +4,7 @@
  */
 import type { FitFinding, FitRequest } from '../../schemas/fit';
 import { planIssues, structuralFindings } from './checks';
+import { identifiabilityFindings } from './identifiability';
 import { compileProblem } from './problem';
 import { toReported, type Slot } from './slots';
 import { searchBox } from './starts';
@@ -51,11 +52,12 @@ export function plan(request: FitRequest): FitPlan {
 			issues
 		};
 	}
-	const all = [...issues, ...planIssues(problem), ...structuralFindings(problem)];
 	const box = searchBox(problem);
+	const blocking = [...issues, ...planIssues(problem)];
+	const all = [...blocking, ...identifiabilityFindings(problem, box), ...structuralFindings(problem)];
 	const natural = (slot: Slot, v: number) => toReported(slot, slot.scale === 'ln' ? Math.exp(v) : v);
 	return {
-		ready: !all.some((i) => i.level === 'stop'),
+		ready: !blocking.some((i) => i.level === 'stop'),
 		parameters: listed.map((slot) => {
 			const j = problem.free.indexOf(slot);
 			if (j < 0) return planned(slot, null);
