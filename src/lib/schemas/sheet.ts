@@ -283,8 +283,8 @@ export const findingSchema = z.object({
 	/** Stable: the same question about the same cells has the same id each time. */
 	id: z.string().max(200),
 	level: z.enum(FINDING_LEVELS),
-	/** Rule of the reader, B1 to B40. */
-	rule: z.string().regex(/^B\d{1,2}$/),
+	/** Rule of the reader, B1 to B40; A7 for signs of faults in the lab. */
+	rule: z.string().regex(/^(?:B\d{1,2}|A7)$/),
 	sheet: z.string(),
 	/** Addresses such as A14; for rows or columns the first cell of each. At most 200, `count` has them all. */
 	cells: z.array(z.string()),

@@ -1,0 +1,139 @@
+/** What one cell says where a value is expected, before any rule decides what to do about it. */
+import { CELL, type GridCell, type GridWorkbook } from '$lib/schemas/sheet';
+import { cellStyle, displayText, hasFlag } from './grid';
+import { hasOddSigns, numberText, parseNumber, type Decimal } from './numbers';
+import { readUnit, type UnitReading } from './units';
+import { valueWord } from './words';
+
+export type CellReading =
+	| { kind: 'blank' }
+	/** `percent`: the cell is formatted or written as %, and `value` is already in %. `odd`: signs beyond plain ASCII. */
+	| { kind: 'number'; value: number; percent: boolean; text: boolean; odd: boolean }
+	| { kind: 'with unit'; value: number; unit: UnitReading; text: string }
+	| { kind: 'below'; limit: number | null; which: 'loq' | 'lod' | null; text: string }
+	| { kind: 'above'; limit: number | null; text: string }
+	| { kind: 'not'; text: string }
+	| { kind: 'trace'; text: string }
+	| { kind: 'missing'; text: string }
+	/** A number that reads as two, in a file whose convention is not settled. */
+	| { kind: 'undecided'; text: string }
+	| { kind: 'date'; text: string }
+	| { kind: 'error'; text: string }
+	| { kind: 'uncomputed'; text: string }
+	| { kind: 'text'; text: string };
+
+const MONTH =
+	'(?:jan|feb|m[aä]r|apr|ma[iy]|jun|jul|aug|sep|o[ck]t|nov|de[cz]|f[ée]v|avr|juin|juil|ao[uû]|d[ée]c|ene|abr|ago|dic)[a-zé]*\\.?';
+const DATE_TEXT = new RegExp(
+	`^(?:\\d{1,2}[./-]\\d{1,2}[./-]\\d{2,4}|\\d{4}-\\d{1,2}-\\d{1,2}|\\d{1,2}[-. ]{1,2}${MONTH}(?:[-. ]{1,2}\\d{2,4})?|${MONTH}[-. ]{1,2}\\d{1,4})(?:[ T]\\d{1,2}:\\d\\d(?::\\d\\d)?)?$`,
+	'i'
+);
+export const isDateText = (text: string): boolean => text.length <= 40 && DATE_TEXT.test(text.trim());
+
+/** Reads one cell; `overlay` is the text of a correction, which stands in its place. */
+export function readCell(
+	workbook: GridWorkbook,
+	cell: GridCell | undefined,
+	decimal: Decimal | null,
+	overlay?: string
+): CellReading {
+	if (overlay !== undefined) return readValueText(overlay, decimal);
+	if (!cell) return { kind: 'blank' };
+	if (hasFlag(cell, CELL.error)) return { kind: 'error', text: String(cell[1]) };
+	if (hasFlag(cell, CELL.uncomputed)) return { kind: 'uncomputed', text: '' };
+	const value = cell[1];
+	if (value === null) return { kind: 'blank' };
+	if (typeof value === 'boolean') return { kind: 'text', text: value ? 'TRUE' : 'FALSE' };
+	if (typeof value === 'string') return readValueText(value, decimal);
+	const { kind } = cellStyle(workbook, cell);
+	if (kind === 'date' || kind === 'datetime' || kind === 'time' || kind === 'duration')
+		return { kind: 'date', text: displayText(workbook, cell) };
+	if (kind === 'percent')
+		return { kind: 'number', value: percentOf(value), percent: true, text: false, odd: false };
+	return { kind: 'number', value, percent: false, text: false, odd: false };
+}
+
+/** 0.07 × 100 is 7.000000000000001 in binary; fifteen digits are what the sheet holds. */
+const percentOf = (value: number) => Number((value * 100).toPrecision(15));
+
+/** Reads a text in the place of a value. */
+export function readValueText(raw: string, decimal: Decimal | null): CellReading {
+	const text = raw.replace(/[\s\u00a0]+/g, ' ').trim();
+	if (text === '') return { kind: 'blank' };
+	const number = asNumber(raw.trim(), decimal);
+	if (number) return number;
+	const word = valueWord(text);
+	if (word) return ofWord(word, text);
+	const limit = /^(<|≤|<=|＜|&lt;|>|≥|>=|＞)\s*(.+)$/.exec(text);
+	if (limit) return ofLimit(limit[1], limit[2], text, decimal);
+	if (/^(ca\.?|~|≈|approx\.?)\s*[\d.,]+$/i.test(text)) return { kind: 'text', text };
+	if (isDateText(text)) return { kind: 'date', text };
+	const unit = splitUnit(text, decimal);
+	if (unit) return unit;
+	if (/^#(DIV\/0!|REF!|N\/A|VALUE!|NAME\?|NUM!|NULL!|WERT!|BEZUG!|NV|ZAHL!)$/i.test(text))
+		return { kind: 'error', text };
+	return { kind: 'text', text };
+}
+
+function asNumber(text: string, decimal: Decimal | null): CellReading | null {
+	const readings = numberText(text);
+	if (!readings) return null;
+	const value = parseNumber(text, decimal);
+	if (value !== null) return { kind: 'number', value, percent: false, text: true, odd: hasOddSigns(text) };
+	// A file of the other convention: the cell means something, but not here.
+	return decimal === null ? { kind: 'undecided', text } : { kind: 'text', text };
+}
+
+function ofWord(word: ReturnType<typeof valueWord>, text: string): CellReading {
+	if (word === 'below loq') return { kind: 'below', limit: null, which: 'loq', text };
+	if (word === 'below lod') return { kind: 'below', limit: null, which: 'lod', text };
+	if (word === 'not') return { kind: 'not', text };
+	if (word === 'trace') return { kind: 'trace', text };
+	if (word === 'over') return { kind: 'above', limit: null, text };
+	return { kind: 'missing', text };
+}
+
+function ofLimit(sign: string, rest: string, text: string, decimal: Decimal | null): CellReading {
+	const kind = /[<≤＜&]/.test(sign) ? 'below' : 'above';
+	const number = readValueText(rest, decimal);
+	if (number.kind === 'undecided') return { kind: 'undecided', text };
+	let limit: number | null = null;
+	if (number.kind === 'number') limit = number.value;
+	else if (number.kind === 'with unit' && number.unit.of !== 'time') return { ...number, text, kind: 'text' };
+	else return { kind: 'text', text };
+	return kind === 'below' ? { kind, limit, which: null, text } : { kind: 'above', limit, text };
+}
+
+function splitUnit(text: string, decimal: Decimal | null): CellReading | null {
+	const match = /^([+\-\u2212]?[\d.,'’ ]*\d)\s*([^\d\s.,].*)$/.exec(text);
+	if (!match) return null;
+	const unit = readUnit(match[2]);
+	if (!unit) return null;
+	const value = parseNumber(match[1], decimal);
+	if (value === null) return numberText(match[1]) && decimal === null ? { kind: 'undecided', text } : null;
+	if (unit.of === 'percent')
+		return { kind: 'number', value, percent: true, text: true, odd: hasOddSigns(text) };
+	return { kind: 'with unit', value, unit, text };
+}
+
+/** True when a cell counts as a value for finding tables: a number, a limit, or one of the words that stand for one. */
+export function isValueLike(reading: CellReading): boolean {
+	return (
+		reading.kind === 'number' ||
+		reading.kind === 'with unit' ||
+		reading.kind === 'below' ||
+		reading.kind === 'above' ||
+		reading.kind === 'not' ||
+		reading.kind === 'trace' ||
+		reading.kind === 'undecided'
+	);
+}
+
+/** The texts of a file that vote on its decimal convention: the number in a cell without limit sign and unit. */
+export function numberPart(text: string): string {
+	return text
+		.trim()
+		.replace(/^(?:<=?|>=?|≤|≥)\s*/, '')
+		.replace(/^([+\-\u2212]?[\d.,'’\s\u00a0\u2009\u202f]*\d)\s*[^\d\s.,][^\d]*.*$/, '$1')
+		.replace(/\s*%$/, '');
+}

@@ -1,0 +1,7 @@
+/** The sheet reader's pure part: what a workbook holds, what has to be asked, and the run that results. */
+export { propose, proposeBlock, type ProposeOptions } from './propose';
+export { settle, type SettleInput } from './settle';
+export { toSavedMapping } from './saved-mapping';
+export { address, columnLetter, columnNumber, displayText, parseAddress, rangeText, SheetView } from './grid';
+export { CHECKS, type Checks } from './examination';
+export { durationWords } from './checks';
