@@ -36,7 +36,7 @@ const EPSILON = 2.220446049250313e-16;
 /** Sign of Σ w_i c_i + constant along the track, as segments without gaps. */
 export function signSegments(track: Track, form: LinearForm): SignSegment[] {
 	const segments = new SegmentList();
-	const finder = new Finder(segments);
+	const finder = new Finder(segments, true);
 	const own = new Float64Array(SIZE);
 	let noise = 4 * EPSILON * Math.abs(form.constant);
 	for (let p = 0; p < track.pieces; p++) {
@@ -57,7 +57,7 @@ export function signSegments(track: Track, form: LinearForm): SignSegment[] {
 /** Sign of the time derivative of Σ w_i c_i along the track; 0 where it is lost in rounding, also round flat turns. */
 export function slopeSegments(track: Track, weights: ArrayLike<number>): SignSegment[] {
 	const segments = new SegmentList();
-	const finder = new Finder(segments);
+	const finder = new Finder(segments, false);
 	const own = new Float64Array(SIZE);
 	const slope = new Float64Array(SIZE);
 	for (let p = 0; p < track.pieces; p++) {
@@ -87,7 +87,11 @@ class Finder {
 	private noise = 0;
 	private readonly pool: Float64Array[] = Array.from({ length: DEEPEST + 2 }, () => new Float64Array(SIZE));
 
-	constructor(private readonly segments: SegmentList) {}
+	/** @param touches whether a stretch that only comes near zero is to be followed down to where it touches */
+	constructor(
+		private readonly segments: SegmentList,
+		private readonly touches: boolean
+	) {}
 
 	piece(a: Float64Array, left: number, right: number, noise: number): void {
 		this.a = a;
@@ -117,7 +121,7 @@ class Finder {
 			}
 		}
 		if (small === SIZE) return this.add(u0, u1, 0);
-		if (changes === 0 && small === 0) return this.add(u0, u1, last as 1 | -1);
+		if (changes === 0 && (small === 0 || !this.touches)) return this.add(u0, u1, last as 1 | -1);
 		if (changes === 1 && Math.abs(b[0]) > noise && Math.abs(b[DEGREE]) > noise)
 			return this.crossing(u0, u1, b[0] > 0);
 		if (depth >= DEEPEST) return this.add(u0, u1, 0);

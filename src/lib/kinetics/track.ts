@@ -16,7 +16,7 @@
  * | --- | --- |
  * | l, 2l | `edges[p]`, `edges[p + 1]`, s |
  * | a_k of species i on piece p | `coefficients[(p·n + i)·SIZE + k]` |
- * | largest value so far | `scales[p·n + i]` |
+ * | largest value so far (or rounding / 4ε, where that is more) | `scales[p·n + i]` |
  *
  * Sources: J. P. Boyd, SIAM J. Numer. Anal. 40 (2002) 1666 (roots through Chebyshev interpolants and subdivision);
  * Z. Battles and L. N. Trefethen, SIAM J. Sci. Comput. 25 (2004) 1743; error bound: Trefethen (2013), theorem 8.2.
@@ -64,6 +64,7 @@ export interface Track {
 const RESOLVED = 6e-15;
 /** Relative distance from the limit at which the curve has arrived. */
 const ARRIVED = 4e-15;
+const EPSILON = 2.220446049250313e-16;
 const MOST_PIECES = 20_000;
 
 /** The track of a closed-form solution up to a horizon, or for ever. */
@@ -108,7 +109,11 @@ class TrackBuilder {
 	private readonly here: Float64Array;
 	private readonly start: Float64Array;
 	private readonly settled: number;
-	private lastTail = Infinity;
+	/** Rounding of each species' values, found where the coefficients stop falling, mol/L. */
+	private readonly floor: Float64Array;
+	/** Last coefficients before the piece was halved. */
+	private readonly before: Float64Array;
+	private total = 0;
 
 	constructor(
 		private readonly trajectory: Trajectory,
@@ -126,6 +131,8 @@ class TrackBuilder {
 		this.values = new Float64Array(SIZE * this.n);
 		this.piece = new Float64Array(SIZE * this.n);
 		this.running = new Float64Array(this.n);
+		this.floor = new Float64Array(this.n);
+		this.before = new Float64Array(this.n).fill(Infinity);
 		this.settled = options.settledS ?? Infinity;
 		this.start = trajectory.at(0).slice();
 		this.here = this.start.slice();
@@ -169,7 +176,6 @@ class TrackBuilder {
 			this.keep(right);
 			if (end === this.horizon && this.final && (this.arrived() || right >= this.settled)) return true;
 			if (splits > 0) splits--;
-			this.lastTail = Infinity;
 			left = right;
 			width = Math.min(2 * width, Math.max(right - start, width));
 		}
@@ -182,28 +188,32 @@ class TrackBuilder {
 		return this.breaks.length > 0 ? finite / 8 : finite;
 	}
 
-	/** Interpolates one piece; true when the last coefficients are down to rounding, or stop falling when it is halved. */
+	/** Interpolates one piece; true when the last coefficients of every species are down to rounding. */
 	private resolve(left: number, right: number): boolean {
-		const { n, values, piece, running } = this;
+		const { n, values, piece, running, floor, before } = this;
 		const middle = (left + right) / 2;
 		const half = (right - left) / 2;
 		for (let j = 0; j < SIZE; j++) {
 			const t = j === 0 ? right : j === DEGREE ? left : middle + half * NODES[j];
 			this.trajectory.at(t, values.subarray(j * n, (j + 1) * n));
 		}
-		let tail = 0;
+		let resolved = true;
 		for (let i = 0; i < n; i++) {
 			interpolate(values, i, n, piece, i * SIZE);
 			let largest = running[i];
 			for (let j = 0; j < SIZE; j++) largest = Math.max(largest, Math.abs(values[j * n + i]));
-			if (largest === 0) continue;
+			this.total = Math.max(this.total, largest);
 			const end = i * SIZE + DEGREE;
 			const last = Math.abs(piece[end]) + Math.abs(piece[end - 1]) + Math.abs(piece[end - 2]);
-			tail = Math.max(tail, last / largest);
+			if (last > Math.max(RESOLVED * largest, floor[i])) {
+				resolved = false;
+				// Halving a smooth curve takes 2^18 off its last coefficients; what stays is the trajectory's own rounding.
+				const rounding = last > before[i] / 4 && (last < 1e-11 * largest || last < 1e-13 * this.total);
+				if (rounding) floor[i] = 2 * last;
+			}
+			before[i] = last;
 		}
-		const stuck = tail < 1e-11 && tail > this.lastTail / 4;
-		this.lastTail = tail;
-		return tail <= RESOLVED || stuck;
+		return resolved;
 	}
 
 	private keep(right: number): void {
@@ -217,7 +227,8 @@ class TrackBuilder {
 		this.store.set(piece, at);
 		for (let i = 0; i < n; i++) {
 			for (let j = 0; j < SIZE; j++) running[i] = Math.max(running[i], Math.abs(values[j * n + i]));
-			this.scaleStore.push(running[i]);
+			this.scaleStore.push(Math.max(running[i], this.floor[i] / (4 * EPSILON)));
+			this.before[i] = Infinity;
 			this.here[i] = values[i];
 		}
 		this.edges.push(right);

@@ -1,5 +1,5 @@
 import { describe, expect, it } from 'vitest';
-import { firstFormRequest, type FirstFormRequestInput } from '../../schemas/window';
+import { firstFormRequest, type FirstFormRequestInput, type FirstFormResult } from '../../schemas/window';
 import type { SchemeContent } from '../../schemas/scheme';
 import { studentQuantile } from '../fit/distributions';
 import { firstFormWindow, roundTwoDigits, WindowRefusal, type FirstFormInput } from './index';
@@ -147,7 +147,10 @@ describe('the window of the invented case A → B → C (40 °C, A NMT 1.0 %, C 
 		expect(JSON.stringify(firstFormWindow(input(window, at(40), [30, 50])))).toBe(once);
 		const other = firstFormWindow(input(window, at(40, { seed: 2 }), [30, 50]));
 		expect(JSON.stringify(other)).not.toBe(once);
-		expect(other.hold!.robust!.to! / JSON.parse(once).hold.robust.to).toBeCloseTo(1, 2);
+		expect(other.hold!.robust!.to! / (JSON.parse(once) as FirstFormResult).hold!.robust!.to!).toBeCloseTo(
+			1,
+			2
+		);
 	});
 });
 

@@ -20,7 +20,7 @@ export interface NetworkParameter {
 	fitted: number;
 	/** Standard error on the scale of estimation; 0 where not fitted, Infinity where the data do not determine it. */
 	error: number;
-	set(network: Network, value: number): void;
+	set: (network: Network, value: number) => void;
 }
 
 export interface FittedNetwork {
@@ -35,7 +35,7 @@ export interface FittedNetwork {
 	/** Ids of tied parameters whose leader is not known. */
 	untied: string[];
 	/** Sets all varied parameters (and what is tied to them) in a network of the same scheme. */
-	apply(network: Network, values: ArrayLike<number>): void;
+	apply: (network: Network, values: ArrayLike<number>) => void;
 }
 
 /** @throws WindowRefusal when scheme and report do not belong together. */
@@ -120,7 +120,7 @@ function readParameter(
 interface Place {
 	dimension: Dimension;
 	scale: 'ln' | 'linear';
-	set(network: Network, value: number): void;
+	set: (network: Network, value: number) => void;
 }
 
 function placeOf(stepId: string, direction: 'forward' | 'reverse', name: string): Place | null {
