@@ -1,0 +1,50 @@
+import type { SpeciesContent } from '$lib/schemas/scheme';
+import type { GridWorkbook, Proposal, SavedMapping, Settlement } from '$lib/schemas/sheet';
+import type { SheetWork, TableWork } from '$lib/schemas/sheet-work';
+import { propose, settle } from '$lib/assay';
+
+/** What the reader needs to know beside the sheet itself. */
+export interface Surroundings {
+	species: SpeciesContent[];
+	saved: SavedMapping[];
+}
+
+export interface ExamineTask extends Surroundings {
+	workbook: GridWorkbook;
+	work: SheetWork;
+	/** Only these tables are settled; all, when left out. */
+	only?: string[];
+}
+
+export interface Examined {
+	proposal: Proposal;
+	settlements: Record<string, Settlement>;
+}
+
+/** Work on a table, or what the reader proposes where nobody has worked on it yet. */
+export function workOn(proposal: Proposal, work: SheetWork, key: string): TableWork | null {
+	const own = work.tables[key];
+	if (own) return own;
+	const table = proposal.tables.find((t) => t.id === key);
+	return table ? { mapping: table.mapping, answers: {}, corrections: [], name: '' } : null;
+}
+
+/** Proposal and settlement of a sheet; pure, in a request or in a worker alike. */
+export function examineHere(task: ExamineTask): Examined {
+	const { workbook, species, saved, work } = task;
+	const proposal = propose(workbook, species, { saved });
+	const keys = task.only ?? [...new Set([...proposal.tables.map((t) => t.id), ...Object.keys(work.tables)])];
+	const settlements: Examined['settlements'] = {};
+	for (const key of keys) {
+		const own = workOn(proposal, work, key);
+		if (own)
+			settlements[key] = settle({
+				workbook,
+				species,
+				mapping: own.mapping,
+				answers: own.answers,
+				corrections: own.corrections
+			});
+	}
+	return { proposal, settlements };
+}

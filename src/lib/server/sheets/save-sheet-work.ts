@@ -1,0 +1,50 @@
+import type { GridWorkbook } from '$lib/schemas/sheet';
+import { sheetWorkSchema, type SheetWork } from '$lib/schemas/sheet-work';
+import { write } from '../database';
+import { RunRevision, Sheet } from '../database/models';
+import { versionChanged } from '../errors';
+import type { Actor } from '../policy';
+import { examine } from './examine';
+import { findSheet } from './find';
+import { surroundingsOf } from './surroundings';
+import { workOf, type StoredWork } from './work';
+
+export interface SaveSheetWorkInput {
+	sheetId: string;
+	version: number;
+	work: unknown;
+}
+
+/** Questions left open over the tables that no run has been made of (`done`: nor is about to be). */
+export async function countOpen(sheet: Sheet, work: SheetWork, done: string[] = []): Promise<number> {
+	const surroundings = await surroundingsOf(sheet.studyId, sheet.groupId);
+	const workbook = sheet.reading as GridWorkbook;
+	const { settlements } = await examine({ workbook, work, ...surroundings });
+	const confirmed = await RunRevision.findAll({
+		where: { sheetId: sheet.id },
+		attributes: ['id', 'tableKey']
+	});
+	const settled = new Set([...done, ...confirmed.map((r) => r.tableKey)]);
+	return Object.entries(settlements)
+		.filter(([key]) => !settled.has(key))
+		.reduce((sum, [, settlement]) => sum + settlement.open, 0);
+}
+
+/** Keeps mapping, answers and corrections beside the sheet; nothing of it touches the file as received. */
+export async function saveSheetWork(
+	actor: Actor,
+	input: SaveSheetWorkInput
+): Promise<{ version: number; savedAt: Date; open: number }> {
+	const sheet = await findSheet(actor, input.sheetId, 'sheet.upload', { with: ['reading'] });
+	const work = sheetWorkSchema.parse(input.work);
+	const stored: StoredWork = { ...work, open: await countOpen(sheet, work) };
+	return write(async (tx) => {
+		const now = await findSheet(actor, input.sheetId, 'sheet.upload', { tx });
+		const [count] = await Sheet.update(
+			{ work: stored, version: input.version + 1 },
+			{ where: { id: now.id, version: input.version }, transaction: tx }
+		);
+		if (count !== 1) throw versionChanged({ version: now.version, work: workOf(now.work) });
+		return { version: input.version + 1, savedAt: new Date(), open: stored.open };
+	});
+}
