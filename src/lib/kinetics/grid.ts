@@ -111,13 +111,24 @@ function sumTerms(
 	const m1 = first > 1 ? modes[1] : 0;
 	const m2 = first > 2 ? modes[2] : 0;
 	let lowest = Infinity;
-	for (let j = 0, to = offset; j < rows; j++, to += stride) {
-		let value = constant + a0 * fine[m0 + j];
-		if (first > 1) value += a1 * fine[m1 + j];
-		if (first > 2) value += a2 * fine[m2 + j];
-		out[to] = value;
-		if (value < lowest) lowest = value;
-	}
+	if (first === 3)
+		for (let j = 0, to = offset; j < rows; j++, to += stride) {
+			const value = constant + a0 * fine[m0 + j] + a1 * fine[m1 + j] + a2 * fine[m2 + j];
+			out[to] = value;
+			if (value < lowest) lowest = value;
+		}
+	else if (first === 2)
+		for (let j = 0, to = offset; j < rows; j++, to += stride) {
+			const value = constant + a0 * fine[m0 + j] + a1 * fine[m1 + j];
+			out[to] = value;
+			if (value < lowest) lowest = value;
+		}
+	else
+		for (let j = 0, to = offset; j < rows; j++, to += stride) {
+			const value = constant + a0 * fine[m0 + j];
+			out[to] = value;
+			if (value < lowest) lowest = value;
+		}
 	for (let i = 3; i < terms; i += 2)
 		lowest = addTerms(fine, modes, scaled, i, Math.min(2, terms - i), column);
 	return lowest;
