@@ -97,7 +97,7 @@ function ofLimit(sign: string, rest: string, text: string, decimal: Decimal | nu
 	const kind = /[<≤＜&]/.test(sign) ? 'below' : 'above';
 	const number = readValueText(rest, decimal);
 	if (number.kind === 'undecided') return { kind: 'undecided', text };
-	let limit: number | null = null;
+	let limit: number;
 	if (number.kind === 'number') limit = number.value;
 	else if (number.kind === 'with unit' && number.unit.of !== 'time') return { ...number, text, kind: 'text' };
 	else return { kind: 'text', text };

@@ -13,7 +13,7 @@
 import type { AssayValue, ChannelContent } from '$lib/schemas/run';
 import type { FindingOption, ValueUnit } from '$lib/schemas/sheet';
 import { isFitted, type Quantity } from '$lib/schemas/quantity';
-import { channelName, headerCell, nameOf, type Channel } from './channels';
+import { channelKey, channelName, headerCell, nameOf, type Channel } from './channels';
 import { figure, someOf, type Examination } from './examination';
 import { convertUnit } from './limits';
 import type { Point } from './timepoints';
@@ -119,7 +119,7 @@ function molarMass(ex: Examination, channel: Channel): number | null {
 		rule: 'B4',
 		level: 'ask',
 		cells: [headerCell(ex, channel.column)],
-		key: `molar-mass-${channel.id}`,
+		key: `molar-mass-${channelKey(channel)}`,
 		found: `${channelName(channel)} in ${channel.unit}`,
 		expected: differ ? 'one molar mass for the sum' : `the molar mass of ${nameOf(channel.weights)}`,
 		message: differ
@@ -344,7 +344,7 @@ function signalChannel(
 		rule: 'B4',
 		level: 'ask',
 		cells: [headerCell(ex, channel.column)],
-		key: `response-${channel.id}`,
+		key: `response-${channelKey(channel)}`,
 		found: `${channelName(channel)}: a signal without calibration`,
 		expected: 'its response factor, or the wish to let the fit find it',
 		message: `${channelName(channel)} is a signal in arbitrary units. Is its response factor known, or shall the fit find it?`,
@@ -411,7 +411,7 @@ function standardChannel(
 			rule: 'B4',
 			level: 'ask',
 			cells: [headerCell(ex, channel.column)],
-			key: `standard-${channel.id}`,
+			key: `standard-${channelKey(channel)}`,
 			found: `${channelName(channel)}: a signal beside an internal standard`,
 			expected: 'the concentration of the standard and the relative response',
 			message: `${channelName(channel)} is to be counted against the internal standard. Give what is needed for it.`,

@@ -2,7 +2,7 @@
 import type { AssayValue } from '$lib/schemas/run';
 import type { FindingOption, ValueField } from '$lib/schemas/sheet';
 import type { CellReading } from './cells';
-import type { Channel } from './channels';
+import { channelKey, type Channel } from './channels';
 import { figure, plural, someOf, type Examination } from './examination';
 import { suggestLimit, type LimitKind, type StatedLimits } from './limits';
 import type { Sample } from './samples';
@@ -62,7 +62,7 @@ function settleBare(
 			rule: 'B8',
 			level: 'ask',
 			cells: cellsOf(bare),
-			key: `${kind}-${bare[0].cell.replace(/\d+$/, '')}-${channel.id}`,
+			key: `${kind}-${channelKey(channel)}`,
 			found: bare[0].reading.kind === 'below' ? `"${bare[0].reading.text}"` : '',
 			expected: `the ${name} of ${channel.label}`,
 			message: `What is the ${name} of ${channel.label}? Needed for ${plural(bare.length, 'value')}.`,
@@ -173,7 +173,7 @@ export function askTrace(ex: Examination, channel: Channel, spots: Spot[], limit
 		rule: 'B10',
 		level: 'ask',
 		cells: cellsOf(trace),
-		key: `trace-${trace[0].cell.replace(/\d+$/, '')}-${channel.id}`,
+		key: `trace-${channelKey(channel)}`,
 		found: `"${text}"`,
 		expected: 'a trace (between LOD and LOQ), missing, or a retention time',
 		message: `"${text}" in ${someOf(cellsOf(trace))}: a trace between LOD and LOQ, or missing? (It may also stand for a retention time.)`,

@@ -28,7 +28,7 @@ export function settleValues(
 	channels: Channel[],
 	limits: StatedLimits
 ): Values {
-	const values: Values = new Map(samples.map((s) => [s, new Map()]));
+	const values: Values = new Map(samples.map((s) => [s, new Map<string, AssayValue>()]));
 	const spots = channels.map((channel) => ({ channel, spots: spotsOf(ex, samples, channel, values) }));
 	noteFormulas(
 		ex,
