@@ -189,7 +189,7 @@ class SheetReader {
 		let style = styles.index[this.format] ?? 0;
 		let flags = this.formula ? CELL.formula : 0;
 		if (styles.quoted.has(this.format)) flags |= CELL.quoted;
-		let value: CellValue = null;
+		let value: CellValue;
 		if (this.type === 's') value = this.shared(strings);
 		else if (this.type === 'str' || this.type === 'inlineStr') value = this.value.slice(0, CELL_TEXT);
 		else if (this.value === '') value = null;
