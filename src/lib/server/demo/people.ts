@@ -19,7 +19,12 @@ interface DemoPerson {
 export const GROUPS = { route: 'Route Development', kilo: 'Kilo Lab', pilot: 'Pilot Hall' } as const;
 
 export const PEOPLE: DemoPerson[] = [
-	{ key: 'chemist', name: 'Mira Okafor', email: 'mira.okafor@kilnlane.example', roles: [[GROUPS.route, 'chemist']] },
+	{
+		key: 'chemist',
+		name: 'Mira Okafor',
+		email: 'mira.okafor@kilnlane.example',
+		roles: [[GROUPS.route, 'chemist']]
+	},
 	{
 		key: 'lead',
 		name: 'Tunde Adeyemi',
@@ -62,7 +67,12 @@ async function createGroup(tx: Tx, name: string): Promise<Group> {
 	return group;
 }
 
-async function createPerson(tx: Tx, person: DemoPerson, passwordHash: string, groups: Map<string, Group>): Promise<void> {
+async function createPerson(
+	tx: Tx,
+	person: DemoPerson,
+	passwordHash: string,
+	groups: Map<string, Group>
+): Promise<void> {
 	const { name, email, siteAdmin = false } = person;
 	const user = await User.create({ name, email, siteAdmin, passwordHash }, { transaction: tx });
 	await appendAudit(tx, SYSTEM, {

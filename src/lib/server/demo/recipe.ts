@@ -1,0 +1,99 @@
+import type { RecipeContent } from '$lib/schemas/recipe';
+import { createRecipe } from '../recipes/create-recipe';
+import { readRecipe } from '../recipes/read-recipe';
+import { saveRecipe } from '../recipes/save-recipe';
+import { shareRecipe } from '../recipes/share-recipe';
+import { submitRecipe } from '../recipes/submit-recipe';
+import { validateRecipe } from '../recipes/validate-recipe';
+import { computeWindow } from '../windows/compute-window';
+import { DEMO_PASSWORD } from './people';
+import type { Cast } from './ring-closure';
+
+interface Basis {
+	studyId: string;
+	fitId: string;
+	confirmationRunId: string;
+}
+
+const CHARGES: Record<string, Partial<RecipeContent['charges'][number]>> = {
+	A: { material: 'HX-14', assayPercent: 98.5, tolerancePercent: 1 },
+	solvent: { material: 'solvent QS-2 (invented)', densityKgPerL: 0.87, tolerancePercent: 2 }
+};
+
+/** What the chemist fills in beside what fit, window and study have put there already. All of it is invented. */
+function complete(content: RecipeContent, confirmationRunId: string): RecipeContent {
+	return {
+		...content,
+		charges: content.charges.map((c) => ({
+			...c,
+			...CHARGES[c.id === 'solvent' ? 'solvent' : (c.species ?? '')]
+		})),
+		equipment: [
+			{ id: 'vessel', text: 'jacketed vessel, 630 L or more, rated for the solvent at 60 °C' },
+			{ id: 'stirrer', text: 'agitation at 150 1/min or more; internal temperature logged every minute' }
+		],
+		ipc: [
+			{
+				id: 'ipc1',
+				operation: null,
+				atMin: 300,
+				test: 'A and C by the group’s assay method',
+				limit: 'A NMT 2 % of charge, C NLT 60 % of charge',
+				lagMin: 45,
+				ifNotMet: 'sample again after 30 min; tell the group lead if the hold would pass its end'
+			}
+		],
+		hazards: [
+			{
+				id: 'sds1',
+				product: 'solvent QS-2 (invented)',
+				supplier: 'Invented Supplies',
+				revisionDate: '2026-03-02',
+				language: 'en',
+				signalWord: 'Danger',
+				statements: [{ code: 'H225', text: 'Highly flammable liquid and vapour' }]
+			}
+		],
+		confirmationRunId
+	};
+}
+
+/** A recipe through its whole life: draft, review, validation by a second person, shared with the group that runs it. */
+export async function seedRecipe(cast: Cast, of: Basis): Promise<void> {
+	const { chemist, lead, holderId } = cast;
+	const window = await computeWindow(chemist, {
+		fitId: of.fitId,
+		input: {
+			temperature: { value: 45, unit: 'degC' },
+			charge: { A: { value: 0.5, unit: 'mol/L' } },
+			criteria: [
+				{ species: 'A', relation: 'NMT', limit: 2, unit: '% of charge' },
+				{ species: 'C', relation: 'NLT', limit: 60, unit: '% of charge' }
+			]
+		}
+	});
+	const recipe = await createRecipe(chemist, {
+		studyId: of.studyId,
+		fitId: of.fitId,
+		windowId: window.id,
+		title: 'HX-14 ring closure at 45 °C',
+		scale: { value: 50, unit: 'kg' }
+	});
+	const draft = (await readRecipe(chemist, recipe.id)).shown;
+	const saved = await saveRecipe(chemist, {
+		recipeId: recipe.id,
+		number: 1,
+		version: draft.version,
+		content: complete(draft.content, of.confirmationRunId)
+	});
+	const seen = { recipeId: recipe.id, number: 1, password: DEMO_PASSWORD };
+	await submitRecipe(chemist, { ...seen, version: saved.version, contentHash: saved.contentHash });
+	const inReview = (await readRecipe(lead, recipe.id)).shown;
+	await validateRecipe(lead, {
+		...seen,
+		version: inReview.version,
+		contentHash: inReview.contentHash,
+		comment: 'Run 4 lies where the fit puts it.'
+	});
+	await shareRecipe(lead, { recipeId: recipe.id, number: 1, groupId: holderId });
+}
