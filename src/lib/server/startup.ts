@@ -1,3 +1,4 @@
+import { housekeeping } from './housekeeping';
 import { jobService } from './jobs/service';
 import { mailSender } from './mail/sender';
 
@@ -12,4 +13,4 @@ export interface BackgroundService {
 }
 
 /** Started in this order once the database is open and migrated; stopped in the reverse order. */
-export const BACKGROUND_SERVICES: BackgroundService[] = [mailSender, jobService];
+export const BACKGROUND_SERVICES: BackgroundService[] = [mailSender, jobService, housekeeping];

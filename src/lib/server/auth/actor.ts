@@ -47,3 +47,12 @@ export const asPerson = (user: User): AuditActor => ({
 	memberships: [],
 	siteAdmin: false
 });
+
+/** For the trail: somebody at a public page whom nothing identifies. */
+export const UNKNOWN_PERSON: AuditActor = {
+	userId: null,
+	name: 'Unknown person',
+	source: 'screen',
+	memberships: [],
+	siteAdmin: false
+};

@@ -1,9 +1,9 @@
 import { z } from 'zod';
-import { appendAudit, SYSTEM, type AuditActor } from '../audit/append';
+import { appendAudit } from '../audit/append';
 import { write } from '../database';
 import { User } from '../database/models';
 import { AppError } from '../errors';
-import { asPerson } from './actor';
+import { asPerson, UNKNOWN_PERSON } from './actor';
 import {
 	addressRule,
 	beginAttempt,
@@ -44,7 +44,7 @@ const forTrail = (email: string): string =>
 	z.email().max(254).safeParse(email).success ? email : '(not an e-mail address)';
 
 async function noteFailure(user: User | null, email: string, attempt: Attempt): Promise<void> {
-	const actor: AuditActor = user ? asPerson(user) : { ...SYSTEM, name: 'Unknown person', source: 'screen' };
+	const actor = user ? asPerson(user) : UNKNOWN_PERSON;
 	await write((tx) =>
 		appendAudit(tx, actor, {
 			type: 'person.sign-in-failed',

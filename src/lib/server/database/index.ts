@@ -71,7 +71,8 @@ export async function openDatabase(file: string): Promise<Database> {
 		storage: new SequelizeStorage({ sequelize }),
 		logger: undefined
 	}).up();
-	return { sequelize, write: writeQueue(sequelize), close: () => sequelize.close() };
+	let closing: Promise<void> | undefined;
+	return { sequelize, write: writeQueue(sequelize), close: () => (closing ??= sequelize.close()) };
 }
 
 // One database a process, kept over hot reloads in development.

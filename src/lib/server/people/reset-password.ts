@@ -1,7 +1,7 @@
 import { z } from 'zod';
 import { askResetForm, resetForm } from '$lib/schemas/people';
 import { appendAudit } from '../audit/append';
-import { asPerson } from '../auth/actor';
+import { asPerson, UNKNOWN_PERSON } from '../auth/actor';
 import { addressRule, beginAttempt } from '../auth/attempts';
 import { hashPassword } from '../auth/password';
 import { newSecret, secretHash } from '../auth/secrets';
@@ -21,7 +21,7 @@ const gone = (): AppError =>
 
 /**
  * Asks for a link to set a new password. The answer is the same whether or not there is such a person, and so is
- * the work: one write either way.
+ * the work: one write to disk either way.
  */
 export async function askPasswordReset(
 	input: z.input<typeof askResetForm> & { address: string }
@@ -32,6 +32,12 @@ export async function askPasswordReset(
 	const secret = newSecret();
 	await write(async (tx) => {
 		const user = await User.findOne({ where: { email, disabledAt: null }, transaction: tx });
+		await appendAudit(tx, user ? asPerson(user) : UNKNOWN_PERSON, {
+			type: 'person.password-reset-asked',
+			objectType: 'person',
+			objectId: user?.id ?? null,
+			payload: {}
+		});
 		if (!user) return;
 		const last = await PasswordReset.findOne({
 			where: { userId: user.id },
@@ -43,12 +49,6 @@ export async function askPasswordReset(
 			{ userId: user.id, tokenHash: secretHash(secret), expiresAt: new Date(Date.now() + VALID_MS) },
 			{ transaction: tx }
 		);
-		await appendAudit(tx, asPerson(user), {
-			type: 'person.password-reset-asked',
-			objectType: 'person',
-			objectId: user.id,
-			payload: {}
-		});
 		await queueMail(tx, {
 			to: user.email,
 			subject: 'Set a new password',
