@@ -87,7 +87,7 @@ export class LeastSquaresWorkspace {
 	readonly scale: Float64Array;
 	readonly gradient: Float64Array;
 	readonly free: Int32Array;
-	readonly linear: Float64Array;
+	readonly norms: Float64Array;
 	readonly trust: TrustStep;
 
 	constructor(
@@ -102,7 +102,7 @@ export class LeastSquaresWorkspace {
 		this.scale = new Float64Array(p);
 		this.gradient = new Float64Array(p);
 		this.free = new Int32Array(p);
-		this.linear = new Float64Array(m);
+		this.norms = new Float64Array(p);
 		this.trust = new TrustStep(m, p);
 	}
 }
@@ -207,7 +207,7 @@ class Search {
 		}
 	}
 
-	/** Gradient, free set and optimality at the current point. */
+	/** Gradient, column norms, free set and optimality at the current point. */
 	private measure(): void {
 		const { w, problem } = this;
 		const r = w.residuals[this.current];
@@ -219,9 +219,9 @@ class Search {
 			let dot = 0;
 			for (let i = 0, c = j * problem.m; i < problem.m; i++) dot += jac[c + i] * r[i];
 			w.gradient[j] = dot;
+			const length = (w.norms[j] = norm(jac, j * problem.m, problem.m));
 			if (this.held(j, dot)) continue;
 			w.free[this.freeCount++] = j;
-			const length = norm(jac, j * problem.m, problem.m);
 			if (length > 0 && size > 0)
 				this.optimality = Math.max(this.optimality, Math.abs(dot) / (length * size));
 		}
@@ -236,9 +236,7 @@ class Search {
 	/** D grows to the largest column norms; the first radius is set from D x. */
 	private rescale(): void {
 		const { w, problem } = this;
-		const jac = w.jacobians[this.current];
-		for (let j = 0; j < problem.p; j++)
-			w.scale[j] = Math.max(w.scale[j], norm(jac, j * problem.m, problem.m));
+		for (let j = 0; j < problem.p; j++) w.scale[j] = Math.max(w.scale[j], w.norms[j]);
 		if (this.iterations > 1) return;
 		const factor = this.options.factor ?? 100;
 		this.radius = factor * (this.scaledNorm(w.x) || 1);
@@ -273,16 +271,9 @@ class Search {
 	/** (‖r‖² − ‖r + J p‖²)/‖r‖², without cancellation where the step is the solver's own. */
 	private predict(length: number): void {
 		const { w, problem } = this;
-		const jac = w.jacobians[this.current];
-		w.linear.fill(0);
 		let slope = 0;
-		for (let j = 0; j < problem.p; j++) {
-			const s = w.step[j];
-			if (s === 0) continue;
-			slope += s * w.gradient[j];
-			for (let i = 0, c = j * problem.m; i < problem.m; i++) w.linear[i] += s * jac[c + i];
-		}
-		const along = norm(w.linear) ** 2;
+		for (let j = 0; j < problem.p; j++) slope += w.step[j] * w.gradient[j];
+		const along = w.trust.lengthAlong(w.step) ** 2;
 		this.predicted = this.clipped
 			? (-2 * slope - along) / this.ssr
 			: (along + 2 * this.mu * length * length) / this.ssr;

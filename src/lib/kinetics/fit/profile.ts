@@ -3,8 +3,8 @@
  *
  *     τ(θ) = √((SSR(θ) − SSR_min)/s²),  limits where τ = t(n − p)   ⇔   SSR(θ) = SSR_min (1 + F(1, n − p)/(n − p))
  *
- * SSR(θ) is an exact re-optimisation, not a table to be interpolated. τ is nearly linear in θ, so a secant iteration kept in a
- * bracket finds the limit in a few steps; each starts from the re-optimised parameters of the step before, moved along the
+ * SSR(θ) is an exact re-optimisation, not a table to be interpolated. τ is nearly linear in θ, and its slope is known exactly
+ * (J_jᵀr/(s²τ) at a constrained optimum), so that Newton steps kept in a bracket find the limit in a few; each starts from the re-optimised parameters of the step before, moved along the
  * covariance. Where τ never reaches t before the bounds of the search, the side is open: the data do not limit the parameter
  * there, and no number is given.
  *
@@ -59,6 +59,9 @@ export function profileIntervals(input: ProfileInput): ProfileOutcome {
 	return { intervals, better: profiler.better, evaluations: profiler.evaluations };
 }
 
+/** Distance of τ from t, relative, at which the last Newton step is taken on trust: its error is the square of this. */
+const CLOSE = 3e-5;
+
 /** Sums of squares this much below the reported minimum mean that it was not the minimum. */
 const BETTER = 1e-6;
 
@@ -71,6 +74,8 @@ export class Profiler {
 	private readonly upper: Float64Array;
 	private readonly start: Float64Array;
 	private readonly t: number;
+	/** dτ/dθ of the last evaluation. */
+	private slope = NaN;
 	/** The re-optimised parameters of the last evaluation. */
 	readonly last: Float64Array;
 
@@ -93,53 +98,41 @@ export class Profiler {
 		const error = this.input.uncertainty.errors[j];
 		const span = Math.abs(box.to[j] - box.from[j]) || 1;
 		let step = Number.isFinite(error) && error > 0 ? Math.min(this.t * error, 0.5 * span) : 0.05 * span;
-		let inside = { value: best.x[j], tau: 0 };
+		let inside = best.x[j];
 		this.last.set(best.x);
 		for (let k = 0; k < 60; k++) {
-			const reach = inside.value + sense * step;
+			const reach = inside + sense * step;
 			const value = sense * (reach - bound) >= 0 ? bound : reach;
-			const tau = this.tau(j, value, inside.value);
+			const tau = this.tau(j, value, inside);
 			if (this.better) return null;
-			if (tau >= this.t) return this.close(j, inside, { value, tau });
+			if (tau >= this.t * (1 - CLOSE)) return this.close(j, inside, value, tau, bound);
 			if (value === bound) return null;
-			const rate = (tau - inside.tau) / step;
-			inside = { value, tau };
-			// Aim a little beyond the crossing that a straight τ foretells; where τ flattens, stride out.
-			step = rate > 0 ? Math.min((1.15 * (this.t - tau)) / rate, 4 * step) : 4 * step;
-			step = Math.max(step, 1e-3 * span);
+			inside = value;
+			// Aim where the slope of τ foretells the crossing; where τ flattens, stride out.
+			const newton = sense * this.slope > 0 ? (this.t - tau) / Math.abs(this.slope) : Infinity;
+			step = Math.max(Math.min(1.02 * newton, 4 * step), 1e-3 * span);
 		}
 		return null;
 	}
 
-	/** Root of τ − t between a point inside and one outside: secant steps (Illinois) kept in the bracket. */
-	private close(
-		j: number,
-		inside: { value: number; tau: number },
-		outside: { value: number; tau: number }
-	): number | null {
-		let { value: a } = inside;
-		let { value: b } = outside;
-		let fa = inside.tau - this.t;
-		let fb = outside.tau - this.t;
-		const scale = Math.max(Math.abs(b - this.input.best.x[j]), 1e-300);
-		let at = b;
+	/** Root of τ − t: Newton steps with the exact slope, kept between a point inside and one outside. */
+	private close(j: number, inside: number, outside: number, tau: number, bound: number): number {
+		let [a, b] = [inside, outside];
+		let value = outside;
 		for (let k = 0; k < 40; k++) {
-			if (Math.abs(b - a) <= 1e-9 * scale) break;
-			let next = b - (fb * (b - a)) / (fb - fa);
+			if (tau < this.t) a = value;
+			else b = value;
+			let next = value + (this.t - tau) / this.slope;
+			// Close enough for one last Newton step to square the error away.
+			if (Math.abs(tau - this.t) <= CLOSE * this.t && Number.isFinite(next))
+				return Math.abs(next - inside) > Math.abs(bound - inside) ? bound : next;
 			if (!(next > Math.min(a, b) && next < Math.max(a, b))) next = 0.5 * (a + b);
-			const tau = this.tau(j, next, at);
-			if (this.better) return null;
-			at = next;
-			const f = tau - this.t;
-			if (Math.abs(f) <= 1e-9 * this.t) return next;
-			if (f * fb < 0) {
-				a = b;
-				fa = fb;
-			} else fa *= 0.5;
-			b = next;
-			fb = f;
+			if (Math.abs(b - a) <= 1e-12 * Math.max(Math.abs(a), Math.abs(b))) return next;
+			tau = this.tau(j, next, value);
+			if (this.better) return value;
+			value = next;
 		}
-		return at;
+		return value;
 	}
 
 	/** τ at a value of parameter j, from the last re-optimised point. */
@@ -148,7 +141,10 @@ export class Profiler {
 		const ssr = this.reoptimise(j, value, previous);
 		if (ssr < best.ssr * (1 - BETTER)) this.better = this.last.slice();
 		const s = uncertainty.s ?? NaN;
-		return Math.sqrt(Math.max(0, ssr - best.ssr)) / s;
+		const tau = Math.sqrt(Math.max(0, ssr - best.ssr)) / s;
+		// At a constrained optimum dSSR/dθ is the partial derivative 2 J_jᵀ r alone.
+		this.slope = this.workspace.gradient[j] / (s * s * tau);
+		return tau;
 	}
 
 	private reoptimise(j: number, value: number, previous: number): number {
@@ -167,8 +163,8 @@ export class Profiler {
 		const options = {
 			lower: this.lower,
 			upper: this.upper,
-			ftol: 1e-10,
-			xtol: 1e-8,
+			ftol: 1e-11,
+			xtol: 1e-6,
 			maxEvaluations: 150,
 			factor: 10,
 			cancelled

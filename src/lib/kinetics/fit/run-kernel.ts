@@ -10,7 +10,8 @@
  * | symbol | variable |
  * | ------ | -------- |
  * | φ | `phi` |
- * | Σ_b φ_ab V_jb y_b | `inner` (one row per reactant) |
+ * | V_jb y_b | `reach` (one row per reactant j) |
+ * | Σ_b φ_ab V_jb y_b | `inner` |
  *
  * Sources: Daleckii & Krein (1965); Van Loan, IEEE Trans. Autom. Control 23 (1978) 395; McCurdy, Ng & Parlett, Math. Comp.
  * 43 (1984) 501 (divided differences of the exponential).
@@ -36,6 +37,7 @@ export class RunKernel {
 	private readonly e: Float64Array;
 	private readonly phi: Float64Array;
 	private readonly inner: Float64Array;
+	private readonly reach: Float64Array;
 	private readonly w: Float64Array;
 	private readonly reactants: number[];
 	private readonly reactantOf: number[];
@@ -67,6 +69,7 @@ export class RunKernel {
 		this.e = new Float64Array(n);
 		this.phi = new Float64Array(n * n);
 		this.inner = new Float64Array(this.reactants.length * n);
+		this.reach = new Float64Array(this.reactants.length * n);
 		this.w = new Float64Array(rates.length * n);
 	}
 
@@ -98,6 +101,8 @@ export class RunKernel {
 				w[p * n + a] = k * sum;
 			}
 		}
+		for (let r = 0; r < this.reactants.length; r++)
+			for (let b = 0; b < n; b++) this.reach[r * n + b] = basis.vectors[b * n + this.reactants[r]] * y[b];
 		return this.consistent(charge);
 	}
 
@@ -130,7 +135,7 @@ export class RunKernel {
 					const gap = rates[a] - rates[b];
 					const x = gap * t;
 					const value =
-						x === 0 ? t * e[b] : x < 0.7 && x > -0.7 ? (e[b] * Math.expm1(x)) / gap : (e[a] - e[b]) / gap;
+						x === 0 ? t * e[b] : x < 0.05 && x > -0.05 ? (e[b] * Math.expm1(x)) / gap : (e[a] - e[b]) / gap;
 					phi[a * n + b] = phi[b * n + a] = value;
 				}
 			}
@@ -140,13 +145,12 @@ export class RunKernel {
 	}
 
 	private rateDerivativesAt(k: number): void {
-		const { n, phi, y, inner, w, times, rateDerivatives: out, reactants, reactantOf } = this;
+		const { n, phi, reach, inner, w, times, rateDerivatives: out, reactants, reactantOf } = this;
 		const { vectors } = this.basis;
 		for (let r = 0; r < reactants.length; r++) {
-			const j = reactants[r];
 			for (let a = 0; a < n; a++) {
 				let sum = 0;
-				for (let b = 0; b < n; b++) sum += phi[a * n + b] * vectors[b * n + j] * y[b];
+				for (let b = 0; b < n; b++) sum += phi[a * n + b] * reach[r * n + b];
 				inner[r * n + a] = sum;
 			}
 		}

@@ -58,7 +58,7 @@ export function searchMinima(
 		const rough = leastSquares(
 			model,
 			start,
-			{ ...common, ftol: 1e-8, xtol: 1e-5, maxEvaluations: 120, factor: 10 },
+			{ ...common, ftol: 1e-6, xtol: 1e-4, maxEvaluations: 120, factor: 10 },
 			workspace
 		);
 		evaluations += rough.evaluations;

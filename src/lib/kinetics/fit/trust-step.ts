@@ -86,6 +86,18 @@ export class TrustStep {
 		return mu;
 	}
 
+	/** ‖J s‖ for a step over all parameters that moves free ones only, from the triangle. */
+	lengthAlong(s: Float64Array): number {
+		const { n, r } = this;
+		let sum = 0;
+		for (let i = 0; i < n; i++) {
+			let row = 0;
+			for (let j = i; j < n; j++) row += r[j * n + i] * s[this.free[this.pivot[j]]];
+			sum += row * row;
+		}
+		return Math.sqrt(sum);
+	}
+
 	private scaledLength(): number {
 		let sum = 0;
 		for (let k = 0; k < this.n; k++) sum += (this.d[k] * this.p[k]) ** 2;
