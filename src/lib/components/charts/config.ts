@@ -85,7 +85,7 @@ function yRange(series: ChartSeries[], view: ViewOptions): { min: number; max: n
 	}
 	// A curve that ends a hair below zero by rounding must not tip the axis.
 	const min = low < -0.02 * high ? -roundUp(-low) : 0;
-	return { min, max: roundUp(high * 1.02) };
+	return { min, max: roundUp(high) };
 }
 
 function xRange(series: ChartSeries[], view: ViewOptions): { min: number; max: number } {
@@ -126,7 +126,7 @@ export function chartConfig(layer: Layer, view: ViewOptions): ChartConfiguration
 			events: [],
 			parsing: false,
 			normalized: true,
-			layout: { padding: { top: 26, right: view.labelRoom, left: 0, bottom: 0 } },
+			layout: { padding: { top: 30, right: view.labelRoom, left: 0, bottom: 0 } },
 			scales: {
 				x: {
 					type: view.logX ? 'logarithmic' : 'linear',

@@ -28,6 +28,15 @@ export interface EndLabel {
 	colour: string;
 }
 
+/** Value at the end of a line, to a thousandth of a linear axis; three digits on a logarithmic one. */
+export function endValue(value: number, axisMax: number, logarithmic: boolean): string {
+	if (logarithmic || !(axisMax > 0)) return significant(value, 3);
+	const decimals = Math.max(0, 2 - Math.floor(Math.log10(axisMax)));
+	if (decimals > 5) return significant(value, 3);
+	const text = value.toFixed(decimals);
+	return Number(text) === 0 ? text.replace('-', '') : text.replace('-', '−');
+}
+
 /** Place of the label at the end of each line, with no two over each other. */
 export function endLabels(chart: Chart, layer: Layer): EndLabel[] {
 	const { x, y } = chart.scales;
@@ -48,7 +57,7 @@ export function endLabels(chart: Chart, layer: Layer): EndLabel[] {
 	const placed = spreadLabels(lines, LABEL_GAP, chart.chartArea.top, chart.chartArea.bottom);
 	return ends.map((e, i) => ({
 		text: e.s.label,
-		value: significant(e.end.y, 3),
+		value: endValue(e.end.y, y.max, chart.options.scales?.y?.type === 'logarithmic'),
 		x: Math.min(chart.chartArea.right, x.getPixelForValue(e.end.x)) + 12,
 		y: placed[i],
 		lineY: lines[i],
@@ -167,7 +176,7 @@ function drawUnits(chart: Chart, layer: Layer) {
 	ctx.font = `400 11.5px ${FONT}`;
 	ctx.textBaseline = 'bottom';
 	ctx.textAlign = 'left';
-	ctx.fillText(layer.y.unit, 2, chartArea.top - 6);
+	ctx.fillText(layer.y.unit, 2, chartArea.top - 9);
 	ctx.textBaseline = 'top';
 	ctx.textAlign = 'left';
 	ctx.fillText(layer.x.unit, chartArea.right + 12, chartArea.bottom + 9);

@@ -2,6 +2,11 @@
 import dagre from '@dagrejs/dagre';
 import type { SchemeContent } from '$lib/schemas/scheme';
 
+export interface Point {
+	x: number;
+	y: number;
+}
+
 export interface DrawnNode {
 	id: string;
 	kind: 'species' | 'junction' | 'loss';
@@ -22,6 +27,8 @@ export interface DrawnEdge {
 	/** Whether an arrow head stands at the end. */
 	head: boolean;
 	coefficient: number;
+	/** Where the line ends; a coefficient stands before it. */
+	end: Point;
 	/** Where the words of the step stand; null on the branches after a junction. */
 	label: { x: number; y: number; backY: number } | null;
 }
@@ -37,35 +44,21 @@ export const NODE = { width: 88, height: 50 };
 const LABEL = { width: 104, height: 34 };
 const HALF_GAP = 5;
 
-interface Point {
-	x: number;
-	y: number;
-}
-
-/** A smooth line through the points: straight ends, rounded bends. */
+/** A line through the points that lies flat at each of them, so that words can stand on it. */
 function smooth(points: Point[]): string {
 	const f = (n: number) => Math.round(n * 10) / 10;
-	const [first, ...rest] = points;
-	let d = `M${f(first.x)} ${f(first.y)}`;
-	for (let i = 0; i < rest.length - 1; i++) {
-		const a = rest[i];
-		const b = rest[i + 1];
-		const end = i === rest.length - 2 ? b : { x: (a.x + b.x) / 2, y: (a.y + b.y) / 2 };
-		d += `Q${f(a.x)} ${f(a.y)} ${f(end.x)} ${f(end.y)}`;
+	let d = `M${f(points[0].x)} ${f(points[0].y)}`;
+	for (let i = 1; i < points.length; i++) {
+		const a = points[i - 1];
+		const b = points[i];
+		const half = (b.x - a.x) / 2;
+		if (Math.abs(a.y - b.y) < 0.5) d += `L${f(b.x)} ${f(b.y)}`;
+		else d += `C${f(a.x + half)} ${f(a.y)} ${f(b.x - half)} ${f(b.y)} ${f(b.x)} ${f(b.y)}`;
 	}
-	if (rest.length === 1) d += `L${f(rest[0].x)} ${f(rest[0].y)}`;
 	return d;
 }
 
-/** The line moved sideways, for the two directions of a reversible step. */
-function aside(points: Point[], by: number): Point[] {
-	return points.map((p, i) => {
-		const a = points[Math.max(0, i - 1)];
-		const b = points[Math.min(points.length - 1, i + 1)];
-		const length = Math.hypot(b.x - a.x, b.y - a.y) || 1;
-		return { x: p.x + ((b.y - a.y) / length) * by, y: p.y - ((b.x - a.x) / length) * by };
-	});
-}
+const lowered = (points: Point[], by: number): Point[] => points.map((p) => ({ x: p.x, y: p.y + by }));
 
 const nodeOf = (id: string) => `species:${id}`;
 
@@ -157,31 +150,83 @@ export function layoutScheme(content: SchemeContent): DrawnScheme {
 		const kind = id.startsWith('species:') ? 'species' : id.startsWith('loss:') ? 'loss' : 'junction';
 		return { id, kind, species: kind === 'species' ? id.slice(8) : undefined, x, y, width, height };
 	});
+	const routes = routesOf(graph, lines, new Map(nodes.map((n) => [n.id, n])));
 	const edges = lines.map((line): DrawnEdge => {
-		const laid = graph.edge({ v: line.from, w: line.to, name: line.id }) as {
-			points: Point[];
-			x: number;
-			y: number;
-		};
-		const { points } = laid;
+		const points = routes.get(line.id)!;
+		const laid = graph.edge({ v: line.from, w: line.to, name: line.id }) as Point;
+		const end = points[points.length - 1];
 		return {
 			id: line.id,
 			stepId: line.stepId,
-			path: smooth(line.reversible ? aside(points, HALF_GAP) : points),
-			back: line.reversible ? smooth(aside(points, -HALF_GAP).reverse()) : null,
+			path: smooth(line.reversible ? lowered(points, -HALF_GAP) : points),
+			back: line.reversible ? smooth(lowered(points, HALF_GAP).reverse()) : null,
 			head: line.head,
 			coefficient: line.coefficient,
-			label: line.labelled ? { x: laid.x, y: laid.y - (line.reversible ? 15 : 10), backY: laid.y + 23 } : null
+			end: { x: end.x, y: end.y },
+			label: line.labelled ? { x: laid.x, y: laid.y - (line.reversible ? 13 : 9), backY: laid.y + 22 } : null
 		};
 	});
-	return { nodes, edges, box: boxOf(nodes, edges, graph, lines) };
+	return { nodes, edges, box: boxOf(nodes, edges, routes) };
+}
+
+type Graph = InstanceType<typeof dagre.graphlib.Graph>;
+
+/** Where each line leaves and enters: the side of the species that faces the other, apart from its neighbours. */
+function portsOf(graph: Graph, lines: Line[], nodes: Map<string, DrawnNode>): Map<string, Point> {
+	const sides = new Map<string, { line: Line; end: 'from' | 'to'; y: number }[]>();
+	for (const line of lines)
+		for (const end of ['from', 'to'] as const) {
+			const right = runsRight(line, nodes) === (end === 'from');
+			const key = `${line[end]}|${right ? 'right' : 'left'}`;
+			const { y } = graph.edge({ v: line.from, w: line.to, name: line.id }) as Point;
+			sides.set(key, [...(sides.get(key) ?? []), { line, end, y }]);
+		}
+	const ports = new Map<string, Point>();
+	for (const [key, list] of sides) {
+		const [id, side] = key.split('|');
+		const node = nodes.get(id)!;
+		const gap = node.kind === 'species' ? Math.min(16, (node.height - 14) / Math.max(1, list.length)) : 0;
+		list
+			.sort((a, b) => a.y - b.y)
+			.forEach(({ line, end }, i) =>
+				ports.set(`${line.id}|${end}`, {
+					x: node.x + (side === 'right' ? node.width / 2 : -node.width / 2),
+					y: node.y + (i - (list.length - 1) / 2) * gap
+				})
+			);
+	}
+	return ports;
+}
+
+const runsRight = (line: Line, nodes: Map<string, DrawnNode>): boolean =>
+	nodes.get(line.from)!.x <= nodes.get(line.to)!.x;
+
+function routesOf(graph: Graph, lines: Line[], nodes: Map<string, DrawnNode>): Map<string, Point[]> {
+	const ports = portsOf(graph, lines, nodes);
+	return new Map(
+		lines.map((line) => {
+			const laid = graph.edge({ v: line.from, w: line.to, name: line.id }) as Point & { points: Point[] };
+			const flat = (line.labelled ? LABEL.width / 2 - 4 : 0) * (runsRight(line, nodes) ? 1 : -1);
+			const inner = laid.points.slice(1, -1);
+			const off = (p: Point) => Math.abs(p.x - laid.x);
+			const middle = inner.reduce((best, p, i) => (off(p) < off(inner[best]) ? i : best), 0);
+			const bends = inner.flatMap((p, i) =>
+				i === middle && flat
+					? [
+							{ x: laid.x - flat, y: laid.y },
+							{ x: laid.x + flat, y: laid.y }
+						]
+					: [p]
+			);
+			return [line.id, [ports.get(`${line.id}|from`)!, ...bends, ports.get(`${line.id}|to`)!]];
+		})
+	);
 }
 
 function boxOf(
 	nodes: DrawnNode[],
 	edges: DrawnEdge[],
-	graph: InstanceType<typeof dagre.graphlib.Graph>,
-	lines: Line[]
+	routes: Map<string, Point[]>
 ): [number, number, number, number] {
 	const xs: number[] = [];
 	const ys: number[] = [];
@@ -189,13 +234,11 @@ function boxOf(
 		xs.push(n.x - n.width / 2, n.x + n.width / 2);
 		ys.push(n.y - n.height / 2, n.y + n.height / 2);
 	}
-	for (const line of lines) {
-		const { points } = graph.edge({ v: line.from, w: line.to, name: line.id }) as { points: Point[] };
+	for (const points of routes.values())
 		for (const p of points) {
 			xs.push(p.x);
 			ys.push(p.y - HALF_GAP, p.y + HALF_GAP);
 		}
-	}
 	for (const e of edges)
 		if (e.label) {
 			xs.push(e.label.x - LABEL.width / 2, e.label.x + LABEL.width / 2);

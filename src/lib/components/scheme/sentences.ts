@@ -1,5 +1,6 @@
 /** Rate constants in words, so that a wrong unit is heard before it is used. */
 import { duration, roundToError, significant } from '$lib/client/numbers';
+import { componentsOf } from '$lib/kinetics/components';
 import type { LinearSystem, Mode, Network, RateConstants, Solution, Step } from '$lib/kinetics';
 
 const LN2 = Math.LN2;
@@ -36,9 +37,11 @@ export function inWords(list: readonly string[]): string {
 	return `${list.slice(0, -1).join(', ')} and ${list[list.length - 1]}`;
 }
 
-const VISIBLE = 0.05;
-
-/** Which species move with a mode: "A goes, B comes", or "B and C settle" where neither runs out. */
+/**
+ * What a mode is about: "A goes, B comes", or "B and C settle" for a reversible part.
+ * A mode belongs to the loop (or the one species) that is furthest upstream among those with an amplitude: everything
+ * upstream of it does not know of it, everything downstream merely follows.
+ */
 export function modeWords(network: Network, solution: Solution, mode: Mode): string {
 	const n = network.species.length;
 	const size = Float64Array.from({ length: n }, (_, s) =>
@@ -47,24 +50,51 @@ export function modeWords(network: Network, solution: Solution, mode: Mode): str
 	const largest = Math.max(...size);
 	const total = solution.charge.reduce((sum, c) => sum + c, 0);
 	if (!(largest > 1e-9 * total)) return 'not stirred by this charge';
-	const moving = network.species
-		.map((s, i) => ({ id: s.id, i }))
-		.filter(({ i }) => size[i] >= VISIBLE * largest);
-	const names = moving.map((m) => m.id);
+	const successors = successorsOf(network);
+	const { blocks } = componentsOf(successors);
+	const home = blocks.find((block) => block.some((s) => size[s] > 1e-6 * largest));
+	if (!home) return '';
+	const members = Array.from(home);
+	const names = members.map((s) => network.species[s].id);
 	if (mode.im !== 0) return `${inWords(names)} swing about their end`;
-	if (mode.multiplicity > 1) return `${inWords(names)}, equal rates together`;
-	const first = mode.amplitudes[0];
-	const goes = moving.filter(({ i }) => first[i] > 0);
-	const comes = moving.filter(({ i }) => first[i] < 0).map((m) => m.id);
-	const settles =
-		goes.length > 0 && goes.every(({ i }) => solution.final[i] > 0.01 * total) && comes.length > 0;
-	if (settles) return `${inWords(names)} settle`;
-	const parts: string[] = [];
-	const left = goes.map((m) => m.id);
-	if (left.length) parts.push(`${inWords(left)} ${left.length > 1 ? 'go' : 'goes'}`);
-	if (comes.length) parts.push(`${inWords(comes)} ${comes.length > 1 ? 'come' : 'comes'}`);
-	return parts.join(', ');
+	if (members.length > 1) {
+		const leaks =
+			members.some((s) => successors[s].some((to) => !members.includes(to))) || losesAny(network, names);
+		const slowest = !solution.modes.some(
+			(m) =>
+				m.halfLifeS > mode.halfLifeS &&
+				Number.isFinite(m.halfLifeS) &&
+				members.some((s) => m.amplitudes.some((a) => Math.abs(a[s]) > 1e-6 * largest)) &&
+				blocks.find((block) =>
+					block.some((s) => m.amplitudes.some((a) => Math.abs(a[s]) > 1e-6 * largest))
+				) === home
+		);
+		return leaks && slowest ? `${inWords(names)} go together` : `${inWords(names)} settle`;
+	}
+	const comes = [...new Set(successors[members[0]])].map((s) => network.species[s].id);
+	const rest = mode.multiplicity > 1 ? ', with others as fast' : '';
+	if (comes.length === 0) return `${names[0]} goes${rest}`;
+	return `${names[0]} goes, ${inWords(comes)} ${comes.length > 1 ? 'come' : 'comes'}${rest}`;
 }
+
+function successorsOf(network: Network): number[][] {
+	const index = new Map(network.species.map((s, i) => [s.id, i]));
+	const successors: number[][] = network.species.map(() => []);
+	for (const step of network.steps) {
+		const from = index.get(step.reactant);
+		if (from === undefined) continue;
+		for (const p of step.products) {
+			const to = index.get(p.species);
+			if (to === undefined) continue;
+			successors[from].push(to);
+			if (step.reverse) successors[to].push(from);
+		}
+	}
+	return successors;
+}
+
+const losesAny = (network: Network, names: string[]): boolean =>
+	network.steps.some((step) => step.products.length === 0 && names.includes(step.reactant));
 
 /** "A + B + C stays at 0.500 mol/L." */
 export function totalSentence(name: string, total: number | undefined): string {
