@@ -68,7 +68,8 @@ function numbered(found: number[][], n: number): Components {
 
 /** Components of a linear system's flows; a zero rate or coefficient does not connect. */
 export function components(system: LinearSystem): Components {
-	const successors: number[][] = Array.from({ length: system.n }, () => []);
+	const successors: number[][] = [];
+	for (let i = 0; i < system.n; i++) successors.push([]);
 	for (const { from, to, rate, coefficient } of system.transfers)
 		if (rate > 0 && coefficient > 0 && from !== to) successors[from].push(to);
 	return componentsOf(successors);

@@ -1,14 +1,14 @@
 /**
- * Real simple modes on an equally spaced grid of times: N times cost 2√N exponentials a mode instead of N.
+ * Real simple modes on an equally spaced grid of times: N times cost some 3√N exponentials a mode instead of N.
  *
- *     e^{λ(t₀ + (mB + j)Δ)} = e^{λ(t₀ + mBΔ)} · e^{λjΔ},   B ≈ √N
+ *     e^{λ(t₀ + (mB + j)Δ)} = e^{λ(t₀ + mBΔ)} · e^{λjΔ},   B ≈ 2√N (longer rows cost less than more calls)
  *
  * The first factor is folded into the amplitudes once for B times; what remains a time is a short sum of products, taken
  * species by species over the modes that the species has. The rounding of a product of two exponentials is that of one.
  *
  * | symbol | name here |
  * | --- | --- |
- * | e^{λ_l jΔ} | `fine[l·block + j]` |
+ * | e^{λ_l jΔ} | `fine[l][j]` |
  * | e^{λ_l(t₀ + mBΔ)} | `coarse[l]` |
  */
 import type { ClosedForm } from './closed-form';
@@ -50,13 +50,11 @@ export interface GridTrust {
 export function curvesOnGrid(form: ClosedForm, grid: Grid, trust: GridTrust, out: Float64Array): number[] {
 	const { n, width, amplitudes, re } = form;
 	const { firstS, stepS, count } = grid;
-	const block = Math.ceil(Math.sqrt(count));
-	const fine = new Float64Array(block * width);
-	for (let l = 0; l < width; l++)
-		for (let j = 0; j < block; j++) fine[l * block + j] = re[l] === 0 ? 1 : Math.exp(re[l] * (j * stepS));
+	const block = Math.ceil(2 * Math.sqrt(count));
+	const fine = fineTables(re, stepS, block);
 	const coarse = new Float64Array(width);
-	const modes = new Int32Array(Math.max(width, 4));
-	const scaled = new Float64Array(Math.max(width, 4));
+	const modes = new Int32Array(width);
+	const scaled = new Float64Array(width);
 	const unsure: number[] = [];
 	for (let start = 0; start < count; start += block) {
 		const rows = Math.min(block, count - start);
@@ -70,86 +68,130 @@ export function curvesOnGrid(form: ClosedForm, grid: Grid, trust: GridTrust, out
 				if (amplitude === 0) continue;
 				if (re[l] === 0) constant += amplitude;
 				else {
-					modes[terms] = l * block;
+					modes[terms] = l;
 					scaled[terms++] = amplitude * coarse[l];
 				}
 			}
-			const column = { out, offset: start * n + s, stride: n, rows, constant };
-			const lowest = sumTerms(fine, modes, scaled, terms, column);
+			const lowest = sumTerms(fine, modes, scaled, terms, constant, out, start * n + s, n, rows);
 			if (!(lowest >= trust.trusted[s])) sure = false;
 		}
-		if (!sure) gatherUnsure(form, trust, { fine, coarse, block, start, rows }, out, unsure);
+		if (!sure) gatherUnsure(form, trust, { fine, coarse, start, rows }, out, unsure);
 	}
 	return unsure;
 }
 
-interface Column {
-	out: Float64Array;
-	offset: number;
-	stride: number;
-	rows: number;
-	constant: number;
+/** e^{λ_l jΔ} for j < block, one array a mode. */
+function fineTables(re: Float64Array, stepS: number, block: number): Float64Array[] {
+	const tables: Float64Array[] = [];
+	for (let l = 0; l < re.length; l++) {
+		const table = new Float64Array(block);
+		for (let j = 0; j < block; j++) table[j] = re[l] === 0 ? 1 : Math.exp(re[l] * (j * stepS));
+		tables.push(table);
+	}
+	return tables;
 }
 
 /**
- * out[offset + j·stride] = constant + Σ scaled[i] fine[modes[i] + j], up to three terms at once so that the amplitudes stay in
+ * out[offset + j·stride] = constant + Σ scaled[i] fine[modes[i]][j], three terms at a time so that the amplitudes stay in
  * registers. Returns the smallest value written.
  */
 function sumTerms(
-	fine: Float64Array,
+	fine: Float64Array[],
 	modes: Int32Array,
 	scaled: Float64Array,
 	terms: number,
-	column: Column
+	constant: number,
+	out: Float64Array,
+	offset: number,
+	stride: number,
+	rows: number
 ): number {
-	const { out, offset, stride, rows, constant } = column;
-	const first = Math.min(terms, 3);
-	const a0 = first > 0 ? scaled[0] : 0;
-	const a1 = first > 1 ? scaled[1] : 0;
-	const a2 = first > 2 ? scaled[2] : 0;
-	const m0 = first > 0 ? modes[0] : 0;
-	const m1 = first > 1 ? modes[1] : 0;
-	const m2 = first > 2 ? modes[2] : 0;
-	let lowest = Infinity;
-	if (first === 3)
-		for (let j = 0, to = offset; j < rows; j++, to += stride) {
-			const value = constant + a0 * fine[m0 + j] + a1 * fine[m1 + j] + a2 * fine[m2 + j];
-			out[to] = value;
-			if (value < lowest) lowest = value;
-		}
-	else if (first === 2)
-		for (let j = 0, to = offset; j < rows; j++, to += stride) {
-			const value = constant + a0 * fine[m0 + j] + a1 * fine[m1 + j];
-			out[to] = value;
-			if (value < lowest) lowest = value;
-		}
-	else
-		for (let j = 0, to = offset; j < rows; j++, to += stride) {
-			const value = constant + a0 * fine[m0 + j];
-			out[to] = value;
-			if (value < lowest) lowest = value;
-		}
-	for (let i = 3; i < terms; i += 2)
-		lowest = addTerms(fine, modes, scaled, i, Math.min(2, terms - i), column);
+	const end = offset + rows * stride;
+	if (terms === 0) {
+		for (let to = offset; to < end; to += stride) out[to] = constant;
+		return constant;
+	}
+	let lowest =
+		terms === 1
+			? one(fine[modes[0]], scaled[0], constant, out, offset, stride, end)
+			: terms === 2
+				? two(fine[modes[0]], fine[modes[1]], scaled[0], scaled[1], constant, out, offset, stride, end)
+				: three(fine[modes[0]], fine[modes[1]], fine[modes[2]], scaled, constant, out, offset, stride, end);
+	for (let i = 3; i < terms; i++) lowest = more(fine[modes[i]], scaled[i], out, offset, stride, end);
 	return lowest;
 }
 
-/** Adds one or two more terms. */
-function addTerms(
-	fine: Float64Array,
-	modes: Int32Array,
-	scaled: Float64Array,
-	first: number,
-	count: number,
-	{ out, offset, stride, rows }: Column
-): number {
-	const a0 = scaled[first];
-	const m0 = modes[first];
-	const a1 = count > 1 ? scaled[first + 1] : 0;
-	const m1 = count > 1 ? modes[first + 1] : m0;
+function one(
+	f: Float64Array,
+	a: number,
+	c: number,
+	out: Float64Array,
+	offset: number,
+	stride: number,
+	end: number
+) {
 	let lowest = Infinity;
-	for (let j = 0, to = offset; j < rows; j++, to += stride) {
-		const value = out[to] + a0 * fine[m0 + j] + a1 * fine[m1 + j];
+	for (let j = 0, to = offset; to < end; j++, to += stride) {
+		const value = c + a * f[j];
+		out[to] = value;
+		if (value < lowest) lowest = value;
+	}
+	return lowest;
+}
+
+function two(
+	f: Float64Array,
+	g: Float64Array,
+	a: number,
+	b: number,
+	c: number,
+	out: Float64Array,
+	offset: number,
+	stride: number,
+	end: number
+): number {
+	let lowest = Infinity;
+	for (let j = 0, to = offset; to < end; j++, to += stride) {
+		const value = c + a * f[j] + b * g[j];
+		out[to] = value;
+		if (value < lowest) lowest = value;
+	}
+	return lowest;
+}
+
+function three(
+	f: Float64Array,
+	g: Float64Array,
+	h: Float64Array,
+	scaled: Float64Array,
+	c: number,
+	out: Float64Array,
+	offset: number,
+	stride: number,
+	end: number
+): number {
+	const [a, b, d] = [scaled[0], scaled[1], scaled[2]];
+	let lowest = Infinity;
+	for (let j = 0, to = offset; to < end; j++, to += stride) {
+		const value = c + a * f[j] + b * g[j] + d * h[j];
+		out[to] = value;
+		if (value < lowest) lowest = value;
+	}
+	return lowest;
+}
+
+/** Adds one more term to what stands. */
+function more(
+	f: Float64Array,
+	a: number,
+	out: Float64Array,
+	offset: number,
+	stride: number,
+	end: number
+): number {
+	let lowest = Infinity;
+	for (let j = 0, to = offset; to < end; j++, to += stride) {
+		const value = out[to] + a * f[j];
 		out[to] = value;
 		if (value < lowest) lowest = value;
 	}
@@ -157,9 +199,8 @@ function addTerms(
 }
 
 interface Block {
-	fine: Float64Array;
+	fine: Float64Array[];
 	coarse: Float64Array;
-	block: number;
 	start: number;
 	rows: number;
 }
@@ -189,6 +230,6 @@ function gatherUnsure(
 function decayed(form: ClosedForm, trust: GridTrust, b: Block, j: number, s: number, value: number): boolean {
 	let size = 0;
 	for (let l = 0, at = s * form.width; l < form.width; l++, at++)
-		size += form.sizes[at] * b.coarse[l] * b.fine[l * b.block + j];
+		size += form.sizes[at] * b.coarse[l] * b.fine[l][j];
 	return Math.abs(value) >= trust.smallest * size;
 }

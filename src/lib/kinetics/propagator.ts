@@ -25,7 +25,7 @@
  * bounds for exponentials of essentially non-negative matrices, Numer. Math. 110 (2008) 393, and Math. Comp. 82 (2013) 1577;
  * W. K. Grassmann, M. I. Taksar and D. P. Heyman, Oper. Res. 33 (1985) 1107 (diagonals from what leaves, without subtraction).
  */
-import { blockWeights } from './block-weights';
+import { blockWeights, type BlockWeights } from './block-weights';
 import { components, type Components } from './components';
 import type { LinearSystem } from './types';
 
@@ -57,22 +57,28 @@ export class Propagator {
 	private readonly nextTerm: Float64Array;
 
 	/** @throws RangeError when products multiply round a loop without limit. */
-	constructor(system: LinearSystem, parts: Components = components(system)) {
+	constructor(system: LinearSystem, parts: Components = components(system), balance?: BlockWeights) {
 		this.n = system.n;
 		this.parts = parts;
-		const { weights, exits } = blockWeights(system, parts);
+		const { weights, exits } = balance ?? blockWeights(system, parts);
 		this.weights = weights;
 		this.exits = exits;
 		this.outflow = system.outflow;
-		const active = system.transfers.filter((t) => t.rate * t.coefficient > 0);
-		this.from = Int32Array.from(active, (t) => t.from);
-		this.to = Int32Array.from(active, (t) => t.to);
-		this.rate = Float64Array.from(active, (t) => t.rate * t.coefficient);
+		const { transfers } = system;
+		this.from = new Int32Array(transfers.length);
+		this.to = new Int32Array(transfers.length);
+		this.rate = new Float64Array(transfers.length);
+		for (let e = 0; e < transfers.length; e++) {
+			this.from[e] = transfers[e].from;
+			this.to[e] = transfers[e].to;
+			this.rate[e] = transfers[e].rate * transfers[e].coefficient;
+		}
 		let shift = 0;
 		for (const k of system.outflow) shift = Math.max(shift, k);
 		this.shift = shift > 0 ? shift : 1;
 		this.baseStepS = Math.pow(2, Math.floor(-Math.log2(this.shift)));
-		this.stay = Float64Array.from(system.outflow, (k) => this.shift - k);
+		this.stay = new Float64Array(this.n);
+		for (let i = 0; i < this.n; i++) this.stay[i] = this.shift - system.outflow[i];
 		this.term = new Float64Array(this.n);
 		this.nextTerm = new Float64Array(this.n);
 	}

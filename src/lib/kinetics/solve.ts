@@ -20,13 +20,13 @@
  * | A[s][l], φ_l | `form.amplitudes`, `basis()` |
  * | bound on Σ|terms| of a species | `size[s]` |
  */
-import { blockWeights } from './block-weights';
+import { blockWeights, type BlockWeights } from './block-weights';
 import { basis, basisSlope, closedForm, type ClosedForm } from './closed-form';
-import { components } from './components';
+import { components, type Components } from './components';
 import { curvesOnGrid, gridStep, type Grid } from './grid';
 import { finalComposition } from './final-composition';
-import { modeGroups, type ModeGroup } from './mode-groups';
-import { modeSpace, type ModeSpace } from './mode-space';
+import { modeGroups } from './mode-groups';
+import { modeSpace } from './mode-space';
 import { modesOf } from './modes';
 import { Propagator } from './propagator';
 import { withIntegrals } from './linear-system';
@@ -47,7 +47,7 @@ export function solve(system: LinearSystem, charge: ArrayLike<number>): Solution
 function checkedCharge(system: LinearSystem, charge: ArrayLike<number>): Float64Array {
 	if (charge.length !== system.n)
 		throw new RangeError(`The charge has ${charge.length} values for ${system.n} species.`);
-	const own = Float64Array.from(charge);
+	const own = new Float64Array(charge);
 	own.forEach((value, i) => {
 		if (!Number.isFinite(value))
 			throw new RangeError(`The charge of species ${i + 1} is not a finite number.`);
@@ -64,8 +64,8 @@ class NetworkSolution implements Solution {
 	readonly errorEstimate: number;
 	readonly form: ClosedForm;
 	private readonly verdict: Judgement;
-	private readonly space: ModeSpace;
-	private readonly groups: ModeGroup[];
+	private readonly parts: Components;
+	private readonly balance: BlockWeights;
 	private readonly phi: Float64Array;
 	private readonly work: Float64Array;
 	private propagator: Propagator | null = null;
@@ -78,20 +78,20 @@ class NetworkSolution implements Solution {
 		readonly charge: Float64Array
 	) {
 		this.n = system.n;
-		const parts = components(system);
-		this.space = modeSpace(system, parts, blockWeights(system, parts));
-		const { groups, groupOf } = modeGroups(this.space);
-		this.groups = groups;
-		this.form = closedForm(this.space, groups, triangularModes(this.space, groups, groupOf, charge));
+		this.parts = components(system);
+		this.balance = blockWeights(system, this.parts);
+		const space = modeSpace(system, this.parts, this.balance);
+		const { groups, groupOf } = modeGroups(space);
+		this.form = closedForm(space, groups, triangularModes(space, groups, groupOf, charge));
 		this.phi = new Float64Array(this.form.width);
 		this.work = new Float64Array(Math.max(this.form.width, this.n));
-		this.verdict = judge(system, charge, this.space, groups, this.form, () => this.exact());
+		this.verdict = judge(system, charge, space, groups, this.form, () => this.exact());
 		this.method = this.verdict.method;
 		this.errorEstimate = this.verdict.errorEstimate;
 	}
 
 	get final(): Float64Array {
-		return (this.finalValue ??= finalComposition(this.system, this.charge).final);
+		return (this.finalValue ??= finalComposition(this.system, this.charge, this.parts, this.balance).final);
 	}
 
 	get modes(): Mode[] {
@@ -134,7 +134,7 @@ class NetworkSolution implements Solution {
 	integral(timeS: number, out: Float64Array = new Float64Array(this.n)): Float64Array {
 		checkTime(timeS);
 		if (timeS === Infinity) {
-			out.set(finalComposition(this.system, this.charge).throughput);
+			out.set(finalComposition(this.system, this.charge, this.parts, this.balance).throughput);
 			return out;
 		}
 		this.integrator ??= new Propagator(withIntegrals(this.system));
@@ -146,7 +146,7 @@ class NetworkSolution implements Solution {
 	}
 
 	private exact(): Propagator {
-		return (this.propagator ??= new Propagator(this.system));
+		return (this.propagator ??= new Propagator(this.system, this.parts, this.balance));
 	}
 
 	private write(timeS: number, out: Float64Array, start: number): void {

@@ -34,7 +34,7 @@ const TOLERANCE = 1e-13;
 /** Agreement asked for in a comparison, of the species' own terms. */
 const OWN_TOLERANCE = 5e-14;
 /** Error of the non-negative evaluation, of the total charge. */
-const PROPAGATOR_ERROR = 2e-14;
+const PROPAGATOR_ERROR = 3e-14;
 /** A value this small beside its terms is evaluated by the non-negative way: it keeps 1e-10 of itself by the bound … */
 const SMALLEST = 1e-5;
 /** … and 5e-10 where only the comparison vouches for it. */
@@ -77,7 +77,7 @@ export function judge(
 			smallest: SMALLEST_COMPARED,
 			method: structure,
 			useClosedForm: true,
-			errorEstimate: Math.max((2 * found.error) / total, PROPAGATOR_ERROR * sums),
+			errorEstimate: Math.max((3 * found.error) / total, PROPAGATOR_ERROR * sums),
 			trusted: ownSizes(form).map((size) => size * SMALLEST_COMPARED)
 		};
 	if (found.error > bound + PROPAGATOR_ERROR * sums * total && !space.kinds.includes('general'))
@@ -100,7 +100,7 @@ function trustedSizes(form: ClosedForm, exactAmplitudes: boolean): Float64Array 
 function growth(system: LinearSystem, charge: Float64Array, total: number): number {
 	if (system.transfers.every((t) => t.coefficient === 1)) return 1;
 	const end = finalComposition(system, charge).final.reduce((sum, value) => sum + Math.abs(value), 0);
-	return Number.isFinite(end) ? Math.max(1, (4 * end) / total) : 4;
+	return Number.isFinite(end) ? Math.max(4, (4 * end) / total) : 4;
 }
 
 function structuralMethod(space: ModeSpace, groups: ModeGroup[]): SolveMethod {
