@@ -56,7 +56,7 @@ export class Board {
 			announce(`${this.drag.species} over ${placeWords(this.editor.content, zone)}.`);
 	}
 
-	/** Arrow keys carry a chip from place to place, Escape takes it back. Called before the library sees the key. */
+	/** Arrow keys and Tab carry a chip from place to place, Escape takes it back. Called before the library sees the key. */
 	keys(event: KeyboardEvent): void {
 		if (!this.drag) return;
 		if (event.key === 'Escape') {
@@ -65,7 +65,8 @@ export class Board {
 			return;
 		}
 		if (!this.drag.keyboard) return;
-		const by = { ArrowRight: 1, ArrowDown: 1, ArrowLeft: -1, ArrowUp: -1 }[event.key];
+		const tab = event.shiftKey ? -1 : 1;
+		const by = { ArrowRight: 1, ArrowDown: 1, ArrowLeft: -1, ArrowUp: -1, Tab: tab }[event.key];
 		if (by === undefined) return;
 		event.preventDefault();
 		event.stopPropagation();

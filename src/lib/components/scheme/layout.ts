@@ -129,7 +129,7 @@ export function layoutScheme(content: SchemeContent): DrawnScheme {
 	if (species.length === 0) return { nodes: [], edges: [], box: [0, 0, 1, 1] };
 
 	const graph = new dagre.graphlib.Graph({ multigraph: true });
-	graph.setGraph({ rankdir: 'LR', nodesep: 34, ranksep: 46, edgesep: 26, marginx: 4, marginy: 4 });
+	graph.setGraph({ rankdir: 'LR', nodesep: 34, ranksep: 60, edgesep: 26, marginx: 4, marginy: 4 });
 	graph.setDefaultEdgeLabel(() => ({}));
 	for (const s of species) graph.setNode(nodeOf(s.id), { ...NODE });
 	for (const h of helpers)

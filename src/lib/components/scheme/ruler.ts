@@ -55,6 +55,8 @@ export interface Placed {
 	side: 'left' | 'right';
 }
 
+const ROWS = 7;
+
 /** Row and side of each label so that no two overlap; widths in px. */
 export function placeLabels(marks: readonly { x: number; width: number }[], length: number): Placed[] {
 	const order = marks.map((m, i) => ({ ...m, i })).sort((a, b) => a.x - b.x);
@@ -65,14 +67,16 @@ export function placeLabels(marks: readonly { x: number; width: number }[], leng
 	for (const mark of order) {
 		const right = { from: mark.x - 4, to: mark.x + 10 + mark.width };
 		const left = { from: mark.x - 10 - mark.width, to: mark.x + 4 };
-		for (let row = 0; ; row++) {
-			const nearFirst = mark.x < length / 2 ? [left, right] : [right, left];
-			const span = nearFirst.find((s) => free(s.from, s.to, row)) ?? (row > 6 ? right : null);
-			if (!span) continue;
-			taken.push({ ...span, row });
-			out[mark.i] = { x: mark.x, row, side: span === left ? 'left' : 'right' };
-			break;
-		}
+		const nearFirst = mark.x < length / 2 ? [left, right] : [right, left];
+		const crossed = (span: { from: number; to: number }) =>
+			order.some((other) => other.i !== mark.i && other.x > span.from && other.x < span.to);
+		const candidates = Array.from({ length: ROWS }, (_, row) =>
+			nearFirst.map((span) => ({ ...span, row }))
+		).flat();
+		const open = candidates.filter((c) => free(c.from, c.to, c.row));
+		const chosen = open.find((c) => !crossed(c)) ?? open[0] ?? { ...right, row: ROWS };
+		taken.push(chosen);
+		out[mark.i] = { x: mark.x, row: chosen.row, side: chosen.to === left.to ? 'left' : 'right' };
 	}
 	return out;
 }
