@@ -19,6 +19,7 @@ let group: Group;
 let chemist: Actor;
 let studyId: string;
 let fitId: string;
+let windowId: string;
 beforeAll(async () => {
 	group = await makeGroup();
 	chemist = await makeActor(group);
@@ -40,6 +41,7 @@ const input = {
 describe('a window', () => {
 	it('of story H1 finds the most of B at 2.13 h, is kept and shown on the strip', async () => {
 		const made = await computeWindow(chemist, { fitId, input });
+		windowId = made.id;
 		const view = await readWindow(chemist, made.id);
 		const top = view.result.maxima.find((m) => m.species === 'B')!;
 		// Invented compound; 0.2857 mol/L at 2.13 h was computed beforehand from the fitted constants.
@@ -70,12 +72,11 @@ describe('a window', () => {
 	});
 
 	it('of another group is not there, and a QA reviewer computes none', async () => {
-		const made = await computeWindow(chemist, { fitId, input });
 		const other = await makeActor(await makeGroup());
-		await expect(readWindow(other, made.id)).rejects.toMatchObject({ code: 'not-found' });
+		await expect(readWindow(other, windowId)).rejects.toMatchObject({ code: 'not-found' });
 		await expect(computeWindow(other, { fitId, input })).rejects.toMatchObject({ code: 'not-found' });
 		const qa = await makeActor(group, 'qa_reviewer');
 		await expect(computeWindow(qa, { fitId, input })).rejects.toMatchObject({ code: 'not-allowed' });
-		expect((await readWindow(qa, made.id)).number).toBe(made.number);
+		expect((await readWindow(qa, windowId)).number).toBe(1);
 	});
 });

@@ -5,13 +5,15 @@ import { startThread, ThreadCancelled, ThreadRefused, type Thread } from './thre
 /** Computations that a person waits for: bounded in time, in number at once and in number waiting. */
 const LONGEST_MS = 30_000;
 const MOST_WAITING = 64;
+/** One that takes seconds must not hold up a sheet that is being read. */
+const FEWEST_AT_ONCE = 2;
 
 const active = new Set<Thread<unknown>>();
 const waiting: (() => void)[] = [];
 let taken = 0;
 
 async function takeSlot(): Promise<void> {
-	if (taken < settings().FIT_WORKERS) {
+	if (taken < Math.max(FEWEST_AT_ONCE, settings().FIT_WORKERS)) {
 		taken++;
 		return;
 	}

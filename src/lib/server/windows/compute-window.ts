@@ -9,6 +9,8 @@ import { callEngine } from '../jobs/engine-calls';
 import type { Actor } from '../policy';
 import source from './window.worker.ts?nodeworker';
 
+const LONGEST_MS = 120_000;
+
 export interface ComputeWindowInput {
 	fitId: string;
 	input: FirstFormRequestInput;
@@ -44,7 +46,11 @@ export async function computeWindow(
 	const job = await findFitJob(actor, fitId, 'window.run');
 	const request = firstFormRequest.parse(input);
 	const fit = await usableFit(job.id);
-	const result = await callEngine<FirstFormResult>({ source, task: engineInput(fit, request) });
+	const result = await callEngine<FirstFormResult>({
+		source,
+		task: engineInput(fit, request),
+		longestMs: LONGEST_MS
+	});
 	return write(async (tx) => {
 		const last = await WindowResult.max<number | null, WindowResult>('number', {
 			where: { studyId: fit.studyId },

@@ -1,0 +1,80 @@
+/** Where rows and columns of a sheet lie on the screen, so that only those in sight are drawn. */
+import { displayText } from '$lib/assay';
+import type { Block, GridSheet, GridWorkbook } from '$lib/schemas/sheet';
+
+export const ROW_PX = 26;
+export const HEAD_PX = 24;
+export const NUMBER_PX = 46;
+const NARROW = 58;
+const WIDE = 230;
+const LETTER_PX = 8.2;
+/** Rows looked at for the width of a column. */
+const SAMPLED = 300;
+const MOST_COLUMNS = 200;
+
+export interface GridLayout {
+	/** Numbers of the rows that hold something, in order; blank rows are left out. */
+	rows: number[];
+	columns: number[];
+	widths: number[];
+	/** Left edge of each column, and the whole width at the end. */
+	lefts: number[];
+	height: number;
+}
+
+function widthOf(texts: string[]): number {
+	// A long note in a narrow column runs on as it does on paper; it does not make the column wide.
+	const lengths = texts.map((t) => t.length).sort((a, b) => a - b);
+	const typical = lengths[Math.floor(0.9 * (lengths.length - 1))] ?? 0;
+	return Math.round(Math.min(WIDE, Math.max(NARROW, typical * LETTER_PX + 22)));
+}
+
+export function layoutOf(workbook: GridWorkbook, sheet: GridSheet): GridLayout {
+	const used = new Map<number, string[]>();
+	sheet.rows.forEach((row, i) => {
+		for (const cell of row.c) {
+			if (cell[1] === null || cell[1] === '') continue;
+			const texts = used.get(cell[0]) ?? [];
+			used.set(cell[0], texts);
+			if (i < SAMPLED) texts.push(displayText(workbook, cell));
+		}
+	});
+	const columns = [...used.keys()].sort((a, b) => a - b).slice(0, MOST_COLUMNS);
+	const widths = columns.map((c) => widthOf(used.get(c) ?? []));
+	const lefts = [NUMBER_PX];
+	for (const width of widths) lefts.push(lefts[lefts.length - 1] + width);
+	const rows = sheet.rows.filter((row) => row.c.some((c) => c[1] !== null && c[1] !== '')).map((row) => row.r);
+	return { rows, columns, widths, lefts, height: rows.length * ROW_PX };
+}
+
+/** Places of the rows to be drawn, with a few beyond the edge. */
+export function rowsInSight(layout: GridLayout, scrollTop: number, height: number, spare = 8): [number, number] {
+	const first = Math.max(0, Math.floor(scrollTop / ROW_PX) - spare);
+	const last = Math.min(layout.rows.length, Math.ceil((scrollTop + height) / ROW_PX) + spare);
+	return [first, last];
+}
+
+export interface Frame {
+	top: number;
+	left: number;
+	width: number;
+	height: number;
+}
+
+/** The outline of a block, in px from the first row's and the sheet's corner; null where none of it is drawn. */
+export function frameOf(layout: GridLayout, block: Block): Frame | null {
+	const inside = layout.rows.filter((r) => r >= block.firstRow && r <= block.lastRow);
+	const columns = layout.columns
+		.map((c, i) => ({ c, i }))
+		.filter(({ c }) => c >= block.firstColumn && c <= block.lastColumn);
+	const first = columns[0];
+	const last = columns.at(-1);
+	if (inside.length === 0 || !first || !last) return null;
+	const left = layout.lefts[first.i];
+	return {
+		top: layout.rows.indexOf(inside[0]) * ROW_PX,
+		left,
+		width: layout.lefts[last.i + 1] - left,
+		height: inside.length * ROW_PX
+	};
+}
