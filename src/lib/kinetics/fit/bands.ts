@@ -10,13 +10,12 @@
  * Source: Bates & Watts (1988) 2.3.2 and 2.7; Seber & Wild, Nonlinear Regression (1989) 5.1.
  */
 import type { FitFinding, FitReport, FitRequest } from '../../schemas/fit';
-import { isFitted, type Fittable } from '../../schemas/quantity';
 import type { RunContent } from '../../schemas/run';
 import { varianceAlong } from './covariance';
 import { studentQuantile } from './distributions';
-import { KineticModel } from './model';
-import type { Point } from './points';
-import { compileProblem, type KineticProblem, type RunModel } from './problem';
+import type { KineticModel } from './model';
+import { ownChannel, probeModel } from './probe';
+import type { RunModel } from './problem';
 import { estimatesOf, restoreFit, type RestoredFit } from './restore';
 import { sigmaFor } from './weights';
 
@@ -41,9 +40,6 @@ export interface Prediction {
 	/** Temperature or time outside what was studied. */
 	findings: FitFinding[];
 }
-
-const PROBE = 'prediction';
-const speciesChannel = (id: string) => `species ${id}`;
 
 /**
  * Curves and bands of a run under a fit.
@@ -70,12 +66,9 @@ export function predictRestored(
 	times: number[],
 	options: { confidence?: number; only?: string[] } = {}
 ): Prediction {
-	const { request } = fitted.problem;
-	const probe = probeRun(request, run, report);
-	const problem = compileProbe(request, probe, times);
+	const known = (id: string) => report.parameters.some((p) => p.id === id);
+	const { problem, model, at } = probeModel(fitted.problem.request, run, times, known);
 	const x = estimatesOf(report, problem);
-	const at = problem.runs.findIndex((r) => r.id === probe.id);
-	const model = probed(problem, at, times);
 	const predictions = new Float64Array(model.m);
 	const jacobian = new Float64Array(model.m * model.p);
 	if (!model.evaluatePredictions(x, predictions, jacobian))
@@ -127,91 +120,6 @@ function seriesOf(id: string, c: number, pieces: Pieces): PredictedSeries {
 		confidence: finite ? band(() => 0) : null,
 		prediction: finite && assay !== undefined ? band(noise) : null
 	};
-}
-
-const ownChannel = (channel: RunContent['channels'][number], species: string) => {
-	const seen = Object.entries(channel.weights).filter(([, w]) => w !== 0);
-	return seen.length === 1 && seen[0][0] === species && seen[0][1] === 1 && !channel.responseFactor;
-};
-
-/** The run with its unknown amounts filled in and a channel for every species. */
-function probeRun(request: FitRequest, run: RunContent, report: FitReport): RunContent {
-	const known = (id: string) => report.parameters.find((p) => p.id === id);
-	const source = request.runs.findIndex((r, i) => r === run || (r.id ?? `r${i + 1}`) === run.id);
-	const name = source >= 0 ? (request.runs[source].id ?? `r${source + 1}`) : run.id;
-	const initial: RunContent['initial'] = Object.fromEntries(
-		Object.entries(run.initial).map(([species, amount]): [string, Fittable] => {
-			if (!isFitted(amount)) return [species, amount];
-			const estimate = name ? known(`${name}.initial.${species}`) : undefined;
-			if (estimate) return [species, amount];
-			if (amount.guess) return [species, amount.guess];
-			throw new RangeError(`The charge of ${species} in the run to predict is not known. Give its value.`);
-		})
-	);
-	const unitOf = (species: string) =>
-		run.channels.find((c) => ownChannel(c, species))?.unit ??
-		Object.values(run.initial).map((a) => (isFitted(a) ? a.guess?.unit : a.unit))[0] ??
-		'mol/L';
-	return {
-		...run,
-		id: source >= 0 ? name : PROBE,
-		initial,
-		exclusions: [],
-		replicates: undefined,
-		channels: [
-			...run.channels,
-			...request.species.map((s) => ({
-				id: speciesChannel(s.id),
-				weights: { [s.id]: 1 },
-				unit: unitOf(s.id)
-			}))
-		]
-	};
-}
-
-/** The request with the run to predict in the place of its own, or after the others; parameters stay the same. */
-function compileProbe(request: FitRequest, probe: RunContent, times: number[]): KineticProblem {
-	const filled: RunContent = {
-		...probe,
-		timepoints: times.map((time) => ({
-			time,
-			values: Object.fromEntries(probe.channels.map((c) => [c.id, 0]))
-		}))
-	};
-	const runs = request.runs.map((r, i) => {
-		const id = r.id ?? `r${i + 1}`;
-		return id === probe.id ? filled : { ...r, id };
-	});
-	if (!runs.includes(filled)) runs.push(filled);
-	const weighting = { model: 'constant' as const };
-	const options = { ...request.options, useTimeZeroRow: true, weighting };
-	const { problem, issues } = compileProblem({ ...request, runs, options });
-	if (!problem)
-		throw new RangeError(
-			issues
-				.filter((i) => i.level === 'stop')
-				.map((i) => i.message)
-				.join(' ')
-		);
-	return problem;
-}
-
-/** A model of the probe's points alone, in the order of the times asked for. */
-function probed(problem: KineticProblem, at: number, times: number[]): KineticModel {
-	const run = problem.runs[at];
-	const order = times.map((t) => run.timesS.indexOf(t * run.timeFactor));
-	const points: Point[] = run.channels.flatMap((_, channel) =>
-		order.map((time, index) => ({
-			run: at,
-			channel,
-			index,
-			time,
-			kind: 'value' as const,
-			observed: 0,
-			sigma: 1
-		}))
-	);
-	return new KineticModel(problem, points);
 }
 
 function rangeFindings(report: FitReport, run: RunModel, times: number[]): FitFinding[] {

@@ -19,3 +19,11 @@ export {
 	type ConfirmationPoint
 } from './bands';
 export { restoreFit, type RestoredFit } from './restore';
+export {
+	compareSchemes,
+	ComparisonError,
+	type ComparedScheme,
+	type Comparison,
+	type SeparatingSample
+} from './compare';
+export { samplingPlan, type SamplingOptions, type SamplingPlan, type ExpectedWidth } from './sampling-plan';
