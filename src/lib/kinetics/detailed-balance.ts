@@ -39,6 +39,13 @@ export interface SymmetricModes {
 	rates: Float64Array;
 	/** vectors[j]: u_j, unit length. */
 	vectors: Float64Array[];
+	/** Reversible pairs (local numbers, i < j) in the order of `differences`. */
+	pairs: [i: number, j: number][];
+	/**
+	 * differences[mode][pair]: y_j − y_i of the left vector y = D^{−1/2}u, from Fᵀu itself. It is tiny for slow modes across a
+	 * fast pair, and subtracting y_i from y_j would leave nothing but rounding there.
+	 */
+	differences: Float64Array[];
 }
 
 /** Largest |ln| by which constants round a loop may miss Wegscheider's condition and still count as balanced. */
@@ -69,61 +76,81 @@ export function balanceWeights({ m, rate, unit }: BlockFlows): Float64Array | nu
 /** All modes of a component with the given balance weights. */
 export function symmetricModes(flows: BlockFlows, logWeights: Float64Array): SymmetricModes {
 	const { m } = flows;
-	const factor = factorColumns(flows);
+	const { columns, pairs } = factorColumns(flows);
 	const closed = flows.exits.every((rate) => rate === 0);
-	const modes = factor.length < m ? fromColumns(factor) : fromRows(factor, m, closed);
-	if (closed) modes.push({ rate: 0, vector: rootWeights(logWeights) });
+	const modes = columns.length < m ? fromColumns(columns) : fromRows(columns, m, closed);
+	if (closed)
+		modes.push({ rate: 0, vector: rootWeights(logWeights), image: new Float64Array(columns.length) });
 	modes.sort((a, b) => a.rate - b.rate);
+	const scale = pairs.map(([i, j]) => -Math.exp(-logWeights[i] / 2) / Math.sqrt(flows.rate[i * m + j]));
 	return {
 		logWeights,
 		rates: Float64Array.from(modes, (mode) => mode.rate),
-		vectors: modes.map((mode) => mode.vector)
+		vectors: modes.map((mode) => mode.vector),
+		pairs,
+		differences: modes.map((mode) => Float64Array.from(scale, (factor, p) => factor * mode.image[p]))
 	};
 }
 
 interface RateVector {
 	rate: number;
 	vector: Float64Array;
+	/** Fᵀu, one entry a column of F, pairs first. */
+	image: Float64Array;
 }
 
-function factorColumns({ m, rate, exits }: BlockFlows): Float64Array[] {
+/** Columns of F: reversible pairs first, then ways out. */
+function factorColumns({ m, rate, exits }: BlockFlows) {
 	const columns: Float64Array[] = [];
-	for (let i = 0; i < m; i++) {
+	const pairs: [number, number][] = [];
+	for (let i = 0; i < m; i++)
 		for (let j = i + 1; j < m; j++) {
 			if (rate[i * m + j] === 0) continue;
 			const column = new Float64Array(m);
 			column[i] = Math.sqrt(rate[i * m + j]);
 			column[j] = -Math.sqrt(rate[j * m + i]);
 			columns.push(column);
+			pairs.push([i, j]);
 		}
-		if (exits[i] > 0) {
-			const column = new Float64Array(m);
-			column[i] = Math.sqrt(exits[i]);
-			columns.push(column);
-		}
+	for (let i = 0; i < m; i++) {
+		if (exits[i] === 0) continue;
+		const column = new Float64Array(m);
+		column[i] = Math.sqrt(exits[i]);
+		columns.push(column);
 	}
-	return columns;
+	return { columns, pairs };
 }
 
 /** Fewer pairs and exits than species (a tree without exits): rotate the columns; u is the rotated column itself. */
 function fromColumns(columns: Float64Array[]): RateVector[] {
-	oneSidedJacobi(columns, null);
-	return columns.map((column) => {
+	const turns = identity(columns.length);
+	oneSidedJacobi(columns, turns);
+	return columns.map((column, j) => {
 		const size = norm(column);
-		return { rate: -size * size, vector: column.map((value) => value / size) };
+		return {
+			rate: -size * size,
+			vector: column.map((value) => value / size),
+			image: turns[j].map((value) => value * size)
+		};
 	});
 }
 
 /** Otherwise rotate the rows and gather the rotations; without exits the smallest row is the stationary mode, known exactly. */
 function fromRows(columns: Float64Array[], m: number, closed: boolean): RateVector[] {
 	const rows = Array.from({ length: m }, (_, i) => Float64Array.from(columns, (column) => column[i]));
-	const vectors = Array.from({ length: m }, (_, i) =>
-		Float64Array.from({ length: m }, (_, k) => (k === i ? 1 : 0))
-	);
+	const vectors = identity(m);
 	oneSidedJacobi(rows, vectors);
-	const modes = rows.map((row, j) => ({ rate: -(norm(row) ** 2), vector: vectors[j] }));
+	const modes = rows.map((row, j) => ({ rate: -(norm(row) ** 2), vector: vectors[j], image: row }));
 	modes.sort((a, b) => a.rate - b.rate);
 	return closed ? modes.slice(0, -1) : modes;
+}
+
+function identity(m: number): Float64Array[] {
+	return Array.from({ length: m }, (_, i) => {
+		const row = new Float64Array(m);
+		row[i] = 1;
+		return row;
+	});
 }
 
 function rootWeights(logWeights: Float64Array): Float64Array {

@@ -23,7 +23,9 @@ export interface Eigenbasis {
 	x: ComplexMatrix;
 	/** Mode × species. */
 	y: ComplexMatrix;
-	complex: boolean;
+	/** Z⁻¹, which takes vectors of the mode space to the eigenbasis. */
+	zInverse: ComplexMatrix;
+	space: ModeSpace;
 	/** True when a component is in no detailed balance, so that its rates have no relative accuracy. */
 	general: boolean;
 	/** max over i, k of Σ_j |X_ij| |Y_jk|: the factor by which rounding grows. */
@@ -39,7 +41,8 @@ export function eigenbasis(system: LinearSystem): Eigenbasis | null {
 	if (!space.usable || modeGroups(space).groups.some((group) => group.members.length > 1)) return null;
 	const z = triangularVectors(space);
 	const x = product(space.v, z);
-	const y = product(inverseOfUnitLower(z), space.w);
+	const zInverse = inverseOfUnitLower(z);
+	const y = product(zInverse, space.w);
 	const rise = growth(x, y);
 	if (!(rise <= LARGEST_GROWTH)) return null;
 	return {
@@ -47,7 +50,8 @@ export function eigenbasis(system: LinearSystem): Eigenbasis | null {
 		lambda: space.lambda,
 		x,
 		y,
-		complex: space.complex,
+		zInverse,
+		space,
 		general: space.kinds.includes('general'),
 		growth: rise
 	};

@@ -37,6 +37,11 @@ export interface ModeSpace {
 	vBound: Float64Array;
 	wBound: Float64Array;
 	tBound: Float64Array;
+	/**
+	 * W (e_to − e_from) of each reversible pair of a component in detailed balance, keyed from·n + to: first mode of the
+	 * component and the values of its modes, right in relative terms (see `SymmetricModes.differences`).
+	 */
+	pairDifferences: Map<number, { first: number; values: Float64Array }>;
 	/** Kind of the component that each mode belongs to. */
 	kinds: BlockKind[];
 	complex: boolean;
@@ -62,6 +67,7 @@ export function modeSpace(system: LinearSystem, parts: Components, balance: Bloc
 		vBound: part(3),
 		wBound: part(4),
 		tBound: part(5),
+		pairDifferences: new Map(),
 		kinds: new Array<BlockKind>(n).fill('single'),
 		complex: false,
 		usable: true
@@ -132,7 +138,12 @@ function balancedBlock(
 ): void {
 	const { n, v, w, vBound, wBound } = space;
 	if (logWeights.some((value) => value < -WIDEST_WEIGHTS)) space.usable = false;
-	const { rates, vectors } = symmetricModes(flows, logWeights);
+	const { rates, vectors, pairs, differences } = symmetricModes(flows, logWeights);
+	pairs.forEach(([i, j], p) => {
+		const values = Float64Array.from(differences, (row) => row[p]);
+		space.pairDifferences.set(block[i] * n + block[j], { first, values });
+		space.pairDifferences.set(block[j] * n + block[i], { first, values: values.map((value) => -value) });
+	});
 	for (let j = 0; j < flows.m; j++) {
 		const mode = first + j;
 		space.lambda.re[mode] = rates[j];

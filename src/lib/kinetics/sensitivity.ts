@@ -7,7 +7,8 @@
  *
  * 1. Where K = X Λ Y with a good basis (Daleckii and Krein):
  *        s(t) = X z,  z_a = u_a Σ_b φ_ab X_jb y_b,   u = k Y (Σ ν_i e_i − e_j),  y = Y c₀,
- *    with φ the divided differences of e^{λt}; the sums over b are shared by all steps of one reactant.
+ *    with φ the divided differences of e^{λt}; the sums over b are shared by all steps of one reactant. Across a reversible
+ *    pair u comes from the differences that the Jacobi rotations give (a pre-equilibrium watched for long: k t = 1e10).
  * 2. Elsewhere (equal or nearly equal coupled rates, ill-conditioned bases): the system beside a copy of itself that is fed by
  *    c_j — Van Loan's block triangular matrix — evaluated by the non-negative propagator, once fed by the products and once by
  *    the reactant; the derivative is their difference. No cancellation but that one.
@@ -117,23 +118,44 @@ export class SensitivityWorkspace implements SensitivityResult {
 		const { n, weightRe, weightIm } = this;
 		weightRe.fill(0);
 		weightIm.fill(0);
-		const add = (p: number, species: number, amount: number) => {
-			for (let a = 0; a < n; a++) {
-				weightRe[p * n + a] += basis.y.re[a * n + species] * amount;
-				weightIm[p * n + a] += basis.y.im[a * n + species] * amount;
-			}
-		};
 		return Int32Array.from(this.parameters, (parameter, p) => {
+			const u = { re: weightRe.subarray(p * n, (p + 1) * n), im: weightIm.subarray(p * n, (p + 1) * n) };
 			if (parameter.kind === 'charge') {
-				add(p, parameter.species, 1);
+				this.addColumn(basis, parameter.species, 1, u);
 				return -1;
 			}
 			const flow = flowOf(system, parameter);
 			if (!flow) return -2;
-			add(p, flow.from, -flow.rate);
-			for (const product of flow.products) add(p, product.to, product.rate);
+			if (!this.addPair(basis, flow, u)) {
+				this.addColumn(basis, flow.from, -flow.rate, u);
+				for (const product of flow.products) this.addColumn(basis, product.to, product.rate, u);
+			}
 			return flow.from;
 		});
+	}
+
+	/** u += amount · Y e_species */
+	private addColumn({ y }: Eigenbasis, species: number, amount: number, u: ComplexVector): void {
+		const { n } = this;
+		for (let a = 0; a < n; a++) {
+			u.re[a] += y.re[a * n + species] * amount;
+			u.im[a] += y.im[a * n + species] * amount;
+		}
+	}
+
+	/** u = k Y (e_to − e_from) = k Z⁻¹ W (e_to − e_from) for a step within a component in detailed balance. */
+	private addPair({ zInverse, space }: Eigenbasis, flow: StepFlow, u: ComplexVector): boolean {
+		const { n } = this;
+		if (flow.products.length !== 1 || flow.products[0].rate !== flow.rate) return false;
+		const pair = space.pairDifferences.get(flow.from * n + flow.products[0].to);
+		if (!pair) return false;
+		for (let a = 0; a < n; a++)
+			for (let b = 0; b < pair.values.length; b++) {
+				const at = a * n + pair.first + b;
+				u.re[a] += zInverse.re[at] * pair.values[b] * flow.rate;
+				u.im[a] += zInverse.im[at] * pair.values[b] * flow.rate;
+			}
+		return true;
 	}
 
 	private curveAt({ x }: Eigenbasis, k: number): void {
@@ -245,6 +267,11 @@ export class SensitivityWorkspace implements SensitivityResult {
 			for (let i = 0; i < n; i++) out[k * n + i] -= end[n + i];
 		}
 	}
+}
+
+interface ComplexVector {
+	re: Float64Array;
+	im: Float64Array;
 }
 
 interface StepFlow {
