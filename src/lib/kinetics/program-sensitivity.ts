@@ -26,7 +26,7 @@ export function programSensitivities(
 	const { n, network, nodes } = solution;
 	const stepper = new MagnusStepper(network, excessMolPerL);
 	const out = new Float64Array(parameters.length * timesS.length * n);
-	const state = parameters.map((parameter) => {
+	const state = parameters.map((parameter): Float64Array => {
 		const s = new Float64Array(n);
 		if (parameter.kind === 'charge') s[parameter.species] = 1;
 		return s;
