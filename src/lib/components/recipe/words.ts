@@ -19,7 +19,9 @@ export function durationText(o: Operation): string {
 /** "20 → 40 °C", "40 °C" */
 export function temperatureText(o: Operation): string {
 	if (o.fromC === null && o.toC === null) return '';
-	if (o.fromC === null || o.toC === null || o.fromC === o.toC) return `${o.toC ?? o.fromC} °C`;
+	if (o.toC === null) return `from ${o.fromC} °C`;
+	if (o.fromC === null) return `to ${o.toC} °C`;
+	if (o.fromC === o.toC) return `${o.toC} °C`;
 	return `${o.fromC} → ${o.toC} °C`;
 }
 

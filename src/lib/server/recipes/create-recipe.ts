@@ -9,7 +9,7 @@ import { criteriaOf } from '../studies/read-study';
 import { fitFacts } from './fit-facts';
 import { prefill } from './prefill';
 import { versionHash } from './signed-record';
-import { windowFacts } from './window-facts';
+import { windowCharge, windowFacts } from './window-facts';
 
 export interface CreateRecipeInput extends CreateRecipeForm {
 	studyId: string;
@@ -33,7 +33,11 @@ export async function createRecipe(
 			decision: study.decision,
 			criteria: await criteriaOf(study.id, tx),
 			facts,
-			window: window && { number: window.number, facts: windowFacts(window.result) },
+			window: window && {
+				number: window.number,
+				facts: windowFacts(window.result),
+				charge: windowCharge(window.input)
+			},
 			scale: asked.scale
 		});
 		const number = (await Recipe.count({ where: { studyId: study.id }, transaction: tx })) + 1;

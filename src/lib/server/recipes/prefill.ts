@@ -1,5 +1,5 @@
 import { inMinutes, roundDown, roundUp } from '$lib/recipe/rounding';
-import { isFitted } from '$lib/schemas/quantity';
+import { isFitted, type Quantity } from '$lib/schemas/quantity';
 import {
 	heatSchema,
 	recipeContent,
@@ -21,7 +21,7 @@ export interface PrefillInput {
 	decision: string;
 	criteria: CriterionContent[];
 	facts: FitFacts;
-	window: { number: number; facts: WindowFacts | null } | null;
+	window: { number: number; facts: WindowFacts | null; charge: Record<string, Quantity> } | null;
 	scale?: Scale;
 }
 
@@ -36,14 +36,15 @@ function nearestRun(runs: RunContent[], temperatureC: number | null): RunContent
 	)[0];
 }
 
-/** Charges that were fixed and above zero, mol/L where the unit allows. */
-function chargesOf(run: RunContent): Map<string, number> {
+/** Charges that were fixed and above zero, mol/L where the unit allows: the window's, else those of the nearest run. */
+function chargesOf(run: RunContent, ofWindow: Record<string, Quantity>): Map<string, number> {
 	const found = new Map<string, number>();
-	for (const [species, amount] of Object.entries(run.initial)) {
-		const given = isFitted(amount) ? amount.guess : amount;
-		if (!given || given.value <= 0) continue;
+	const given = Object.keys(ofWindow).length > 0 ? ofWindow : run.initial;
+	for (const [species, amount] of Object.entries(given)) {
+		const stated = isFitted(amount) ? amount.guess : amount;
+		if (!stated || stated.value <= 0) continue;
 		try {
-			found.set(species, tidy(toSi(given, 'concentration')));
+			found.set(species, tidy(toSi(stated, 'concentration')));
 		} catch {
 			// An area or a mass without molar mass gives no concentration: the person enters the charge.
 		}
@@ -53,10 +54,26 @@ function chargesOf(run: RunContent): Map<string, number> {
 
 const criterionWords = (c: CriterionContent): string => `${c.species} ${c.relation} ${c.limit} ${c.unit}`;
 
+/** No criterion ever ends the hold: it has a beginning alone, and nothing is stated for its end. */
+function openHold(number: number, facts: WindowFacts, temperatureC: number): Hold {
+	const earliest = facts.fromBoundH ?? facts.fromH;
+	return {
+		temperatureC,
+		unit: 'h',
+		nominal: null,
+		bound: null,
+		stated: null,
+		notBefore: earliest === null || earliest <= 0 ? null : roundUp(earliest),
+		limits: facts.fromBinds && `${facts.fromBinds} below`,
+		basis: `From window ${number}: every criterion holds from then on, and none of them ends the hold.`
+	};
+}
+
 /** The hold ends at the adverse bound; where the bounds leave no time at all nothing is stated. */
 function holdOf(window: PrefillInput['window'], temperatureC: number): Hold | null {
 	const facts = window?.facts;
-	if (!window || !facts || facts.toH === null) return null;
+	if (!window || !facts) return null;
+	if (facts.toH === null) return openHold(window.number, facts, temperatureC);
 	const used = facts.toBoundH ?? facts.toH;
 	const earliest = facts.fromBoundH ?? facts.fromH;
 	const basis =
@@ -114,7 +131,7 @@ function setPointsOf(
 			unit: hold.unit,
 			value: time,
 			nor: null,
-			par: hold.stated !== null && time <= hold.stated ? [time, hold.stated] : null,
+			par: hold.stated === null ? [time, null] : time <= hold.stated ? [time, hold.stated] : null,
 			binds: hold.limits,
 			studied: [0, tidy(studied.lastTimeH)]
 		});
@@ -217,7 +234,7 @@ export function prefill(input: PrefillInput): RecipeContent {
 	const wanted = window?.facts?.temperatureC ?? null;
 	const run = nearestRun(runs, wanted);
 	const temperatureC = tidy(wanted ?? celsius(run));
-	const charges = chargesOf(run);
+	const charges = chargesOf(run, window?.charge ?? {});
 	const hold = holdOf(window, temperatureC);
 	const { report } = facts.fit;
 	return recipeContent.parse({

@@ -11,7 +11,7 @@ import { findRecipe, findVersion, moveVersion, wrongState } from './find';
 import { fitFacts } from './fit-facts';
 import { prefill } from './prefill';
 import { versionHash } from './signed-record';
-import { windowFacts } from './window-facts';
+import { windowCharge, windowFacts } from './window-facts';
 
 export interface StartVersionInput {
 	recipeId: string;
@@ -38,7 +38,11 @@ async function nextContent(tx: Tx, recipe: Recipe, last: RecipeVersion, input: S
 		decision: content.target,
 		criteria: await criteriaOf(recipe.studyId, tx),
 		facts,
-		window: window && { number: window.number, facts: windowFacts(window.result) },
+		window: window && {
+			number: window.number,
+			facts: windowFacts(window.result),
+			charge: windowCharge(window.input)
+		},
 		scale: content.scale
 	});
 	const { basis, criteria, setPoints, hold } = fresh;

@@ -1,4 +1,9 @@
-import type { FirstFormResult, HoldSpan } from '$lib/schemas/window';
+import {
+	firstFormRequest,
+	type FirstFormRequest,
+	type FirstFormResult,
+	type HoldSpan
+} from '$lib/schemas/window';
 
 /** What a recipe takes from a window: the span of time in which every criterion holds, at one temperature. */
 export interface WindowFacts {
@@ -41,4 +46,10 @@ export function windowFacts(result: unknown): WindowFacts | null {
 		toBinds: text(span.bindsTo),
 		confidencePercent: Math.round(result.confidenceLevel * 1000) / 10
 	};
+}
+
+/** The charge that the window was computed for; empty where its input says none. */
+export function windowCharge(input: unknown): FirstFormRequest['charge'] {
+	const parsed = firstFormRequest.shape.charge.safeParse((input as { charge?: unknown } | null)?.charge);
+	return parsed.success ? parsed.data : {};
 }
