@@ -95,3 +95,8 @@ export function timeOnly(value: Date | string | number, timeZone = 'UTC'): strin
 		new Date(value)
 	);
 }
+
+/** A number that a person entered, or an axis mark: as short as it is, without the noise of binary fractions. */
+export function plain(value: number, digits = 6): string {
+	return String(Number(value.toPrecision(digits))).replace('-', MINUS);
+}

@@ -3,7 +3,7 @@ import { predict } from '$lib/kinetics/fit/bands';
 import type { FitReport, FitRequest, FitResidual } from '$lib/schemas/fit';
 import type { ChannelContent, RunContent } from '$lib/schemas/run';
 import type { SpeciesContent } from '$lib/schemas/scheme';
-import { significant } from '$lib/client/numbers';
+import { plain, unitText } from '$lib/client/numbers';
 import type { ChartPoint, ChartSeries } from '../charts/types';
 
 export interface FitPanel {
@@ -82,7 +82,7 @@ function panel(report: FitReport, request: FitRequest, run: RunContent, id: stri
 	return {
 		run: id,
 		name,
-		temperature: `${significant(run.temperature.value, 4)} ${run.temperature.unit === 'degC' ? '°C' : run.temperature.unit}`,
+		temperature: `${plain(run.temperature.value)} ${unitText(run.temperature.unit)}`,
 		timeUnit: run.timeUnit,
 		quantity: run.channels[0]?.unit.includes('%') ? 'amount' : 'concentration',
 		unit: run.channels[0]?.unit ?? '',

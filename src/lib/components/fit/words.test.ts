@@ -1,7 +1,7 @@
 import { describe, expect, it } from 'vitest';
 import type { FitReport } from '$lib/schemas/fit';
 import type { SchemeContent } from '$lib/schemas/scheme';
-import { headline, parameterName, plainName, stepWords } from './words';
+import { headline, inPlainWords, parameterName, plainName, stepWords } from './words';
 
 const scheme: SchemeContent = {
 	species: [
@@ -55,6 +55,15 @@ describe('names of parameters', () => {
 			letter: 'gone.forward.kRef',
 			kind: 'other'
 		});
+	});
+	it('replace ids in a message of the engine, and nothing else', () => {
+		const runNames = { r1: 'Run 1', r12: 'Run 12' };
+		expect(inPlainWords('x.forward.kRef has half-life 3 in run r12, not r1.', scheme, runNames)).toBe(
+			'k₂ (B → 2 C) has half-life 3 in Run 12, not Run 1.'
+		);
+		expect(inPlainWords('r1.initial.A is free; r3 stays.', scheme, runNames)).toBe(
+			'A₀ (charge, Run 1) is free; r3 stays.'
+		);
 	});
 	it('write a loss in words', () => {
 		expect(stepWords({ ...scheme.steps[0], products: [] })).toBe('A → (not assayed)');

@@ -1,103 +1,15 @@
-/**
- * Words and symbols for a fit's parameters, from their ids (`s2.reverse.kRef`, `r1.initial.A`, …), so that every
- * page names a constant alike: k with the number of its step, minus for the reverse direction.
- */
+/** The sentence at the top of a fit, in words. */
 import type { FitParameter, FitReport } from '$lib/schemas/fit';
-import type { SchemeContent, StepContent } from '$lib/schemas/scheme';
+import type { SchemeContent } from '$lib/schemas/scheme';
+import { inPlainWords, parameterName, plainName } from '$lib/kinetics/parameter-names';
 
-export interface ParameterName {
-	/** Letter, set in italics. */
-	letter: string;
-	subscript: string;
-	/** What the constant belongs to: "B → C", "charge, run 2". */
-	of: string;
-	kind:
-		| 'rate constant'
-		| 'equilibrium constant'
-		| 'energy'
-		| 'charge'
-		| 'response factor'
-		| 'time offset'
-		| 'other';
-}
-
-const amount = (coefficient: number): string => (coefficient === 1 ? '' : `${coefficient} `);
-
-/** "B → C", "A → B + 2 C", "A → (not assayed)". */
-export function stepWords(step: StepContent, reverse = false): string {
-	const right =
-		step.products.map((p) => `${amount(p.coefficient)}${p.species}`).join(' + ') || '(not assayed)';
-	return reverse ? `${right} → ${step.reactant}` : `${step.reactant} → ${right}`;
-}
-
-function ofStep(id: string, scheme: SchemeContent): ParameterName | null {
-	const match = /^(.+)\.(forward|reverse)\.(\w+)$/.exec(id);
-	if (!match) return null;
-	const [, stepId, direction, quantity] = match;
-	const index = scheme.steps.findIndex((s) => s.id === stepId);
-	if (index < 0) return null;
-	const reverse = direction === 'reverse';
-	const subscript = `${reverse ? '−' : ''}${index + 1}`;
-	const of = stepWords(scheme.steps[index], reverse);
-	if (quantity === 'kRef') return { letter: 'k', subscript, of, kind: 'rate constant' };
-	if (quantity === 'equilibriumConstant')
-		return {
-			letter: 'K',
-			subscript: String(index + 1),
-			of: stepWords(scheme.steps[index]),
-			kind: 'equilibrium constant'
-		};
-	if (quantity === 'enthalpy') return { letter: 'ΔH', subscript: String(index + 1), of, kind: 'energy' };
-	return { letter: 'E', subscript, of, kind: 'energy' };
-}
-
-/** `runNames` maps the run's id inside the fit to what people call it. */
-export function parameterName(
-	id: string,
-	scheme: SchemeContent,
-	runNames: Record<string, string> = {}
-): ParameterName {
-	const step = ofStep(id, scheme);
-	if (step) return step;
-	const charge = /^(.+)\.initial\.(.+)$/.exec(id);
-	if (charge)
-		return {
-			letter: charge[2],
-			subscript: '0',
-			of: `charge, ${runNames[charge[1]] ?? charge[1]}`,
-			kind: 'charge'
-		};
-	const offset = /^(.+)\.timeOffset$/.exec(id);
-	if (offset)
-		return {
-			letter: 't',
-			subscript: '0',
-			of: `time zero, ${runNames[offset[1]] ?? offset[1]}`,
-			kind: 'time offset'
-		};
-	const factor = /^(.+)\.responseFactor$/.exec(id);
-	if (factor)
-		return { letter: 'f', subscript: factor[1], of: `response of ${factor[1]}`, kind: 'response factor' };
-	return { letter: id, subscript: '', of: '', kind: 'other' };
-}
-
-/** One plain string, for sentences and tables of text. */
-export const plainName = (name: ParameterName): string =>
-	`${name.letter}${name.subscript.replace(/[0-9−]/g, (c) => SUBSCRIPTS[c])}`;
-
-const SUBSCRIPTS: Record<string, string> = {
-	'0': '₀',
-	'1': '₁',
-	'2': '₂',
-	'3': '₃',
-	'4': '₄',
-	'5': '₅',
-	'6': '₆',
-	'7': '₇',
-	'8': '₈',
-	'9': '₉',
-	'−': '₋'
-};
+export {
+	inPlainWords,
+	parameterName,
+	plainName,
+	stepWords,
+	type ParameterName
+} from '$lib/kinetics/parameter-names';
 
 const NUMBERS = ['no', 'one', 'two', 'three', 'four', 'five', 'six', 'seven', 'eight', 'nine', 'ten'];
 const numberWord = (n: number): string => NUMBERS[n] ?? String(n);
@@ -122,7 +34,7 @@ export function headline(
 ): string {
 	if (report.status === 'failed') return `The fit failed: ${report.message}`;
 	const stop = report.findings.find((f) => f.level === 'stop');
-	if (stop) return stop.message;
+	if (stop) return inPlainWords(stop.message, scheme, runNames);
 	if (report.status === 'not converged')
 		return 'The search ended before it settled; do not use these constants yet.';
 	const fitted = report.parameters.filter((p) => p.state === 'fitted' || p.state === 'at bound');

@@ -31,22 +31,29 @@ export function spanText(span: Span, unit: string): string {
 	return span.to === null ? `from ${from} ${unit} on` : `${from} to ${significant(span.to, 3)} ${unit}`;
 }
 
-/** End of the time axis that shows everything that happens: spans, maxima and stated times, with room. */
+/** Steps of 1, 2 or 5 times a power of ten, so that at most `wanted` of them fill the axis. */
+function roundStep(end: number, wanted: number): number {
+	const raw = end / wanted;
+	const power = 10 ** Math.floor(Math.log10(raw));
+	return [1, 2, 5, 10].map((m) => m * power).find((step) => step >= raw) ?? 10 * power;
+}
+
+/** End of a time axis, at a round mark, that shows everything that happens: spans and maxima, with room. */
 export function axisEnd(result: FirstFormResult): number {
 	const spans = [...result.criteria.flatMap((c) => c.spans), ...(result.hold?.spans ?? [])];
 	const times = [
 		...spans.flatMap((s) => [s.from, s.to ?? s.from]),
 		...result.maxima.filter((m) => m.kind === 'interior').map((m) => m.time.value ?? 0)
 	].filter((t) => Number.isFinite(t));
-	const last = Math.max(0, ...times);
-	return last > 0 ? last * 1.25 : 1;
+	const last = Math.max(0, ...times) * 1.2;
+	if (last === 0) return 1;
+	const step = roundStep(last, 8);
+	return Number((Math.ceil(last / step) * step).toPrecision(12));
 }
 
-/** Round marks for an axis from 0 to `end`: 1, 2 or 5 times a power of ten apart. */
+/** Round marks for an axis from 0 to `end`. */
 export function axisTicks(end: number, wanted = 8): number[] {
-	const raw = end / wanted;
-	const power = 10 ** Math.floor(Math.log10(raw));
-	const step = [1, 2, 5, 10].map((m) => m * power).find((s) => s >= raw) ?? 10 * power;
+	const step = roundStep(end, wanted);
 	const count = Math.floor(end / step + 1e-9);
 	return Array.from({ length: count + 1 }, (_, i) => Number((i * step).toPrecision(12)));
 }

@@ -7,7 +7,8 @@ import { submitRecipe } from '../recipes/submit-recipe';
 import { validateRecipe } from '../recipes/validate-recipe';
 import { computeWindow } from '../windows/compute-window';
 import { DEMO_PASSWORD } from './people';
-import type { Cast } from './ring-closure';
+import { CRITERIA } from './coupling';
+import type { Cast } from './steps';
 
 interface Basis {
 	studyId: string;
@@ -16,7 +17,7 @@ interface Basis {
 }
 
 const CHARGES: Record<string, Partial<RecipeContent['charges'][number]>> = {
-	A: { material: 'HX-14', assayPercent: 98.5, tolerancePercent: 1 },
+	A: { material: 'QN-7', assayPercent: 98.5, tolerancePercent: 1 },
 	solvent: { material: 'solvent QS-2 (invented)', densityKgPerL: 0.87, tolerancePercent: 2 }
 };
 
@@ -29,18 +30,18 @@ function complete(content: RecipeContent, confirmationRunId: string): RecipeCont
 			...CHARGES[c.id === 'solvent' ? 'solvent' : (c.species ?? '')]
 		})),
 		equipment: [
-			{ id: 'vessel', text: 'jacketed vessel, 630 L or more, rated for the solvent at 60 °C' },
+			{ id: 'vessel', text: 'jacketed vessel, 400 L or more, rated for the solvent at 60 °C' },
 			{ id: 'stirrer', text: 'agitation at 150 1/min or more; internal temperature logged every minute' }
 		],
 		ipc: [
 			{
 				id: 'ipc1',
 				operation: null,
-				atMin: 300,
+				atMin: 195,
 				test: 'A and C by the group’s assay method',
-				limit: 'A NMT 2 % of charge, C NLT 60 % of charge',
+				limit: 'A NMT 1.0 % of charge, C NMT 3.0 % of charge',
 				lagMin: 45,
-				ifNotMet: 'sample again after 30 min; tell the group lead if the hold would pass its end'
+				ifNotMet: 'sample again after 15 min; quench at the end of the hold in any case'
 			}
 		],
 		hazards: [
@@ -64,19 +65,16 @@ export async function seedRecipe(cast: Cast, of: Basis): Promise<void> {
 	const window = await computeWindow(chemist, {
 		fitId: of.fitId,
 		input: {
-			temperature: { value: 45, unit: 'degC' },
-			charge: { A: { value: 0.5, unit: 'mol/L' } },
-			criteria: [
-				{ species: 'A', relation: 'NMT', limit: 2, unit: '% of charge' },
-				{ species: 'C', relation: 'NLT', limit: 60, unit: '% of charge' }
-			]
+			temperature: { value: 40, unit: 'degC' },
+			charge: { A: { value: 0.4, unit: 'mol/L' } },
+			criteria: CRITERIA
 		}
 	});
 	const recipe = await createRecipe(chemist, {
 		studyId: of.studyId,
 		fitId: of.fitId,
 		windowId: window.id,
-		title: 'HX-14 ring closure at 45 °C',
+		title: 'QN-7 coupling at 40 °C',
 		scale: { value: 50, unit: 'kg' }
 	});
 	const draft = (await readRecipe(chemist, recipe.id)).shown;

@@ -1,5 +1,6 @@
 import { jobService } from '../jobs/service';
 import { actorFor, createPeople, GROUPS } from './people';
+import { seedCoupling } from './coupling';
 import { seedRingClosure } from './ring-closure';
 
 /** Fills an empty database: people and groups, one study finished through to a shared recipe, one in work. */
@@ -14,7 +15,9 @@ export async function seedDemo(): Promise<void> {
 		]);
 		const groupId = chemist.memberships.find((m) => m.groupName === GROUPS.route)!.groupId;
 		const holderId = reader.memberships.find((m) => m.groupName === GROUPS.pilot)!.groupId;
-		await seedRingClosure({ chemist, lead, groupId, holderId });
+		const cast = { chemist, lead, groupId, holderId };
+		await seedCoupling(cast);
+		await seedRingClosure(cast);
 	} finally {
 		await jobService.stop();
 	}

@@ -5,9 +5,40 @@ import type { FitOptions } from '$lib/schemas/fit';
 import type { Answer, Conditions } from '$lib/schemas/sheet';
 import { startFit } from '../fits/start-fit';
 import { jobEnd } from '../jobs/wait';
+import type { SchemeContent } from '$lib/schemas/scheme';
 import type { Actor } from '../policy';
 import { confirmRun, type ConfirmedRun } from '../sheets/confirm-run';
 import { receiveSheet } from '../sheets/receive-sheet';
+import { readStudy } from '../studies/read-study';
+import { saveScheme } from '../studies/save-scheme';
+
+/** Who plays in the demonstration. */
+export interface Cast {
+	chemist: Actor;
+	lead: Actor;
+	groupId: string;
+	/** Group that the finished recipe is shared with. */
+	holderId: string;
+}
+
+export const perHour = (value: number) => ({ value, unit: '1/h' });
+
+export function conditionsOf(celsius: number, molPerL: Record<string, number>): Conditions {
+	const charges = Object.entries(molPerL).map(([species, value]) => [species, { value, unit: 'mol/L' }]);
+	return {
+		temperature: { value: celsius, unit: 'degC' },
+		initial: Object.fromEntries(charges) as Conditions['initial'],
+		excess: {},
+		timeZero: 'end of addition'
+	};
+}
+
+/** Puts this content into the study's first scheme. */
+export async function drawScheme(actor: Actor, studyId: string, content: SchemeContent): Promise<string> {
+	const [first] = (await readStudy(actor, studyId)).schemes;
+	await saveScheme(actor, { schemeId: first.id, version: first.version, content });
+	return first.id;
+}
 
 export interface SheetToRun {
 	file: string;
@@ -40,6 +71,13 @@ export async function sheetToRun(actor: Actor, studyId: string, sheet: SheetToRu
 		answers,
 		name: sheet.name
 	});
+}
+
+/** One after the other, so that the runs are numbered in this order. */
+export async function runsOf(actor: Actor, studyId: string, sheets: SheetToRun[]): Promise<ConfirmedRun[]> {
+	const runs: ConfirmedRun[] = [];
+	for (const sheet of sheets) runs.push(await sheetToRun(actor, studyId, sheet));
+	return runs;
 }
 
 export async function fitRuns(
