@@ -1,5 +1,6 @@
 import type { FitReport, FitRequest } from '$lib/schemas/fit';
 import { isFitted } from '$lib/schemas/quantity';
+import { inPlainWords } from '$lib/kinetics/parameter-names';
 import { toSi } from '$lib/kinetics/units';
 import type { Tx } from '../database';
 import { Fit, FitRun, Run, RunRevision, Scheme, SchemeVersion } from '../database/models';
@@ -68,6 +69,17 @@ export async function fitFacts(studyId: string, fitId: unknown, tx?: Tx): Promis
 		schemeNumber: schemeVersion?.number ?? 1,
 		runs
 	};
+}
+
+/** What the fit found, with runs and constants named as people see them. */
+export function findingsInWords(fit: Fit): FitReport['findings'] {
+	const runNames = Object.fromEntries(
+		fit.request.runs.flatMap(({ id }) => (id ? [[id, id.replace(/^r(\d+)$/, 'run $1')]] : []))
+	);
+	return fit.report.findings.map((finding) => ({
+		...finding,
+		message: inPlainWords(finding.message, fit.request, runNames)
+	}));
 }
 
 const perHour = (value: number, unit: string): number | null => {

@@ -11,7 +11,7 @@ import {
 	type ConfirmationCandidate
 } from './confirmation';
 import { findRecipe, findVersion } from './find';
-import { fitRuns } from './fit-facts';
+import { findingsInWords, fitRuns } from './fit-facts';
 import { holdersOf, type Holder } from './holders';
 import { wrote } from './validate-recipe';
 import { versionView, type VersionView } from './version-view';
@@ -146,7 +146,9 @@ export async function readRecipe(actor: Actor, recipeId: string, number?: number
 			id: fit.id,
 			number: fit.number,
 			status: fit.report.status,
-			stops: fit.report.findings.filter((f) => f.level === 'stop').map((f) => f.message),
+			stops: findingsInWords(fit)
+				.filter((f) => f.level === 'stop')
+				.map((f) => f.message),
 			parameters: fit.report.parameters.filter((p) => p.id.endsWith('.kRef')).map((p) => p.id)
 		},
 		fitRuns: runs.map((r) => ({ number: r.number, revision: r.revision })),
