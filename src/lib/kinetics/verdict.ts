@@ -2,11 +2,11 @@
  * Whether the closed form may be used, and how far.
  *
  * A species' rounding error is at most ROUNDING of `form.size[s]`. When that is below 1e-13 of the total charge for every
- * species, the closed form stands on its own. Otherwise (stiff reversible components, rates that nearly agree, general
+ * species, and value and slope at t = 0 are those of the charge, the closed form stands on its own. Otherwise (stiff reversible components, rates that nearly agree, general
  * components, whose eigenvalues have no relative accuracy) it is compared with the non-negative evaluation at times spread
  * over every mode; it must agree to 1e-13 of the total charge, and to 5e-14 of each species' own terms.
  */
-import { basis, termPeaks, type ClosedForm } from './closed-form';
+import { basis, basisSlope, termPeaks, type ClosedForm } from './closed-form';
 import { ExtendedPropagator } from './extended';
 import { finalComposition } from './final-composition';
 import type { ModeGroup } from './mode-groups';
@@ -29,6 +29,8 @@ export interface Judgement {
 
 /** Rounding of a closed form as a fraction of the absolute values that it is made of. */
 const ROUNDING = 1e-15;
+/** The same at t = 0, with room for the sums that are compared. */
+const START_ROUNDING = 1e-14;
 /** Error that is let pass without comparison, and the agreement asked for in a comparison, of the total charge. */
 const TOLERANCE = 1e-13;
 /** Agreement asked for in a comparison, of the species' own terms. */
@@ -58,7 +60,8 @@ export function judge(
 	const bound = top * ROUNDING;
 	const finite = space.usable && Number.isFinite(bound);
 	const base = { smallest: SMALLEST, exactAmplitudes };
-	if (finite && bound <= TOLERANCE * total && !space.kinds.includes('general'))
+	const bounded = finite && bound <= TOLERANCE * total && !space.kinds.includes('general');
+	if (bounded && startsRight(system, charge, form))
 		return {
 			...base,
 			method: structure,
@@ -83,6 +86,35 @@ export function judge(
 	if (found.error > bound + PROPAGATOR_ERROR * sums * total && !space.kinds.includes('general'))
 		return { ...rejected, ...decide(system, charge, found.worstTimeS, exact(), total) };
 	return { ...rejected, method: 'uniformisation', errorEstimate: PROPAGATOR_ERROR * sums };
+}
+
+/** Value and slope at t = 0 against the charge and the flows from it: what a wrong closed form would hardly meet by chance. */
+function startsRight(system: LinearSystem, charge: Float64Array, form: ClosedForm): boolean {
+	const { n, width } = form;
+	const phi = new Float64Array(2 * width);
+	const turn = phi.subarray(width);
+	basis(form, 0, phi);
+	basisSlope(form, phi, turn);
+	const flow = new Float64Array(n);
+	let fastest = 0;
+	for (let s = 0; s < n; s++) {
+		flow[s] = -system.outflow[s] * charge[s];
+		fastest = Math.max(fastest, system.outflow[s]);
+	}
+	for (const { from, to, rate, coefficient } of system.transfers)
+		flow[to] += rate * coefficient * charge[from];
+	for (let s = 0, at = 0; s < n; s++) {
+		let value = 0;
+		let slope = 0;
+		for (let l = 0; l < width; l++, at++) {
+			value += form.amplitudes[at] * phi[l];
+			slope += form.amplitudes[at] * turn[l];
+		}
+		const room = START_ROUNDING * form.size[s];
+		if (!(Math.abs(value - charge[s]) <= room && Math.abs(slope - flow[s]) <= 2 * room * fastest))
+			return false;
+	}
+	return true;
 }
 
 /** A species of a single exact term is right to rounding however small. */
