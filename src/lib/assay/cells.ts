@@ -58,10 +58,10 @@ const percentOf = (value: number) => Number((value * 100).toPrecision(15));
 
 /** Reads a text in the place of a value. */
 export function readValueText(raw: string, decimal: Decimal | null): CellReading {
-	const text = raw.replace(/[\s\u00a0]+/g, ' ').trim();
-	if (text === '') return { kind: 'blank' };
 	const number = asNumber(raw.trim(), decimal);
 	if (number) return number;
+	const text = raw.replace(/[\s\u00a0]+/g, ' ').trim();
+	if (text === '') return { kind: 'blank' };
 	const word = valueWord(text);
 	if (word) return ofWord(word, text);
 	const limit = /^(<|≤|<=|＜|&lt;|>|≥|>=|＞)\s*(.+)$/.exec(text);
@@ -131,6 +131,7 @@ export function isValueLike(reading: CellReading): boolean {
 
 /** The texts of a file that vote on its decimal convention: the number in a cell without limit sign and unit. */
 export function numberPart(text: string): string {
+	if (/^[\d.,]+$/.test(text)) return text;
 	return text
 		.trim()
 		.replace(/^(?:<=?|>=?|≤|≥)\s*/, '')

@@ -33,7 +33,8 @@ export const channelName = (c: Channel): string =>
 	c.peak === undefined ? `${c.label} (column ${columnLetter(c.column)})` : `${c.label} (peak "${c.peak}")`;
 
 /** Part of a finding's id: the column or the peak, which other answers do not change. */
-export const channelKey = (c: Channel): string => (c.peak === undefined ? columnLetter(c.column) : `peak-${c.peak}`.slice(0, 120));
+export const channelKey = (c: Channel): string =>
+	c.peak === undefined ? columnLetter(c.column) : `peak-${c.peak}`.slice(0, 120);
 
 /** Where a question about the whole column points: its header cell. */
 export function headerCell(ex: Examination, column: number): string {

@@ -1,5 +1,6 @@
 /** Reading access to a workbook as received: cells by address, what a person saw in them, what is hidden. */
-import { CELL, type CellStyle, type GridCell, type GridSheet, type GridWorkbook } from '$lib/schemas/sheet';
+import { CELL } from '$lib/schemas/cell-flags';
+import type { CellStyle, GridCell, GridSheet, GridWorkbook } from '$lib/schemas/sheet';
 import { formatNumber } from './number-format';
 
 /** "A" for 1, "XFD" for 16384. */

@@ -33,6 +33,9 @@ export interface NumberText {
 
 /** Both readings of a text; null when it is not a number under either. */
 export function numberText(text: string): NumberText | null {
+	const simple = simpleNumber(text);
+	if (simple) return simple;
+	if (!/\d/.test(text) || text.length > 80) return null;
 	const trimmed = text.replace(MINUS, '-').trim();
 	const inner = trimmed.replace(/^([+-])[\s\u00a0]+/, '$1');
 	if (/\d[\s\u00a0\u2000-\u200a\u202f]+[\d]/.test(inner) && !SPACED.test(inner)) return null;
@@ -41,6 +44,24 @@ export function numberText(text: string): NumberText | null {
 	const point = readAs(plain, '.');
 	const comma = readAs(plain, ',');
 	return point === null && comma === null ? null : { point, comma };
+}
+
+/** The common case without regular expressions: digits with at most one separator that cannot part thousands. */
+function simpleNumber(text: string): NumberText | null {
+	let separator = -1;
+	const start = text.charCodeAt(0) === 45 ? 1 : 0;
+	for (let i = start; i < text.length; i++) {
+		const code = text.charCodeAt(i);
+		if (code >= 48 && code <= 57) continue;
+		if ((code !== 46 && code !== 44) || separator >= 0 || i === start || i === text.length - 1) return null;
+		separator = i;
+	}
+	if (text.length === start || text.length > 20) return null;
+	if (separator < 0) return { point: Number(text), comma: Number(text) };
+	// Three digits behind one to three others: may be thousands.
+	if (text.length - separator === 4 && separator - start <= 3 && text.charCodeAt(start) !== 48) return null;
+	if (text.charCodeAt(separator) === 46) return { point: Number(text), comma: null };
+	return { point: null, comma: Number(text.slice(0, separator) + '.' + text.slice(separator + 1)) };
 }
 
 function readAs(text: string, decimal: Decimal): number | null {

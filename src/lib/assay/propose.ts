@@ -138,7 +138,18 @@ function increases(view: SheetView, found: FoundTable, column: number): boolean 
 	return count >= 3;
 }
 
+const knownFacts = new WeakMap<FoundTable, Map<number, ColumnFacts>>();
+
+/** Counted once for each column of a table. */
 export function factsOf(view: SheetView, found: FoundTable, column: number): ColumnFacts {
+	const own = knownFacts.get(found) ?? new Map<number, ColumnFacts>();
+	knownFacts.set(found, own);
+	const facts = own.get(column) ?? countFacts(view, found, column);
+	own.set(column, facts);
+	return facts;
+}
+
+function countFacts(view: SheetView, found: FoundTable, column: number): ColumnFacts {
 	const facts = { numbers: 0, texts: 0, distinct: 0 };
 	const distinct = new Set<string>();
 	for (let r = found.block.firstRow; r <= found.block.lastRow; r++) {

@@ -43,17 +43,13 @@ export function lookAt(workbook: GridWorkbook, row: GridRow): RowLook {
 
 function take(look: RowLook, workbook: GridWorkbook, cell: GridCell, reading: CellReading): void {
 	const column = cell[0];
-	const text = displayText(workbook, cell).trim();
 	if (reading.kind === 'error' || reading.kind === 'uncomputed') {
 		look.values.push(column);
 		return;
 	}
-	if (
-		typeof cell[1] === 'number' ||
-		reading.kind === 'number' ||
-		reading.kind === 'undecided' ||
-		isTimeText(cell, text)
-	) {
+	const known = typeof cell[1] === 'number' || reading.kind === 'number' || reading.kind === 'undecided';
+	const text = known ? '' : displayText(workbook, cell).trim();
+	if (known || isTimeText(cell, text)) {
 		look.numbers.push(column);
 		look.values.push(column);
 		return;

@@ -144,10 +144,16 @@ export function countVotes(
 					cell[0] <= block.lastColumn &&
 					cell[1].length < 60
 				)
-					vote(votes, numberPart(cell[1]), `${sheet}!${address(row.r, cell[0])}`);
+					voteCell(votes, cell[1], sheet, row.r, cell[0]);
 		}
 	}
 	return votes;
+}
+
+/** A text without a separator says nothing; most texts of a table are like that or plain. */
+function voteCell(votes: DecimalVotes, text: string, sheet: string, row: number, column: number): void {
+	if (!text.includes('.') && !text.includes(',')) return;
+	vote(votes, numberPart(text), `${sheet}!${address(row, column)}`);
 }
 
 /** B29: hidden rows, columns and sheets, active filters. Rows that the person leaves out are returned. */

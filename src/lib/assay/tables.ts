@@ -46,12 +46,18 @@ export function tableOf(workbook: GridWorkbook, mapping: Mapping): FoundTable | 
 	);
 }
 
+const counted = new WeakMap<GridWorkbook, DecimalVotes>();
+
 /** What the cells of all tables say about the decimal sign of the file. */
-export const votesOf = (workbook: GridWorkbook, mapping?: Mapping): DecimalVotes => {
-	const blocks = tablesOf(workbook).map(({ sheet, block }) => ({ sheet, block }));
-	if (mapping && !tableOf(workbook, mapping)) blocks.push({ sheet: mapping.sheet, block: mapping.block });
-	return countVotes(workbook, blocks);
-};
+export function votesOf(workbook: GridWorkbook, mapping?: Mapping): DecimalVotes {
+	const drawn =
+		mapping && !tableOf(workbook, mapping) ? [{ sheet: mapping.sheet, block: mapping.block }] : [];
+	const before = counted.get(workbook);
+	if (before && drawn.length === 0) return before;
+	const votes = countVotes(workbook, [...tablesOf(workbook), ...drawn]);
+	if (drawn.length === 0) counted.set(workbook, votes);
+	return votes;
+}
 
 export function headersOf(view: SheetView, mapping: Mapping): Map<number, ColumnHeader> {
 	return new Map(readHeaders(view, mapping.headerRows, mapping.block).map((h) => [h.column, h]));

@@ -30,15 +30,7 @@ export const cellStyleSchema = z.object({
 });
 export type CellStyle = z.infer<typeof cellStyleSchema>;
 
-/** Bits of a cell's fourth place. */
-export const CELL = {
-	formula: 1,
-	error: 2,
-	/** A formula without a stored result. */
-	uncomputed: 4,
-	/** Text that the file marks as text (leading apostrophe). */
-	quoted: 8
-} as const;
+export { CELL } from './cell-flags';
 
 /**
  * [column, value, style, flags]: column counts from 1; style is an index into `workbook.styles` (0, plain, when left out);

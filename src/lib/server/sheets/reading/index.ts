@@ -17,7 +17,7 @@ export { LIMITS, type ReadingLimits } from './limits';
 /** Workers at the same time, and readings that may wait for one. */
 const AT_ONCE = 2;
 const WAITING = 100;
-const HEAP_MB = 160;
+const HEAP_MB = 224;
 
 let running = 0;
 const queue: (() => void)[] = [];

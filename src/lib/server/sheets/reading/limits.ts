@@ -11,6 +11,8 @@ export interface ReadingLimits {
 	cells: number;
 	/** Cell and row elements without a value, over all sheets. */
 	emptyElements: number;
+	/** XML elements of one part. */
+	elements: number;
 	/** Characters of text in all cells together (a shared text counts each time it is used). */
 	textCharacters: number;
 	sheets: number;
@@ -23,8 +25,9 @@ export const LIMITS: ReadingLimits = {
 	members: 2_000,
 	unfoldedBytes: 64 * 1024 * 1024,
 	declaredBytes: 256 * 1024 * 1024,
-	cells: 400_000,
+	cells: 300_000,
 	emptyElements: 250_000,
+	elements: 2_000_000,
 	textCharacters: 8_000_000,
 	sheets: 100,
 	merges: 5_000,

@@ -1,7 +1,7 @@
 /** The parts of an .xlsx package (ECMA-376-2): what kind of file it is, and where its parts lie. */
 import type { ReadingLimits } from './limits';
 import { damaged, SheetRefusal } from './refusal';
-import { xmlReader, type XmlEvents } from './xml';
+import { XmlReader, type XmlEvents } from './xml';
 import { readDirectory, unfold, UnfoldBudget, type ZipMember } from './zip';
 
 export interface Relation {
@@ -16,7 +16,7 @@ export class Package {
 
 	constructor(
 		private readonly bytes: Uint8Array,
-		limits: ReadingLimits
+		private readonly limits: ReadingLimits
 	) {
 		this.members = readDirectory(bytes, limits);
 		this.budget = new UnfoldBudget(limits);
@@ -31,7 +31,7 @@ export class Package {
 	read(name: string, events: XmlEvents): void {
 		const member = this.members.get(name);
 		if (!member) throw damaged(`the part "${name}" is missing`);
-		const reader = xmlReader(name, events);
+		const reader = new XmlReader(name, events, this.limits.elements);
 		unfold(this.bytes, member, this.budget, (piece) => reader.write(piece));
 		reader.finish();
 	}

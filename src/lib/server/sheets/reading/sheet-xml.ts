@@ -1,11 +1,13 @@
 /** One worksheet part as a stream: cells with a value, and the facts about rows and columns that the reader needs. */
 import { columnNumber } from '$lib/assay/grid';
 import { calendarToSerial } from '$lib/assay/number-format';
-import { CELL, type CellValue, type GridCell, type GridSheet } from '$lib/schemas/sheet';
+import { CELL } from '$lib/schemas/cell-flags';
+import type { CellValue, GridCell, GridSheet } from '$lib/schemas/sheet';
 import { CELL_TEXT, type ReadingLimits } from './limits';
 import type { Package } from './package';
 import { damaged, SheetRefusal } from './refusal';
 import type { StyleTable } from './styles';
+import { ownText } from './xml';
 
 /** Counts cells and text over all sheets of a workbook. */
 export class CellBudget {
@@ -120,7 +122,7 @@ class SheetReader {
 	}
 
 	text(text: string): void {
-		if (this.collecting && this.value.length <= CELL_TEXT) this.value += text;
+		if (this.collecting && this.value.length <= CELL_TEXT) this.value += text.slice(0, CELL_TEXT);
 	}
 
 	close(name: string): void {
@@ -191,7 +193,8 @@ class SheetReader {
 		if (styles.quoted.has(this.format)) flags |= CELL.quoted;
 		let value: CellValue;
 		if (this.type === 's') value = this.shared(strings);
-		else if (this.type === 'str' || this.type === 'inlineStr') value = this.value.slice(0, CELL_TEXT);
+		else if (this.type === 'str' || this.type === 'inlineStr')
+			value = ownText(this.value.slice(0, CELL_TEXT));
 		else if (this.value === '') value = null;
 		else if (this.type === 'b') value = this.value.trim() === '1' || this.value.trim() === 'true';
 		else if (this.type === 'e') {

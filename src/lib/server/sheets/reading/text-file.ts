@@ -1,9 +1,11 @@
 /** Text tables (.csv, .tsv, .txt, clipboard): encoding, separator, cells. Every cell stays text; numbers are read later by rule. */
-import Papa from 'papaparse';
 import type { GridCell, GridRow, GridWorkbook } from '$lib/schemas/sheet';
 import { utf16Of } from './detect';
 import { CELL_TEXT, type ReadingLimits } from './limits';
 import { SheetRefusal } from './refusal';
+import { readRows } from './separated';
+
+const MOST_COLUMNS = 16_384;
 
 /** @throws SheetRefusal */
 export function readText(bytes: Uint8Array, fileName: string, limits: ReadingLimits): GridWorkbook {
@@ -30,26 +32,22 @@ export function gridOfText(
 	let count = 0;
 	let characters = 0;
 	let r = declared ? 1 : 0;
-	Papa.parse<string[]>(body, {
-		delimiter,
-		skipEmptyLines: false,
-		step: (result) => {
-			r++;
-			const cells = cellsOf(result.data);
-			count += cells.length;
-			characters += cells.reduce((sum, c) => sum + (c[1] as string).length, 0);
-			if (count > limits.cells || characters > limits.textCharacters || r > 1_048_576)
-				throw new SheetRefusal(
-					'too-many-cells',
-					`The file holds more than is read at once (${limits.cells.toLocaleString('en')} cells). Keep only the rows with assay values.`
-				);
-			if (cells.length === 0) return;
-			rows.push({ r, c: cells });
-			lastColumn = Math.max(lastColumn, cells[cells.length - 1][0]);
-		}
+	readRows(body, delimiter, MOST_COLUMNS, (data) => {
+		r++;
+		const cells = cellsOf(data);
+		count += cells.length;
+		characters += cells.reduce((sum, c) => sum + (c[1] as string).length, 0);
+		if (count > limits.cells || characters > limits.textCharacters || r > 1_048_576)
+			throw new SheetRefusal(
+				'too-many-cells',
+				`The file holds more than is read at once (${limits.cells.toLocaleString('en')} cells). Keep only the rows with assay values.`
+			);
+		if (data.length > MOST_COLUMNS)
+			throw new SheetRefusal('too-many-cells', 'The file has more columns than a sheet can have (16 384).');
+		if (cells.length === 0) return;
+		rows.push({ r, c: cells });
+		lastColumn = Math.max(lastColumn, cells[cells.length - 1][0]);
 	});
-	if (lastColumn > 16_384)
-		throw new SheetRefusal('too-many-cells', 'The file has more columns than a sheet can have (16 384).');
 	if (rows.length === 0)
 		throw new SheetRefusal(
 			'empty',

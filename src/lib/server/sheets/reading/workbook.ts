@@ -5,6 +5,7 @@ import { Package, workbookPart } from './package';
 import { damaged, SheetRefusal } from './refusal';
 import { CellBudget, readSheet, type SheetSource } from './sheet-xml';
 import { readStyles } from './styles';
+import { ownText } from './xml';
 
 interface Listed {
 	name: string;
@@ -83,7 +84,7 @@ function readStrings(pack: Package, part: string | undefined, limits: ReadingLim
 			else if (name === 't') collecting = phonetic === 0;
 		},
 		text: (piece) => {
-			if (collecting && text.length <= CELL_TEXT) text += piece;
+			if (collecting && text.length <= CELL_TEXT) text += piece.slice(0, CELL_TEXT);
 		},
 		close: (name) => {
 			if (name === 't') collecting = false;
@@ -95,7 +96,7 @@ function readStrings(pack: Package, part: string | undefined, limits: ReadingLim
 						'too-many-cells',
 						'The workbook holds more text than is read at once. Keep only the sheet with the assay values.'
 					);
-				strings.push(text.slice(0, CELL_TEXT));
+				strings.push(ownText(text.slice(0, CELL_TEXT)));
 			}
 		}
 	});

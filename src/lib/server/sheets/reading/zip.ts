@@ -172,6 +172,12 @@ export class UnfoldBudget {
 	private used = 0;
 	constructor(private readonly limits: ReadingLimits) {}
 
+	/** Before anything is unfolded: what the member says of itself. */
+	expect(bytes: number): void {
+		if (this.used + bytes > this.limits.unfoldedBytes)
+			throw bomb(`it would unfold to more than ${megabytes(this.limits.unfoldedBytes)}`);
+	}
+
 	spend(bytes: number): void {
 		this.used += bytes;
 		if (this.used > this.limits.unfoldedBytes)
@@ -190,6 +196,7 @@ export function unfold(
 	sink: (piece: Uint8Array) => void
 ): void {
 	const data = bytes.subarray(member.start, member.start + member.packed);
+	budget.expect(member.unfolded);
 	let given = 0;
 	let crc = 0;
 	const take = (piece: Uint8Array) => {
