@@ -179,7 +179,7 @@ function drawUnits(chart: Chart, layer: Layer) {
 	ctx.fillText(layer.y.unit, 2, chartArea.top - 9);
 	ctx.textBaseline = 'top';
 	ctx.textAlign = 'left';
-	ctx.fillText(layer.x.unit, chartArea.right + 12, chartArea.bottom + 9);
+	ctx.fillText(layer.x.unit, chartArea.right + 22, chartArea.bottom + 11);
 	ctx.restore();
 }
 

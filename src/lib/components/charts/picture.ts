@@ -40,7 +40,7 @@ function axes(chart: Chart, layer: Layer): string {
 	}
 	out += `<line x1="${f(left)}" x2="${f(right)}" y1="${f(bottom)}" y2="${f(bottom)}" stroke="${palette.ink}"/>`;
 	out += words(2, top - 8, layer.y.unit, palette.soft);
-	return out + words(right + 12, bottom + 19, layer.x.unit, palette.soft);
+	return out + words(right + 22, bottom + 20, layer.x.unit, palette.soft);
 }
 
 function path(chart: Chart, xs: ArrayLike<number>, ys: ArrayLike<number>): string {

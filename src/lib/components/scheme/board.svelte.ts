@@ -129,7 +129,7 @@ export class Board {
 		if (to && zone !== drag.from) {
 			const words = placeWords(this.editor.content, zone);
 			this.editor.apply(draft.move(this.editor.content, drag.species, placeOf(drag.from), to));
-			announce(`${drag.species} is now ${words}.`);
+			announce(`${drag.species} is now the ${words}.`);
 		} else announce(`${drag.species} put back.`);
 		this.follow();
 		await tick();

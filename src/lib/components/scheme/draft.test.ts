@@ -90,7 +90,7 @@ describe('a scheme while it is drawn', () => {
 			value: 2,
 			unit: '1/h'
 		});
-		expect(draft.differences(mine, theirs).map((d) => d.label)).toEqual(['species C', 'step s1', 'step s2']);
+		expect(draft.differences(mine, theirs).map((d) => d.label)).toEqual(['species C', 'step 1', 'step 2']);
 		expect(draft.differences(mine, mine)).toEqual([]);
 		expect(draft.stepWords(mine.steps[0])).toBe('A → B (0.5 1/h)');
 	});

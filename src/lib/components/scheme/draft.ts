@@ -294,8 +294,12 @@ export function differences(mine: SchemeContent, theirs: SchemeContent) {
 	for (const id of new Set([...mySpecies.keys(), ...theirSpecies.keys()]))
 		compare(`species ${id}`, words(mySpecies.get(id)), words(theirSpecies.get(id)));
 	const [mySteps, theirSteps] = [by(mine.steps), by(theirs.steps)];
+	const stepLabel = (id: string) => {
+		const own = mine.steps.findIndex((s) => s.id === id) + 1;
+		return own ? `step ${own}` : `their step ${theirs.steps.findIndex((s) => s.id === id) + 1}`;
+	};
 	for (const id of new Set([...mySteps.keys(), ...theirSteps.keys()]))
-		compare(`step ${id}`, stepWords(mySteps.get(id)), stepWords(theirSteps.get(id)));
+		compare(stepLabel(id), stepWords(mySteps.get(id)), stepWords(theirSteps.get(id)));
 	const temperature = (c: SchemeContent) => `${c.referenceTemperature.value} ${c.referenceTemperature.unit}`;
 	compare('reference temperature', temperature(mine), temperature(theirs));
 	return rows;

@@ -1,26 +1,43 @@
 import { requireActor } from '$lib/server/hooks/actor';
 import { api } from '$lib/server/http';
-import { can } from '$lib/server/policy';
+import { can, type Actor } from '$lib/server/policy';
+import { listRecipes } from '$lib/server/recipes/list-recipes';
 import { listStudies } from '$lib/server/studies/list-studies';
 import type { RequestEvent } from './$types';
 
-const PER_GROUP = 6;
+const PER_GROUP = 5;
 
-/** Studies by part of their name or decision, in every group into which the person has insight. */
+interface Found {
+	kind: 'study' | 'recipe';
+	name: string;
+	note: string;
+	href: string;
+}
+type Membership = Actor['memberships'][number];
+
+async function studies(actor: Actor, { groupId, groupName }: Membership, filter: string): Promise<Found[]> {
+	if (!can(actor, groupId, 'study.read')) return [];
+	const { items } = await listStudies(actor, { groupId, filter, limit: PER_GROUP });
+	return items.map((s) => ({ kind: 'study', name: s.name, note: groupName, href: `/studies/${s.id}` }));
+}
+
+async function recipes(actor: Actor, { groupId, groupName }: Membership, filter: string): Promise<Found[]> {
+	if (!can(actor, groupId, 'recipe.read')) return [];
+	const { items } = await listRecipes(actor, { groupId, filter, limit: PER_GROUP });
+	return items.map((r) => ({
+		kind: 'recipe',
+		name: r.title,
+		note: `v${r.newest.number} ${r.newest.state}, ${groupName}`,
+		href: `/recipes/${r.id}`
+	}));
+}
+
+/** Studies and recipes by part of their name, in every group into which the person has insight. */
 export const GET = api(async (event: RequestEvent) => {
 	const actor = requireActor(event);
 	const filter = (event.url.searchParams.get('q') ?? '').slice(0, 80);
-	const groups = actor.memberships.filter((m) => can(actor, m.groupId, 'study.read'));
-	const pages = await Promise.all(
-		groups.map((m) => listStudies(actor, { groupId: m.groupId, filter, limit: PER_GROUP }))
+	const found = await Promise.all(
+		actor.memberships.flatMap((m) => [studies(actor, m, filter), recipes(actor, m, filter)])
 	);
-	const items = pages.flatMap((page, i) =>
-		page.items.map((study) => ({
-			kind: 'study',
-			name: study.name,
-			note: groups[i].groupName,
-			href: `/studies/${study.id}`
-		}))
-	);
-	return { items };
+	return { items: found.flat() };
 });
