@@ -15,15 +15,16 @@ import { evaluateLinear } from './affine';
 import type { LeastSquaresProblem } from './levenberg-marquardt';
 import type { Point } from './points';
 import type { KineticProblem, RunModel } from './problem';
+import { ProgramKernel } from './program-kernel';
 import { RunKernel } from './run-kernel';
 
 interface RunState {
 	model: RunModel;
-	kernel: RunKernel;
+	kernel: RunKernel | ProgramKernel;
 	constants: Float64Array;
 	charge: Float64Array;
 	times: Float64Array;
-	/** Directions and species whose derivatives the kernel gives, in its order. */
+	/** Directions (parameters, under a temperature log) and species whose derivatives the kernel gives, in its order. */
 	rates: number[];
 	charges: number[];
 	/** Species that no area-% channel of the run sees: they share the total with response factor one. */
@@ -50,7 +51,7 @@ export class KineticModel implements LeastSquaresProblem {
 		this.predictions = new Float64Array(this.m);
 		this.gradient = new Float64Array(this.p);
 		this.total = new Float64Array(this.p);
-		this.states = problem.runs.map((run) => prepare(run, problem.species.length));
+		this.states = problem.runs.map((run) => prepare(run, problem));
 	}
 
 	evaluate(x: Float64Array, residuals: Float64Array, jacobian: Float64Array): boolean {
@@ -89,6 +90,7 @@ export class KineticModel implements LeastSquaresProblem {
 		for (let i = 0; i < charge.length; i++) charge[i] = evaluateLinear(model.charge[i], x);
 		const shift = evaluateLinear(model.offset, x);
 		for (let k = 0; k < times.length; k++) times[k] = Math.max(0, model.timesS[k] + shift);
+		if (state.kernel instanceof ProgramKernel) return state.kernel.evaluate(x, charge, times);
 		return state.kernel.evaluate(constants, charge, times);
 	}
 
@@ -141,6 +143,10 @@ export class KineticModel implements LeastSquaresProblem {
 		const times = model.timesS.length;
 		for (let r = 0; r < rates.length; r++) {
 			const derivative = weight * kernel.rateDerivatives[(r * times + k) * n + i];
+			if (kernel instanceof ProgramKernel) {
+				gradient[rates[r]] += derivative;
+				continue;
+			}
 			const terms = model.lnRates[rates[r]].terms;
 			for (let q = 0; q < terms.length; q++) gradient[terms[q].free] += terms[q].coefficient * derivative;
 		}
@@ -158,15 +164,21 @@ export class KineticModel implements LeastSquaresProblem {
 	}
 }
 
-function prepare(model: RunModel, n: number): RunState {
-	const rates = model.lnRates.map((_, d) => d).filter((d) => model.lnRates[d].terms.length > 0);
+function prepare(model: RunModel, problem: KineticProblem): RunState {
+	const n = problem.species.length;
+	const program = model.log !== null;
+	const rates = program
+		? [...new Set(model.rateForms.flatMap((f) => [...f.base.terms, ...f.energy.terms].map((t) => t.free)))]
+		: model.lnRates.map((_, d) => d).filter((d) => model.lnRates[d].terms.length > 0);
 	const charges = model.charge.map((_, i) => i).filter((i) => model.charge[i].terms.length > 0);
 	const seen = new Set(model.channels.filter((c) => c.areaPercent).flatMap((c) => Array.from(c.species)));
 	const times = model.timesS.length;
 	const wantSlopes = model.offset.terms.length > 0;
 	return {
 		model,
-		kernel: new RunKernel(n, model.directions, times, rates, charges, wantSlopes),
+		kernel: program
+			? new ProgramKernel(model, problem.network.referenceTemperatureK, n, rates, charges)
+			: new RunKernel(n, model.directions, times, rates, charges, wantSlopes),
 		constants: new Float64Array(model.directions.length),
 		charge: new Float64Array(n),
 		times: new Float64Array(times),

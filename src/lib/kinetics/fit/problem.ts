@@ -36,13 +36,23 @@ export interface RunModel {
 	directions: Direction[];
 	/** Step and sense of each direction. */
 	names: { step: string; sense: 'forward' | 'reverse' }[];
+	/** ln k at the run's temperature. */
 	lnRates: Linear[];
+	/** The same at any temperature, for a run with a log. */
+	rateForms: RateForm[];
 	charge: Linear[];
 	offset: Linear;
 	channels: ChannelModel[];
 	points: Point[];
 	/** Measured temperature over time (recorded time in s, K), where there is a log. */
 	log: { timesS: Float64Array; temperaturesK: Float64Array } | null;
+}
+
+/** ln k(T) = base − energy·(1/T − 1/T_ref)/R [+ ln(T/T_ref) in Eyring's form]. */
+export interface RateForm {
+	base: Linear;
+	energy: Linear;
+	eyring: boolean;
 }
 
 export interface KineticProblem {
@@ -171,6 +181,7 @@ function compileRun(
 		directions: [],
 		names: [],
 		lnRates: [],
+		rateForms: [],
 		charge: network.species.map((s) =>
 			Object.hasOwn(run.initial, s.id) ? linearOf(slots, free, `${id}.initial.${s.id}`) : constantLinear(0)
 		),
@@ -210,15 +221,16 @@ function addDirections(
 		sense: 'forward' | 'reverse',
 		from: string,
 		products: Direction['products'],
-		lnRate: Linear
+		form: RateForm
 	) => {
-		if (lnRate.constant === -Infinity) return;
+		if (form.base.constant === -Infinity) return;
 		model.directions.push({ from: index.get(from)!, products });
 		model.names.push({ step, sense });
-		model.lnRates.push(lnRate);
+		model.rateForms.push(form);
+		model.lnRates.push(lnRateAt(form, model.temperatureK, network.referenceTemperatureK));
 	};
 	for (const step of network.steps) {
-		const law = (name: string, of: RateLaw) => lnRate(name, of, model, network, slots, free, excess);
+		const law = (name: string, of: RateLaw) => rateForm(name, of, slots, free, excess);
 		const forward = law(`${step.id}.forward`, step.forward);
 		const products = step.products.map((p) => ({ to: index.get(p.species)!, coefficient: p.coefficient }));
 		push(step.id, 'forward', step.reactant, products, forward);
@@ -227,33 +239,31 @@ function addDirections(
 			throw new RangeError(`step ${step.id} is reversible but not one to one; split it into two steps.`);
 		const reverse =
 			step.reverse.form === 'equilibrium'
-				? sumLinear(forward, scaleLinear(lnEquilibrium(step.id, model, network, slots, free), -1))
+				? throughEquilibrium(forward, step.id, slots, free)
 				: law(`${step.id}.reverse`, step.reverse);
-		push(
-			step.id,
-			'reverse',
-			step.products[0].species,
-			[{ to: index.get(step.reactant)!, coefficient: 1 }],
-			reverse
-		);
+		const back = [{ to: index.get(step.reactant)!, coefficient: 1 }];
+		push(step.id, 'reverse', step.products[0].species, back, reverse);
 	}
 }
 
-function lnRate(
+/** ln k of a direction at a temperature. */
+export function lnRateAt(form: RateForm, temperatureK: number, referenceK: number): Linear {
+	const gap = inverseTemperatureGap(temperatureK, referenceK);
+	return sumLinear(
+		form.base,
+		scaleLinear(form.energy, -gap / GAS_CONSTANT),
+		constantLinear(form.eyring ? Math.log(temperatureK / referenceK) : 0)
+	);
+}
+
+function rateForm(
 	name: string,
 	law: RateLaw,
-	model: RunModel,
-	network: Network,
 	slots: Map<string, Slot>,
 	free: Slot[],
 	excess: Record<string, number>
-): Linear {
+): RateForm {
 	const parts = [linearOf(slots, free, `${name}.kRef`)];
-	const gap = inverseTemperatureGap(model.temperatureK, network.referenceTemperatureK);
-	if (slots.has(`${name}.activationEnergy`))
-		parts.push(scaleLinear(linearOf(slots, free, `${name}.activationEnergy`), -gap / GAS_CONSTANT));
-	if (law.form === 'eyring')
-		parts.push(constantLinear(Math.log(model.temperatureK / network.referenceTemperatureK)));
 	for (const { species, order } of law.excess) {
 		const concentration = excess[species];
 		if (concentration === undefined || concentration < 0)
@@ -262,19 +272,28 @@ function lnRate(
 			);
 		parts.push(constantLinear(order === 0 ? 0 : order * Math.log(concentration)));
 	}
-	return sumLinear(...parts);
+	const energy = `${name}.activationEnergy`;
+	return {
+		base: sumLinear(...parts),
+		energy: slots.has(energy) ? linearOf(slots, free, energy) : constantLinear(0),
+		eyring: law.form === 'eyring'
+	};
 }
 
-function lnEquilibrium(
+/** k_reverse = k_forward/K: ln K and ΔH° are taken off. */
+function throughEquilibrium(
+	forward: RateForm,
 	step: string,
-	model: RunModel,
-	network: Network,
 	slots: Map<string, Slot>,
 	free: Slot[]
-): Linear {
-	const parts = [linearOf(slots, free, `${step}.reverse.equilibriumConstant`)];
-	const gap = inverseTemperatureGap(model.temperatureK, network.referenceTemperatureK);
-	if (slots.has(`${step}.reverse.enthalpy`))
-		parts.push(scaleLinear(linearOf(slots, free, `${step}.reverse.enthalpy`), -gap / GAS_CONSTANT));
-	return sumLinear(...parts);
+): RateForm {
+	const constant = linearOf(slots, free, `${step}.reverse.equilibriumConstant`);
+	const enthalpy = `${step}.reverse.enthalpy`;
+	return {
+		base: sumLinear(forward.base, scaleLinear(constant, -1)),
+		energy: slots.has(enthalpy)
+			? sumLinear(forward.energy, scaleLinear(linearOf(slots, free, enthalpy), -1))
+			: forward.energy,
+		eyring: forward.eyring
+	};
 }
