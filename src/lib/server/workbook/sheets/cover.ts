@@ -33,7 +33,7 @@ export function writeCover(sheet: SheetWriter, input: WorkbookInput, layout: Lay
 	const cells = layout.checks.map((c) => on(c.sheet, c.cell));
 	const agrees = layout.checks.every((c) => c.agrees);
 	const differs = 'differs from signed values';
-	sheet.formula(4, 2, `IF(AND(${cells.join(',')}),TRUE,"${differs}")`, agrees ? true : differs);
+	sheet.formula(4, 2, `IF(AND(${cells.join(',')}),TRUE(),"${differs}")`, agrees ? true : differs);
 	layout.checks.forEach((c, i) => {
 		sheet.text(5 + i, 1, c.sheet);
 		sheet.formula(5 + i, 2, on(c.sheet, c.cell), c.agrees);

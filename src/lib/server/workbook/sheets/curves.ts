@@ -57,7 +57,7 @@ export function writeCurves(sheet: SheetWriter, plan: RecalculationPlan, layout:
 	});
 	const agrees = true;
 	sheet.text(3, 1, 'All agree');
-	sheet.formula(3, 2, checks.length ? `AND(${checks.join(',')})` : 'TRUE', agrees);
+	sheet.formula(3, 2, checks.length ? `AND(${checks.join(',')})` : 'TRUE()', agrees);
 	layout.checks.push({ sheet: SHEETS.curves, cell: at(3, 2), agrees });
 	sheet.finish();
 }

@@ -20,7 +20,7 @@ export function writeVerify(sheet: SheetWriter, plan: RecalculationPlan, layout:
 		row = writeRun(sheet, plan, run, r, row, layout, checks) + 1;
 	});
 	sheet.text(3, 1, 'Step lengths small enough');
-	sheet.formula(3, 2, checks.length ? `AND(${checks.join(',')})` : 'TRUE', true);
+	sheet.formula(3, 2, checks.length ? `AND(${checks.join(',')})` : 'TRUE()', true);
 	layout.checks.push({ sheet: SHEETS.verify, cell: at(3, 2), agrees: true });
 	sheet.finish();
 }
