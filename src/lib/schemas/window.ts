@@ -138,3 +138,81 @@ export interface FirstFormResult {
 	seed: number;
 	engineVersion: string;
 }
+
+/** Temperature × time: where every criterion holds, and in which share of the draws. */
+export const windowMapRequest = z.strictObject({
+	temperatures: z.strictObject({
+		from: quantity,
+		to: quantity,
+		count: z.int().min(2).max(200).default(60)
+	}),
+	times: z.strictObject({ from: quantity, to: quantity, count: z.int().min(2).max(400).default(60) }),
+	charge: z.record(id, quantity),
+	excess: z.record(id, quantity).default({}),
+	criteria: z.array(criterionSchema).min(1).max(20),
+	responseFactors: z.record(id, z.number().positive()).default({}),
+	timeUnit: z.enum(WINDOW_TIME_UNITS).default('h'),
+	/** Asked of every point of the rectangle. */
+	probability: z.number().min(0.5).max(0.999).default(0.95),
+	draws: z.int().min(200).max(20_000).default(2_000),
+	seed: z
+		.int()
+		.min(0)
+		.max(2 ** 31 - 1)
+		.default(1),
+	/** A set-point with its tolerances, to be held against the map. */
+	setPoint: z
+		.strictObject({
+			temperature: quantity,
+			temperatureTolerance: z.number().nonnegative(),
+			time: quantity,
+			/** In the unit of `time`. */
+			timeTolerance: z.number().nonnegative()
+		})
+		.optional()
+});
+export type WindowMapRequest = z.infer<typeof windowMapRequest>;
+export type WindowMapRequestInput = z.input<typeof windowMapRequest>;
+
+export interface WindowRectangle {
+	temperatureC: [number, number];
+	/** In the map's time unit. */
+	time: [number, number];
+	/** Lowest probability at any point of the map inside. */
+	lowestProbability: number;
+}
+
+export interface SetPointAnswer {
+	/** True where every point looked at meets every criterion at the estimates and with the asked probability. */
+	robust: boolean;
+	/** The point of the box that is worst. */
+	worst: { temperatureC: number; time: number; probability: number; binds: number };
+	sentence: string;
+}
+
+export interface WindowMapResult {
+	kind: 'map';
+	summary: string;
+	temperaturesC: number[];
+	times: number[];
+	timeUnit: WindowTimeUnit;
+	/** Temperature-major: probability[i·times + k]. Null where no draws could be made. */
+	probability: number[] | null;
+	/** Whether every criterion holds at the estimates, temperature-major. */
+	holds: boolean[];
+	/** How far inside its limit the tightest criterion is at the estimates, as a share of the limit; negative: exceeded. */
+	margin: number[];
+	/** That criterion's place in the list. */
+	binds: number[];
+	/** Temperatures outside the studied range. */
+	outsideStudied: boolean[];
+	/** Candidate operating window: the largest rectangle that holds at the asked probability; null: there is none. */
+	rectangle: WindowRectangle | null;
+	setPoint: SetPointAnswer | null;
+	criteria: string[];
+	notes: FirstFormResult['notes'];
+	draws: number;
+	drawsLeftOut: number;
+	seed: number;
+	engineVersion: string;
+}
