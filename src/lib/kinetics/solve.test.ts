@@ -136,6 +136,13 @@ describe('exact cases', () => {
 	});
 });
 
+/** Constants 3 % apart: too far to group, too near to tell apart. */
+function closeChain(n: number): LinearSystem {
+	const builder = new SystemBuilder(n);
+	for (let i = 0; i + 1 < n; i++) builder.step(i, [[i + 1, 1]], 1 + 0.03 * i);
+	return builder.build();
+}
+
 describe('promises of a solution', () => {
 	const system = new SystemBuilder(5)
 		.step(0, [[1, 1]], 1)
@@ -169,6 +176,36 @@ describe('promises of a solution', () => {
 		const curves = solution.curves(times);
 		for (const k of [0, 1, 2, 17, 500, 1999])
 			solution.at(times[k]).forEach((c, i) => expect(Math.abs(curves[k * 5 + i] - c)).toBeLessThan(4e-15));
+	});
+	it.each<[string, LinearSystem]>([
+		[
+			'pairs',
+			new SystemBuilder(3)
+				.step(0, [[1, 1]], 1)
+				.step(1, [[2, 1]], 1)
+				.step(2, [[0, 1]], 1)
+				.build()
+		],
+		[
+			'equal constants',
+			new SystemBuilder(4)
+				.step(0, [[1, 1]], 1)
+				.step(1, [[2, 1]], 1)
+				.step(2, [[3, 1]], 1)
+				.build()
+		],
+		['a chain without a usable closed form', closeChain(12)]
+	])('draws grids of %s as extended precision does', (_, other) => {
+		const exact = new ExtendedPropagator(other);
+		const times = Float64Array.from({ length: 101 }, (__, k) => k * 0.2);
+		const curves = solve(other, first(other.n)).curves(times);
+		for (const k of [0, 1, 3, 40, 100])
+			exact
+				.apply(times[k], first(other.n))
+				.forEach((c, i) => expect(Math.abs(curves[k * other.n + i] - c)).toBeLessThan(1e-13));
+	});
+	it('draws the last of those by the non-negative way, and says so', () => {
+		expect(solve(closeChain(12), first(12)).method).toBe('uniformisation');
 	});
 	it('gives the slope of its own curve', () => {
 		const solution = solve(system, first(5));
