@@ -126,8 +126,8 @@ function headersAbove(view: SheetView, looks: RowLook[], start: number, used: nu
 		const look = looks[k];
 		const gap = below - look.r - 1;
 		if (gap > (headerRows.length === 0 ? 1 : 0)) break;
-		if (isLimitRow(look) && look.values.length > 0) {
-			limitRows.push(look.r);
+		if (isLimitRow(look)) {
+			if (look.values.length > 0) limitRows.push(look.r);
 			below = look.r;
 			continue;
 		}

@@ -173,10 +173,11 @@ export function massBalance(
 		used.map((r) => r.percent)
 	);
 	const slope = line && { ...line, unit: `%/${unit}` };
+	const span = used.length ? used[used.length - 1].time - used[0].time : 0;
 	const mean = used.length ? used.reduce((sum, r) => sum + r.percent, 0) / used.length : NaN;
 	if (used.length === 0) return null;
 	const balance = { unit: '% of charge', rows: shown, mean, slope, message: balanceWords(mean, slope, unit) };
-	noteBalance(ex, balance);
+	noteBalance(ex, balance, span);
 	return balance;
 }
 
@@ -231,7 +232,8 @@ function balanceWords(mean: number, slope: MassBalance['slope'], unit: TimeUnit)
 
 const signed = (n: number) => (n < 0 ? '−' : '+') + figure(Math.abs(Number(n.toPrecision(3))));
 
-function noteBalance(ex: Examination, balance: MassBalance): void {
+/** A trend is pointed out where its interval excludes zero and it amounts to at least 0.1 % over the run. */
+function noteBalance(ex: Examination, balance: MassBalance, span: number): void {
 	const { massBalanceLow: low, massBalanceHigh: high } = ex.checks;
 	const outside = balance.rows.filter((r) => r.complete && (r.percent < low || r.percent > high));
 	const cell = (r: { row: number }) => address(r.row, ex.mapping.block.firstColumn);
@@ -244,7 +246,7 @@ function noteBalance(ex: Examination, balance: MassBalance): void {
 			message: `The mass balance lies outside ${low}–${high} % of the charge in ${plural(outside.length, 'row')} (${someOf(outside.map((r) => `row ${r.row}: ${r.percent.toFixed(1)} %`))}).`
 		});
 	const slope = balance.slope;
-	if (slope && (slope.low > 0 || slope.high < 0))
+	if (slope && (slope.low > 0 || slope.high < 0) && Math.abs(slope.value * span) >= 0.1)
 		ex.note({
 			rule: 'B36',
 			cells: [cell(balance.rows[0])],

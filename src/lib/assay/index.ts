@@ -5,3 +5,5 @@ export { toSavedMapping } from './saved-mapping';
 export { address, columnLetter, columnNumber, displayText, parseAddress, rangeText, SheetView } from './grid';
 export { CHECKS, type Checks } from './examination';
 export { durationWords } from './checks';
+export { templateSheets, type TemplateSheet } from './template';
+export { diffWorkbooks, type CellChange, type WorkbookDifference } from './diff';

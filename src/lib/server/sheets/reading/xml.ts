@@ -19,6 +19,7 @@ const DEPTH = 64;
 const TAG = 65_536;
 const MOST_ATTRIBUTES = 200;
 const NONE: Attributes = Object.freeze(Object.create(null) as Record<string, string>);
+// eslint-disable-next-line no-control-regex -- the characters that XML 1.0 forbids
 const FORBIDDEN = /[\u0000-\u0008\u000b\u000c\u000e-\u001f\ufffe\uffff]/;
 
 type Mode = 'content' | 'comment' | 'cdata' | 'instruction';
