@@ -85,6 +85,22 @@ function fastestTime(solution: Solution): number {
 	return times.length ? Math.min(...times) : 1;
 }
 
+/** Where a slope that falls through zero between two times does so; Illinois variant of regula falsi (Dowell & Jarratt 1971). */
+function slopeRoot(slope: (t: number) => number, low: number, high: number): number {
+	let [a, b] = [low, high];
+	let [fa, fb] = [slope(a), slope(b)];
+	if (!(fa > 0) || !(fb < 0)) return fa > 0 ? b : a;
+	for (let k = 0; k < 20; k++) {
+		const t = b - (fb * (b - a)) / (fb - fa);
+		const f = slope(t);
+		if (f === 0 || Math.abs(t - b) < 1e-10 * high) return t;
+		if (f * fb < 0) [a, fa] = [b, fb];
+		else fa /= 2;
+		[b, fb] = [t, f];
+	}
+	return b;
+}
+
 /** Interior maxima, refined on the slope of the closed form. */
 function peaksOf(
 	network: Network,
@@ -100,14 +116,7 @@ function peaksOf(
 		for (let i = 1; i < n; i++) if (curve[i] > curve[top]) top = i;
 		if (top === 0 || top === n - 1) return;
 		if (curve[top] < 1.02 * Math.max(curve[0], curve[n - 1])) return;
-		let low = times[top - 1];
-		let high = times[top + 1];
-		for (let k = 0; k < 60 && high - low > 1e-12 * high; k++) {
-			const middle = (low + high) / 2;
-			if (solution.slope(middle)[s] > 0) low = middle;
-			else high = middle;
-		}
-		const timeS = (low + high) / 2;
+		const timeS = slopeRoot((t) => solution.slope(t)[s], times[top - 1], times[top + 1]);
 		peaks.push({ species: species.id, timeS, molPerL: solution.at(timeS)[s] });
 	});
 	return peaks;
@@ -144,8 +153,9 @@ export function simulate(content: SchemeContent, view: ViewConditions): Simulati
 	};
 	const conditions = conditionsOf(network, view);
 	const byId = Object.fromEntries(network.species.map((s, i) => [s.id, charge[i]]));
-	const found = [...issues, ...checkNetwork(network, byId, conditions)];
-	const stopped = checkNetwork(network, byId, conditions).some((i) => i.level === 'stop');
+	const checked = checkNetwork(network, byId, conditions);
+	const found = [...issues, ...checked];
+	const stopped = checked.some((i) => i.level === 'stop');
 	if (stopped || network.species.length === 0) return { ...nothing, issues: found, conditions };
 	const constants = rateConstants(network, conditions);
 	const system = linearSystem(network, constants);
