@@ -7,7 +7,7 @@ export const HEAD_PX = 24;
 export const NUMBER_PX = 46;
 const NARROW = 58;
 const WIDE = 230;
-const LETTER_PX = 8.2;
+const LETTER_PX = 7.6;
 /** Rows looked at for the width of a column. */
 const SAMPLED = 300;
 const MOST_COLUMNS = 200;
@@ -22,11 +22,12 @@ export interface GridLayout {
 	height: number;
 }
 
+/** Longer texts are titles and notes: they run on as on paper and do not make their column wide. */
+const LONGEST = 26;
+
 function widthOf(texts: string[]): number {
-	// A long note in a narrow column runs on as it does on paper; it does not make the column wide.
-	const lengths = texts.map((t) => t.length).sort((a, b) => a - b);
-	const typical = lengths[Math.floor(0.9 * (lengths.length - 1))] ?? 0;
-	return Math.round(Math.min(WIDE, Math.max(NARROW, typical * LETTER_PX + 22)));
+	const longest = Math.max(0, ...texts.map((t) => t.length).filter((length) => length <= LONGEST));
+	return Math.round(Math.min(WIDE, Math.max(NARROW, longest * LETTER_PX + 20)));
 }
 
 export function layoutOf(workbook: GridWorkbook, sheet: GridSheet): GridLayout {

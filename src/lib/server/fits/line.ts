@@ -1,4 +1,4 @@
-import type { FitReport } from '$lib/schemas/fit';
+import type { FitReport, FitRequest } from '$lib/schemas/fit';
 
 const UNDETERMINED = /not-identifiable|undetermined|not-determined|open-profile/;
 
@@ -11,11 +11,17 @@ export function undetermined(report: FitReport): string[] {
 	return [...new Set([...named, ...open.map((p) => p.id)])];
 }
 
+/** Unit of the residuals, where every column has the same. */
+function unitOf(request: FitRequest | undefined): string {
+	const units = new Set(request?.runs.flatMap((run) => run.channels.map((c) => c.unit)));
+	return units.size === 1 ? ` ${[...units][0]}` : '';
+}
+
 /** One line on a fit for the station strip: "s 4.1 mmol/L, all determined". */
-export function fitLine(report: FitReport): string {
+export function fitLine(report: FitReport, request?: FitRequest): string {
 	if (report.status !== 'converged') return `last fit ${report.status}`;
 	const s = report.residualStandardError;
-	const size = s === null ? 'no degrees of freedom' : `s ${Number(s.toPrecision(2))}`;
+	const size = s === null ? 'no degrees of freedom' : `s ${Number(s.toPrecision(2))}${unitOf(request)}`;
 	const open = undetermined(report).length;
 	const state = open === 0 ? 'all determined' : `${open} not determined`;
 	return `${size}, ${state}`;

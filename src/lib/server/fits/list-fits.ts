@@ -51,7 +51,7 @@ function figuresOf(report: FitReport | undefined) {
 }
 
 function lineOf(job: Job, fit: Fit | undefined): string {
-	if (fit) return fitLine(fit.report);
+	if (fit) return fitLine(fit.report, (job.input as FitJobInput).request);
 	if (job.status === 'failed') return job.error ?? 'failed';
 	return job.status;
 }

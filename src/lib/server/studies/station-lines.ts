@@ -39,7 +39,7 @@ async function lineOfFit(studyId: string): Promise<string> {
 		Fit.findOne({ where: { studyId }, order: [['number', 'DESC']] })
 	]);
 	if (running) return count(running, 'fit is running', 'fits are running');
-	return latest ? fitLine(latest.report) : 'not fitted yet';
+	return latest ? fitLine(latest.report, latest.request) : 'not fitted yet';
 }
 
 async function lineOfWindow(studyId: string): Promise<string> {
