@@ -1,7 +1,7 @@
 import { describe, expect, it } from 'vitest';
 import { checkNetwork } from './checks';
 import { conservedTotals } from './conserved';
-import { reversibleCycles } from './cycles';
+import { balancingReverse, reversibleCycles } from './cycles';
 import { toNetwork } from './from-scheme';
 import { symbolicMatrix } from './linear-system';
 import { activationEntropy, eyringConstant, GAS_CONSTANT, rateConstants } from './rate-laws';
@@ -130,6 +130,11 @@ describe("Wegscheider's condition", () => {
 		const [issue] = checkNetwork(loop(1.2), { A: 1 }, conditions);
 		expect(issue).toMatchObject({ level: 'caution', code: 'detailed-balance-broken', stepId: 's3' });
 		expect(issue.ratio).toBeCloseTo(2, 12);
+	});
+	it('names the constant that would balance the loop', () => {
+		const constants = rateConstants(loop(1.2), conditions);
+		const [cycle] = reversibleCycles(loop(1.2), constants);
+		expect(balancingReverse(cycle, constants)).toBeCloseTo(2.4, 12);
 	});
 	it('finds one loop for every reversible step outside a spanning tree', () => {
 		const scheme = loop(2.4);

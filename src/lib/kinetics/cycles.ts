@@ -80,6 +80,14 @@ function pathBetween(tree: Edge[], start: number, goal: number): { edge: Edge; s
 	return path.map(({ edge, sense }) => ({ edge, sense }));
 }
 
+/**
+ * The reverse constant of the loop's closing step, 1/s, that restores detailed balance with all other constants as they are:
+ * what "tie the last constant of the loop" sets.
+ */
+export function balancingReverse({ steps, ratio }: ReversibleCycle, constants: RateConstants): number {
+	return constants.reverse[steps[0].index] * ratio;
+}
+
 /** Issues for loops that break detailed balance, and for loops with an irreversible step. */
 export function cycleIssues(network: Network, conditions?: Conditions): NetworkIssue[] {
 	const constants = constantsFor(network, conditions);

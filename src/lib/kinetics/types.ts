@@ -139,7 +139,8 @@ export interface Mode {
 	 * Amplitude per species for this charge, mol/L, in species order.
 	 * Real simple mode: `amplitudes[0]` multiplies e^{re·t}.
 	 * Complex pair (im > 0): [0] multiplies e^{re·t}cos(im·t), [1] multiplies e^{re·t}sin(im·t).
-	 * Repeated mode: [m] multiplies t^m e^{re·t} (unit mol/L/s^m).
+	 * Repeated mode: [m] multiplies t^m e^{re·t} (unit mol/L/s^m). A group of rates that nearly agree has further powers, small.
+	 * Repeated complex pair: [2m] multiplies t^m e^{re·t}cos(im·t), [2m + 1] multiplies t^m e^{re·t}sin(im·t).
 	 */
 	amplitudes: Float64Array[];
 }
@@ -152,7 +153,7 @@ export interface Solution {
 	readonly method: SolveMethod;
 	/** A-posteriori bound on the error of any species at any time, as a fraction of the total charge. */
 	readonly errorEstimate: number;
-	/** Limit t → ∞, mol/L. */
+	/** Limit t → ∞, mol/L; Infinity for a species that a constant feed piles up without limit. */
 	readonly final: Float64Array;
 	/** Concentrations at one time; exact charge at t = 0. Writes into `out` (length n) when given. */
 	at(timeS: number, out?: Float64Array): Float64Array;
@@ -160,6 +161,6 @@ export interface Solution {
 	curves(timesS: ArrayLike<number>, out?: Float64Array): Float64Array;
 	/** dc/dt at one time, mol/L/s. */
 	slope(timeS: number, out?: Float64Array): Float64Array;
-	/** ∫₀ᵗ c dt, mol/L·s. */
+	/** ∫₀ᵗ c dt, mol/L·s; at t = Infinity the throughput, itself Infinity where material stays for good. */
 	integral(timeS: number, out?: Float64Array): Float64Array;
 }
