@@ -32,6 +32,8 @@ export interface LinearForm {
 
 const DEEPEST = 52;
 const EPSILON = 2.220446049250313e-16;
+/** One array per depth of subdivision, shared: a search runs to its end before another begins. */
+const POOL = Array.from({ length: DEEPEST + 2 }, () => new Float64Array(SIZE));
 
 /** Sign of Σ w_i c_i + constant along the track, as segments without gaps. */
 export function signSegments(track: Track, form: LinearForm): SignSegment[] {
@@ -85,7 +87,6 @@ class Finder {
 	private left = 0;
 	private width = 0;
 	private noise = 0;
-	private readonly pool: Float64Array[] = Array.from({ length: DEEPEST + 2 }, () => new Float64Array(SIZE));
 
 	/** @param touches whether a stretch that only comes near zero is to be followed down to where it touches */
 	constructor(
@@ -104,7 +105,7 @@ class Finder {
 			this.segments.add(left, right, a[0] > 0 ? 1 : -1);
 			return;
 		}
-		this.cut(bernstein(a, this.pool[0]), 0, 1, 0);
+		this.cut(bernstein(a, POOL[0]), 0, 1, 0);
 	}
 
 	private cut(b: Float64Array, u0: number, u1: number, depth: number): void {
@@ -125,7 +126,7 @@ class Finder {
 		if (changes === 1 && Math.abs(b[0]) > noise && Math.abs(b[DEGREE]) > noise)
 			return this.crossing(u0, u1, b[0] > 0);
 		if (depth >= DEEPEST) return this.add(u0, u1, 0);
-		const right = this.pool[depth + 1];
+		const right = POOL[depth + 1];
 		halve(b, right);
 		const middle = (u0 + u1) / 2;
 		this.cut(b, u0, middle, depth + 1);

@@ -149,7 +149,7 @@ class TrackBuilder {
 			n: this.n,
 			pieces: this.edges.length - 1,
 			edges: Float64Array.from(this.edges),
-			coefficients: this.store.slice(0, (this.edges.length - 1) * this.n * SIZE),
+			coefficients: this.store.subarray(0, (this.edges.length - 1) * this.n * SIZE),
 			scales: Float64Array.from(this.scaleStore),
 			start: this.start,
 			endS: arrived && this.final ? endS : Math.min(endS, this.horizon),

@@ -63,8 +63,10 @@ const at = (celsius: number, more: Partial<FirstFormRequestInput> = {}): FirstFo
 });
 
 describe('the window of the invented case A → B → C (40 °C, A NMT 1.0 %, C NMT 3.0 %)', () => {
+	const result40 = firstFormWindow(input(window, at(40), [30, 50]));
+
 	it('holds from 3.84 to 4.64 h, with the limit that binds at each edge', () => {
-		const { hold, criteria, outsideStudied, summary } = firstFormWindow(input(window, at(40), [30, 50]));
+		const { hold, criteria, outsideStudied, summary } = result40;
 		expect(hold!.spans.length).toBe(1);
 		expect(hold!.spans[0].from).toBeCloseTo(3.84, 2);
 		expect(hold!.spans[0].to).toBeCloseTo(4.64, 2);
@@ -75,7 +77,7 @@ describe('the window of the invented case A → B → C (40 °C, A NMT 1.0 %, C 
 	});
 
 	it('gives intervals that agree with those of the constants alone, and with first order', () => {
-		const { hold, criteria } = firstFormWindow(input(window, at(40), [30, 50]));
+		const { hold, criteria } = result40;
 		const t = studentQuantile(0.975, 10);
 		// The opening is ln 100/k1: its interval follows from k1 (1 ± t · 1 %).
 		const opening = Math.log(100) / 1.2;
@@ -121,7 +123,7 @@ describe('the window of the invented case A → B → C (40 °C, A NMT 1.0 %, C 
 	});
 
 	it('gives the maximum of B with the span within 1 %', () => {
-		const { maxima } = firstFormWindow(input(window, at(40), [30, 50]));
+		const { maxima } = result40;
 		const b = maxima.find((m) => m.species === 'B')!;
 		expect(b.kind).toBe('interior');
 		expect(b.time.value).toBeCloseTo(Math.log(150) / 1.192, 10);
@@ -143,7 +145,7 @@ describe('the window of the invented case A → B → C (40 °C, A NMT 1.0 %, C 
 	});
 
 	it('gives the same bits for the same seed and other draws for another', () => {
-		const once = JSON.stringify(firstFormWindow(input(window, at(40), [30, 50])));
+		const once = JSON.stringify(result40);
 		expect(JSON.stringify(firstFormWindow(input(window, at(40), [30, 50])))).toBe(once);
 		const other = firstFormWindow(input(window, at(40, { seed: 2 }), [30, 50]));
 		expect(JSON.stringify(other)).not.toBe(once);
