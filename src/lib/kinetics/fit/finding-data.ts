@@ -9,6 +9,7 @@ import { duration, figure } from './words';
 
 export function dataFindings(input: FindingsInput): FitFinding[] {
 	return [
+		...noScatter(input),
 		...balance(input),
 		...offsets(input),
 		...offsetOrCharge(input),
@@ -16,6 +17,20 @@ export function dataFindings(input: FindingsInput): FitFinding[] {
 		...smallExcess(input),
 		...referenceOutside(input),
 		...replicateKind(input)
+	];
+}
+
+function noScatter({ problem, best }: FindingsInput): FitFinding[] {
+	let size = 0;
+	for (const p of problem.points) size += (p.observed / p.sigma) ** 2;
+	if (best.ssr > 1e-18 * size) return [];
+	return [
+		{
+			code: 'no-scatter',
+			level: 'caution',
+			message:
+				'The data follow the curves to rounding: they carry no scatter, as measured data would. Intervals mean nothing here; were these values calculated?'
+		}
 	];
 }
 

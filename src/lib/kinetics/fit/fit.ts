@@ -131,8 +131,8 @@ function profiled(context: Context): { u: Uncertainty; profiles: ProfileInterval
 	for (let round = 0; ; round++) {
 		const best = outcome.minima[0].result;
 		const u = uncertainty(problem, best);
-		if (!options.profiles || u.s === null || !(u.s > 0) || !best.converged || problem.free.length === 0)
-			return { u, profiles: null };
+		const asked = options.profiles && u.s !== null && best.converged && problem.free.length > 0;
+		if (!asked || withoutScatter(problem, best.ssr)) return { u, profiles: null };
 		const { intervals, better, evaluations } = profileIntervals({
 			model,
 			box,
@@ -149,6 +149,13 @@ function profiled(context: Context): { u: Uncertainty; profiles: ProfileInterval
 		outcome.evaluations += polished.evaluations;
 		outcome.minima.unshift({ ...polished.minima[0], starts: 0 });
 	}
+}
+
+/** Data made without scatter (or copied from a curve): what is left is rounding, and no interval means anything. */
+export function withoutScatter(problem: KineticProblem, ssr: number): boolean {
+	let size = 0;
+	for (const p of problem.points) size += (p.observed / p.sigma) ** 2;
+	return ssr <= 1e-18 * size;
 }
 
 function report(context: Context): FitReport {

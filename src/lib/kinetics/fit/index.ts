@@ -27,3 +27,6 @@ export {
 	type SeparatingSample
 } from './compare';
 export { samplingPlan, type SamplingOptions, type SamplingPlan, type ExpectedWidth } from './sampling-plan';
+export { jointRegion, type JointRegion } from './joint-region';
+export { bootstrap, leaveOneRunOut, withExcludedValues, type Bootstrap, type RunInfluence } from './refit';
+export { identifiability, type Identifiability } from './identifiability';
