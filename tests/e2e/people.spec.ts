@@ -201,7 +201,9 @@ for (const shift of ['day', 'night'])
 		const admin = ['/admin', '/admin/groups', '/admin/site', '/admin/mail'];
 		const check = async (path: string) => {
 			await page.goto(path);
-			const { violations } = await new AxeBuilder({ page }).analyze();
+			// The two shifts differ in their colours alone.
+			const axe = new AxeBuilder({ page });
+			const { violations } = await (shift === 'day' ? axe : axe.withRules('color-contrast')).analyze();
 			const serious = violations.filter((v) => v.impact === 'serious' || v.impact === 'critical');
 			expect(serious.map((v) => `${path}: ${v.id} ${v.nodes[0].target.join(' ')}`)).toEqual([]);
 		};

@@ -6,7 +6,8 @@ export function navRights(actor: Actor, groupId: string | null) {
 	return {
 		studies: may('study.read'),
 		recipes: may('recipe.read'),
-		records: may('audit.read'),
+		// A site admin reads the entries that belong to no group: sign-ins, people, settings.
+		records: may('audit.read') || actor.siteAdmin,
 		group: groupId !== null && roleIn(actor, groupId) !== null,
 		admin: actor.siteAdmin
 	};

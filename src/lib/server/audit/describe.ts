@@ -53,7 +53,8 @@ export function differences(from: unknown, to: unknown): Change[] {
 
 const channelOf = (channel: string | null): string => (channel ? `, channel ${channel}` : '');
 
-const WRITERS: { [T in AuditType]?: Writer<T> } = {
+/** A new kind of entry gets its sentence here. */
+export const WRITERS: { [T in AuditType]?: Writer<T> } = {
 	'person.signed-in': () => 'Signed in',
 	'person.sign-in-failed': (p) =>
 		`Sign-in failed for ${p.email}${p.lockedUntil ? '; locked for a while' : ''}`,
@@ -122,6 +123,7 @@ const WRITERS: { [T in AuditType]?: Writer<T> } = {
 	'recipe.version-saved': (p) => `Draft version ${p.number} saved`,
 	'recipe.version-started': (p) => `Version ${p.number} begun from version ${p.from}`,
 	'recipe.submitted': (p) => `Version ${p.number} submitted for review`,
+	'recipe.taken-back': (p) => `Version ${p.number} taken back from review`,
 	'recipe.returned': (p) => `Version ${p.number} returned: ${p.comment}`,
 	'recipe.commented': (p) => `Comment on version ${p.number}: ${p.comment}`,
 	'recipe.signed': (p) =>
