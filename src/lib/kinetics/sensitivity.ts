@@ -25,6 +25,7 @@
  */
 import { fillPairs, pairTable, type PairTable } from './divided-differences';
 import { eigenbasis, type Eigenbasis } from './eigenbasis';
+import { fedPropagator, flowOf, type StepFlow } from './fed-system';
 import { Propagator } from './propagator';
 import type { LinearSystem } from './types';
 
@@ -255,8 +256,8 @@ export class SensitivityWorkspace implements SensitivityResult {
 		const { n, timesS } = this;
 		out.fill(0);
 		if (!flow) return;
-		const gain = fed(system, flow.from, flow.products);
-		const loss = fed(system, flow.from, [{ to: flow.from, rate: flow.rate }]);
+		const gain = fedPropagator(system, flow.from, flow.products);
+		const loss = fedPropagator(system, flow.from, [{ to: flow.from, rate: flow.rate }]);
 		const start = new Float64Array(2 * n);
 		for (let i = 0; i < n; i++) start[i] = charge[i];
 		const end = new Float64Array(2 * n);
@@ -273,57 +274,6 @@ interface ComplexVector {
 	re: Float64Array;
 	im: Float64Array;
 }
-
-interface StepFlow {
-	from: number;
-	rate: number;
-	/** rate is already multiplied by the coefficient. */
-	products: { to: number; rate: number }[];
-}
-
-function flowOf(
-	system: LinearSystem,
-	{ step, direction }: { step: number; direction: 'forward' | 'reverse' }
-): StepFlow | null {
-	const own = system.transfers.filter((t) => t.step === step && t.direction === direction);
-	const flow = system.flows?.find((f) => f.step === step && f.direction === direction) ?? own[0];
-	if (!flow) return null;
-	return {
-		from: flow.from,
-		rate: flow.rate,
-		products: own.map((t) => ({ to: t.to, rate: t.rate * t.coefficient }))
-	};
-}
-
-/** The system beside a copy of itself that is fed from species `from` without consuming it. */
-function fed(system: LinearSystem, from: number, feeds: { to: number; rate: number }[]): Propagator {
-	const { n } = system;
-	const outflow = new Float64Array(2 * n);
-	outflow.set(system.outflow);
-	outflow.set(system.outflow, n);
-	const copies = system.transfers.map((t) => ({ ...t, from: t.from + n, to: t.to + n, step: t.step + COPY }));
-	const flows = system.flows && [
-		...system.flows,
-		...system.flows.map((f) => ({ ...f, from: f.from + n, step: f.step + COPY }))
-	];
-	const sources = feeds.map(({ to, rate }) => ({
-		from,
-		to: n + to,
-		rate,
-		coefficient: 1,
-		step: -1,
-		direction: 'forward' as const
-	}));
-	return new Propagator({
-		n: 2 * n,
-		transfers: [...system.transfers, ...copies, ...sources],
-		outflow,
-		flows
-	});
-}
-
-/** Added to the step numbers of the copy, so that they differ from the system's own. */
-const COPY = 1e6;
 
 /** Curves and derivatives once; see `SensitivityWorkspace` for shapes and for repeated use. */
 export function sensitivities(
