@@ -32,8 +32,13 @@ export function formRefusal(caught: unknown): AppError {
 	if (isRedirect(caught)) redirect(caught.status, caught.location);
 	if (isHttpError(caught)) error(caught.status, caught.body);
 	const known = toAppError(caught);
-	if (!AT_THE_FORM.has(known.code)) throw known;
-	return known;
+	if (AT_THE_FORM.has(known.code)) return known;
+	const errorId = known.options.data?.errorId;
+	error(known.status, {
+		message: known.message,
+		code: known.code,
+		...(typeof errorId === 'string' ? { id: errorId } : {})
+	});
 }
 
 /** Answers a form with the refusal of a use case: beside the field that it concerns, else above the form. */
