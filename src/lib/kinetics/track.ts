@@ -27,6 +27,7 @@ import type { Solution } from './types';
 /** Anything that has concentrations at a time. */
 export interface Trajectory {
 	readonly n: number;
+	/** Writes into `out` (length n) when given, and returns it. */
 	at(timeS: number, out?: Float64Array): Float64Array;
 }
 
