@@ -286,19 +286,31 @@ function titleOf(view: SheetView, above: { row: number; text: string }[]): strin
 	return (lone ?? above[above.length - 1])?.text.slice(0, 120) ?? view.sheet.name;
 }
 
-/** The column that holds time by its header or unit; 0 when none says so. */
+/** The column that holds time by its header or unit; 0 when none says so. Elapsed time goes before times of day, those before dates. */
 export function timeColumnByHeader(view: SheetView, headerRows: number[], block: Block): number {
-	let clock = 0;
+	let best = 0;
+	let bestRank = 0;
 	for (let c = block.firstColumn; c <= block.lastColumn; c++) {
-		const texts = headerRows.map((r) => view.text(r, c)).filter(Boolean);
-		const named = texts.some((text) => {
-			const { name } = splitHeader(text);
-			return speaksOfTime(text) && !(isClockWord(name) && !isTimeWord(name));
-		});
-		const unitOnly = texts.some((text) => readUnit(text.replace(/^[([]|[)\]]$/g, ''))?.of === 'time');
-		const other = texts.some((text) => !speaksOfTime(text) && !readUnit(text.replace(/^[([]|[)\]]$/g, '')));
-		if (named || (unitOnly && !other)) return c;
-		if (clock === 0 && texts.some((text) => speaksOfTime(text))) clock = c;
+		const rank = timeRank(headerRows.map((r) => view.text(r, c)).filter(Boolean));
+		if (rank > bestRank) [best, bestRank] = [c, rank];
 	}
-	return clock;
+	return best;
+}
+
+function timeRank(texts: string[]): number {
+	const bare = (text: string) => readUnit(text.replace(/^[([]|[)\]]$/g, ''));
+	const named = texts.filter((text) => speaksOfTime(text));
+	if (named.length === 0) return 0;
+	const names = texts.map((text) => splitHeader(text).name).join(' ');
+	// A lone "min" under another name ("RT", "Stirring") is that column's unit, not the time of the reaction.
+	if (
+		named.every((text) => bare(text)?.of === 'time') &&
+		texts.some((text) => !bare(text) && !speaksOfTime(text))
+	)
+		return 0;
+	if (isClockWord(names)) return isTimeWord(names) || /uhr|clock|heure|hora/i.test(names) ? 2 : 1;
+	const unit = texts.some((text) =>
+		['time', 'duration'].includes((splitHeader(text).unit ?? bare(text))?.of ?? '')
+	);
+	return unit ? 4 : 3;
 }

@@ -80,7 +80,7 @@ export function checkCount(
 			message: `The table gives ${plural(values, 'value')} for ${plural(parameters, 'constant')}. Fit it together with other runs, or choose a table with more rows.`,
 			options: [{ key: 'together', label: 'It will be fitted together with other runs' }]
 		});
-	if (times > 0 && times < 5)
+	if (times > 0 && times < 5 && points.every((p) => p.time !== null))
 		ex.note({
 			rule: 'B34',
 			cells,

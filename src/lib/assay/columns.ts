@@ -149,6 +149,9 @@ export interface ColumnFacts {
 	distinct: number;
 }
 
+/** "RT" heads retention times; "RRT 0.87" names a peak. */
+const isRetentionColumn = (name: string) => words.isRetention(name) && !/\d/.test(name);
+
 /** What a column seems to be, by its header first and by its cells second. */
 export function guessRole(header: ColumnHeader, facts: ColumnFacts, matched: string | null): ColumnRole {
 	const name = header.parts.join(' ').trim();
@@ -158,8 +161,8 @@ export function guessRole(header: ColumnHeader, facts: ColumnFacts, matched: str
 	if (words.isStandardWord(last)) return 'internal standard';
 	if (words.isSampleWord(last)) return 'sample';
 	if (words.isInjectionWord(last)) return 'injection';
-	if (words.isCommentWord(last) || words.isCounterWord(last) || words.isRetention(last)) return 'ignore';
-	if (words.isTotalWord(last)) return 'ignore';
+	if (words.isCommentWord(last) || words.isCounterWord(last) || isRetentionColumn(last)) return 'ignore';
+	if (words.isTotalWord(last) || words.isClockWord(last)) return 'ignore';
 	if (header.unit?.of === 'time' || header.unit?.of === 'duration') return 'ignore';
 	if (facts.numbers === 0 && facts.texts > 0) return 'ignore';
 	if (facts.numbers === 0) return 'ignore';

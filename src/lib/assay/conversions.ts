@@ -218,8 +218,8 @@ function coherent(ex: Examination, contents: ChannelContent[]): boolean {
 function settleAreaPercent(ex: Examination, channels: Channel[], points: Point[]): boolean {
 	const area = channels.filter((c) => c.unit === 'area %');
 	if (area.length === 0) return true;
-	// While it is open which quantity is fitted, nothing more is asked about either.
-	if (ex.findings.some((f) => f.rule === 'B3' && f.open)) return false;
+	// While it is open what the columns are, nothing more is asked about them together.
+	if (ex.findings.some((f) => (f.rule === 'B3' || f.rule === 'B32') && f.open)) return false;
 	const sums = points.map((p) => rowSum(p, area)).filter((s) => s !== null);
 	const full = sums.length > 0 && sums.filter((s) => Math.abs(s - 100) <= 0.5).length >= sums.length * 0.8;
 	const given = area.filter((c) => c.responseFactor !== null);

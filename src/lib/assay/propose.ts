@@ -30,6 +30,7 @@ import { plural, someOf } from './examination';
 import { rangeText, type SheetView } from './grid';
 import { statedLimits } from './limits';
 import { decide } from './numbers';
+import { speaksOfTime } from './rows';
 import { savedFor, withSaved } from './saved-mapping';
 import { settle } from './settle';
 import { suggestConditions } from './suggestions';
@@ -116,11 +117,27 @@ function isTable(workbook: GridWorkbook, found: FoundTable): boolean {
 
 export function timeColumnOf(view: SheetView, found: FoundTable): number {
 	const named = timeColumnByHeader(view, found.headerRows, found.block);
-	if (named > 0 || found.headerRows.length > 0) return named;
+	if (named > 0) return named;
+	// Names of samples that are times, "t=15 min" or "2 h".
+	for (let c = found.block.firstColumn; c <= found.block.lastColumn; c++)
+		if (namesTimes(view, found, c)) return c;
+	if (found.headerRows.length > 0) return 0;
 	// Without any header, the first column of three or more numbers that never decrease.
 	for (let c = found.block.firstColumn; c <= found.block.lastColumn; c++)
 		if (increases(view, found, c)) return c;
 	return 0;
+}
+
+function namesTimes(view: SheetView, found: FoundTable, column: number): boolean {
+	let times = 0;
+	let others = 0;
+	for (let r = found.block.firstRow; r <= found.block.lastRow; r++) {
+		const cell = view.cell(r, column);
+		if (typeof cell?.[1] !== 'string') continue;
+		if (readTime(view.workbook, cell, null).kind === 'worded') times++;
+		else others++;
+	}
+	return times >= 3 && times >= others * 4;
 }
 
 function increases(view: SheetView, found: FoundTable, column: number): boolean {
@@ -342,6 +359,16 @@ function peakCounts(
 
 /* ---------------------------------------------------------------- the whole workbook */
 
+/** A row that begins with a time word and goes on with numbers. */
+function runsAcross(workbook: GridWorkbook): boolean {
+	return workbook.sheets.some((sheet) =>
+		sheet.rows.slice(0, 200).some(({ c }) => {
+			if (c.length < 4 || typeof c[0][1] !== 'string' || !speaksOfTime(c[0][1])) return false;
+			return c.slice(1).every((cell) => readCell(workbook, cell, null).kind === 'number');
+		})
+	);
+}
+
 function workbookFindings(workbook: GridWorkbook, tables: TableProposal[]): Finding[] {
 	const base = { sheet: '', cells: [], count: 0, expected: '', options: [], open: false };
 	const findings: Finding[] = [];
@@ -353,8 +380,9 @@ function workbookFindings(workbook: GridWorkbook, tables: TableProposal[]): Find
 			rule: 'B1',
 			found: 'no table with a time column and numbers beside it',
 			expected: 'a header row with a time column, for example "Time (h)", and a column for each species',
-			message:
-				'No table was found: a time column with values beside it is expected. Mark the rows yourself, or upload a sheet in the form of the template.',
+			message: runsAcross(workbook)
+				? 'The times seem to run across, one column a sample. One row a sample is expected: copy the table, paste it transposed, and upload it again.'
+				: 'No table was found: a time column with values beside it is expected. Mark the rows yourself, or upload a sheet in the form of the template.',
 			open: true
 		});
 	const hidden = workbook.sheets.filter(

@@ -124,5 +124,8 @@ function chargeFromZeroRow(view: SheetView, mapping: Mapping): Record<string, Su
 			{ value: reading.value, unit: relative ? '%' : c.unit, source: address(row, c.column) }
 		]);
 	}
-	return initial.length > 0 ? Object.fromEntries(initial) : null;
+	// Traces at time zero are no charge.
+	const most = Math.max(0, ...initial.map(([, q]) => q.value));
+	const charged = initial.filter(([, q]) => q.value >= most * 0.05);
+	return charged.length > 0 ? Object.fromEntries(charged) : null;
 }

@@ -133,7 +133,9 @@ function splitTail(text: string): { name: string; unit: UnitReading | null } {
 	for (const mark of [' / ', '/', ', ', '; ', ' in ', ' - ', ' ']) {
 		for (let at = text.indexOf(mark); at > 0; at = text.indexOf(mark, at + 1)) {
 			const unit = readUnit(text.slice(at + mark.length));
-			if (unit && !(mark === '/' && unit.of === 'percent')) return { name: text.slice(0, at).trim(), unit };
+			const cut = / (of|per|pro|de|del)$/i.test(text.slice(0, at));
+			if (unit && !cut && !(mark === '/' && unit.of === 'percent'))
+				return { name: text.slice(0, at).trim(), unit };
 		}
 	}
 	const leading = /^(%|LCAP)\s+(.+)$/i.exec(text);
