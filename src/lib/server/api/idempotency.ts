@@ -6,7 +6,7 @@ import type { Actor } from '../policy';
 
 const KEY = /^[\x21-\x7e]{8,100}$/;
 /** Two equal requests at the same moment: the second waits for the first, then gets its answer. */
-const inWork = new Map<string, Promise<Response>>();
+const inWork = new Map<string, Promise<unknown>>();
 
 function keyOf(headers: Headers): string | null {
 	const key = headers.get('idempotency-key');
@@ -63,17 +63,21 @@ export async function once(
 	const place = `${actor.userId} ${key}`;
 	const path = new URL(request.url).pathname;
 	const requestHash = sha256(`${request.method} ${path} ${contentHash(content)}`);
-	await inWork.get(place)?.catch(() => undefined);
-	const found = await IdempotencyKey.findOne({ where: { userId: actor.userId, key } });
-	if (found) return replay(found, requestHash);
-	const running = work().then(async (response) => {
-		await remember(actor, key, requestHash, response);
-		return response;
-	});
-	inWork.set(place, running);
+	const before = inWork.get(place) ?? Promise.resolve();
+	const mine = before
+		.catch(() => undefined)
+		.then(async () => {
+			const found = await IdempotencyKey.findOne({ where: { userId: actor.userId, key } });
+			if (found) return replay(found, requestHash);
+			const response = await work();
+			await remember(actor, key, requestHash, response);
+			return response;
+		});
+	// Taken before anything is awaited, so that an equal request of the same moment finds it.
+	inWork.set(place, mine);
 	try {
-		return await running;
+		return await mine;
 	} finally {
-		inWork.delete(place);
+		if (inWork.get(place) === mine) inWork.delete(place);
 	}
 }
