@@ -1,6 +1,8 @@
 import { defineConfig } from '@playwright/test';
 
 const PORT = Number(process.env.E2E_PORT ?? 4390);
+/** Set to test a service that runs already, instead of starting one. */
+const RUNNING = process.env.E2E_BASE_URL;
 
 /** The browser tests run against the built service with the invented demonstration data in a folder of their own. */
 export default defineConfig({
@@ -13,7 +15,7 @@ export default defineConfig({
 	outputDir: 'test-results',
 	globalTimeout: 10 * 60_000,
 	use: {
-		baseURL: `http://localhost:${PORT}`,
+		baseURL: RUNNING ?? `http://localhost:${PORT}`,
 		locale: 'en-GB',
 		timezoneId: 'Europe/Vienna',
 		viewport: { width: 1440, height: 1000 },
@@ -30,14 +32,16 @@ export default defineConfig({
 			]
 		}
 	},
-	webServer: {
-		command: `node src/commands/demo.mjs --fresh --port ${PORT}`,
-		url: `http://localhost:${PORT}/healthz`,
-		reuseExistingServer: false,
-		timeout: 180_000,
-		stdout: 'ignore',
-		stderr: 'pipe',
-		gracefulShutdown: { signal: 'SIGTERM', timeout: 10_000 },
-		env: { DEMO_FOLDER: 'test-results/demo', SIGN_IN_ATTEMPTS: '50', API_LIMIT_PER_MINUTE: '10000' }
-	}
+	webServer: RUNNING
+		? undefined
+		: {
+				command: `node src/commands/demo.mjs --fresh --port ${PORT}`,
+				url: `http://localhost:${PORT}/healthz`,
+				reuseExistingServer: false,
+				timeout: 180_000,
+				stdout: 'ignore',
+				stderr: 'pipe',
+				gracefulShutdown: { signal: 'SIGTERM', timeout: 10_000 },
+				env: { DEMO_FOLDER: 'test-results/demo', SIGN_IN_ATTEMPTS: '50', API_LIMIT_PER_MINUTE: '10000' }
+			}
 });

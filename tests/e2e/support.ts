@@ -13,7 +13,7 @@ export const PEOPLE = {
 export async function signIn(page: Page, email: string, password = DEMO_PASSWORD): Promise<void> {
 	await page.goto('/sign-in');
 	await page.getByLabel('E-mail').fill(email);
-	await page.getByLabel('Password', { exact: true }).fill(password);
+	await page.getByLabel(/^Password/).fill(password);
 	await page.getByRole('button', { name: 'Sign in' }).click();
 	await expect(page).not.toHaveURL(/sign-in/);
 }
