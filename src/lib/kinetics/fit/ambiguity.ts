@@ -9,7 +9,7 @@ import { evaluateLinear } from './affine';
 import type { FindingsInput } from './findings';
 import type { KineticProblem } from './problem';
 import { speciesCurves } from './species-curves';
-import { duration, figure } from './words';
+import { duration, withUnit } from './words';
 
 const EQUAL_AICC = 2;
 
@@ -19,11 +19,11 @@ export function ambiguityFindings(input: FindingsInput): FitFinding[] {
 	if (!rivals.length) return otherMinima(input);
 	const best = problem.free.map((slot) => {
 		const p = report.parameters.find((q) => q.id === slot.id)!;
-		return `${slot.id} ${figure(p.estimate)} ${p.unit}`;
+		return `${slot.id} ${withUnit(p.estimate, p.unit)}`;
 	});
 	const other = problem.free.map((slot) => {
 		const value = report.alternatives[outcome.minima.indexOf(rivals[0]) - 1].parameters[slot.id];
-		return `${slot.id} ${figure(value)} ${slot.unit}`;
+		return `${slot.id} ${withUnit(value, slot.unit)}`;
 	});
 	const sample = decidingSample(problem, outcome.minima[0].result.x, rivals[0].result.x);
 	const words = sample

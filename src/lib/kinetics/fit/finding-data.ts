@@ -4,7 +4,7 @@
 import type { FitFinding } from '../../schemas/fit';
 import { evaluateLinear } from './affine';
 import type { FindingsInput } from './findings';
-import { offsetOrCharge } from './offset-charge';
+import { offsetOrCharge, quenchLag } from './offset-charge';
 import { duration, figure } from './words';
 
 export function dataFindings(input: FindingsInput): FitFinding[] {
@@ -13,6 +13,7 @@ export function dataFindings(input: FindingsInput): FitFinding[] {
 		...balance(input),
 		...offsets(input),
 		...offsetOrCharge(input),
+		...quenchLag(input),
 		...areaPercent(input),
 		...smallExcess(input),
 		...referenceOutside(input),

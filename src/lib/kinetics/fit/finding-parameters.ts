@@ -6,7 +6,7 @@ import type { FindingsInput } from './findings';
 import { combinationWords, describeDirection, joined } from './identifiability';
 import { simplerScheme } from './simpler';
 import type { Slot } from './slots';
-import { duration, figure } from './words';
+import { duration, figure, withUnit } from './words';
 
 export function parameterFindings(input: FindingsInput): FitFinding[] {
 	const open = openProfiles(input);
@@ -59,9 +59,9 @@ function openProfiles({ problem, profiles, report, best }: FindingsInput): FitFi
 		const level = Math.round(problem.request.options.confidenceLevel * 100);
 		const known =
 			low !== null
-				? `it is at least ${figure(low)} ${slot.unit} (${level} %), with no upper limit`
+				? `it is at least ${withUnit(low, slot.unit)} (${level} %), with no upper limit`
 				: high !== null
-					? `it is at most ${figure(high)} ${slot.unit} (${level} %), and ${slot.scale === 'ln' ? 'zero cannot be excluded' : 'there is no lower limit'}`
+					? `it is at most ${withUnit(high, slot.unit)} (${level} %), and ${slot.scale === 'ln' ? 'zero cannot be excluded' : 'there is no lower limit'}`
 					: 'neither a lower nor an upper limit can be given';
 		return [
 			{
@@ -82,7 +82,7 @@ function atBounds({ problem, best, report }: FindingsInput): FitFinding[] {
 		const own = side < 0 ? Number.isFinite(slot.lower) : Number.isFinite(slot.upper);
 		const meaning =
 			own || slot.kind === 'amount'
-				? `It lies at its ${side < 0 ? 'lower' : 'upper'} bound (${figure(value)} ${slot.unit}), so no interval is given; the others are fitted as if it were fixed there.`
+				? `It lies at its ${side < 0 ? 'lower' : 'upper'} bound (${withUnit(value, slot.unit)}), so no interval is given; the others are fitted as if it were fixed there.`
 				: side < 0
 					? 'The data want it as small as it can be: the step may not occur, or is too slow for these times.'
 					: 'The data want it as large as it can be: it is too fast for these times to show.';
@@ -110,7 +110,7 @@ function correlated({ problem, report, uncertainty }: FindingsInput): FitFinding
 			const sign = rho > 0 ? -1 : 1;
 			const variance = covariance[i][i] + covariance[j][j] + 2 * sign * covariance[i][j];
 			const better =
-				both && variance > 0
+				both && variance > 0 && variance < 0.25 * Math.min(covariance[i][i], covariance[j][j])
 					? ` Their ${rho > 0 ? 'ratio' : 'product'} is known to ${figure(100 * Math.sqrt(variance), 2)} %.`
 					: '';
 			findings.push({

@@ -15,11 +15,12 @@ import { structuralFindings, planIssues } from './checks';
 import { identifiabilityFindings } from './identifiability';
 import { collectFindings } from './findings';
 import type { LeastSquaresResult } from './levenberg-marquardt';
+import { norm } from './linear-algebra';
 import { massBalance } from './mass-balance';
 import { KineticModel } from './model';
 import { compileProblem, type KineticProblem } from './problem';
 import { profileIntervals, type ProfileInterval } from './profile';
-import { FitCancelled, searchMinima, type SearchOutcome } from './search';
+import { FitCancelled, searchMinima, type Minimum, type SearchOutcome } from './search';
 import { toReported, reportedFactor, type Slot } from './slots';
 import { searchBox, startingPoints, type SearchBox } from './starts';
 import { activeJacobian, uncertainty, type Uncertainty } from './uncertainty';
@@ -66,8 +67,25 @@ export function fit(request: FitRequest, hooks: FitHooks = {}): FitReport {
 	const box = searchBox(problem);
 	early.push(...identifiabilityFindings(problem, box), ...structuralFindings(problem));
 	const outcome = problem.free.length > 0 ? runSearch(model, box, request, hooks) : nothingToSearch(model);
+	outcome.minima = withoutPlateaus(outcome.minima, model.m);
 	if (outcome.minima.length === 0) throw new FitRequestError([noFiniteStart()]);
 	return report({ problem, model, box, outcome, early, hooks });
+}
+
+/**
+ * Drops end points where the search ran out on flat ground (a parameter at a bound, or without any effect): they are no minima
+ * and say nothing about the data, unless they fit almost as well as the best.
+ */
+function withoutPlateaus(minima: Minimum[], m: number): Minimum[] {
+	const best = minima[0];
+	if (!best) return minima;
+	const length = (of: Minimum, j: number) => norm(of.result.jacobian, j * m, m);
+	return minima.filter((minimum) => {
+		if (minimum === best || minimum.result.ssr < best.result.ssr * 1.5) return true;
+		return Array.from(minimum.result.activeBounds).every(
+			(bound, j) => bound === 0 && length(minimum, j) > 1e-5 * length(best, j)
+		);
+	});
 }
 
 function noFiniteStart(): FitFinding {

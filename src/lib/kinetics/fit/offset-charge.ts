@@ -1,4 +1,6 @@
 /**
+ * Time zero and charge: two things that the clock and the balance get wrong, and that look alike.
+ *
  * A late clock and a wrong charge look alike: for a single first-order decay A₀ e^{−k(t+τ)} only A₀ e^{−kτ} is determined. Where
  * one of the two is fitted, this checks whether the other would explain the data as well.
  */
@@ -8,7 +10,11 @@ import { covarianceFromJacobian } from './covariance';
 import type { FindingsInput } from './findings';
 import { KineticModel } from './model';
 import { compileProblem } from './problem';
-import { runId } from './slots';
+import { searchMinima } from './search';
+import { runId, toReported } from './slots';
+import { searchBox } from './starts';
+import { aicc } from './statistics';
+import { figure, withUnit } from './words';
 
 export function offsetOrCharge({ problem, best }: FindingsInput): FitFinding[] {
 	return problem.runs.flatMap((run) => {
@@ -72,4 +78,50 @@ function bothFitted(request: FitRequest, index: number, species: string): FitReq
 			tied: request.options.tied.filter((t) => !names.has(t.parameter))
 		}
 	};
+}
+
+/** Units of AICc by which a time offset has to improve a fit before it is proposed. */
+const CLEARLY_BETTER = 10;
+
+/**
+ * Where the residuals show a pattern and no offset was fitted: would a time offset (quench lag) explain it?
+ * Only a proposal; the reported fit is not changed.
+ */
+export function quenchLag({ problem, best, report }: FindingsInput): FitFinding[] {
+	const patterned =
+		(report.runsTest !== null && report.runsTest.p < 0.1) ||
+		(report.lackOfFit !== null && report.lackOfFit.p < 0.05);
+	if (!patterned || report.aicc === null || problem.runs.some((r) => r.offset.terms.length > 0)) return [];
+	const request: FitRequest = {
+		...problem.request,
+		runs: problem.request.runs.map((run) => ({
+			...run,
+			timeOffset: { fit: true as const, guess: { value: 0, unit: run.timeUnit } }
+		})),
+		options: { ...problem.request.options, useTimeZeroRow: problem.request.options.useTimeZeroRow ?? false }
+	};
+	const variant = compileProblem(request).problem;
+	if (!variant || variant.counted !== problem.counted) return [];
+	const start = Float64Array.from(variant.free, (slot) => {
+		const j = problem.free.findIndex((f) => f.id === slot.id);
+		return j >= 0 ? best.x[j] : 0;
+	});
+	const { minima } = searchMinima(new KineticModel(variant), searchBox(variant), [start]);
+	const other = minima.length ? aicc(variant.counted, variant.free.length, minima[0].result.ssr) : null;
+	if (other === null || other > report.aicc - CLEARLY_BETTER) return [];
+	const { x } = minima[0].result;
+	const words = variant.free.flatMap((slot, j) => {
+		if (slot.kind === 'offset') return [`${slot.run} ${figure(toReported(slot, x[j]))} ${slot.unit}`];
+		return [];
+	});
+	const constants = variant.free.flatMap((slot, j) =>
+		slot.kind === 'rate' ? [`${slot.id} ${withUnit(toReported(slot, Math.exp(x[j])), slot.unit)}`] : []
+	);
+	return [
+		{
+			code: 'time-offset-explains',
+			level: 'caution',
+			message: `A time offset (samples that react on until quenched, or a clock started late) would describe the data much better (AICc lower by ${figure(report.aicc - other)}): ${words.join(', ')}, with ${constants.join(', ')}. A different charge can look the same. Ask how time zero was set, and let the offset be fitted if that is what happened.`
+		}
+	];
 }

@@ -4,8 +4,8 @@
  *     c(t) = V e^{Λt} V⁻¹ c₀
  *     ∂c/∂ln k_d = k_d ∫₀ᵗ e^{K(t−u)} (Σ ν_i e_i − e_j) c_j(u) du = V z,  z_a = w_a Σ_b φ_ab V_jb y_b
  * with y = V⁻¹c₀, w = k_d V⁻¹(Σ ν_i e_i − e_j) and φ_ab = (e^{λ_a t} − e^{λ_b t})/(λ_a − λ_b), the divided difference.
- * The inner sums depend on the reactant j alone and are shared by its steps. Where the eigenbasis is poor the engine's
- * `SensitivityWorkspace` answers instead; both are held to each other in the tests.
+ * The inner sums depend on the reactant j alone and are shared by its steps. Where the eigenbasis is poor, or complex,
+ * `StepPropagator` answers instead. Both are held to the engine's own `SensitivityWorkspace` in the tests.
  *
  * | symbol | variable |
  * | ------ | -------- |
@@ -16,9 +16,8 @@
  * Sources: Daleckii & Krein (1965); Van Loan, IEEE Trans. Autom. Control 23 (1978) 395; McCurdy, Ng & Parlett, Math. Comp.
  * 43 (1984) 501 (divided differences of the exponential).
  */
-import { SensitivityWorkspace, type SensitivityParameter } from '../sensitivity';
-import type { LinearSystem } from '../types';
 import { SpectralBasis, type Direction } from './spectral';
+import { StepPropagator } from './step-propagator';
 
 /** Largest error in c(0) and in the slope at 0, relative, that the eigenbasis may show. */
 const CONSISTENCY = 1e-11;
@@ -41,7 +40,7 @@ export class RunKernel {
 	private readonly w: Float64Array;
 	private readonly reactants: number[];
 	private readonly reactantOf: number[];
-	private fallback: SensitivityWorkspace | null = null;
+	private steps: StepPropagator | null = null;
 
 	/**
 	 * @param n species
@@ -73,11 +72,14 @@ export class RunKernel {
 		this.w = new Float64Array(rates.length * n);
 	}
 
-	/** Fills the arrays. @returns false where no way gives finite numbers. */
+	/** Fills the arrays at ascending times. @returns false where no way gives finite numbers. */
 	evaluate(constants: Float64Array, charge: Float64Array, timesS: Float64Array): boolean {
 		if (this.basis.decompose(constants) && this.project(constants, charge)) {
 			for (let k = 0; k < this.times; k++) this.atTime(k, timesS[k]);
-		} else if (!this.byEngine(constants, charge, timesS)) return false;
+		} else {
+			this.steps ??= new StepPropagator(this.n, this.directions, this.rates, this.charges);
+			if (!this.steps.run(constants, charge, timesS, this)) return false;
+		}
 		if (this.wantSlopes) this.fillSlopes(constants);
 		return true;
 	}
@@ -191,38 +193,4 @@ export class RunKernel {
 			}
 		}
 	}
-
-	/** The engine's own way, for repeated rates and for loops out of balance. */
-	private byEngine(constants: Float64Array, charge: Float64Array, timesS: Float64Array): boolean {
-		const { n, directions, rates, charges } = this;
-		const parameters: SensitivityParameter[] = [
-			...rates.map((d) => ({ kind: 'rate' as const, step: d, direction: 'forward' as const })),
-			...charges.map((species) => ({ kind: 'charge' as const, species }))
-		];
-		if (!this.fallback) this.fallback = new SensitivityWorkspace(n, new Float64Array(this.times), parameters);
-		this.fallback.timesS.set(timesS);
-		const result = this.fallback.evaluate(systemOf(n, directions, constants), charge);
-		this.curves.set(result.curves);
-		const split = this.rateDerivatives.length;
-		this.rateDerivatives.set(result.derivatives.subarray(0, split));
-		this.chargeDerivatives.set(result.derivatives.subarray(split));
-		for (let i = 0; i < this.curves.length; i++) if (!Number.isFinite(this.curves[i])) return false;
-		return true;
-	}
-}
-
-/** The engine's linear system for these directions; each direction stands as a step of its own. */
-export function systemOf(n: number, directions: Direction[], constants: ArrayLike<number>): LinearSystem {
-	const outflow = new Float64Array(n);
-	const transfers: LinearSystem['transfers'] = [];
-	const flows: NonNullable<LinearSystem['flows']> = [];
-	directions.forEach(({ from, products }, step) => {
-		const rate = constants[step];
-		if (rate === 0) return;
-		outflow[from] += rate;
-		flows.push({ step, direction: 'forward', from, rate });
-		for (const { to, coefficient } of products)
-			transfers.push({ from, to, rate, coefficient, step, direction: 'forward' });
-	});
-	return { n, transfers, outflow, flows };
 }

@@ -125,7 +125,11 @@ describe('quench lag', () => {
 		);
 
 	it('biases the constant when time zero and charge are held', () => {
-		expect(of(lag({}), 's1.forward.kRef').estimate).toBeCloseTo(7.39, 2);
+		const report = lag({});
+		expect(of(report, 's1.forward.kRef').estimate).toBeCloseTo(7.39, 2);
+		const proposal = finding(report, 'time-offset-explains').message;
+		expect(proposal).toMatch(/1\.5 min/);
+		expect(proposal).toMatch(/s1\.forward\.kRef 6 1\/h/);
 	});
 
 	it('is recovered by a time offset, which is reported', () => {

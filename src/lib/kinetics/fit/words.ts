@@ -15,3 +15,7 @@ export function duration(seconds: number, unit: 's' | 'min' | 'h' | 'd'): string
 }
 
 export const plural = (n: number, one: string, many = `${one}s`): string => `${n} ${n === 1 ? one : many}`;
+
+/** A number with its unit; a bare factor has none to show. */
+export const withUnit = (value: number, unit: string): string =>
+	unit === '1' ? figure(value) : `${figure(value)} ${unit}`;
