@@ -65,6 +65,10 @@ export function endLabels(chart: Chart, layer: Layer): EndLabel[] {
 	}));
 }
 
+/** Whether a place lies on the plot; what lies outside is not drawn over the labels. */
+export const inPlot = ({ chartArea: a }: Chart, px: number, py: number): boolean =>
+	px >= a.left - 1 && px <= a.right + 1 && py >= a.top - 1 && py <= a.bottom + 1;
+
 function drawPoints(chart: Chart, layer: Layer) {
 	const { ctx } = chart;
 	const { x, y } = chart.scales;
@@ -75,7 +79,7 @@ function drawPoints(chart: Chart, layer: Layer) {
 		for (const p of s.points ?? []) {
 			const px = x.getPixelForValue(p.x);
 			const py = y.getPixelForValue(p.y);
-			if (!Number.isFinite(px) || !Number.isFinite(py)) continue;
+			if (!inPlot(chart, px, py)) continue;
 			ctx.save();
 			ctx.globalAlpha = p.excluded ? 0.4 : 1;
 			ctx.strokeStyle = colour;

@@ -1,5 +1,5 @@
 import type { Chart } from 'chart.js';
-import { endLabels, FONT, type Layer } from './drawing';
+import { endLabels, FONT, inPlot, type Layer } from './drawing';
 import { markerPath, seriesStyle } from './series';
 import type { ChartBand } from './types';
 
@@ -76,7 +76,9 @@ function seriesMarkup(
 		if (s.curve)
 			out += `<path d="${path(chart, s.curve.x, s.curve.y)}" fill="none" stroke="${colour}" stroke-width="2.2" stroke-dasharray="${style.dash.join(' ')}"/>`;
 		for (const p of s.points ?? []) {
-			const at = `translate(${f(x.getPixelForValue(p.x))} ${f(y.getPixelForValue(p.y))})`;
+			const [px, py] = [x.getPixelForValue(p.x), y.getPixelForValue(p.y)];
+			if (!inPlot(chart, px, py)) continue;
+			const at = `translate(${f(px)} ${f(py)})`;
 			const d = p.below ? 'M-5 0H5M0 0V9M-3 6L0 9.5L3 6' : markerPath(style.marker, 4.8);
 			if (p.error && !p.below) {
 				const half = Math.abs(y.getPixelForValue(p.y + p.error) - y.getPixelForValue(p.y));

@@ -28,6 +28,8 @@ export interface ViewConditions {
 	temperature: Quantity;
 	/** In `timeUnit`; null: as long as it takes for things to settle. */
 	span: number | null;
+	/** Time in seconds that must be in sight when no span is set: the last sample of a run. */
+	atLeastS?: number;
 	timeUnit: string;
 }
 
@@ -161,7 +163,10 @@ export function simulate(content: SchemeContent, view: ViewConditions): Simulati
 	const system = linearSystem(network, constants);
 	const solution = solve(system, charge);
 	const unit = SECONDS[view.timeUnit] ?? 3600;
-	const spanS = view.span && view.span > 0 ? view.span * unit : settlingTime(solution, unit);
+	const spanS =
+		view.span && view.span > 0
+			? view.span * unit
+			: Math.max(settlingTime(solution, unit), view.atLeastS ?? 0);
 	const timesS = timeGrid(spanS, fastestTime(solution));
 	const all = solution.curves(timesS);
 	const n = network.species.length;
