@@ -30,14 +30,21 @@ function widthOf(texts: string[]): number {
 	return Math.round(Math.min(WIDE, Math.max(NARROW, longest * LETTER_PX + 20)));
 }
 
+/** Rows with a few cells at least: titles, footers and notes have one or two and do not set a width. */
+const isTabular = (row: GridSheet['rows'][0]): boolean => row.c.filter((c) => c[1] !== null).length >= 3;
+
 export function layoutOf(workbook: GridWorkbook, sheet: GridSheet): GridLayout {
 	const used = new Map<number, string[]>();
+	const across = new Set(sheet.merges.filter((m) => m[3] > m[1]).map((m) => `${m[0]} ${m[1]}`));
+	const tabular = sheet.rows.some(isTabular);
 	sheet.rows.forEach((row, i) => {
+		const counts = i < SAMPLED && (!tabular || isTabular(row));
 		for (const cell of row.c) {
 			if (cell[1] === null || cell[1] === '') continue;
 			const texts = used.get(cell[0]) ?? [];
 			used.set(cell[0], texts);
-			if (i < SAMPLED) texts.push(displayText(workbook, cell));
+			// A header merged over several columns has them all for its room.
+			if (counts && !across.has(`${row.r} ${cell[0]}`)) texts.push(displayText(workbook, cell));
 		}
 	});
 	const columns = [...used.keys()].sort((a, b) => a - b).slice(0, MOST_COLUMNS);
