@@ -1,8 +1,9 @@
 /** The part of xlsx-populate (which ships no types) that this service uses. */
 declare module 'xlsx-populate' {
+	type CellContent = string | number | boolean | Date | null | undefined;
 	export interface Cell {
 		value(): unknown;
-		value(value: string | number | boolean | Date | null | undefined): Cell;
+		value(value: CellContent | CellContent[][]): Cell;
 		formula(): string | undefined;
 		formula(formula: string): Cell;
 		style(name: string, value: unknown): Cell;
