@@ -111,8 +111,14 @@ test('from a scheme dragged with the mouse to a recipe that a second person vali
 	expect(leadErrors).toEqual([]);
 
 	const reader = await as(browser, PEOPLE.reader);
+	await reader.getByRole('button', { name: /Kilo Lab/ }).click();
+	await reader
+		.getByRole('menuitem', { name: /Pilot Hall/ })
+		.or(reader.getByRole('menuitemradio', { name: /Pilot Hall/ }))
+		.click();
+	await expect(reader.getByRole('button', { name: /Pilot Hall/ })).toBeVisible();
 	await reader.goto('/shared');
-	await reader.getByRole('link', { name: /Ring closure of the story/ }).click();
+	await reader.getByRole('link', { name: /Ring closure of the story/ }).first().click();
 	await expect(reader.getByRole('heading', { name: /Ring closure of the story/ }).first()).toBeVisible();
 	await reader.goto(`/studies/${study}/scheme`);
 	await expect(reader.getByRole('heading', { level: 1 })).toContainText(/not found/i);
@@ -129,7 +135,7 @@ test('from a scheme dragged with the mouse to a recipe that a second person vali
 		qa.getByRole('link', { name: /workbook/i }).click()
 	]);
 	const book = await recalculate(readFileSync(await download.path()));
-	expect(book.value('Cover', book.beside('Cover', 'Overall check'))).toBe(true);
+	expect(book.value('Cover', book.beside('Cover', 'All checks'))).toBe(true);
 });
 
 test('the same scheme is put together by keyboard alone', async ({ page }) => {
