@@ -32,6 +32,8 @@ export interface FoundBlock {
 
 /** At most this many tables of a sheet are offered. */
 const MOST_TABLES = 40;
+/** Columns of one table. */
+export const MOST_COLUMNS = 400;
 
 export function findBlocks(view: SheetView): FoundBlock[] {
 	const looks = view.sheet.rows.map((row) => lookAt(view.workbook, row));
@@ -245,7 +247,7 @@ function oneTable(
 		firstRow: kept[0].r,
 		lastRow: kept[kept.length - 1].r,
 		firstColumn: first,
-		lastColumn: last
+		lastColumn: Math.min(last, first + MOST_COLUMNS - 1)
 	};
 	const above = textsAbove(view, looks, band, parted ? { first, last } : null);
 	return {

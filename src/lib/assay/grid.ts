@@ -76,6 +76,11 @@ export class SheetView {
 		return displayText(this.workbook, this.cell(row, column)).trim();
 	}
 
+	/** Rows that hold anything, from `first` to `last`: never walks the blank rows of a sheet. */
+	filledRows(first: number, last: number): number[] {
+		return this.sheet.rows.filter((row) => row.r >= first && row.r <= last).map((row) => row.r);
+	}
+
 	/** The merged area that covers a cell, if one does. */
 	mergeAt(row: number, column: number): [number, number, number, number] | undefined {
 		return this.sheet.merges.find((m) => row >= m[0] && row <= m[2] && column >= m[1] && column <= m[3]);

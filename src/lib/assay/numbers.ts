@@ -35,7 +35,7 @@ export interface NumberText {
 export function numberText(text: string): NumberText | null {
 	const simple = simpleNumber(text);
 	if (simple) return simple;
-	if (!/\d/.test(text) || text.length > 80) return null;
+	if (!/[\d\uff10-\uff19]/.test(text) || text.length > 80) return null;
 	const trimmed = text.replace(MINUS, '-').trim();
 	const inner = trimmed.replace(/^([+-])[\s\u00a0]+/, '$1');
 	if (/\d[\s\u00a0\u2000-\u200a\u202f]+[\d]/.test(inner) && !SPACED.test(inner)) return null;

@@ -34,6 +34,7 @@ import { speaksOfTime } from './rows';
 import { savedFor, withSaved } from './saved-mapping';
 import { settle } from './settle';
 import { suggestConditions } from './suggestions';
+import { MOST_COLUMNS } from './blocks';
 import { tablesOf, timeColumnByHeader, viewOf, votesOf, type FoundTable } from './tables';
 import { readTime } from './times';
 import { isPeakValueWord, isPeakWord } from './words';
@@ -76,13 +77,14 @@ export function proposeBlock(
 	workbook: GridWorkbook,
 	species: SpeciesContent[],
 	sheet: string,
-	block: Block,
+	drawn: Block,
 	headerRows: number[] | null = null,
 	id = 'drawn',
 	options: ProposeOptions = {}
 ): TableProposal | null {
 	const view = viewOf(workbook, sheet);
 	if (!view) return null;
+	const block = within(drawn, view);
 	const near = tablesOf(workbook).find(
 		(t) => t.sheet === sheet && t.block.firstRow <= block.lastRow && t.block.lastRow >= block.firstRow
 	);
@@ -98,6 +100,18 @@ export function proposeBlock(
 		above: near?.above ?? []
 	};
 	return proposeTable(workbook, species, found, id, options);
+}
+
+/** The part of a drawn block that the sheet fills, at most as wide as a mapping may be. */
+function within(drawn: Block, view: SheetView): Block {
+	const lastRow = Math.min(drawn.lastRow, Math.max(view.sheet.lastRow, drawn.firstRow));
+	const widest = drawn.firstColumn + MOST_COLUMNS - 1;
+	const lastColumn = Math.min(drawn.lastColumn, widest, Math.max(view.sheet.lastColumn, drawn.firstColumn));
+	return {
+		...drawn,
+		lastRow: Math.max(lastRow, drawn.firstRow),
+		lastColumn: Math.max(lastColumn, drawn.firstColumn)
+	};
 }
 
 function sheetWords(rows: number, tables: number): string {
@@ -131,7 +145,7 @@ export function timeColumnOf(view: SheetView, found: FoundTable): number {
 function namesTimes(view: SheetView, found: FoundTable, column: number): boolean {
 	let times = 0;
 	let others = 0;
-	for (let r = found.block.firstRow; r <= found.block.lastRow; r++) {
+	for (const r of view.filledRows(found.block.firstRow, found.block.lastRow)) {
 		const cell = view.cell(r, column);
 		if (typeof cell?.[1] !== 'string') continue;
 		if (readTime(view.workbook, cell, null).kind === 'worded') times++;
@@ -143,7 +157,7 @@ function namesTimes(view: SheetView, found: FoundTable, column: number): boolean
 function increases(view: SheetView, found: FoundTable, column: number): boolean {
 	let before = -Infinity;
 	let count = 0;
-	for (let r = found.block.firstRow; r <= found.block.lastRow; r++) {
+	for (const r of view.filledRows(found.block.firstRow, found.block.lastRow)) {
 		const reading = readTime(view.workbook, view.cell(r, column), null);
 		if (reading.kind === 'blank') continue;
 		if (reading.kind !== 'number' && reading.kind !== 'serial') return false;
@@ -169,7 +183,7 @@ export function factsOf(view: SheetView, found: FoundTable, column: number): Col
 function countFacts(view: SheetView, found: FoundTable, column: number): ColumnFacts {
 	const facts = { numbers: 0, texts: 0, distinct: 0 };
 	const distinct = new Set<string>();
-	for (let r = found.block.firstRow; r <= found.block.lastRow; r++) {
+	for (const r of view.filledRows(found.block.firstRow, found.block.lastRow)) {
 		const cell = view.cell(r, column);
 		if (!cell) continue;
 		const { kind } = readCell(view.workbook, cell, null);
@@ -330,7 +344,8 @@ function peaksOf(
 	species: SpeciesContent[]
 ): PeakMapping[] {
 	const peaks = new Map<string, PeakMapping>();
-	for (let r = found.block.firstRow; r <= found.block.lastRow && peaks.size < MOST_PEAKS; r++) {
+	for (const r of view.filledRows(found.block.firstRow, found.block.lastRow)) {
+		if (peaks.size >= MOST_PEAKS) break;
 		const peak = view.text(r, column).slice(0, 120);
 		if (!peak || peaks.has(peak)) continue;
 		const id = matchName(peak, species);
@@ -346,7 +361,7 @@ function peakCounts(
 	peaks: PeakMapping[]
 ): TableProposal['peaks'] {
 	const counts = new Map<string, number>();
-	for (let r = found.block.firstRow; r <= found.block.lastRow; r++) {
+	for (const r of view.filledRows(found.block.firstRow, found.block.lastRow)) {
 		const peak = view.text(r, column).slice(0, 120);
 		counts.set(peak, (counts.get(peak) ?? 0) + 1);
 	}

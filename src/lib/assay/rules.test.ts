@@ -579,6 +579,35 @@ describe('times', () => {
 		expect(settleWith({ key: 'unchanged' })).toEqual([0, 1, 4, 5, 6]);
 	});
 
+	it('B16: a stamp in the hour that the clocks showed twice is asked', () => {
+		const workbook = times(
+			['2026-10-25 01:30', '2026-10-25 02:30', '2026-10-25 03:30', '2026-10-25 04:30', '2026-10-25 05:30'],
+			'Timestamp'
+		);
+		const mapping = { ...first(workbook).mapping, conditions, timeZone: 'Europe/Berlin' };
+		const start: Answer = { key: 'first' };
+		const open = settle({ workbook, species, mapping, answers: { 'B16:Data!start': start } }).findings.filter(
+			(f) => f.open
+		);
+		expect(open.map((f) => [f.id, f.message])).toEqual([
+			[
+				'B16:Data!doubled-A3',
+				'A3 2026-10-25 02:30: the clocks showed this hour twice. Before or after they were put back?'
+			]
+		]);
+		const settleWith = (key: string) =>
+			timesOf(
+				settle({
+					workbook,
+					species,
+					mapping,
+					answers: { 'B16:Data!start': start, 'B16:Data!doubled-A3': { key } }
+				})
+			);
+		expect(settleWith('before')).toEqual([0, 1, 3, 4, 5]);
+		expect(settleWith('after')).toEqual([0, 2, 3, 4, 5]);
+	});
+
 	it('B16: a date that reads as day-month or month-day is asked where it matters', () => {
 		const workbook = times(
 			['03/04/2026 09:00', '03/04/2026 10:00', '03/05/2026 09:00', '03/05/2026 10:00', '03/05/2026 11:00'],

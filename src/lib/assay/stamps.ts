@@ -2,7 +2,7 @@
 import type { Examination } from './examination';
 import { address } from './grid';
 import type { Sample } from './samples';
-import { clockChangeBetween, daysToSeconds, readTimeText, zoneOffsetMin, type TimeReading } from './times';
+import { clockChangeBetween, daysToSeconds, readTimeText, zoneOffsetsMin, type TimeReading } from './times';
 
 type Stamp = TimeReading & { kind: 'stamp' };
 
@@ -21,10 +21,12 @@ export function absoluteSeconds(
 	const known = days.filter((d) => Number.isFinite(d));
 	const zone = settleZone(ex, cells, readings, Math.min(...known), Math.max(...known));
 	if (zone === null) return readings.map(() => null);
+	const later = askDoubledHour(ex, cells, readings, days, zone);
+	if (later === null) return readings.map(() => null);
 	const seconds = days.map((d, i) => {
 		const r = readings[i];
 		if (r.kind !== 'stamp') return NaN;
-		const offset = r.utcOffsetMin ?? (zone === '' ? 0 : zoneOffsetMin(d, zone));
+		const offset = r.utcOffsetMin ?? offsetOf(d, zone, later.has(i));
 		return daysToSeconds(d) - offset * 60;
 	});
 	const start = askStart(ex, cells[0], (readings[0] as Stamp).text, orders, zone);
@@ -104,6 +106,49 @@ function settleZone(
 	return taken.text();
 }
 
+function offsetOf(days: number, zone: string, later: boolean): number {
+	if (zone === '') return 0;
+	const offsets = zoneOffsetsMin(days, zone);
+	return later ? offsets[offsets.length - 1] : offsets[0];
+}
+
+/** Stamps in the hour that a clock change doubles can mean two moments. Gives those that mean the later one; null while asked. */
+function askDoubledHour(
+	ex: Examination,
+	cells: string[],
+	readings: TimeReading[],
+	days: number[],
+	zone: string
+): Set<number> | null {
+	const later = new Set<number>();
+	let open = false;
+	readings.forEach((r, i) => {
+		if (
+			zone === '' ||
+			r.kind !== 'stamp' ||
+			r.utcOffsetMin !== null ||
+			zoneOffsetsMin(days[i], zone).length < 2
+		)
+			return;
+		const taken = ex.ask({
+			rule: 'B16',
+			level: 'ask',
+			cells: [cells[i]],
+			key: `doubled-${cells[i]}`,
+			found: `${r.text}, an hour that the clocks showed twice`,
+			expected: 'before or after the clocks were put back',
+			message: `${cells[i]} ${r.text}: the clocks showed this hour twice. Before or after they were put back?`,
+			options: [
+				{ key: 'before', label: 'Before' },
+				{ key: 'after', label: 'After' }
+			]
+		});
+		if (!taken) open = true;
+		else if (taken.key === 'after') later.add(i);
+	});
+	return open ? null : later;
+}
+
 function askStart(
 	ex: Examination,
 	cell: string,
@@ -140,6 +185,6 @@ function askStart(
 	}
 	ex.conversions.push(`Elapsed time counted from ${taken.text()}.`);
 	const days = orders === 'month' ? (reading.otherDays ?? reading.days) : reading.days;
-	const offset = reading.utcOffsetMin ?? (zone === '' ? 0 : zoneOffsetMin(days, zone));
+	const offset = reading.utcOffsetMin ?? offsetOf(days, zone, false);
 	return daysToSeconds(days) - offset * 60;
 }

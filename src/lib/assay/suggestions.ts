@@ -53,7 +53,7 @@ function temperatureFromLog(view: SheetView, mapping: Mapping): Suggestion | nul
 	const column = mapping.columns.find((c) => c.role === 'temperature');
 	if (!column || (column.unit !== 'degC' && column.unit !== 'K')) return null;
 	const values: number[] = [];
-	for (let r = mapping.block.firstRow; r <= mapping.block.lastRow; r++) {
+	for (const r of view.filledRows(mapping.block.firstRow, mapping.block.lastRow)) {
 		const reading = readCell(view.workbook, view.cell(r, column.column), mapping.decimal);
 		if (reading.kind === 'number') values.push(reading.value);
 	}

@@ -1,6 +1,6 @@
 /** The tables of a workbook, found once and kept with it: proposing and settling look at the same ones. */
 import type { GridWorkbook, Mapping } from '$lib/schemas/sheet';
-import { findBlocks, timeColumnByHeader, type FoundBlock } from './blocks';
+import { findBlocks, MOST_COLUMNS, timeColumnByHeader, type FoundBlock } from './blocks';
 import { readHeaders, type ColumnHeader } from './columns';
 import { SheetView } from './grid';
 import type { DecimalVotes } from './numbers';
@@ -59,8 +59,11 @@ export function votesOf(workbook: GridWorkbook, mapping?: Mapping): DecimalVotes
 	return votes;
 }
 
+/** Headers of a mapping's columns; a block that reaches beyond the filled part of the sheet is cut there. */
 export function headersOf(view: SheetView, mapping: Mapping): Map<number, ColumnHeader> {
-	return new Map(readHeaders(view, mapping.headerRows, mapping.block).map((h) => [h.column, h]));
+	const { block } = mapping;
+	const lastColumn = Math.min(block.lastColumn, view.sheet.lastColumn, block.firstColumn + MOST_COLUMNS - 1);
+	return new Map(readHeaders(view, mapping.headerRows, { ...block, lastColumn }).map((h) => [h.column, h]));
 }
 
 export { timeColumnByHeader };

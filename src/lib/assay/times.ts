@@ -219,14 +219,17 @@ export function clockText(seconds: number): string {
 export const secondsIn = (seconds: number, unit: TimeUnit): number =>
 	Number((seconds / SECONDS[unit]).toPrecision(15));
 
-/** Offset of a zone from UTC in minutes at a wall-clock time given as serial days. Where a clock change skips or doubles the hour, the earlier offset holds. */
-export function zoneOffsetMin(days: number, zone: string): number {
+/**
+ * Offsets of a zone from UTC in minutes that a wall-clock time, given as serial days, can have: one as a rule; two, the earlier
+ * moment first, in the hour that a clock change doubles. In the hour that it skips the offset before the change holds.
+ */
+export function zoneOffsetsMin(days: number, zone: string): number[] {
 	const wallMs = Math.round((days - 25_569) * 86_400_000);
-	let offset = offsetAt(wallMs, zone);
-	const first = offset;
-	offset = offsetAt(wallMs - first * 60_000, zone);
-	const again = offsetAt(wallMs - offset * 60_000, zone);
-	return offset === again ? offset : Math.max(offset, again);
+	const [before, after] = [offsetAt(wallMs - 86_400_000, zone), offsetAt(wallMs + 86_400_000, zone)];
+	const valid = [...new Set([before, after])].filter(
+		(offset) => offsetAt(wallMs - offset * 60_000, zone) === offset
+	);
+	return valid.length > 0 ? valid.sort((a, b) => b - a) : [before];
 }
 
 function offsetAt(utcMs: number, zone: string): number {
@@ -258,5 +261,5 @@ const WATCHED = [
 
 export function clockChangeBetween(firstDays: number, lastDays: number): string[] {
 	if (!(lastDays > firstDays) || lastDays - firstDays > 366) return [];
-	return WATCHED.filter((zone) => zoneOffsetMin(firstDays, zone) !== zoneOffsetMin(lastDays, zone));
+	return WATCHED.filter((zone) => zoneOffsetsMin(firstDays, zone)[0] !== zoneOffsetsMin(lastDays, zone)[0]);
 }
