@@ -19,3 +19,14 @@ export { expm } from './expm';
 export { formulas, type FormulaOptions, type SpeciesFormula, type TimeUnit } from './formulas';
 export * from './sensitivity';
 export { ENGINE_VERSION } from './version';
+
+// Beyond one constant batch, and what follows from a curve.
+export * from './adequacy';
+export * from './criteria';
+export * from './criteria-hold';
+export * from './dosing';
+export * from './extrema';
+export * from './flow';
+export * from './material';
+export * from './programs';
+export * from './tie';

@@ -21,6 +21,12 @@ const CHARGES: Record<string, Partial<RecipeContent['charges'][number]>> = {
 	solvent: { material: 'solvent QS-2 (invented)', densityKgPerL: 0.87, tolerancePercent: 2 }
 };
 
+const OPERATIONS: Partial<Record<string, Partial<RecipeContent['procedure'][number]>>> = {
+	Charge: { text: 'QN-7 and solvent at 20 °C, stir at 150 1/min or more', durationMin: 20 },
+	Heat: { text: 'jacket to 42 °C; the hold counts from 39 °C internal', durationMin: 30, fromC: 20 },
+	Cool: { text: 'to 5 °C without delay', durationMin: 60, toC: 5 }
+};
+
 /** What the chemist fills in beside what fit, window and study have put there already. All of it is invented. */
 function complete(content: RecipeContent, confirmationRunId: string): RecipeContent {
 	return {
@@ -29,6 +35,10 @@ function complete(content: RecipeContent, confirmationRunId: string): RecipeCont
 			...c,
 			...CHARGES[c.id === 'solvent' ? 'solvent' : (c.species ?? '')]
 		})),
+		setPoints: content.setPoints.map((p) =>
+			p.kind === 'temperature' ? { ...p, nor: [39, 41] as [number, number] } : p
+		),
+		procedure: content.procedure.map((o) => ({ ...o, ...OPERATIONS[o.kind] })),
 		equipment: [
 			{ id: 'vessel', text: 'jacketed vessel, 400 L or more, rated for the solvent at 60 °C' },
 			{ id: 'stirrer', text: 'agitation at 150 1/min or more; internal temperature logged every minute' }
