@@ -269,3 +269,51 @@ describe('work on a sheet', () => {
 		).rejects.toMatchObject({ code: 'not-allowed' });
 	});
 });
+
+describe('story H2, the messy workbook (invented)', () => {
+	/** Presses of a chemist who knows the lab: which option of which question. */
+	const PRESSES: [cell: string, rule: string, key: RegExp][] = [
+		['A14', 'B18', /^enter$/],
+		['F20', 'B24', /^missing$/],
+		['', 'B1', /^right$/],
+		['', 'B3', /mmol/],
+		['', 'B8', /^limit$/],
+		['F13', 'B5', /^accept$/],
+		['', 'B9', /^not-detected$/],
+		['', 'B10', /^between$/],
+		['', 'B19', /^samples$/],
+		['', 'B13', /^samples$/]
+	];
+
+	it('answered in full becomes a run of 14 rows: 35 numbers (one had its unit in the cell), 6 limits, 1 missing', async () => {
+		const studyId = await study();
+		const sheet = await receive(studyId, 'messy.xlsx', MESSY);
+		const [table] = sheet.proposal.tables;
+		const answers: Record<string, { key: string; values?: Record<string, string | number> }> = {};
+		for (const finding of table.findings.filter((f) => f.open)) {
+			const press = PRESSES.find(
+				([cell, rule]) => rule === finding.rule && (!cell || finding.cells[0] === cell)
+			);
+			const option = finding.options.find((o) => press?.[2].test(o.key));
+			if (!option) continue;
+			const values = Object.fromEntries((option.needsValue ?? []).map((f) => [f.key, f.suggested ?? '']));
+			answers[finding.id] = { key: option.key, ...(option.needsValue ? { values } : {}) };
+		}
+		const made = await confirmRun(chemist, {
+			sheetId: sheet.id,
+			tableKey: table.id,
+			conditions: CONDITIONS,
+			answers
+		});
+		const { content } = await readRun(chemist, made.id);
+		expect(content.timepoints).toHaveLength(14);
+		expect(new Set(content.timepoints.map((p) => p.time)).size).toBe(13);
+		const values = content.timepoints.flatMap((p) => content.channels.map((c) => p.values[c.id] ?? null));
+		expect(values.filter((v) => typeof v === 'number')).toHaveLength(35);
+		expect(values.filter((v) => v !== null && typeof v === 'object')).toHaveLength(6);
+		expect(values.filter((v) => v === null)).toHaveLength(1);
+		expect(content.timepoints.at(-1)?.time).toBe(26);
+		// The next reader of the record sees what was done: the day 25:00, the text number, the unit in the cell.
+		expect(content.conversions?.length).toBeGreaterThan(2);
+	});
+});
