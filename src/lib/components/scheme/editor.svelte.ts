@@ -54,6 +54,8 @@ export class SchemeEditor {
 	private history = $state.raw<History<Draft>>(startHistory({ name: '', content: null as never }));
 	number = $state(0);
 	theirs = $state.raw<Theirs | null>(null);
+	/** Told when a species gets another symbol, so that what the page keeps by symbol can follow. */
+	onrename: ((from: string, to: string) => void) | null = null;
 	readonly id: string;
 	readonly canWrite: boolean;
 	private readonly autosave: Autosave<Draft, Theirs>;
