@@ -46,6 +46,10 @@ describe('the way back after signing in', () => {
 			'\\\\evil.example',
 			'javascript:alert(1)',
 			'/\t/evil.example',
+			'/..//evil.example',
+			'/.//evil.example',
+			'/x/..//evil.example',
+			'/%2e%2e//evil.example',
 			'',
 			null,
 			undefined

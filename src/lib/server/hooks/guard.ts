@@ -21,7 +21,9 @@ export function safeNext(next: string | null | undefined, fallback = '/studies')
 	const base = 'http://here.invalid';
 	try {
 		const url = new URL(next, base);
-		return url.origin === base ? url.pathname + url.search + url.hash : fallback;
+		// Taking dots out can leave two slashes in front, which a browser reads as another address.
+		const leaves = url.origin !== base || url.pathname.startsWith('//');
+		return leaves ? fallback : url.pathname + url.search + url.hash;
 	} catch {
 		return fallback;
 	}
