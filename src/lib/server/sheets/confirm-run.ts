@@ -68,6 +68,14 @@ function requireRun(settlement: Settlement): NonNullable<Settlement['run']> {
 	);
 }
 
+/** A value entered as an answer is a correction too: it carries the same name and time. */
+function withSigned(actor: Actor, content: RunContent): RunContent {
+	if (!content.corrections) return content;
+	const at = new Date().toISOString();
+	const corrections = content.corrections.map((c) => ({ ...c, by: c.by ?? actor.name, at: c.at ?? at }));
+	return { ...content, corrections };
+}
+
 interface Settled {
 	work: TableWork;
 	table: TableProposal | undefined;
@@ -125,7 +133,7 @@ async function writeRun(
 	input: ConfirmRun,
 	settled: Settled
 ): Promise<Pick<ConfirmedRun, 'id' | 'number' | 'name' | 'version' | 'revision' | 'revisionId'>> {
-	const content = requireRun(settled.settlement);
+	const content = withSigned(actor, requireRun(settled.settlement));
 	const { work } = settled;
 	const { tableKey, revisionOf } = input;
 	if (revisionOf) {
