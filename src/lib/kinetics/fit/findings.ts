@@ -41,10 +41,26 @@ export function collectFindings(input: FindingsInput): FitFinding[] {
 		...dataFindings(input),
 		...input.early
 	];
-	return all
+	return withoutRepeats(all)
 		.map((finding, i) => ({ finding, i }))
 		.sort((a, b) => RANK[a.finding.level] - RANK[b.finding.level] || a.i - b.i)
 		.map(({ finding }) => finding);
+}
+
+/** A parameter that no data of this kind can determine is named once, not again for its singular value and its profile. */
+function withoutRepeats(findings: FitFinding[]): FitFinding[] {
+	const order = ['structurally-undetermined', 'not-determined', 'not-identifiable'];
+	const covered = (code: string) =>
+		new Set(
+			findings
+				.filter((f) => order.includes(f.code) && order.indexOf(f.code) < order.indexOf(code))
+				.flatMap((f) => f.parameters ?? [])
+		);
+	return findings.filter((f) => {
+		if (order.indexOf(f.code) < 1) return true;
+		const known = covered(f.code);
+		return !f.parameters?.every((id) => known.has(id));
+	});
 }
 
 function convergence({ best, outcome, report }: FindingsInput): FitFinding[] {

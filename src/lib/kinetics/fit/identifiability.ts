@@ -48,7 +48,7 @@ function denseProblem(problem: KineticProblem): KineticProblem {
 	const runs = problem.runs.map((run) => {
 		const last = run.timesS[run.timesS.length - 1] || 1;
 		const first = Array.from(run.timesS).find((t) => t > 0) ?? last;
-		const count = 24;
+		const count = 14;
 		const timesS = Float64Array.from(
 			{ length: count },
 			(_, k) => first * (last / first || 1) ** (k / (count - 1)) * (1 + 1e-3 * k)
@@ -116,7 +116,7 @@ function exchanges(problem: KineticProblem, box: SearchBox): [string, string][] 
 	const found: [string, string][] = [];
 	if (scales.length === 0) return found;
 	for (let a = 0; a < rates.length; a++)
-		for (let b = a + 1; b < rates.length && rates.length <= 12; b++)
+		for (let b = a + 1; b < rates.length && rates.length <= 8; b++)
 			if (exchangeable(problem, box, rates[a], rates[b], scales))
 				found.push([problem.free[rates[a]].id, problem.free[rates[b]].id]);
 	return found;
@@ -148,7 +148,7 @@ function exchangeable(
 		lower[j] = problem.free[j].scale === 'ln' ? swapped[j] - 12 : 0;
 		upper[j] = problem.free[j].scale === 'ln' ? swapped[j] + 12 : 1e6 * (Math.abs(swapped[j]) || 1);
 	}
-	const result = leastSquares(model, swapped, { lower, upper, maxEvaluations: 60 });
+	const result = leastSquares(model, swapped, { lower, upper, maxEvaluations: 30 });
 	return result.ssr <= 1e-14 * size;
 }
 
@@ -159,7 +159,10 @@ export function identifiabilityFindings(problem: KineticProblem, box: SearchBox)
 		...flat.map((direction) => ({
 			code: 'structurally-undetermined',
 			level: 'stop' as const,
-			message: `No number of samples of this kind can tell ${joined(direction.parameters)} apart: ${combinationWords(direction)}. Fix one of them, or assay another species.`,
+			message:
+				direction.parameters.length === 1
+					? `${direction.parameters[0]} has no effect on anything that is assayed. Fix it, or assay another species.`
+					: `No number of samples of this kind can tell ${joined(direction.parameters)} apart: ${combinationWords(direction)}. Fix one of them, or assay another species.`,
 			parameters: direction.parameters
 		})),
 		...pairs.map(([a, b]) => ({

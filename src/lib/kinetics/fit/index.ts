@@ -30,3 +30,5 @@ export { samplingPlan, type SamplingOptions, type SamplingPlan, type ExpectedWid
 export { jointRegion, type JointRegion } from './joint-region';
 export { bootstrap, leaveOneRunOut, withExcludedValues, type Bootstrap, type RunInfluence } from './refit';
 export { identifiability, type Identifiability } from './identifiability';
+export { maxima, type Maximum } from './maximum';
+export { profileCurves, type ProfileCurve } from './profile-curve';

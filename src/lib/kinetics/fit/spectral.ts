@@ -28,7 +28,7 @@ export interface Direction {
 }
 
 /** Growth of V·V⁻¹ beyond which the basis costs too many digits. */
-const MAX_GROWTH = 1e4;
+const MAX_GROWTH = 1e6;
 
 export class SpectralBasis {
 	readonly rates: Float64Array;

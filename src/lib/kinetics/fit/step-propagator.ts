@@ -19,6 +19,10 @@
  * (derivative by differentiating the algorithm).
  */
 import type { Direction } from './spectral';
+import { StepSeries } from './step-series';
+
+/** Largest q h of an interval that is taken on vectors. */
+const VECTORS_UP_TO = 200;
 
 /** ‖A‖ ≤ 1 after scaling; 18 terms leave 1/19! ≈ 1e-17. */
 const TERMS = 18;
@@ -33,6 +37,10 @@ export class StepPropagator {
 	private readonly lSpare: Float64Array;
 	private readonly c: Float64Array;
 	private readonly next: Float64Array;
+	/** Concentrations, then ∂c/∂ln k of each rate, then ∂c/∂c₀ of each charge. */
+	private readonly state: Float64Array;
+	private readonly outflow: Float64Array;
+	private readonly onVectors: StepSeries;
 
 	constructor(
 		private readonly n: number,
@@ -50,6 +58,9 @@ export class StepPropagator {
 		this.lSpare = new Float64Array(square);
 		this.c = new Float64Array(n);
 		this.next = new Float64Array(n);
+		this.state = new Float64Array((1 + rates.length + charges.length) * n);
+		this.outflow = new Float64Array(n);
+		this.onVectors = new StepSeries(n, directions, rates, charges.length);
 	}
 
 	/**
@@ -62,55 +73,54 @@ export class StepPropagator {
 		timesS: Float64Array,
 		out: { curves: Float64Array; rateDerivatives: Float64Array; chargeDerivatives: Float64Array }
 	): boolean {
-		const { n, rates, charges, c, next } = this;
+		const { n, rates, charges, state } = this;
 		const times = timesS.length;
-		c.set(charge);
+		state.fill(0);
+		state.set(charge);
+		charges.forEach((species, q) => (state[(1 + rates.length + q) * n + species] = 1));
 		let at = 0;
 		for (let k = 0; k < times; k++) {
 			const h = timesS[k] - at;
-			const before = k - 1;
-			const moved = h > 0;
-			if (moved && !this.exponential(constants, h)) return false;
-			for (let r = 0; r < rates.length; r++) {
-				const target = (r * times + k) * n;
-				const source = (r * times + before) * n;
-				this.carry(out.rateDerivatives, source, target, before >= 0, moved);
-				if (moved) multiplyAdd(this.l, r * n * n, c, n, out.rateDerivatives, target);
+			if (h > 0 && !this.advance(constants, h)) return false;
+			for (let i = 0; i < n; i++) {
+				out.curves[k * n + i] = state[i];
+				for (let r = 0; r < rates.length; r++)
+					out.rateDerivatives[(r * times + k) * n + i] = state[(1 + r) * n + i];
+				for (let q = 0; q < charges.length; q++)
+					out.chargeDerivatives[(q * times + k) * n + i] = state[(1 + rates.length + q) * n + i];
 			}
-			for (let q = 0; q < charges.length; q++) {
-				const target = (q * times + k) * n;
-				if (before >= 0) this.carry(out.chargeDerivatives, (q * times + before) * n, target, true, moved);
-				else
-					for (let i = 0; i < n; i++)
-						out.chargeDerivatives[target + i] = moved ? this.e[i * n + charges[q]] : i === charges[q] ? 1 : 0;
-			}
-			if (moved) {
-				next.fill(0);
-				multiplyAdd(this.e, 0, c, n, next, 0);
-				c.set(next);
-			}
-			for (let i = 0; i < n; i++) out.curves[k * n + i] = c[i];
 			at = timesS[k];
 		}
 		return true;
 	}
 
-	/** row ← E row of the time before, or zero at the first. */
-	private carry(rows: Float64Array, source: number, target: number, known: boolean, moved: boolean): void {
-		const { n, next } = this;
-		next.fill(0);
-		if (known) {
-			for (let i = 0; i < n; i++) {
-				if (!moved) {
-					next[i] = rows[source + i];
-					continue;
-				}
-				let sum = 0;
-				for (let j = 0; j < n; j++) sum += this.e[i * n + j] * rows[source + j];
-				next[i] = sum;
-			}
+	/** Moves the state on by h: by series on vectors while q h is moderate, else by squaring matrices. */
+	private advance(constants: Float64Array, h: number): boolean {
+		const { n, rates, state, outflow, c, next } = this;
+		const q = this.largestOutflow(constants);
+		if (q * h <= VECTORS_UP_TO) {
+			this.onVectors.advance(constants, q, outflow, h, state);
+			return true;
 		}
-		for (let i = 0; i < n; i++) rows[target + i] = next[i];
+		if (!this.exponential(constants, h)) return false;
+		c.set(state.subarray(0, n));
+		for (let row = 0; row * n < state.length; row++) {
+			next.fill(0);
+			for (let i = 0; i < n; i++)
+				for (let j = 0; j < n; j++) next[i] += this.e[i * n + j] * state[row * n + j];
+			if (row > 0 && row <= rates.length) multiplyAdd(this.l, (row - 1) * n * n, c, n, next, 0);
+			state.set(next, row * n);
+		}
+		return true;
+	}
+
+	private largestOutflow(constants: Float64Array): number {
+		const { outflow, directions } = this;
+		outflow.fill(0);
+		for (let d = 0; d < directions.length; d++) outflow[directions[d].from] += constants[d];
+		let q = 0;
+		for (let i = 0; i < outflow.length; i++) q = Math.max(q, outflow[i]);
+		return q;
 	}
 
 	/** E and every L_d for one interval. Row-major. */
@@ -140,13 +150,10 @@ export class StepPropagator {
 
 	/** K + qI into `a`, formed without subtracting; returns q. */
 	private assemble(constants: Float64Array): number {
-		const { n, a, next, directions } = this;
-		next.fill(0);
+		const { n, a, outflow, directions } = this;
 		a.fill(0);
-		for (let d = 0; d < directions.length; d++) next[directions[d].from] += constants[d];
-		let q = 0;
-		for (let i = 0; i < n; i++) q = Math.max(q, next[i]);
-		for (let i = 0; i < n; i++) a[i * n + i] = q - next[i];
+		const q = this.largestOutflow(constants);
+		for (let i = 0; i < n; i++) a[i * n + i] = q - outflow[i];
 		for (let d = 0; d < directions.length; d++) {
 			const { from, products } = directions[d];
 			for (let p = 0; p < products.length; p++)
