@@ -313,6 +313,7 @@ describe('story H2, the messy workbook (invented)', () => {
 		expect(values.filter((v) => v !== null && typeof v === 'object')).toHaveLength(6);
 		expect(values.filter((v) => v === null)).toHaveLength(1);
 		expect(content.timepoints.at(-1)?.time).toBe(26);
+		expect(content.corrections?.every((c) => c.by === chemist.name)).toBe(true);
 		// A value entered as an answer lies over the cell with name and time, like any correction.
 		expect(content.corrections).toMatchObject([{ cell: 'A14', by: chemist.name }]);
 		expect(content.corrections?.[0].at).toMatch(/^\d{4}-/);

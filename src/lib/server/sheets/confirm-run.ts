@@ -1,3 +1,4 @@
+import type { RunContent } from '$lib/schemas/run';
 import type { GridWorkbook, Settlement, TableProposal } from '$lib/schemas/sheet';
 import {
 	confirmRunSchema,
@@ -74,6 +75,13 @@ function withSigned(actor: Actor, content: RunContent): RunContent {
 	const at = new Date().toISOString();
 	const corrections = content.corrections.map((c) => ({ ...c, by: c.by ?? actor.name, at: c.at ?? at }));
 	return { ...content, corrections };
+}
+
+/** An answer that gives a value is a correction too, and carries its name like one. */
+function signedContent(actor: Actor, run: RunContent): RunContent {
+	if (!run.corrections) return run;
+	const at = new Date().toISOString();
+	return { ...run, corrections: run.corrections.map((c) => ({ by: actor.name, at, ...c })) };
 }
 
 interface Settled {
