@@ -69,7 +69,8 @@ beforeAll(async () => {
 	});
 	({ bytes } = await exportWorkbook(qa, { recipeId }));
 	book = await recalculate(bytes);
-});
+	// The thread's code is bundled at its first use, which takes a while on a busy machine.
+}, 120_000);
 
 describe('the QA workbook of a validated recipe', () => {
 	it('has every sheet, and its cover says that all checks hold', () => {
