@@ -34,7 +34,7 @@ describe('the mass balance of a run', () => {
 	it('is not made of area % or of co-eluting peaks', () => {
 		const area = ['A', 'B'].map((id) => ({ id, weights: { [id]: 1 }, unit: 'area %' }));
 		expect(balanceOf(run({ channels: area }))).toBeNull();
-		const both = [
+		const both: RunContent['channels'] = [
 			{ id: 'A', weights: { A: 1, B: 1 }, unit: 'mol/L' },
 			{ id: 'C', weights: { C: 1 }, unit: 'mol/L' }
 		];

@@ -77,13 +77,6 @@ function withSigned(actor: Actor, content: RunContent): RunContent {
 	return { ...content, corrections };
 }
 
-/** An answer that gives a value is a correction too, and carries its name like one. */
-function signedContent(actor: Actor, run: RunContent): RunContent {
-	if (!run.corrections) return run;
-	const at = new Date().toISOString();
-	return { ...run, corrections: run.corrections.map((c) => ({ by: actor.name, at, ...c })) };
-}
-
 interface Settled {
 	work: TableWork;
 	table: TableProposal | undefined;
