@@ -5,7 +5,9 @@ import { serviceHealth } from '../../src/lib/server/health';
 import { announceStop, startService, stopService } from '../../src/lib/server/hooks/startup';
 import { tidyUp } from '../../src/lib/server/housekeeping';
 import { BACKGROUND_SERVICES } from '../../src/lib/server/startup';
-import { makePerson, openTestDatabase } from './support';
+import { load as adminPage } from '../../src/routes/(app)/admin/+page.server';
+import { makeActor, makeGroup, makePerson, openTestDatabase } from './support';
+import { eventOf } from './support/call';
 
 openTestDatabase();
 
@@ -32,6 +34,34 @@ describe('tidying up', () => {
 });
 
 describe('the service', () => {
+	it('goes on when a rejection was awaited by nobody', async () => {
+		const listeners = () => process.listeners('unhandledRejection').map((f) => f.name);
+		await startService();
+		await startService();
+		try {
+			expect(listeners().filter((name) => name === 'logUnawaited')).toHaveLength(1);
+		} finally {
+			await stopService();
+		}
+	});
+
+	it('answers somebody who is no site admin on the pages of site admins, and leaves no rejection behind', async () => {
+		const unawaited: unknown[] = [];
+		const note = (error: unknown) => void unawaited.push(error);
+		const others = process.listeners('unhandledRejection');
+		process.removeAllListeners('unhandledRejection').on('unhandledRejection', note);
+		try {
+			const actor = await makeActor(await makeGroup(), 'chemist');
+			const event = eventOf({ actor, path: '/admin' }) as never;
+			await expect(adminPage(event)).rejects.toMatchObject({ status: 404 });
+			await new Promise((resolve) => setTimeout(resolve, 50));
+			expect(unawaited).toEqual([]);
+		} finally {
+			process.removeAllListeners('unhandledRejection');
+			for (const listener of others) process.on('unhandledRejection', listener);
+		}
+	});
+
 	it('starts what runs beside the requests, and stops it before the database closes', async () => {
 		const order: string[] = [];
 		const spy = {

@@ -6,9 +6,15 @@ import { BACKGROUND_SERVICES, type BackgroundService } from '../startup';
 // Kept over hot reloads in development, where hooks are evaluated anew.
 const globals = globalThis as { ratewrightRunning?: BackgroundService[] };
 
+/** One person's request must never end the service for everybody: a rejection that nobody awaited is only logged. */
+function logUnawaited(error: unknown): void {
+	log().error({ err: error }, 'a rejection that nobody awaited');
+}
+
 /** Checks the settings, opens the database with every migration done, then starts what runs in the background. */
 export async function startService(): Promise<void> {
 	settings();
+	process.off('unhandledRejection', logUnawaited).on('unhandledRejection', logUnawaited);
 	await stopBackground();
 	await database();
 	const running: BackgroundService[] = [];

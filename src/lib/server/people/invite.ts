@@ -157,7 +157,7 @@ async function stillOpen(where: { groupId?: string }): Promise<InvitationView[]>
 export const openInvitations = (groupId: string): Promise<InvitationView[]> => stillOpen({ groupId });
 
 /** Every open invitation of the site. */
-export function listInvitations(actor: Actor): Promise<InvitationView[]> {
+export async function listInvitations(actor: Actor): Promise<InvitationView[]> {
 	requireSiteAdmin(actor);
 	return stillOpen({});
 }
