@@ -20,7 +20,17 @@ export interface Database {
 	close(): Promise<void>;
 }
 
-type Connection = sqlite3.Database & { prepared?: boolean };
+type Connection = sqlite3.Database & { prepared?: Promise<void> };
+
+/** Without a callback the driver throws a failure (the file is no database, the disk is full) where nobody catches it. */
+const run = (connection: Connection, sql: string): Promise<void> =>
+	new Promise((resolve, reject) => connection.run(sql, (error) => (error ? reject(error) : resolve())));
+
+async function prepare(connection: Connection): Promise<void> {
+	connection.configure('busyTimeout', 5000);
+	await run(connection, 'PRAGMA synchronous = FULL');
+	await run(connection, 'PRAGMA foreign_keys = ON');
+}
 
 /** Sequelize's SQLite dialect calls no afterConnect hook and opens a connection per transaction: set each up here. */
 function prepareEveryConnection(sequelize: Sequelize): void {
@@ -30,12 +40,7 @@ function prepareEveryConnection(sequelize: Sequelize): void {
 	const original = manager.getConnection.bind(manager);
 	manager.getConnection = async (options) => {
 		const connection = await original(options);
-		if (!connection.prepared) {
-			connection.prepared = true;
-			connection.configure('busyTimeout', 5000);
-			connection.run('PRAGMA synchronous = FULL');
-			connection.run('PRAGMA foreign_keys = ON');
-		}
+		await (connection.prepared ??= prepare(connection));
 		return connection;
 	};
 }
@@ -53,6 +58,26 @@ function writeQueue(sequelize: Sequelize): Database['write'] {
 	};
 }
 
+/**
+ * All or nothing, and one process at a time: a service that is stopped halfway through finds at its next start what was
+ * there before. Works because every query outside `write()` goes over Sequelize's one common connection.
+ */
+async function migrate(sequelize: Sequelize): Promise<void> {
+	await sequelize.query('BEGIN IMMEDIATE');
+	try {
+		await new Umzug({
+			migrations,
+			context: sequelize.getQueryInterface(),
+			storage: new SequelizeStorage({ sequelize }),
+			logger: undefined
+		}).up();
+		await sequelize.query('COMMIT');
+	} catch (error) {
+		await sequelize.query('ROLLBACK');
+		throw error;
+	}
+}
+
 export async function openDatabase(file: string): Promise<Database> {
 	mkdirSync(dirname(file), { recursive: true });
 	const sequelize = new Sequelize({
@@ -65,12 +90,7 @@ export async function openDatabase(file: string): Promise<Database> {
 	prepareEveryConnection(sequelize);
 	await sequelize.query('PRAGMA journal_mode = WAL');
 	initModels(sequelize);
-	await new Umzug({
-		migrations,
-		context: sequelize.getQueryInterface(),
-		storage: new SequelizeStorage({ sequelize }),
-		logger: undefined
-	}).up();
+	await migrate(sequelize);
 	let closing: Promise<void> | undefined;
 	return { sequelize, write: writeQueue(sequelize), close: () => (closing ??= sequelize.close()) };
 }
