@@ -100,7 +100,7 @@ function environment() {
 	return env;
 }
 
-if (!(await portIsFree(port, '127.0.0.1')))
+if (!(await portIsFree(port, '127.0.0.1').catch(() => false)))
 	fail(
 		`Port ${port} is taken by another program.`,
 		`Stop that program, or serve elsewhere: npm run demo -- --port ${port + 1}`

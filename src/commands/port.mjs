@@ -1,15 +1,15 @@
 import { createServer } from 'node:net';
 
 /**
- * Whether a port can be listened on.
+ * Whether a port is free; rejects where it is something else that stands in the way (no such address, no right).
  * @param {number} port
  * @param {string} host
  * @returns {Promise<boolean>}
  */
 export function portIsFree(port, host) {
-	return new Promise((resolve) => {
+	return new Promise((resolve, reject) => {
 		const probe = createServer();
-		probe.once('error', () => resolve(false));
+		probe.once('error', (error) => (error.code === 'EADDRINUSE' ? resolve(false) : reject(error)));
 		probe.listen(port, host, () => probe.close(() => resolve(true)));
 	});
 }
