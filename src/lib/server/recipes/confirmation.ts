@@ -1,4 +1,5 @@
 import type { RunContent } from '$lib/schemas/run';
+import { contentHash } from '../audit/canonical';
 import type { Tx } from '../database';
 import { Fit, FitRun, Run, RunRevision } from '../database/models';
 import { AppError } from '../errors';
@@ -60,6 +61,23 @@ export async function confirmationCandidates(fit: Fit, tx?: Tx): Promise<Confirm
 	});
 }
 
+const valuesOf = ({ timepoints }: RunContent): string =>
+	contentHash(timepoints.map(({ time, values }) => ({ time, values })));
+
+/** The same sheet read a second time is another run, and still no run that the fit has not seen. */
+async function refuseCopy(fit: Fit, run: Run, content: RunContent, tx?: Tx): Promise<void> {
+	const used = await FitRun.findAll({ where: { fitId: fit.id }, transaction: tx });
+	const revisions = await RunRevision.findAll({
+		where: { id: used.map((u) => u.runRevisionId) },
+		transaction: tx
+	});
+	if (!revisions.some((r) => valuesOf(r.content) === valuesOf(content))) return;
+	throw new AppError(
+		'invalid',
+		`Run ${run.number} has the times and values of a run that fit ${fit.number} used, so it confirms nothing. Choose another run.`
+	);
+}
+
 async function unusedRun(fit: Fit, runId: string, tx?: Tx): Promise<{ run: Run; revision: RunRevision }> {
 	const run = isId(runId)
 		? await Run.findOne({ where: { id: runId, studyId: fit.studyId }, transaction: tx })
@@ -75,6 +93,7 @@ async function unusedRun(fit: Fit, runId: string, tx?: Tx): Promise<{ run: Run; 
 			'invalid',
 			`Run ${run.number} was used in fit ${fit.number}, so it confirms nothing. Choose a run that the fit has not seen.`
 		);
+	await refuseCopy(fit, run, revision.content, tx);
 	return { run, revision };
 }
 
@@ -93,6 +112,6 @@ export async function confirm(fit: Fit, runId: string, tx?: Tx): Promise<Confirm
 		inside,
 		total,
 		level,
-		needsComment: probabilityOfAtMost(inside, total, level) < 0.05
+		needsComment: inside === 0 || probabilityOfAtMost(inside, total, level) < 0.05
 	};
 }

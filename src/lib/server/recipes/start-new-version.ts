@@ -49,6 +49,10 @@ async function nextContent(tx: Tx, recipe: Recipe, last: RecipeVersion, input: S
 	return { content: { ...content, basis, criteria, setPoints, hold }, fitId, windowId };
 }
 
+/** Who wrote what the new version takes over; what a group lead validated was written by nobody alone any more. */
+const carriedOver = (last: RecipeVersion): string[] =>
+	last.state === 'validated' || last.state === 'superseded' ? [] : last.contributorIds;
+
 async function takeBack(tx: Tx, actor: Actor, recipe: Recipe, last: RecipeVersion): Promise<void> {
 	if (!mayMove(last.state, 'takeBack')) return;
 	await moveVersion(tx, last, { state: 'returned' });
@@ -88,7 +92,7 @@ export async function startNewVersion(
 				contentHash: hash,
 				reason,
 				authorId: actor.userId,
-				contributorIds: [actor.userId],
+				contributorIds: [...new Set([...carriedOver(last), actor.userId])],
 				updatedAt: new Date()
 			},
 			{ transaction: tx }
