@@ -149,6 +149,27 @@ describe('the audit trail', () => {
 	});
 });
 
+describe('a reason of several lines', () => {
+	it('goes out as CSV as text too, although it begins like a formula', async () => {
+		const lab = await makeGroup();
+		const reviewer = await makeActor(lab, 'qa_reviewer');
+		await write((tx) =>
+			appendAudit(tx, reviewer, {
+				type: 'recipe.withdrawn',
+				groupId: lab.id,
+				objectType: 'recipe',
+				payload: { number: 1 },
+				reason: '=HYPERLINK("http://evil.example","read this")\nsecond line'
+			})
+		);
+		const { csv } = await exportAuditCsv(reviewer, { group: lab.id });
+		const [row] = Papa.parse<Record<string, string>>(csv.replace('\uFEFF', '').trim(), {
+			header: true
+		}).data;
+		expect(row.reason).toMatch(/^'=HYPERLINK/);
+	});
+});
+
 describe('the database', () => {
 	it('refuses to change or remove an entry', async () => {
 		const raw = (sql: string) => db.database().sequelize.query(sql);
