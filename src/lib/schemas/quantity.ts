@@ -22,6 +22,7 @@ export const id = z
 	.max(40)
 	.regex(/^[A-Za-z][A-Za-z0-9_-]*$/, 'Use letters, digits, - and _, beginning with a letter.')
 	.refine(
-		(s) => !['__proto__', 'constructor', 'prototype'].includes(s),
+		// Tables are looked up by id: a name that every object has by itself would be found in each of them.
+		(s) => s !== 'prototype' && !(s in Object.prototype),
 		'This word cannot be used as an id.'
 	);

@@ -15,8 +15,9 @@ function setAll(response: Response): void {
 	for (const [name, value] of Object.entries(ALWAYS)) response.headers.set(name, value);
 	if (settings().ORIGIN.startsWith('https:'))
 		response.headers.set('strict-transport-security', 'max-age=31536000');
-	// What a signed-in person saw must not come back from a shared computer's cache.
-	if (!response.headers.has('cache-control')) response.headers.set('cache-control', 'private, no-cache');
+	// What a signed-in person saw must not come back from a shared computer's cache: going back in the browser's
+	// history shows a stored page without asking, unless it was never stored.
+	if (!response.headers.has('cache-control')) response.headers.set('cache-control', 'private, no-store');
 }
 
 export const securityHeaders: Handle = async ({ event, resolve }) => {

@@ -16,7 +16,8 @@ export const load = page(async (event: PageServerLoadEvent) => {
 		])
 	);
 	const filter = auditFilter.safeParse(typed);
-	const before = Number(searchParams.get('before')) || undefined;
+	const given = searchParams.get('before') ?? '';
+	const before = /^[1-9]\d{0,14}$/.test(given) ? Number(given) : undefined;
 	const [trail, choices] = await Promise.all([
 		// A filter that cannot be read narrows nothing away silently: it says so and shows no entries.
 		filter.success ? listAudit(actor, { filter: filter.data, before, limit: PAGE_SIZE }) : null,

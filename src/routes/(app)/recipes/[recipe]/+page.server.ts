@@ -26,9 +26,10 @@ const act = (row: string, done: string, work: Act) => async (event: Event) => {
 	return rowAction(row, () => work(actor, event.params.recipe, form), done);
 };
 
+const whole = (text: string): number => (/^\d{1,9}$/.test(text) ? Number(text) : 0);
 const which = (form: FormData) => ({
-	number: Number(posted(form, 'number')),
-	version: Number(posted(form, 'version'))
+	number: whole(posted(form, 'number')),
+	version: whole(posted(form, 'version'))
 });
 
 export const actions: Actions = {

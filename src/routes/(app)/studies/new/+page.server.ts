@@ -8,8 +8,9 @@ import { createStudy } from '$lib/server/studies/create-study';
 import type { PageServerLoadEvent, RequestEvent } from './$types';
 
 export const load = page((event: PageServerLoadEvent) => {
-	requireCan(requireActor(event), requireGroup(event), 'study.write', 'group');
-	return {};
+	const groupId = requireGroup(event);
+	requireCan(requireActor(event), groupId, 'study.write', 'group');
+	return { groupId };
 });
 
 const text = (form: FormData, name: string): string => {
@@ -20,8 +21,9 @@ const text = (form: FormData, name: string): string => {
 export const actions = {
 	default: page(async (event: RequestEvent) => {
 		const actor = requireActor(event);
-		const groupId = requireGroup(event);
 		const form = await event.request.formData();
+		// The group that the page showed, not the one chosen meanwhile in another window.
+		const groupId = text(form, 'groupId') || requireGroup(event);
 		const rows = rowsOf(form).filter((row) => !isEmptyRow(row));
 		const typed = { name: text(form, 'name'), decision: text(form, 'decision'), rows };
 		const read = studyForm.safeParse({
