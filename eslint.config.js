@@ -29,7 +29,7 @@ export default ts.config(
 			globals: { ...globals.browser, ...globals.node },
 			parserOptions: {
 				projectService: {
-					allowDefaultProject: ['*.js', 'playwright.config.ts', 'tailwind.config.ts']
+					allowDefaultProject: ['*.js']
 				},
 				extraFileExtensions: ['.svelte']
 			}

@@ -9,6 +9,12 @@ export default {
 	},
 	kit: {
 		adapter: adapter({ out: 'build' }),
+		typescript: {
+			config: (config) => ({
+				...config,
+				include: [...config.include, '../playwright.config.ts', '../tailwind.config.ts']
+			})
+		},
 		// The framework's check is switched off because src/lib/server/hooks/origin.ts checks more strictly (every method
 		// and content type, in development too) and lets a script that brings a token and no cookie send a file.
 		csrf: { trustedOrigins: ['*'] },

@@ -53,7 +53,7 @@ async function bundle(entry: string, config: ResolvedConfig): Promise<Chunk> {
 			target: 'node20',
 			rollupOptions: { output: { format: 'cjs', codeSplitting: false } }
 		}
-	} as Parameters<typeof build>[0]);
+	});
 	const first = Array.isArray(result) ? result[0] : result;
 	return (first as unknown as { output: [Chunk] }).output[0];
 }

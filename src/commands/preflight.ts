@@ -23,7 +23,8 @@ async function main(): Promise<void> {
 	} catch (error) {
 		throw new Error(
 			`The database ${file} cannot be opened for writing (${(error as Error).message}).\n` +
-				'Give this account the right to write there, or name another file with DATABASE_FILE.'
+				'Give this account the right to write there, or name another file with DATABASE_FILE.',
+			{ cause: error }
 		);
 	}
 }

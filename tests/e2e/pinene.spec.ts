@@ -22,7 +22,7 @@ async function workbook(): Promise<Buffer> {
 	reference.data.times.forEach((time, i) =>
 		sheet.cell(i + 2, 1).value([[time, ...reference.data.observations[i]]])
 	);
-	return (await book.outputAsync()) as Buffer;
+	return await book.outputAsync();
 }
 
 test('the table of Fuguitt and Hawkins gives the published constants', async ({ page }) => {

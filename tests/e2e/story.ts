@@ -87,7 +87,7 @@ export async function upload(
 ): Promise<void> {
 	// The page must be alive before a file is handed to it.
 	await page.goto(`/studies/${study}/data`, { waitUntil: 'networkidle' });
-	await page.getByLabel('Assay sheet').setInputFiles(file as never);
+	await page.getByLabel('Assay sheet').setInputFiles(file);
 	await expect(page).toHaveURL(/\/data\/sheets\//);
 }
 

@@ -84,7 +84,7 @@ export function can(actor: Actor, groupId: string, action: Action): boolean {
 export function requireCan(actor: Actor, groupId: string, action: Action, what = 'record'): void {
 	if (can(actor, groupId, action)) return;
 	const role = roleIn(actor, groupId);
-	const seesGroup = role !== null && TABLE['study.read'].roles.includes(role as never);
+	const seesGroup = role !== null && TABLE['study.read'].roles.includes(role);
 	const ownMembers = role !== null && action.startsWith('members.');
 	if (!seesGroup && !ownMembers) throw notFound(what);
 	throw notAllowed(
