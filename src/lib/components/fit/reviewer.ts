@@ -1,4 +1,6 @@
 import type { FitReport } from '$lib/schemas/fit';
+import { significant } from '$lib/client/numbers';
+import { undetermined } from './words';
 
 export interface ReviewerRow {
 	label: string;
@@ -12,8 +14,9 @@ const fixed = (x: number, digits: number): string => minus(x.toFixed(digits));
 const probability = (p: number): string => (p < 0.001 ? 'p below 0.001' : `p ${p.toFixed(p < 0.1 ? 3 : 2)}`);
 
 function residuals(report: FitReport): ReviewerRow {
+	const lag = report.lag1 === null ? '' : `, lag-1 autocorrelation ${fixed(report.lag1, 2)}`;
 	const value = report.runsTest
-		? `${report.runsTest.p < 0.05 ? 'signs follow each other' : 'no pattern of signs found'} (runs test ${probability(report.runsTest.p)})`
+		? `${report.runsTest.p < 0.05 ? 'signs follow each other' : 'no pattern of signs found'} (runs test ${probability(report.runsTest.p)}${lag})`
 		: 'too few points to look for a pattern';
 	return {
 		label: 'Residuals',
@@ -53,23 +56,53 @@ function search(report: FitReport): ReviewerRow {
 	const others = report.alternatives.length;
 	return {
 		label: 'Search',
-		value: `${report.startsConverged} of ${report.startsRun} starts settled, ${others > 1 ? `${others} distinct minima` : 'one minimum'}`,
+		value: `${report.startsConverged} of ${report.startsRun} starts settled, ${others > 0 ? `${others + 1} distinct minima` : 'one minimum'}`,
 		ask: 'Could another set of constants fit as well?'
 	};
 }
 
+function determined(report: FitReport): ReviewerRow {
+	const open = undetermined(report).length;
+	const fitted = report.fittedIds.length;
+	const values = report.singularValues;
+	const spread = values.length > 1 ? values[0] / values[values.length - 1] : null;
+	return {
+		label: 'Determined',
+		value: `${open === 0 ? `all ${fitted} fitted constants` : `${fitted - open} of ${fitted} fitted constants`}${spread !== null && Number.isFinite(spread) ? ` (largest to smallest singular value ${significant(spread, 2)})` : ''}`,
+		ask: 'Does each constant have a limit on both sides, or could it be anything?'
+	};
+}
+
+function confirmed(count: ConfirmedCount | null): ReviewerRow {
+	return {
+		label: 'Confirmation',
+		value: count
+			? `${count.inside} of ${count.counted} values of ${count.runName} inside the 95 % prediction band`
+			: 'not held against an unused run',
+		ask: 'Has it predicted anything that it had not seen?'
+	};
+}
+
+export interface ConfirmedCount {
+	inside: number;
+	counted: number;
+	runName: string;
+}
+
 /** The rows of "Would a reviewer believe it?", each with the question behind it. */
-export function reviewerRows(report: FitReport): ReviewerRow[] {
+export function reviewerRows(report: FitReport, confirmation: ConfirmedCount | null = null): ReviewerRow[] {
 	const large = report.residuals.filter((r) => r.studentised !== null && Math.abs(r.studentised) > 3).length;
 	return [
 		residuals(report),
 		lackOfFit(report),
 		massBalance(report),
+		determined(report),
 		search(report),
 		{
 			label: 'Large residuals',
 			value: large ? `${large} beyond 3 (studentised), marked in the chart` : 'none beyond 3 (studentised)',
 			ask: 'Is one sample far from all others, and has somebody looked into why?'
-		}
+		},
+		confirmed(confirmation)
 	];
 }

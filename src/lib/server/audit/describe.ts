@@ -118,6 +118,8 @@ export const WRITERS: { [T in AuditType]?: Writer<T> } = {
 		`Fit ${p.number} ${p.status}: weighted sum of squares ${p.weightedSsr.toPrecision(5)} over ${p.pointsUsed} points`,
 	'fit.failed': (p) => `Fit gave no result: ${p.message}`,
 	'fit.cancelled': () => 'Fit cancelled',
+	'fit.confirmation': (p) =>
+		`Fit ${p.number} held against ${p.runName} (revision ${p.revision}): ${p.inside} of ${p.counted} values inside the ${Math.round(p.confidence * 100)} % prediction band`,
 	'window.computed': (p) => `Window ${p.number} computed (${p.kind})`,
 	'recipe.created': (p) => `Recipe “${p.title}” begun`,
 	'recipe.version-saved': (p) => `Draft version ${p.number} saved`,

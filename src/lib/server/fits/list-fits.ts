@@ -5,6 +5,7 @@ import { Fit, Job, Run, User } from '../database/models';
 import { isId } from '../ids';
 import type { Actor } from '../policy';
 import { findStudy } from '../studies/find';
+import { changesSince, type ComparableFit } from './changes';
 import { fitLine } from './line';
 import type { FitJobInput } from './start-fit';
 
@@ -29,6 +30,8 @@ export interface FitSummary {
 	aicc: number | null;
 	bic: number | null;
 	line: string;
+	/** What this fit has that the one begun before it had not. */
+	changes: string[];
 	createdBy: string;
 	createdAt: Date;
 	startedAt: Date | null;
@@ -54,6 +57,11 @@ function lineOf(job: Job, fit: Fit | undefined): string {
 	if (fit) return fitLine(fit.report, (job.input as FitJobInput).request);
 	if (job.status === 'failed') return job.error ?? 'failed';
 	return job.status;
+}
+
+function comparable(job: Job, fits: Map<string, Fit>): ComparableFit {
+	const { scheme, runs, request } = job.input as FitJobInput;
+	return { scheme, runs, request, engineVersion: fits.get(job.id)?.report.engineVersion ?? null };
 }
 
 /** Every fit of a study that was ever begun, newest first: none is hidden, whatever came of it. */
@@ -83,7 +91,8 @@ export async function listFits(
 	const fitOf = new Map(fits.map((fit) => [fit.id, fit]));
 	const current = new Map(runs.map((run) => [run.id, run.currentRevisionId]));
 	const names = new Map(people.map((p) => [p.id, p.name]));
-	return jobs.map((job) => {
+	return jobs.map((job, place) => {
+		const before = jobs.at(place + 1);
 		const input = job.input as FitJobInput;
 		const fit = fitOf.get(job.id);
 		return {
@@ -99,6 +108,7 @@ export async function listFits(
 			superseded: input.runs.some((r) => current.has(r.id) && current.get(r.id) !== r.revisionId),
 			...figuresOf(fit?.report),
 			line: lineOf(job, fit),
+			changes: changesSince(before ? comparable(before, fitOf) : null, comparable(job, fitOf)),
 			createdBy: names.get(job.createdById) ?? 'somebody who has left',
 			createdAt: job.createdAt,
 			startedAt: job.startedAt,

@@ -1,4 +1,5 @@
 import { fitOptions, type FitFinding, type FitRequest } from '$lib/schemas/fit';
+import type { ParameterSettings } from '$lib/schemas/fit-form';
 import type { Quantity } from '$lib/schemas/quantity';
 import type { RunContent } from '$lib/schemas/run';
 import { checkNetwork } from '$lib/kinetics/checks';
@@ -15,6 +16,7 @@ import type { Actor } from '../policy';
 import { currentRevisions, type RunWithRevision } from '../runs/find';
 import { findScheme, findStudy } from '../studies/find';
 import { newestVersions } from '../studies/scheme-versions';
+import { unopened, withParameterSettings } from './parameter-settings';
 import { buildRequest, type EnergiesChoice, type OpenedQuantities } from './request';
 
 export interface PlanFitInput {
@@ -27,6 +29,8 @@ export interface PlanFitInput {
 	energies?: EnergiesChoice;
 	/** Charges and time zero, fitted where asked for. */
 	opened?: OpenedQuantities;
+	/** Starting and fixed values of single parameters, and what is opened for fitting, by parameter id. */
+	settings?: ParameterSettings;
 }
 
 export interface PlannedParameter {
@@ -36,6 +40,9 @@ export interface PlannedParameter {
 	/** Starting or fixed value; null where the fit finds a start by itself. */
 	start: Quantity | null;
 	tiedTo: string | null;
+	/** Factor of the tie. */
+	factor: number | null;
+	unit: string;
 }
 
 export interface PlannedRun {
@@ -59,6 +66,8 @@ export interface FitPlan {
 	scheme: { id: string; name: string; number: number; versionId: string };
 	runs: PlannedRun[];
 	parameters: PlannedParameter[];
+	/** Quantities that are not parameters of this plan but could be opened: charges, time zeros, response factors. */
+	available: PlannedParameter[];
 	issues: FitFinding[];
 	/** Whether nothing stands in the way of starting. */
 	ready: boolean;
@@ -105,16 +114,27 @@ function plannedRun({ run, revision }: RunWithRevision): PlannedRun {
 	};
 }
 
-function plannedParameters(slots: Iterable<Slot>): PlannedParameter[] {
-	return [...slots]
-		.filter((slot) => slot.reported || slot.state !== 'fixed')
-		.map((slot) => ({
-			id: slot.id,
-			kind: slot.kind,
-			state: slot.state,
-			start: Number.isFinite(slot.value) ? { value: toReported(slot, slot.value), unit: slot.unit } : null,
-			tiedTo: slot.tie?.to ?? null
-		}));
+const isListed = (slot: Slot): boolean => slot.reported || slot.state !== 'fixed';
+
+const planned = (slot: Slot): PlannedParameter => ({
+	id: slot.id,
+	kind: slot.kind,
+	state: slot.state,
+	start: Number.isFinite(slot.value) ? { value: toReported(slot, slot.value), unit: slot.unit } : null,
+	tiedTo: slot.tie?.to ?? null,
+	factor: slot.tie?.factor ?? null,
+	unit: slot.unit
+});
+
+function availableParameters(slots: Slot[], request: FitRequest): PlannedParameter[] {
+	const there = new Set(slots.map((slot) => slot.id));
+	const closed = { state: 'fixed' as const, start: null, tiedTo: null, factor: null };
+	return [
+		...slots.filter((slot) => !isListed(slot)).map(planned),
+		...unopened(request)
+			.filter(({ id }) => !there.has(id))
+			.map((one) => ({ ...one, ...closed }))
+	];
 }
 
 function schemeIssues(request: FitRequest): FitFinding[] {
@@ -126,12 +146,13 @@ const LEVELS = ['stop', 'caution', 'note'];
 
 function checkAll(request: FitRequest, first: FitFinding[]) {
 	const { problem, slots, issues } = compileProblem(request);
-	const planned = problem ? planIssues(problem) : [];
-	const all = [...first, ...schemeIssues(request), ...issues, ...planned];
+	const ofPlan = problem ? planIssues(problem) : [];
+	const all = [...first, ...schemeIssues(request), ...issues, ...ofPlan];
 	const each = new Map(all.map((issue) => [`${issue.code} ${issue.message}`, issue]));
 	const sorted = [...each.values()].sort((a, b) => LEVELS.indexOf(a.level) - LEVELS.indexOf(b.level));
 	return {
-		parameters: plannedParameters(slots.values()),
+		parameters: [...slots.values()].filter(isListed).map(planned),
+		available: availableParameters([...slots.values()], request),
 		issues: sorted,
 		ready: !sorted.some((issue) => issue.level === 'stop')
 	};
@@ -165,8 +186,9 @@ export async function makePlan(actor: Actor, study: Study, input: PlanFitInput, 
 		input.opened
 	);
 	const runs = chosen.map(plannedRun);
+	const request = withParameterSettings(built.request, input.settings ?? {});
 	const inputHash = contentHash({
-		request: built.request,
+		request,
 		schemeVersionId: version.id,
 		runRevisionIds: runs.map((r) => r.revisionId),
 		engineVersion: ENGINE_VERSION
@@ -175,8 +197,8 @@ export async function makePlan(actor: Actor, study: Study, input: PlanFitInput, 
 		studyId: study.id,
 		scheme: { id: scheme.id, name: scheme.name, number: version.number, versionId: version.id },
 		runs,
-		...checkAll(built.request, built.issues),
-		request: built.request,
+		...checkAll(request, built.issues),
+		request,
 		inputHash
 	};
 }

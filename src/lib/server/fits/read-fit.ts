@@ -1,3 +1,5 @@
+import { Op } from 'sequelize';
+import { ENGINE_VERSION } from '$lib/kinetics/version';
 import type { FitReport, FitRequest } from '$lib/schemas/fit';
 import type { JobProgress, JobStatus } from '$lib/schemas/job';
 import { Fit, FitRun, Job, Run, RunRevision, Scheme, SchemeVersion, User } from '../database/models';
@@ -5,6 +7,7 @@ import { notFound } from '../errors';
 import { isId } from '../ids';
 import { can, requireCan, type Action, type Actor } from '../policy';
 import { groupsInSight } from '../studies/find';
+import { changesSince } from './changes';
 import type { FitJobInput } from './start-fit';
 
 export interface FitRunView {
@@ -43,6 +46,10 @@ export interface FitView {
 	runs: FitRunView[];
 	superseded: boolean;
 	inputHash: string;
+	/** The fit begun before this one in the study, and what changed since. */
+	previous: { id: string; number: number | null; changes: string[] } | null;
+	/** Whether the engine is newer than the one that gave the report. */
+	engineIsNewer: boolean;
 	createdBy: string;
 	createdById: string;
 	createdAt: Date;
@@ -92,6 +99,22 @@ async function schemeOf(input: FitJobInput): Promise<FitView['scheme']> {
 	};
 }
 
+async function previousOf(job: Job, engineVersion: string | null): Promise<FitView['previous']> {
+	const before = await Job.findOne({
+		where: { studyId: job.studyId, kind: 'fit', id: { [Op.lt]: job.id } },
+		order: [['id', 'DESC']]
+	});
+	if (!before) return null;
+	const fit = await Fit.findByPk(before.id, { attributes: ['number', 'engineVersion'] });
+	const was = before.input as FitJobInput;
+	const is = job.input as FitJobInput;
+	const changes = changesSince(
+		{ ...was, engineVersion: fit?.engineVersion ?? null },
+		{ ...is, engineVersion }
+	);
+	return { id: before.id, number: fit?.number ?? null, changes };
+}
+
 /** A fit with its report, or its progress while it runs. */
 export async function readFit(actor: Actor, fitId: string): Promise<FitView> {
 	const job = await findFitJob(actor, fitId, 'study.read');
@@ -103,6 +126,7 @@ export async function readFit(actor: Actor, fitId: string): Promise<FitView> {
 		User.findByPk(job.createdById, { attributes: ['id', 'name'] })
 	]);
 	const open = job.status === 'queued' || job.status === 'running';
+	const engineVersion = fit?.report.engineVersion ?? null;
 	return {
 		id: job.id,
 		studyId: job.studyId!,
@@ -117,6 +141,8 @@ export async function readFit(actor: Actor, fitId: string): Promise<FitView> {
 		runs,
 		superseded: runs.some((r) => r.superseded),
 		inputHash: job.inputHash,
+		previous: await previousOf(job, engineVersion),
+		engineIsNewer: engineVersion !== null && engineVersion !== ENGINE_VERSION,
 		createdBy: author?.name ?? 'somebody who has left',
 		createdById: job.createdById,
 		createdAt: job.createdAt,

@@ -67,6 +67,41 @@ function jobInput(plan: FitPlan): FitJobInput {
 	};
 }
 
+/** Queues the job and writes the audit entry; an equal fit that is there is given instead. */
+export async function enqueueFit(
+	tx: Tx,
+	actor: Actor,
+	about: { studyId: string; groupId: string; input: FitJobInput; inputHash: string }
+): Promise<StartedFit> {
+	const { studyId, groupId, input, inputHash } = about;
+	const equal = await equalFit(tx, studyId, inputHash);
+	if (equal) return { id: equal, reused: true };
+	const job = await enqueue(tx, {
+		kind: 'fit',
+		groupId,
+		studyId,
+		input,
+		inputHash,
+		createdById: actor.userId
+	});
+	await appendAudit(tx, actor, {
+		type: 'fit.started',
+		payload: {
+			inputHash,
+			schemeVersionId: input.scheme.versionId,
+			runRevisionIds: input.runs.map((r) => r.revisionId),
+			options: input.request.options,
+			engineVersion: ENGINE_VERSION,
+			seed: input.request.options.seed
+		},
+		groupId,
+		studyId,
+		objectType: 'fit',
+		objectId: job.id
+	});
+	return { id: job.id, reused: false };
+}
+
 /** Starts a recorded fit as a job; the job's id is the fit's. */
 export async function startFit(actor: Actor, input: PlanFitInput): Promise<StartedFit> {
 	await findStudy(actor, input.studyId, 'fit.run');
@@ -74,32 +109,12 @@ export async function startFit(actor: Actor, input: PlanFitInput): Promise<Start
 		const study = await findStudy(actor, input.studyId, 'fit.run', tx);
 		const plan = await makePlan(actor, study, input, tx);
 		if (!plan.ready) throw refuse(plan);
-		const equal = await equalFit(tx, study.id, plan.inputHash);
-		if (equal) return { id: equal, reused: true };
-		const job = await enqueue(tx, {
-			kind: 'fit',
-			groupId: study.groupId,
+		return enqueueFit(tx, actor, {
 			studyId: study.id,
+			groupId: study.groupId,
 			input: jobInput(plan),
-			inputHash: plan.inputHash,
-			createdById: actor.userId
+			inputHash: plan.inputHash
 		});
-		await appendAudit(tx, actor, {
-			type: 'fit.started',
-			payload: {
-				inputHash: plan.inputHash,
-				schemeVersionId: plan.scheme.versionId,
-				runRevisionIds: plan.runs.map((r) => r.revisionId),
-				options: plan.request.options,
-				engineVersion: ENGINE_VERSION,
-				seed: plan.request.options.seed
-			},
-			groupId: study.groupId,
-			studyId: study.id,
-			objectType: 'fit',
-			objectId: job.id
-		});
-		return { id: job.id, reused: false };
 	});
 	if (!started.reused) void wake();
 	return started;

@@ -21,6 +21,18 @@ export const fitEvents = {
 	}),
 	'fit.failed': z.object({ message: z.string() }),
 	'fit.cancelled': z.object({}),
+	/** An unused run held against the fit's prediction band. */
+	'fit.confirmation': z.object({
+		number: z.number(),
+		runId: z.string(),
+		runName: z.string(),
+		runRevisionId: z.string(),
+		revision: z.number(),
+		inside: z.number(),
+		counted: z.number(),
+		confidence: z.number(),
+		engineVersion: z.string()
+	}),
 	'window.computed': z.object({
 		number: z.number(),
 		kind: z.string(),

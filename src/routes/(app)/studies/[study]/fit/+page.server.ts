@@ -1,6 +1,7 @@
 import { fail, redirect } from '@sveltejs/kit';
-import { optionsOf, readFitForm } from '$lib/schemas/fit-form';
+import { readFitForm } from '$lib/schemas/fit-form';
 import { AppError } from '$lib/server/errors';
+import { fitInput } from '$lib/server/fits/fit-input';
 import { listFits } from '$lib/server/fits/list-fits';
 import { startFit } from '$lib/server/fits/start-fit';
 import { requireActor } from '$lib/server/hooks/actor';
@@ -22,14 +23,8 @@ async function start(event: RequestEvent) {
 	const actor = requireActor(event);
 	const form = readFitForm(await event.request.formData());
 	if (!form.success) return fail(422, { message: form.error.issues[0].message });
-	const { schemeId, runIds, energies, charges, timeZero } = form.data;
-	const chosen = { studyId: event.params.study, schemeId, runIds, energies };
 	try {
-		const fit = await startFit(actor, {
-			...chosen,
-			opened: { charges, timeZero },
-			options: optionsOf(form.data)
-		});
+		const fit = await startFit(actor, fitInput(event.params.study, form.data));
 		redirect(303, `/studies/${event.params.study}/fit/${fit.id}${fit.reused ? '?equal' : ''}`);
 	} catch (caught) {
 		if (caught instanceof AppError && caught.code === 'invalid')

@@ -1,15 +1,11 @@
-import { notFound } from '$lib/server/errors';
-import { readFit } from '$lib/server/fits/read-fit';
+import { compareFits } from '$lib/server/fits/compare-fits';
 import { requireActor } from '$lib/server/hooks/actor';
 import { page } from '$lib/server/http';
 import type { PageServerLoadEvent } from './$types';
 
-const MOST = 6;
-
-export const load = page(async (event: PageServerLoadEvent) => {
-	const actor = requireActor(event);
-	const ids = [...new Set(event.url.searchParams.getAll('fits'))].slice(0, MOST);
-	const fits = await Promise.all(ids.map((id) => readFit(actor, id)));
-	if (fits.some((fit) => fit.studyId !== event.params.study)) throw notFound('fit of this study');
-	return { fits: fits.filter((fit) => fit.report !== null) };
-});
+export const load = page((event: PageServerLoadEvent) =>
+	compareFits(requireActor(event), {
+		studyId: event.params.study,
+		fitIds: event.url.searchParams.getAll('fits')
+	})
+);

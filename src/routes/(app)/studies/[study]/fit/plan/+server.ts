@@ -1,4 +1,5 @@
-import { optionsOf, readFitForm } from '$lib/schemas/fit-form';
+import { readFitForm } from '$lib/schemas/fit-form';
+import { fitInput } from '$lib/server/fits/fit-input';
 import { planFit } from '$lib/server/fits/plan-fit';
 import { requireActor } from '$lib/server/hooks/actor';
 import { api } from '$lib/server/http';
@@ -9,15 +10,12 @@ export const POST = api(async (event: RequestEvent) => {
 	const actor = requireActor(event);
 	const form = readFitForm(await event.request.formData());
 	if (!form.success) throw form.error;
-	const { schemeId, runIds, energies, charges, timeZero } = form.data;
-	const plan = await planFit(actor, {
-		studyId: event.params.study,
-		schemeId,
-		runIds,
-		energies,
-		opened: { charges, timeZero },
-		options: optionsOf(form.data)
-	});
-	const { runs, parameters, issues, ready } = plan;
-	return { runs, parameters, issues, ready };
+	const plan = await planFit(actor, fitInput(event.params.study, form.data));
+	const { runs, parameters, available, issues, ready, request } = plan;
+	const channels = [
+		...new Map(
+			request.runs.flatMap((r) => r.channels).map((c) => [c.id, { id: c.id, unit: c.unit }])
+		).values()
+	];
+	return { runs, parameters, available, issues, ready, channels };
 });
