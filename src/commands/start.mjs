@@ -31,7 +31,8 @@ env.HOST ??= '127.0.0.1';
 env.ORIGIN ??= `http://localhost:${env.PORT}`;
 // Room for the multipart frame round the largest sheet that is accepted.
 env.BODY_SIZE_LIMIT ??= `${Number(env.UPLOAD_LIMIT_MB ?? 20) + 2}M`;
-env.SHUTDOWN_TIMEOUT ??= '10';
+// Below the ten seconds after which most service managers end a program by force.
+env.SHUTDOWN_TIMEOUT ??= '8';
 
 const checked = spawnSync(process.execPath, [at('commands/preflight.js')], { stdio: 'inherit', env });
 if (checked.status !== 0) process.exit(checked.status ?? 1);

@@ -55,6 +55,12 @@ describe('signing in', () => {
 		expect(last).toMatchObject({ type: 'person.signed-in', userId: user.id, source: 'screen' });
 	});
 
+	it('takes a null character in the address for nothing at all', async () => {
+		const user = await makePerson({ email: 'nul@kiln-lane.example', password: RIGHT });
+		expect((await attempt('nul@kiln-lane.example\0', RIGHT)).id).toBe(user.id);
+		expect((await refusal(attempt('\0', RIGHT))).code).toBe('invalid');
+	});
+
 	it('answers in the same words for an unknown person, a wrong password and a disabled person', async () => {
 		await makePerson({ email: 'ben@kiln-lane.example', password: RIGHT });
 		await makePerson({ email: 'off@kiln-lane.example', password: RIGHT, disabledAt: new Date() });

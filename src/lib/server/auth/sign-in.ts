@@ -21,7 +21,9 @@ export interface SignInInput {
 	address: string;
 }
 
-export const normalEmail = (email: string): string => email.trim().normalize('NFKC').toLowerCase();
+// A null character ends a text for the database, wherever it stands.
+export const normalEmail = (email: string): string =>
+	email.replaceAll('\0', '').trim().normalize('NFKC').toLowerCase();
 export const emailKey = (email: string): string => `email:${email}`;
 const addressKey = (address: string): string => `address:${address}`;
 

@@ -1,5 +1,5 @@
 import { describe, expect, it } from 'vitest';
-import { isPublic, safeNext } from './guard';
+import { guard, isPublic, safeNext } from './guard';
 
 describe('what is open without signing in', () => {
 	it('is the entry, the health check and the description of the API', () => {
@@ -59,5 +59,14 @@ describe('the way back after signing in', () => {
 	it('is the usual first page when there is none', () => {
 		expect(safeNext(null)).toBe('/studies');
 		expect(safeNext('https://evil.example', '/')).toBe('/');
+	});
+});
+
+describe('an address', () => {
+	it('with a null character in its query is refused before anything is looked up', async () => {
+		const url = new URL('http://localhost:4300/studies?q=a%00b');
+		const event = { url, route: { id: '/studies' }, locals: { actor: null } } as never;
+		const response = await guard({ event, resolve: () => new Response('reached') });
+		expect(response.status).toBe(422);
 	});
 });

@@ -33,6 +33,9 @@ export function safeNext(next: string | null | undefined, fallback = '/studies')
 export const guard: Handle = async ({ event, resolve }) => {
 	const { url, route, locals } = event;
 	const isApi = url.pathname.startsWith('/api/');
+	// A null character ends a text for the database: no filter or id holds one.
+	if (url.search.includes('%00'))
+		return problemResponse(new AppError('invalid', 'This address holds a null character. Leave it out.'));
 	if (isApi && !locals.actor && !isPublic(url.pathname))
 		return problemResponse(
 			new AppError('not-signed-in', 'Sign in, or send a token: Authorization: Bearer <token>.'),
