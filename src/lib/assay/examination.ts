@@ -1,4 +1,5 @@
 /** What one table is examined with: sheet, mapping, answers and corrections, and the findings that arise. */
+import type { SpeciesContent } from '$lib/schemas/scheme';
 import type {
 	Answer,
 	Answers,
@@ -11,10 +12,9 @@ import type {
 	Need,
 	ValueField
 } from '$lib/schemas/sheet';
-import type { SpeciesContent } from '$lib/schemas/scheme';
-import { readCell, type CellReading } from './cells';
+import { type CellReading, readCell } from './cells';
 import { address, displayText, parseAddress, SheetView } from './grid';
-import { parseNumber, type Decimal } from './numbers';
+import { type Decimal, parseNumber } from './numbers';
 import { readTime, type TimeReading } from './times';
 
 export interface Checks {
@@ -24,6 +24,7 @@ export interface Checks {
 	/** K between a logged temperature and the log's median that is noted. */
 	temperatureK: number;
 }
+
 export const CHECKS: Checks = { massBalanceLow: 95, massBalanceHigh: 105, temperatureK: 2 };
 
 export interface FindingSpec {
@@ -229,4 +230,16 @@ export const ENTER = (label = 'Enter the value'): FindingOption => ({
 	label,
 	needsValue: [{ key: 'value', label: 'Value', kind: 'text' }]
 });
+
 export const MISSING: FindingOption = { key: 'missing', label: 'Leave as missing' };
+
+/** The reason of an answer in brackets, for the record. */
+export const because = (reason: string | undefined): string => (reason ? ` (${reason})` : '');
+
+/** A number that has to be greater than zero; null, with the finding reopened, when it is not. */
+export function positive(ex: Examination, value: number | undefined, what: string): number | null {
+	if (value === undefined) return null;
+	if (value > 0) return value;
+	ex.reopen(`${what} must be greater than zero.`);
+	return null;
+}

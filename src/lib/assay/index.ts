@@ -4,6 +4,6 @@ export { settle, type SettleInput } from './settle';
 export { toSavedMapping } from './saved-mapping';
 export { address, columnLetter, columnNumber, displayText, parseAddress, rangeText, SheetView } from './grid';
 export { CHECKS, type Checks } from './examination';
-export { durationWords } from './checks';
+export { durationWords } from './plausibility';
 export { templateSheets, type TemplateSheet } from './template';
 export { diffWorkbooks, type CellChange, type WorkbookDifference } from './diff';

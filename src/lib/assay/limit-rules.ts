@@ -1,25 +1,9 @@
-/** Rules about values at the limits of the method: below LOQ (B8), n.d. (B9), trace (B10). */
-import type { AssayValue } from '$lib/schemas/run';
+/** Rules about values at the limits of the method: below LOQ (B8), n.d. (B9), trace (B10), above the range (B12). */
 import type { FindingOption, ValueField } from '$lib/schemas/sheet';
-import type { CellReading } from './cells';
-import { channelKey, type Channel } from './channels';
-import { figure, plural, someOf, type Examination } from './examination';
-import { suggestLimit, type LimitKind, type StatedLimits } from './limits';
-import type { Sample } from './samples';
-
-/** One cell of a channel while it is being settled. */
-export interface Spot {
-	sample: Sample;
-	row: number;
-	column: number;
-	cell: string;
-	reading: CellReading;
-	/** Left as missing by an answer, so that it is not noted a second time. */
-	decided?: boolean;
-	set(value: AssayValue): void;
-}
-
-const cellsOf = (spots: Spot[]) => spots.map((s) => s.cell);
+import { type Channel, channelKey } from './channels';
+import { type Examination, figure, plural, positive, someOf } from './examination';
+import { type LimitKind, type StatedLimits, suggestLimit } from './limits';
+import { askSpots, cellsOf, leaveMissing, letter, ofKind, type Spot } from './spots';
 
 function limitField(limits: StatedLimits, channel: Channel, kind: LimitKind): ValueField {
 	const suggestion = suggestLimit(limits, channel, kind);
@@ -72,8 +56,8 @@ function settleBare(
 			]
 		});
 		if (!taken) return;
-		if (taken.key === 'missing') return leaveOut(ex, bare, `below ${name}, limit not stated`);
-		limit = positive(ex, taken.number(kind), name);
+		if (taken.key === 'missing') return leaveMissing(ex, bare, `below ${name}, limit not stated`);
+		limit = positive(ex, taken.number(kind), `The ${name}`);
 		if (limit === null) return;
 		channel[kind] = limit;
 	}
@@ -85,21 +69,6 @@ function settleBare(
 			'.'
 		)
 	);
-}
-
-function positive(ex: Examination, value: number, name: string): number | null {
-	if (value > 0) return value;
-	ex.reopen(`The ${name} must be greater than zero.`);
-	return null;
-}
-
-function leaveOut(ex: Examination, spots: Spot[], why: string): void {
-	for (const s of spots) {
-		s.decided = true;
-		s.reading = { kind: 'missing', text: '' };
-		s.set(null);
-	}
-	ex.conversions.push(`${someOf(cellsOf(spots), 8)} left as missing: ${why}.`);
 }
 
 interface ChannelSpots {
@@ -145,8 +114,8 @@ function askNot(ex: Examination, group: ChannelSpots[], limits: StatedLimits): v
 		options: [detected, { key: 'not-determined', label: 'Not determined: leave as missing' }]
 	});
 	if (!taken) return;
-	if (taken.key === 'not-determined') return leaveOut(ex, spots, `"${text}", not determined`);
-	const given = known ? null : positive(ex, taken.number('lod'), 'LOD');
+	if (taken.key === 'not-determined') return leaveMissing(ex, spots, `"${text}", not determined`);
+	const given = known ? null : positive(ex, taken.number('lod'), 'The LOD');
 	if (!known && given === null) return;
 	for (const { channel, spots: own } of group) {
 		const lod = channel.lod ?? given ?? 0;
@@ -190,7 +159,7 @@ export function askTrace(ex: Examination, channel: Channel, spots: Spot[], limit
 		]
 	});
 	if (!taken) return;
-	if (taken.key === 'missing') return leaveOut(ex, trace, `"${text}"`);
+	if (taken.key === 'missing') return leaveMissing(ex, trace, `"${text}"`);
 	const lod = channel.lod ?? taken.number('lod');
 	const loq = channel.loq ?? taken.number('loq');
 	if (!(lod > 0 && loq > lod))
@@ -204,4 +173,40 @@ export function askTrace(ex: Examination, channel: Channel, spots: Spot[], limit
 			';'
 		)
 	);
+}
+
+export function askAbove(ex: Examination, channel: Channel, spots: Spot[]): void {
+	const above = ofKind(spots, 'above');
+	const byText = new Map<string, typeof above>();
+	for (const s of above) byText.set(s.reading.text, [...(byText.get(s.reading.text) ?? []), s]);
+	for (const [text, same] of byText) {
+		const limit = same[0].reading.limit;
+		const taken = askSpots(
+			ex,
+			same,
+			{
+				rule: 'B12',
+				level: 'ask',
+				key: `${letter(channel, same)}-${text}`.slice(0, 80),
+				found: `"${text}"`,
+				expected: 'a number, or the upper limit that it lies above',
+				message: `"${text}" in ${someOf(cellsOf(same))}: above the upper limit${limit === null ? '' : ` of ${figure(limit)}`}, or missing?`
+			},
+			[
+				limit === null
+					? {
+							key: 'above',
+							label: 'Above the limit of …',
+							needsValue: [
+								{ key: 'value', label: 'Upper limit', kind: 'number', unit: channel.unit ?? undefined }
+							]
+						}
+					: { key: 'above', label: `Above ${figure(limit)}` }
+			]
+		);
+		if (taken?.key !== 'above') continue;
+		const value = limit ?? taken.number();
+		for (const s of same) s.set({ above: value });
+		ex.conversions.push(`${someOf(cellsOf(same), 8)}: "${text}" kept as above ${figure(value)}.`);
+	}
 }

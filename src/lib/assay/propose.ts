@@ -10,34 +10,33 @@ import type {
 	Finding,
 	GridWorkbook,
 	Mapping,
-	PeakMapping,
 	Proposal,
 	SavedMapping,
 	TableProposal
 } from '$lib/schemas/sheet';
+import { readCell } from './cells';
+import { factsOf, isTable } from './column-facts';
 import {
+	type ColumnFacts,
+	type ColumnHeader,
 	guessRole,
 	mappedUnit,
-	matchName,
 	matchSpecies,
 	proposeColumn,
-	readHeaders,
-	type ColumnFacts,
-	type ColumnHeader
+	readHeaders
 } from './columns';
-import { readCell } from './cells';
 import { plural, someOf } from './examination';
 import { rangeText, type SheetView } from './grid';
 import { statedLimits } from './limits';
+import { longLayout, peakCounts, peaksOf, useLong } from './long-layout';
 import { decide } from './numbers';
 import { speaksOfTime } from './rows';
 import { savedFor, withSaved } from './saved-mapping';
 import { settle } from './settle';
+import { MOST_COLUMNS } from './side-by-side';
 import { suggestConditions } from './suggestions';
-import { MOST_COLUMNS } from './blocks';
-import { tablesOf, timeColumnByHeader, viewOf, votesOf, type FoundTable } from './tables';
-import { readTime } from './times';
-import { isPeakValueWord, isPeakWord } from './words';
+import { type FoundTable, tablesOf, viewOf, votesOf } from './tables';
+import { timeColumnOf } from './time-column';
 
 export interface ProposeOptions {
 	saved?: SavedMapping[];
@@ -117,84 +116,6 @@ function within(drawn: Block, view: SheetView): Block {
 function sheetWords(rows: number, tables: number): string {
 	if (tables > 0) return plural(tables, 'table');
 	return rows === 0 ? 'empty' : 'no table with a time column';
-}
-
-/** A time column by header, or by its numbers, and at least one other column of numbers. */
-function isTable(workbook: GridWorkbook, found: FoundTable): boolean {
-	const view = viewOf(workbook, found.sheet);
-	if (!view) return false;
-	const time = timeColumnOf(view, found);
-	if (time === 0 || found.block.lastRow === found.block.firstRow) return false;
-	const headers = readHeaders(view, found.headerRows, found.block);
-	return headers.some((h) => h.column !== time && factsOf(view, found, h.column).numbers > 0);
-}
-
-export function timeColumnOf(view: SheetView, found: FoundTable): number {
-	const named = timeColumnByHeader(view, found.headerRows, found.block);
-	if (named > 0) return named;
-	// Names of samples that are times, "t=15 min" or "2 h".
-	for (let c = found.block.firstColumn; c <= found.block.lastColumn; c++)
-		if (namesTimes(view, found, c)) return c;
-	if (found.headerRows.length > 0) return 0;
-	// Without any header, the first column of three or more numbers that never decrease.
-	for (let c = found.block.firstColumn; c <= found.block.lastColumn; c++)
-		if (increases(view, found, c)) return c;
-	return 0;
-}
-
-function namesTimes(view: SheetView, found: FoundTable, column: number): boolean {
-	let times = 0;
-	let others = 0;
-	for (const r of view.filledRows(found.block.firstRow, found.block.lastRow)) {
-		const cell = view.cell(r, column);
-		if (typeof cell?.[1] !== 'string') continue;
-		if (readTime(view.workbook, cell, null).kind === 'worded') times++;
-		else others++;
-	}
-	return times >= 3 && times >= others * 4;
-}
-
-function increases(view: SheetView, found: FoundTable, column: number): boolean {
-	let before = -Infinity;
-	let count = 0;
-	for (const r of view.filledRows(found.block.firstRow, found.block.lastRow)) {
-		const reading = readTime(view.workbook, view.cell(r, column), null);
-		if (reading.kind === 'blank') continue;
-		if (reading.kind !== 'number' && reading.kind !== 'serial') return false;
-		const value = reading.kind === 'number' ? reading.value : reading.days;
-		if (value < before) return false;
-		before = value;
-		count++;
-	}
-	return count >= 3;
-}
-
-const knownFacts = new WeakMap<FoundTable, Map<number, ColumnFacts>>();
-
-/** Counted once for each column of a table. */
-export function factsOf(view: SheetView, found: FoundTable, column: number): ColumnFacts {
-	const own = knownFacts.get(found) ?? new Map<number, ColumnFacts>();
-	knownFacts.set(found, own);
-	const facts = own.get(column) ?? countFacts(view, found, column);
-	own.set(column, facts);
-	return facts;
-}
-
-function countFacts(view: SheetView, found: FoundTable, column: number): ColumnFacts {
-	const facts = { numbers: 0, texts: 0, distinct: 0 };
-	const distinct = new Set<string>();
-	for (const r of view.filledRows(found.block.firstRow, found.block.lastRow)) {
-		const cell = view.cell(r, column);
-		if (!cell) continue;
-		const { kind } = readCell(view.workbook, cell, null);
-		if (kind === 'number' || kind === 'undecided' || kind === 'with unit' || kind === 'date') facts.numbers++;
-		else if (kind === 'text') {
-			facts.texts++;
-			if (distinct.size < 200) distinct.add(String(cell[1]));
-		}
-	}
-	facts.distinct = distinct.size;
-	return facts;
 }
 
 function proposeTable(
@@ -292,87 +213,6 @@ function mappingOf(c: ColumnProposal, headers: ColumnHeader[]): ColumnMapping {
 		...(c.header ? { label: c.header.slice(0, 120) } : {})
 	};
 }
-
-/* ---------------------------------------------------------------- long layout */
-
-interface Long {
-	peak: number;
-	value: number;
-}
-
-/** One row a peak: a column of names that come again and again, and a column of values. */
-function longLayout(
-	headers: ColumnHeader[],
-	facts: Map<number, ColumnFacts>,
-	columns: ColumnProposal[]
-): Long | null {
-	const named = (h: ColumnHeader) => h.parts.at(-1) ?? '';
-	const peak = headers.find((h) => {
-		const f = facts.get(h.column);
-		return f && isPeakWord(named(h)) && f.texts > f.numbers && f.texts >= 4 && f.distinct * 2 <= f.texts;
-	});
-	if (!peak) return null;
-	const values = headers.filter(
-		(h) =>
-			h.column !== peak.column &&
-			(facts.get(h.column)?.numbers ?? 0) > 0 &&
-			isPeakValueWord(named(h) || h.header)
-	);
-	const isTime = (h: ColumnHeader) => columns.find((c) => c.column === h.column)?.role === 'time';
-	const best =
-		values.find((h) => h.unit?.of === 'value' && h.unit.unit !== 'area' && !isTime(h)) ??
-		values.find((h) => !isTime(h));
-	return best ? { peak: peak.column, value: best.column } : null;
-}
-
-function useLong(mapping: Mapping, columns: ColumnProposal[], long: Long): void {
-	for (const c of mapping.columns) {
-		if (c.column === long.peak) Object.assign(c, { role: 'peak', unit: null, weights: undefined });
-		else if (c.column === long.value) Object.assign(c, { role: 'value', weights: undefined });
-		else if (c.role === 'species') Object.assign(c, { role: 'ignore', weights: undefined });
-	}
-	for (const c of mapping.columns) if (c.weights === undefined) delete c.weights;
-	columns.forEach((c, i) => (c.role = mapping.columns[i].role));
-}
-
-const MOST_PEAKS = 200;
-
-function peaksOf(
-	view: SheetView,
-	found: FoundTable,
-	column: number,
-	species: SpeciesContent[]
-): PeakMapping[] {
-	const peaks = new Map<string, PeakMapping>();
-	for (const r of view.filledRows(found.block.firstRow, found.block.lastRow)) {
-		if (peaks.size >= MOST_PEAKS) break;
-		const peak = view.text(r, column).slice(0, 120);
-		if (!peak || peaks.has(peak)) continue;
-		const id = matchName(peak, species);
-		peaks.set(peak, { peak, ...(id ? { weights: { [id]: 1 } } : {}) });
-	}
-	return [...peaks.values()];
-}
-
-function peakCounts(
-	view: SheetView,
-	found: FoundTable,
-	column: number,
-	peaks: PeakMapping[]
-): TableProposal['peaks'] {
-	const counts = new Map<string, number>();
-	for (const r of view.filledRows(found.block.firstRow, found.block.lastRow)) {
-		const peak = view.text(r, column).slice(0, 120);
-		counts.set(peak, (counts.get(peak) ?? 0) + 1);
-	}
-	return peaks.map((p) => ({
-		peak: p.peak,
-		values: counts.get(p.peak) ?? 0,
-		species: Object.keys(p.weights ?? {})[0] ?? null
-	}));
-}
-
-/* ---------------------------------------------------------------- the whole workbook */
 
 /** A row that begins with a time word and goes on with numbers. */
 function runsAcross(workbook: GridWorkbook): boolean {

@@ -120,3 +120,11 @@ function longSamples(ex: Examination, rows: number[], channels: Channel[]): Samp
 	}
 	return samples;
 }
+
+export interface Timed {
+	sample: Sample;
+	/** Elapsed seconds, or null while a finding on the cell is open. */
+	seconds: number | null;
+	/** Elapsed time as written, where the column holds plain numbers in the run's unit. */
+	plain: number | null;
+}

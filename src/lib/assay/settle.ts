@@ -12,34 +12,24 @@ import type {
 	Settlement,
 	TimeUnit
 } from '$lib/schemas/sheet';
-import { settleChannels, type Channel } from './channels';
-import {
-	askCharge,
-	checkCount,
-	massBalance,
-	noteCopies,
-	plausibility,
-	temperatureLog,
-	type TemperatureLog
-} from './checks';
+import { type Channel, settleChannels } from './channels';
+import { askCharge, checkCount } from './checks';
 import { convertValues } from './conversions';
-import { CHECKS, Examination, type Checks } from './examination';
+import { noteCopies } from './copies';
+import { settleDecimal } from './decimal-rule';
+import { type Checks, CHECKS, Examination } from './examination';
 import { address } from './grid';
+import { askHidden } from './hidden';
 import { statedLimits } from './limits';
+import { massBalance } from './mass-balance';
+import { plausibility } from './plausibility';
 import { samplesOf, timeColumn } from './samples';
-import {
-	askBlock,
-	askHidden,
-	dataRows,
-	noteColours,
-	noteFooters,
-	noteHeaders,
-	noteMergesAndDates,
-	settleDecimal
-} from './structure';
-import { headersOf, tableOf, timeColumnByHeader, viewOf, votesOf } from './tables';
-import { pointsOf, settleReplicates, type Point } from './timepoints';
+import { askBlock, dataRows, noteColours, noteFooters, noteHeaders, noteMergesAndDates } from './structure';
+import { headersOf, tableOf, viewOf, votesOf } from './tables';
+import { temperatureLog, type TemperatureLog } from './temperature-log';
+import { timeColumnByHeader } from './time-column';
 import { settleTimes } from './time-rules';
+import { type Point, pointsOf, settleReplicates } from './timepoints';
 import { settleValues } from './value-rules';
 
 export interface SettleInput {
@@ -167,6 +157,7 @@ function askConditions(ex: Examination): void {
 }
 
 const RANK = { stop: 0, ask: 1, note: 2 };
+
 const sortFindings = (findings: Examination['findings']) =>
 	findings
 		.map((f, i) => ({ f, i }))

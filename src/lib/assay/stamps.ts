@@ -1,8 +1,9 @@
 /** Date-time stamps (B16): elapsed time as a difference, with the zone asked where a clock change lies inside. */
+import { clockChangeBetween, zoneOffsetsMin } from './clock-changes';
 import type { Examination } from './examination';
 import { address } from './grid';
 import type { Sample } from './samples';
-import { clockChangeBetween, daysToSeconds, readTimeText, zoneOffsetsMin, type TimeReading } from './times';
+import { daysToSeconds, readTimeText, type TimeReading } from './times';
 
 type Stamp = TimeReading & { kind: 'stamp' };
 

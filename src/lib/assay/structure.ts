@@ -1,10 +1,7 @@
-/** Rules about the table as a whole: B1, B2, B6, B27, B29, B30, B31, B37 and errors outside the block (B25). */
+/** Rules about the table as a whole: B1, B2, B27, B30, B31, B37 and errors outside the block (B25). */
 import { CELL } from '$lib/schemas/sheet';
-import type { FindingOption } from '$lib/schemas/sheet';
-import { numberPart } from './cells';
-import { figure, plural, someOf, type Examination } from './examination';
-import { address, columnLetter, hasFlag, rangeText } from './grid';
-import { decide, noVotes, vote, type DecimalVotes } from './numbers';
+import { type Examination, plural, someOf } from './examination';
+import { address, hasFlag, rangeText } from './grid';
 
 /** Rows of the block that hold data, in order. */
 export function dataRows(ex: Examination): number[] {
@@ -46,7 +43,7 @@ export function askBlock(ex: Examination, facts: BlockFacts): void {
 	});
 }
 
-const rowsText = (rows: number[]) =>
+export const rowsText = (rows: number[]) =>
 	rows.length > 1 && rows[rows.length - 1] - rows[0] === rows.length - 1
 		? `rows ${rows[0]}–${rows[rows.length - 1]}`
 		: `${rows.length === 1 ? 'row' : 'rows'} ${someOf(rows.map(String))}`;
@@ -62,163 +59,6 @@ export function noteHeaders(ex: Examination, joined: { column: number; header: s
 		found: `header in ${rowsText(headerRows)}`,
 		message: `The header spans ${rowsText(headerRows)}; its parts were joined, for example "${joined[0].header}".`
 	});
-}
-
-/** B6: one decimal convention for the whole file. */
-export function settleDecimal(ex: Examination, votes: DecimalVotes): void {
-	if (ex.decimal) return;
-	const { decimal, trouble } = decide(votes);
-	if (!trouble) {
-		ex.decimal = decimal;
-		ex.mapping.decimal = decimal;
-		return;
-	}
-	const taken = trouble === 'ambiguous' ? askAmbiguous(ex, votes) : stopMixed(ex, votes);
-	if (!taken) return;
-	ex.decimal = taken;
-	ex.mapping.decimal = taken;
-	ex.conversions.push(`Numbers written as text: "${taken}" read as the decimal sign throughout the file.`);
-}
-
-function askAmbiguous(ex: Examination, votes: DecimalVotes): '.' | ',' | null {
-	const first = votes.ambiguous[0];
-	const taken = ex.ask({
-		rule: 'B6',
-		level: 'ask',
-		cells: votes.ambiguous.map((a) => cellOf(a.where)),
-		key: 'decimal',
-		found: `"${first.text}" in ${cellOf(first.where)}`,
-		expected: 'one decimal sign for the file',
-		message: `"${first.text}" could be ${figure(first.point)} or ${figure(first.comma)}. Nothing else in the file tells which.`,
-		options: [
-			{ key: 'point', label: `"." is the decimal sign: ${figure(first.point)}` },
-			{ key: 'comma', label: `"," is the decimal sign: ${figure(first.comma)}` }
-		]
-	});
-	return taken ? (taken.key === 'comma' ? ',' : '.') : null;
-}
-
-function stopMixed(ex: Examination, votes: DecimalVotes): '.' | ',' | null {
-	const options: FindingOption[] = [
-		{
-			key: 'point',
-			label: `"." is the decimal sign; the ${votes.counts.comma} others are then asked one by one`
-		},
-		{
-			key: 'comma',
-			label: `"," is the decimal sign; the ${votes.counts.point} others are then asked one by one`
-		}
-	];
-	const taken = ex.ask({
-		rule: 'B6',
-		level: 'stop',
-		cells: [...votes.point, ...votes.comma].map(cellOf),
-		key: 'decimal',
-		found: `decimal points (${someOf(votes.point.map(cellOf))}) and decimal commas (${someOf(votes.comma.map(cellOf))})`,
-		expected: 'one decimal sign for the file',
-		message: `The file mixes decimal points (${someOf(votes.point.map(cellOf))}) and decimal commas (${someOf(votes.comma.map(cellOf))}). Say which one counts.`,
-		options
-	});
-	return taken ? (taken.key === 'comma' ? ',' : '.') : null;
-}
-
-const cellOf = (where: string) => where.slice(where.lastIndexOf('!') + 1);
-
-/** Votes of all text cells inside the blocks of a file. */
-export function countVotes(
-	workbook: Examination['workbook'],
-	blocks: {
-		sheet: string;
-		block: { firstRow: number; lastRow: number; firstColumn: number; lastColumn: number };
-	}[]
-): DecimalVotes {
-	const votes = noVotes();
-	for (const { sheet, block } of blocks) {
-		const found = workbook.sheets.find((s) => s.name === sheet);
-		for (const row of found?.rows ?? []) {
-			if (row.r < block.firstRow || row.r > block.lastRow) continue;
-			for (const cell of row.c)
-				if (
-					typeof cell[1] === 'string' &&
-					cell[0] >= block.firstColumn &&
-					cell[0] <= block.lastColumn &&
-					cell[1].length < 60
-				)
-					voteCell(votes, cell[1], sheet, row.r, cell[0]);
-		}
-	}
-	return votes;
-}
-
-/** A text without a separator says nothing; most texts of a table are like that or plain. */
-function voteCell(votes: DecimalVotes, text: string, sheet: string, row: number, column: number): void {
-	if (!text.includes('.') && !text.includes(',')) return;
-	vote(votes, numberPart(text), `${sheet}!${address(row, column)}`);
-}
-
-/** B29: hidden rows, columns and sheets, active filters. Rows that the person leaves out are returned. */
-export function askHidden(ex: Examination, rows: number[]): Set<number> {
-	const { view, mapping } = ex;
-	if (view.sheet.state !== 'visible') askHiddenSheet(ex);
-	const hidden = rows.filter((r) => view.rowHidden(r));
-	const out = new Set<number>();
-	if (hidden.length > 0) {
-		const why = view.sheet.filter ? ` (a filter is on: ${view.sheet.filter})` : '';
-		const taken = ex.ask({
-			rule: 'B29',
-			level: 'ask',
-			cells: hidden.map((r) => address(r, mapping.block.firstColumn)),
-			key: 'rows',
-			found: `${rowsText(hidden)} hidden${why}`,
-			expected: 'a choice; hidden rows are neither dropped nor used silently',
-			message: `${hidden.length === 1 ? 'Row' : 'Rows'} ${someOf(hidden.map(String))} of "${ex.sheet}" ${hidden.length === 1 ? 'is' : 'are'} hidden${why}. Do they belong to the data?`,
-			options: [
-				{ key: 'include', label: 'Use them too' },
-				{ key: 'leave-out', label: 'Leave them out' }
-			]
-		});
-		if (taken?.key === 'leave-out') {
-			hidden.forEach((r) => out.add(r));
-			ex.conversions.push(`Hidden ${rowsText(hidden)} left out.`);
-		}
-	}
-	askHiddenColumns(ex);
-	return out;
-}
-
-function askHiddenSheet(ex: Examination): void {
-	ex.ask({
-		rule: 'B29',
-		level: 'ask',
-		cells: [address(ex.mapping.block.firstRow, ex.mapping.block.firstColumn)],
-		key: 'sheet',
-		found: `sheet "${ex.sheet}" is ${ex.view.sheet.state}`,
-		expected: 'a choice; hidden sheets are not used silently',
-		message: `Sheet "${ex.sheet}" is hidden in the file. Use this table all the same?`,
-		options: [{ key: 'include', label: 'Use it' }]
-	});
-}
-
-function askHiddenColumns(ex: Examination): void {
-	const hidden = ex.mapping.columns.filter((c) => c.role !== 'ignore' && ex.view.columnHidden(c.column));
-	if (hidden.length === 0) return;
-	const letters = hidden.map((c) => columnLetter(c.column));
-	const taken = ex.ask({
-		rule: 'B29',
-		level: 'ask',
-		cells: hidden.map((c) => address(ex.mapping.block.firstRow, c.column)),
-		key: 'columns',
-		found: `${plural(hidden.length, 'hidden column')}: ${someOf(letters)}`,
-		expected: 'a choice; hidden columns are neither dropped nor used silently',
-		message: `${hidden.length === 1 ? 'Column' : 'Columns'} ${someOf(letters)} of "${ex.sheet}" ${hidden.length === 1 ? 'is' : 'are'} hidden. Do they belong to the data?`,
-		options: [
-			{ key: 'include', label: 'Use them too' },
-			{ key: 'leave-out', label: 'Leave them out' }
-		]
-	});
-	if (taken?.key !== 'leave-out') return;
-	for (const c of hidden) c.role = 'ignore';
-	ex.conversions.push(`Hidden columns ${letters.join(', ')} left out.`);
 }
 
 /** B30: colours and strike-through are seen, not interpreted. */

@@ -1,16 +1,18 @@
 /** The tables of a workbook, found once and kept with it: proposing and settling look at the same ones. */
 import type { GridWorkbook, Mapping } from '$lib/schemas/sheet';
-import { findBlocks, MOST_COLUMNS, timeColumnByHeader, type FoundBlock } from './blocks';
-import { readHeaders, type ColumnHeader } from './columns';
+import { findBlocks, type FoundBlock } from './blocks';
+import { type ColumnHeader, readHeaders } from './columns';
+import { countVotes } from './decimal-rule';
 import { SheetView } from './grid';
 import type { DecimalVotes } from './numbers';
-import { countVotes } from './structure';
+import { MOST_COLUMNS } from './side-by-side';
 
 export interface FoundTable extends FoundBlock {
 	sheet: string;
 }
 
 const known = new WeakMap<GridWorkbook, FoundTable[]>();
+
 const views = new WeakMap<GridWorkbook, Map<string, SheetView>>();
 
 export function viewOf(workbook: GridWorkbook, sheet: string): SheetView | undefined {
@@ -65,5 +67,3 @@ export function headersOf(view: SheetView, mapping: Mapping): Map<number, Column
 	const lastColumn = Math.min(block.lastColumn, view.sheet.lastColumn, block.firstColumn + MOST_COLUMNS - 1);
 	return new Map(readHeaders(view, mapping.headerRows, { ...block, lastColumn }).map((h) => [h.column, h]));
 }
-
-export { timeColumnByHeader };

@@ -2,10 +2,9 @@
 import type { AssayValue } from '$lib/schemas/run';
 import type { TimeUnit } from '$lib/schemas/sheet';
 import type { Channel } from './channels';
-import { figure, plural, someOf, type Examination } from './examination';
+import { type Examination, figure, plural, someOf } from './examination';
 import { address } from './grid';
-import type { Sample } from './samples';
-import type { Timed } from './time-rules';
+import type { Sample, Timed } from './samples';
 import { secondsIn } from './times';
 import type { Values } from './value-rules';
 

@@ -1,12 +1,6 @@
 import { describe, expect, it } from 'vitest';
-import {
-	clockChangeBetween,
-	clockText,
-	daysToSeconds,
-	readTimeText,
-	secondsIn,
-	zoneOffsetsMin
-} from './times';
+import { clockChangeBetween, zoneOffsetsMin } from './clock-changes';
+import { clockText, daysToSeconds, readTimeText, secondsIn } from './times';
 import { calendarToSerial } from './number-format';
 
 const serial = (year: number, month: number, day: number, hour = 0, minute = 0) =>

@@ -155,6 +155,3 @@ export const MASS_FACTOR: Partial<Record<ValueUnit, number>> = { 'g/L': 1, 'mg/m
 
 export const isRelative = (unit: string | null): boolean =>
 	unit === 'area %' || unit === '% of charge' || unit === 'mol %' || unit === '% w/w';
-
-/** Words for a unit in a message. */
-export const unitWords = (unit: string | null): string => unit ?? 'no unit';

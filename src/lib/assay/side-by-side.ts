@@ -1,0 +1,113 @@
+/** Tables side by side: a band of rows is parted where a second time column begins a table of its own. */
+import type { Band, FoundBlock } from './blocks';
+import { displayText, type SheetView } from './grid';
+import type { Headers } from './header-rows';
+import { type RowLook, speaksOfTime } from './rows';
+
+/** Columns of one table. */
+export const MOST_COLUMNS = 400;
+
+interface Wide extends Band, Headers {
+	floor: number;
+}
+
+/** Parts a band where a second time column begins a table of its own. */
+export function sideBySide(view: SheetView, looks: RowLook[], band: Wide): FoundBlock[] {
+	const rows = looks.slice(band.start, band.stop);
+	const starts = timeColumns(view, band.headerRows, band.first, band.last);
+	const filled = filledColumns(rows, band);
+	const cuts = [band.first];
+	for (let i = 1; i < starts.length; i++) {
+		const between = filled.filter((c) => c > starts[i - 1] && c < starts[i]);
+		if (between.length > 0) cuts.push(cutBefore(starts[i], filled, starts[i - 1]));
+	}
+	return cuts.map((first, i) => {
+		const last = i + 1 < cuts.length ? cuts[i + 1] - 1 : band.last;
+		const own = filled.filter((c) => c >= first && c <= last);
+		return oneTable(view, looks, band, rows, own[0] ?? first, own.at(-1) ?? last, cuts.length > 1);
+	});
+}
+
+/** The part begins at its time column, or at sample columns that stand directly before it behind a blank one. */
+function cutBefore(time: number, filled: number[], floor: number): number {
+	let first = time;
+	while (first - 1 > floor && filled.includes(first - 1)) first--;
+	return first === floor + 1 ? time : first;
+}
+
+function timeColumns(view: SheetView, headerRows: number[], first: number, last: number): number[] {
+	const found: number[] = [];
+	for (let c = first; c <= last; c++) {
+		const texts = headerRows.map((r) => view.text(r, c)).filter(Boolean);
+		if (texts.some((text) => speaksOfTime(text))) found.push(c);
+	}
+	return found;
+}
+
+function filledColumns(rows: RowLook[], band: Wide): number[] {
+	const filled = new Set<number>();
+	for (const look of rows) {
+		for (const c of look.values) filled.add(c);
+		for (const { column } of look.texts) filled.add(column);
+	}
+	return [...filled].filter((c) => c >= band.first && c <= band.last).sort((a, b) => a - b);
+}
+
+function oneTable(
+	view: SheetView,
+	looks: RowLook[],
+	band: Wide,
+	rows: RowLook[],
+	first: number,
+	last: number,
+	parted: boolean
+): FoundBlock {
+	const has = (look: RowLook) =>
+		look.values.some((c) => c >= first && c <= last) ||
+		look.texts.some((t) => t.column >= first && t.column <= last);
+	const own = parted ? rows.filter(has) : rows;
+	const kept = own.length > 0 ? own : rows;
+	const block = {
+		firstRow: kept[0].r,
+		lastRow: kept[kept.length - 1].r,
+		firstColumn: first,
+		lastColumn: Math.min(last, first + MOST_COLUMNS - 1)
+	};
+	const above = textsAbove(view, looks, band, parted ? { first, last } : null);
+	return {
+		block,
+		headerRows: band.headerRows,
+		limitRows: [...band.limitRows, ...band.limits],
+		footerRows: band.footers,
+		leftOutRows: band.leftOut.filter((r) => r > block.firstRow && r < block.lastRow),
+		title: titleOf(view, above),
+		above
+	};
+}
+
+function textsAbove(
+	view: SheetView,
+	looks: RowLook[],
+	band: Wide,
+	part: { first: number; last: number } | null
+): { row: number; text: string }[] {
+	const top = band.headerRows[0] ?? looks[band.start].r;
+	const found: { row: number; text: string }[] = [];
+	for (let k = looks.length - 1; k >= band.floor; k--) {
+		const look = looks[k];
+		if (look.r >= top || found.length >= 12) continue;
+		const cells = view.cellsOfRow(look.r).filter((c) => !part || (c[0] >= part.first && c[0] <= part.last));
+		const text = cells
+			.map((c) => displayText(view.workbook, c).trim())
+			.filter(Boolean)
+			.join(' ');
+		if (text) found.push({ row: look.r, text: text.slice(0, 200) });
+	}
+	return found;
+}
+
+/** The nearest line that reads like a title: one cell, or the first line of the sheet. */
+function titleOf(view: SheetView, above: { row: number; text: string }[]): string {
+	const lone = above.find(({ row }) => view.cellsOfRow(row).filter((c) => c[1] !== null).length === 1);
+	return (lone ?? above[above.length - 1])?.text.slice(0, 120) ?? view.sheet.name;
+}

@@ -1,0 +1,64 @@
+/** The temperature column as a log in °C, and the values far from its middle. */
+import { type Examination, figure } from './examination';
+import { address, columnLetter } from './grid';
+import { median } from './statistics';
+import type { Point } from './timepoints';
+
+export interface TemperatureLog {
+	rows: { time: number; celsius: number; cell: string }[];
+	open: boolean;
+}
+
+/** The temperature column as a log in °C; values far from its median are pointed out. */
+export function temperatureLog(ex: Examination, points: Point[]): TemperatureLog {
+	const column = ex.mapping.columns.find((c) => c.role === 'temperature');
+	if (!column) return { rows: [], open: false };
+	if (column.unit !== 'degC' && column.unit !== 'K') {
+		const letter = columnLetter(column.column);
+		const taken = ex.ask({
+			rule: 'B4',
+			level: 'stop',
+			cells: [address(ex.mapping.headerRows.at(-1) ?? ex.mapping.block.firstRow, column.column)],
+			found: `temperature column ${letter} without a unit`,
+			expected: '°C or K',
+			message: `Temperature column ${letter} has no unit. Choose one; we will not assume.`,
+			options: [
+				{ key: 'degC', label: '°C' },
+				{ key: 'K', label: 'K' }
+			]
+		});
+		if (!taken) return { rows: [], open: true };
+		column.unit = taken.key;
+	}
+	const shift = column.unit === 'K' ? -273.15 : 0;
+	const seen = new Set<number>();
+	const rows = points.flatMap((p) => {
+		const reading = ex.value(p.row, column.column);
+		if (reading.kind !== 'number' || p.time === null || seen.has(p.row)) return [];
+		seen.add(p.row);
+		return [
+			{
+				time: p.time,
+				celsius: Number((reading.value + shift).toPrecision(12)),
+				cell: address(p.row, column.column)
+			}
+		];
+	});
+	noteExcursions(ex, rows);
+	return { rows, open: false };
+}
+
+function noteExcursions(ex: Examination, rows: TemperatureLog['rows']): void {
+	if (rows.length < 4) return;
+	const middle = median(rows.map((r) => r.celsius));
+	const spread = median(rows.map((r) => Math.abs(r.celsius - middle)));
+	const limit = Math.max(ex.checks.temperatureK, 6 * spread);
+	for (const r of rows.filter((r) => Math.abs(r.celsius - middle) > limit).slice(0, 20))
+		ex.note({
+			rule: 'A7',
+			cells: [r.cell],
+			found: `${figure(r.celsius)} °C`,
+			expected: `about ${figure(Number(middle.toFixed(1)))} °C`,
+			message: `${r.cell}: ${figure(r.celsius)} °C lies ${figure(Number(Math.abs(r.celsius - middle).toFixed(1)))} K from the middle of the log (${figure(Number(middle.toFixed(1)))} °C). An excursion, or a reading error?`
+		});
+}

@@ -1,0 +1,130 @@
+/** B18: times increase; one that does not is a typing error, a row to leave out, or the first of a new run. */
+import type { Block, TimeUnit } from '$lib/schemas/sheet';
+import { secondsOf } from './elapsed-time';
+import { because, type Examination } from './examination';
+import { address } from './grid';
+import type { Timed } from './samples';
+
+export function stopBackwards(
+	ex: Examination,
+	timed: Timed[],
+	unit: TimeUnit
+): { samples: Timed[]; rest: Block | null } {
+	const kept: Timed[] = [];
+	let latest = -Infinity;
+	let latestText = '';
+	let rest: Block | null = null;
+	for (let i = 0; i < timed.length && !rest; i++) {
+		const t = timed[i];
+		if (t.seconds === null) {
+			kept.push(t);
+			continue;
+		}
+		if (t.seconds >= latest || t.sample.replicate > 0) {
+			latest = Math.max(latest, t.seconds);
+			latestText = showTime(ex, t);
+			kept.push(t);
+			continue;
+		}
+		const outcome = askBackwards(ex, timed, i, latest, latestText, unit);
+		if (outcome === 'leave-out') continue;
+		if (outcome === 'new-run') rest = { ...ex.mapping.block, firstRow: t.sample.row };
+		else {
+			if (outcome === 'open') t.seconds = null;
+			kept.push(t);
+			if (outcome === 'corrected') latest = Math.max(latest, t.seconds ?? latest);
+		}
+	}
+	return { samples: kept, rest };
+}
+
+const showTime = (ex: Examination, t: Timed): string =>
+	ex.shown(t.sample.time.row, t.sample.time.column) || 'the row above';
+
+function askBackwards(
+	ex: Examination,
+	timed: Timed[],
+	i: number,
+	latest: number,
+	latestText: string,
+	unit: TimeUnit
+): 'corrected' | 'keep' | 'leave-out' | 'new-run' | 'open' {
+	const t = timed[i];
+	const { row, column } = t.sample.time;
+	const cell = address(row, column);
+	const shown = showTime(ex, t);
+	const next =
+		timed.slice(i + 1).find((n) => n.seconds !== null && n.sample.row !== t.sample.row)?.seconds ?? null;
+	const guess = likelyTime(shown, latest, next);
+	const taken = ex.ask({
+		rule: 'B18',
+		level: 'stop',
+		cells: [cell],
+		found: `${shown} after ${latestText}`,
+		expected: 'times that increase',
+		message: `${cell} ${shown} comes after ${latestText}. Typing error${guess ? ` (${guess}?)` : ''} or a new run?`,
+		options: [
+			{
+				key: 'enter',
+				label: 'Enter the time',
+				needsValue: [
+					{
+						key: 'value',
+						label: 'Time',
+						kind: 'text',
+						...(guess ? { suggested: guess, source: 'digits of the cell in another order' } : {})
+					}
+				]
+			},
+			{ key: 'new-run', label: 'A new run starts here' },
+			{ key: 'leave-out', label: 'Leave the row out' },
+			{ key: 'keep', label: `Keep ${shown} as it stands` }
+		]
+	});
+	if (taken?.key === 'enter')
+		return enterTime(ex, t, cell, taken.text(), taken.reason, unit, shown, latestText);
+	if (taken?.key === 'leave-out') {
+		ex.conversions.push(
+			`Row ${t.sample.row} left out: ${shown} comes after ${latestText}${because(taken.reason)}.`
+		);
+		return 'leave-out';
+	}
+	if (taken?.key === 'keep')
+		ex.conversions.push(
+			`${cell} kept at ${shown} although it comes after ${latestText}${because(taken.reason)}.`
+		);
+	if (taken?.key === 'new-run')
+		ex.conversions.push(`A new run begins in row ${t.sample.row}; this run ends above it.`);
+	return (taken?.key as 'keep' | 'new-run' | undefined) ?? 'open';
+}
+
+function enterTime(
+	ex: Examination,
+	t: Timed,
+	cell: string,
+	text: string,
+	reason: string | undefined,
+	unit: TimeUnit,
+	shown: string,
+	latestText: string
+): 'corrected' | 'open' {
+	ex.correct(cell, text, reason ?? `Typing error: ${shown} comes after ${latestText}.`);
+	const reading = ex.time(t.sample.time.row, t.sample.time.column);
+	const seconds = secondsOf(reading, { unit, stated: true }, 'h:mm');
+	if (seconds === null) {
+		ex.reopen(`"${text}" is not a time.`);
+		return 'open';
+	}
+	t.seconds = seconds;
+	t.plain = reading.kind === 'number' ? reading.value : null;
+	return 'corrected';
+}
+
+/** "0:03" between 2:00 and 4:00 may be 3:00: hours and minutes swapped. Offered, never used by itself. */
+function likelyTime(shown: string, after: number, before: number | null): string | null {
+	const m = /^(\d{1,2}):(\d{2})$/.exec(shown);
+	if (!m) return null;
+	const swapped = `${Number(m[2])}:${m[1].padStart(2, '0')}`;
+	const seconds = Number(m[2]) * 3600 + Number(m[1]) * 60;
+	return seconds > after && (before === null || seconds < before) ? swapped : null;
+}

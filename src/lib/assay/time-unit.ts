@@ -1,0 +1,128 @@
+/** One kind of time and one unit for the time column: B4 for times without a unit, B17 for mixed ones. */
+import { TIME_UNITS, type TimeUnit } from '$lib/schemas/sheet';
+import { headerCell } from './channels';
+import type { ColumnHeader } from './columns';
+import { type Examination, plural, someOf } from './examination';
+import { address, columnLetter } from './grid';
+import type { Sample } from './samples';
+import type { TimeReading } from './times';
+
+const family = (r: TimeReading): string =>
+	r.kind === 'serial' || r.kind === 'colon'
+		? 'durations'
+		: r.kind === 'stamp'
+			? 'dates with time'
+			: r.kind === 'worded'
+				? 'times with their unit'
+				: 'plain numbers';
+
+/** B17: a column holds one kind of time; corrections are typed and may differ. */
+export function stopMixedKinds(
+	ex: Examination,
+	samples: Sample[],
+	readings: TimeReading[],
+	column: number
+): void {
+	const kinds = new Map<string, string[]>();
+	samples.forEach((s, i) => {
+		if (ex.isCorrected(s.time.row, s.time.column)) return;
+		if (readings[i].kind === 'number' && (readings[i] as { value: number }).value === 0) return;
+		const cells = kinds.get(family(readings[i])) ?? [];
+		cells.push(address(s.time.row, s.time.column));
+		kinds.set(family(readings[i]), cells);
+	});
+	// Plain numbers beside times with their unit are asked about by `timeUnit`.
+	const mixed = [...kinds].filter(([kind]) => kind !== 'times with their unit');
+	if (mixed.length < 2) return;
+	const what = mixed.map(([kind, cells]) => `${kind} (${someOf(cells, 2)})`).join(' and ');
+	ex.ask({
+		rule: 'B17',
+		level: 'stop',
+		cells: mixed.sort((a, b) => a[1].length - b[1].length)[0][1],
+		key: 'kinds',
+		found: what,
+		expected: 'one kind of time in the column',
+		message: `Column ${columnLetter(column)} mixes ${what}. Correct the cells that differ, or leave their rows out.`
+	});
+}
+
+export interface UnitFound {
+	unit: TimeUnit;
+	/** The column holds plain numbers in this unit. */
+	stated: boolean;
+}
+
+export function timeUnit(
+	ex: Examination,
+	samples: Sample[],
+	readings: TimeReading[],
+	header: ColumnHeader | undefined,
+	column: number
+): UnitFound {
+	const mapped = ex.mapping.columns.find((c) => c.role === 'time');
+	const stated = TIME_UNITS.includes(mapped?.unit as TimeUnit) ? (mapped?.unit as TimeUnit) : null;
+	const plain = samples.filter((_, i) => readings[i].kind === 'number');
+	const worded = readings.flatMap((r, i) => (r.kind === 'worded' ? [{ r, s: samples[i] }] : []));
+	const serial = readings.some((r) => r.kind === 'serial' || r.kind === 'colon' || r.kind === 'stamp');
+	if (worded.length > 0) return wordedUnit(ex, worded, stated, plain.length, column);
+	if (serial) return { unit: 'h', stated: false };
+	if (stated) return { unit: stated, stated: true };
+	const taken = ex.ask({
+		rule: 'B4',
+		level: 'stop',
+		cells: [headerCell(ex, column)],
+		found: `time column ${columnLetter(column)}${header?.header ? `, "${header.header}",` : ''} without a unit`,
+		expected: 's, min, h or d',
+		message: `Time column ${columnLetter(column)} has no unit. Choose one; we will not assume.`,
+		options: TIME_UNITS.map((unit) => ({ key: unit, label: unit }))
+	});
+	if (!taken) return { unit: 'h', stated: false };
+	if (mapped) mapped.unit = taken.key;
+	ex.conversions.push(`Unit of time column ${columnLetter(column)}: ${taken.key}, as chosen.`);
+	return { unit: taken.key as TimeUnit, stated: true };
+}
+
+/** B17: times that carry their unit, against the column's unit or against each other. */
+function wordedUnit(
+	ex: Examination,
+	worded: { r: TimeReading & { kind: 'worded' }; s: Sample }[],
+	stated: TimeUnit | null,
+	plain: number,
+	column: number
+): UnitFound {
+	const units = new Set(worded.flatMap(({ r }) => r.units));
+	const target = stated ?? (units.has('h') ? 'h' : [...units][0]);
+	const cells = worded.map(({ s }) => address(s.time.row, s.time.column));
+	const foreign = stated ? worded.some(({ r }) => r.units.some((u) => u !== stated)) : units.size > 1;
+	if (!stated && plain > 0) {
+		ex.ask({
+			rule: 'B17',
+			level: 'stop',
+			cells,
+			key: 'plain',
+			found: `${plural(plain, 'plain number')} beside times with their unit`,
+			expected: 'one unit for the column',
+			message: `Column ${columnLetter(column)} holds plain numbers and times such as "${worded[0].r.text}". Set the column's unit, or correct the cells that differ.`
+		});
+		return { unit: target, stated: false };
+	}
+	if (foreign) {
+		const example = stated ? worded.find(({ r }) => r.units.some((u) => u !== stated)) : worded[0];
+		ex.ask({
+			rule: 'B17',
+			level: stated ? 'ask' : 'stop',
+			cells,
+			key: 'units',
+			found: `"${example?.r.text}" in a column in ${stated ?? [...units].join(' and ')}`,
+			expected: `times in ${target}`,
+			message: stated
+				? `"${example?.r.text}" stands in a column in ${stated}. Convert it to ${stated} by its own unit?`
+				: `Column ${columnLetter(column)} mixes time units (${[...units].join(', ')}). Convert each time by its own unit to ${target}?`,
+			options: [{ key: 'convert', label: `Convert to ${target}` }]
+		});
+	}
+	ex.conversions.push(
+		`${plural(worded.length, 'time')} read with its own unit and given in ${target} (${someOf(cells)}).`
+	);
+	return { unit: target, stated: true };
+}

@@ -1,0 +1,47 @@
+/** B4: the unit of a column of values is stated or asked, never assumed. */
+import { VALUE_UNITS, type ValueUnit } from '$lib/schemas/sheet';
+import type { ColumnHeader } from './columns';
+import type { Examination } from './examination';
+
+export const asUnit = (unit: string | null): ValueUnit | null =>
+	VALUE_UNITS.includes(unit as ValueUnit) ? (unit as ValueUnit) : null;
+
+const PERCENT_BASES: ValueUnit[] = ['area %', '% of charge', 'mol %', '% w/w'];
+
+export function askUnit(
+	ex: Examination,
+	c: { unit: string | null },
+	header: ColumnHeader | undefined,
+	cell: string
+): void {
+	if (asUnit(c.unit)) return;
+	const percent = header?.unit?.of === 'percent' || isPercentColumn(ex, header?.column);
+	const letter = cell.replace(/\d+$/, '');
+	const taken = ex.ask({
+		rule: 'B4',
+		level: 'stop',
+		cells: [cell],
+		found: percent ? `column ${letter} in %` : `column ${letter} without a unit`,
+		expected: percent ? 'what the % are of' : 'a unit',
+		message: percent
+			? `Column ${letter} is in %. Percent of what? We will not assume.`
+			: `Column ${letter} has no unit. Choose one; we will not assume.`,
+		options: (percent ? PERCENT_BASES : VALUE_UNITS).map((unit) => ({ key: unit, label: unitLabel(unit) }))
+	});
+	if (!taken) return;
+	c.unit = taken.key;
+	ex.conversions.push(`Unit of column ${letter}: ${taken.key}, as chosen.`);
+}
+
+const unitLabel = (unit: ValueUnit): string =>
+	unit === 'area' ? 'area (a signal, arbitrary units)' : unit === 'umol/L' ? 'µmol/L' : unit;
+
+function isPercentColumn(ex: Examination, column: number | undefined): boolean {
+	if (column === undefined) return false;
+	const { firstRow, lastRow } = ex.mapping.block;
+	for (let r = firstRow; r <= Math.min(lastRow, firstRow + 20); r++) {
+		const reading = ex.value(r, column);
+		if (reading.kind === 'number') return reading.percent;
+	}
+	return false;
+}
