@@ -20,7 +20,7 @@ export default {
 				amber: { DEFAULT: token('amber'), pale: token('amber-pale') },
 				brick: { DEFAULT: token('brick'), pale: token('brick-pale'), ink: token('on-brick') }
 			},
-			fontFamily: { sans: ['"Lexend Variable"', 'Lexend', 'system-ui', 'sans-serif'] }
+			fontFamily: { sans: ['Lexend', 'system-ui', 'sans-serif'] }
 		}
 	}
 } satisfies Config;

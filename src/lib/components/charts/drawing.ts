@@ -16,7 +16,7 @@ export interface Layer {
 	endLabels: boolean;
 }
 
-export const FONT = '"Lexend Variable", Lexend, sans-serif';
+export const FONT = 'Lexend, sans-serif';
 export const LABEL_GAP = 16;
 
 export interface EndLabel {
