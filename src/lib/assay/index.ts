@@ -1,5 +1,6 @@
 /** The sheet reader's pure part: what a workbook holds, what has to be asked, and the run that results. */
 export { propose, proposeBlock, type ProposeOptions } from './propose';
+export { timeForm, type TimeForm } from './time-form';
 export { settle, type SettleInput } from './settle';
 export { toSavedMapping } from './saved-mapping';
 export { address, columnLetter, columnNumber, displayText, parseAddress, rangeText, SheetView } from './grid';

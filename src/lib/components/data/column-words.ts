@@ -1,4 +1,4 @@
-import type { SheetView } from '$lib/assay';
+import type { TimeForm } from '$lib/assay';
 import { unitText } from '$lib/client/numbers';
 import type { ColumnMapping, ColumnRole, Mapping } from '$lib/schemas/sheet';
 
@@ -22,26 +22,15 @@ export function speciesWords(weights: Record<string, number> | undefined): strin
 	return ids.length ? ids.join(' + ') : 'species not chosen';
 }
 
-/** What the chip of a column says after its letter: "elapsed time, h" or "A, mmol/L". `clock`: times as h:mm. */
-export function columnWords(column: ColumnMapping, clock = false): string {
+/**
+ * What the chip of a column says after its letter: "elapsed time, h" or "A, mmol/L". `form` is how times carry their unit in the
+ * cells: a column of stored durations has no unit of its own, and nothing about it is open.
+ */
+export function columnWords(column: ColumnMapping, form: TimeForm | null = null): string {
 	const what = column.role === 'species' ? speciesWords(column.weights) : ROLE_WORDS[column.role];
+	if (column.role === 'time' && form) return `${what}, ${form}`;
 	if (column.unit) return `${what}, ${unitText(column.unit)}`;
-	if (column.role === 'time' && clock) return `${what}, h:mm`;
 	return UNIT_ROLES.includes(column.role) ? `${what}, unit not known` : what;
-}
-
-const CLOCK_KINDS = ['time', 'duration', 'datetime', 'date'];
-
-/** Whether the times of a table are durations or clock times, which carry their unit in the cells. */
-export function isClock(view: SheetView, mapping: Mapping): boolean {
-	const column = mapping.columns.find((c) => c.role === 'time')?.column;
-	if (column === undefined) return false;
-	const { firstRow } = mapping.block;
-	return [0, 1, 2].some((i) => {
-		const value = view.cell(firstRow + i, column)?.[1];
-		const { kind } = view.style(firstRow + i, column);
-		return CLOCK_KINDS.includes(kind) || (typeof value === 'string' && /^\d+:\d\d/.test(value));
-	});
 }
 
 /** Whether a column still lacks what it needs. */
