@@ -3,7 +3,7 @@ import { readActor } from '../../src/lib/server/auth/actor';
 import { waitAfter } from '../../src/lib/server/auth/attempts';
 import { hashPassword, verifyPassword } from '../../src/lib/server/auth/password';
 import { signIn } from '../../src/lib/server/auth/sign-in';
-import { signOutEverywhere } from '../../src/lib/server/auth/sessions';
+import { endThisSession, signOutEverywhere } from '../../src/lib/server/auth/sessions';
 import { verifyPasswordAgain } from '../../src/lib/server/auth/verify-again';
 import { write } from '../../src/lib/server/database';
 import { AuditEvent, MailOutbox, SignInAttempt, User } from '../../src/lib/server/database/models';
@@ -53,6 +53,15 @@ describe('signing in', () => {
 		expect((await attempt(' Ada@Kiln-Lane.example', RIGHT)).id).toBe(user.id);
 		const [last] = await AuditEvent.findAll({ order: [['seq', 'DESC']], limit: 1 });
 		expect(last).toMatchObject({ type: 'person.signed-in', userId: user.id, source: 'screen' });
+	});
+
+	it('ends with signing out on that device, also for a copy of the cookie, and on no other device', async () => {
+		const user = await makePerson({ password: RIGHT });
+		const here = session(user);
+		const there = { ...here, signedInAt: new Date(Date.now() - 60_000).toISOString() };
+		await endThisSession((await readActor(here))!);
+		expect(await readActor(here)).toBeNull();
+		expect((await readActor(there))?.userId).toBe(user.id);
 	});
 
 	it('takes a null character in the address for nothing at all', async () => {

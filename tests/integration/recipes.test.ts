@@ -281,9 +281,20 @@ describe('review and signature', () => {
 		expect((await Signature.findByPk(id))?.printedName).toBe(lead.name);
 	});
 
+	it('refuses to change the content of a version that has left its draft, in the database itself', async () => {
+		const view = await inReview();
+		const { id } = view.shown;
+		const content = { ...view.shown.content, other: 'slipped in' };
+		const change = write((tx) => RecipeVersion.update({ content }, { where: { id }, transaction: tx }));
+		await expect(change).rejects.toThrow();
+		await expect(write((tx) => RecipeVersion.destroy({ where: { id }, transaction: tx }))).rejects.toThrow();
+		expect((await RecipeVersion.findByPk(id))?.content).not.toHaveProperty('other', 'slipped in');
+	});
+
 	it('finds content that was changed behind the service', async () => {
 		const view = await inReview();
 		const content = { ...view.shown.content, other: 'slipped in' };
+		await RecipeVersion.sequelize!.query('DROP TRIGGER recipe_versions_refuse_change');
 		await write((tx) => RecipeVersion.update({ content }, { where: { id: view.shown.id }, transaction: tx }));
 		expect((await refusal(validateRecipe(lead, seen(view)))).code).toBe('version-changed');
 	});

@@ -1,5 +1,5 @@
 import type { AuditActor } from '../audit/append';
-import { Group, Membership, User } from '../database/models';
+import { EndedSession, Group, Membership, User } from '../database/models';
 import type { Actor } from '../policy';
 
 /** What a session proves; whether it still holds is asked of the database at each request. */
@@ -32,11 +32,15 @@ export async function toActor(user: User, source: string, signedInAt: Date | nul
 	};
 }
 
-/** The person of a session, or null when disabled since, or when every session was ended. */
+/** The person of a session, or null when disabled since, or when this or every session was ended. */
 export async function readActor(session: SessionPerson): Promise<Actor | null> {
-	const user = await User.findByPk(session.userId);
-	if (!user || user.disabledAt || user.sessionEpoch !== session.epoch) return null;
-	return toActor(user, 'screen', new Date(session.signedInAt));
+	const signedInAt = new Date(session.signedInAt);
+	const [user, ended] = await Promise.all([
+		User.findByPk(session.userId),
+		EndedSession.count({ where: { userId: session.userId, signedInAt } })
+	]);
+	if (!user || user.disabledAt || user.sessionEpoch !== session.epoch || ended > 0) return null;
+	return toActor(user, 'screen', signedInAt);
 }
 
 /** For the trail: somebody who acts on a page without being signed in, such as by a link from a mail. */

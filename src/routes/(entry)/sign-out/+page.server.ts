@@ -1,6 +1,6 @@
 import { redirect } from '@sveltejs/kit';
 import { closeSession } from '../../../auth';
-import { noteSignOut } from '$lib/server/auth/sessions';
+import { endThisSession } from '$lib/server/auth/sessions';
 import { page } from '$lib/server/http';
 import type { PageServerLoadEvent, RequestEvent } from './$types';
 
@@ -11,7 +11,7 @@ export const load = page(({ locals }: PageServerLoadEvent) => {
 
 export const actions = {
 	default: page(async (event: RequestEvent) => {
-		if (event.locals.actor) await noteSignOut(event.locals.actor);
+		if (event.locals.actor) await endThisSession(event.locals.actor);
 		await closeSession(event);
 		redirect(303, '/sign-in?notice=signed-out');
 	})

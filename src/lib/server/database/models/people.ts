@@ -139,6 +139,29 @@ function initPasswordReset(sequelize: Sequelize): void {
 	);
 }
 
+/** A session that its person ended by signing out on that device; its cookie, wherever it still is, opens nothing. */
+export class EndedSession extends Model<
+	InferAttributes<EndedSession>,
+	InferCreationAttributes<EndedSession>
+> {
+	declare id: CreationOptional<string>;
+	declare userId: string;
+	declare signedInAt: Date;
+	declare createdAt: CreationOptional<Date>;
+}
+
+function initEndedSession(sequelize: Sequelize): void {
+	EndedSession.init(
+		{
+			...identity(),
+			userId: { type: DataTypes.UUID, allowNull: false },
+			signedInAt: { type: DataTypes.DATE, allowNull: false },
+			createdAt: { type: DataTypes.DATE, allowNull: false, defaultValue: DataTypes.NOW }
+		},
+		options(sequelize, 'ended_sessions')
+	);
+}
+
 export class SignInAttempt extends Model<
 	InferAttributes<SignInAttempt>,
 	InferCreationAttributes<SignInAttempt>
@@ -200,6 +223,7 @@ export function initPeople(sequelize: Sequelize): void {
 	initMembership(sequelize);
 	initInvitation(sequelize);
 	initPasswordReset(sequelize);
+	initEndedSession(sequelize);
 	initSignInAttempt(sequelize);
 	initApiToken(sequelize);
 }
