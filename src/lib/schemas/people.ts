@@ -18,7 +18,9 @@ const personName = z
 	.string()
 	.trim()
 	.min(2, 'Enter the name as it shall be printed beside signatures.')
-	.max(80, 'A name has at most 80 characters.');
+	.max(80, 'A name has at most 80 characters.')
+	// It is printed beside signatures and in mails: one line, read in the order in which it was typed.
+	.regex(/^[^\p{Cc}\u2028\u2029\u202A-\u202E\u2066-\u2069]*$/u, 'A name is letters in one line.');
 const newPassword = z
 	.string()
 	.min(PASSWORD_MIN, `Use at least ${PASSWORD_MIN} characters; a few words in a row are fine.`)
