@@ -77,6 +77,8 @@ export const runContent = z.strictObject({
 		.array(z.strictObject({ time: z.number(), celsius: z.number() }))
 		.max(20_000)
 		.optional(),
+	/** Whether fits take the log as the program of the run; left out: only where it leaves the stated temperature. */
+	useTemperatureLog: z.boolean().optional(),
 	/** Charge of each species, mol/L unless the unit says otherwise. */
 	initial: z.record(z.string(), fittable),
 	/** Species held constant in excess. */

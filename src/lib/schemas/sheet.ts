@@ -190,7 +190,11 @@ export const conditionsSchema = z.strictObject({
 	initial: z.record(id, fittable),
 	excess: z.record(id, quantity).default({}),
 	timeZero: z.string().max(200).optional(),
-	timeOffset: fittable.optional()
+	timeOffset: fittable.optional(),
+	/** Whether fits take the measured log as the program of the run; left out: as its readings suggest. */
+	useTemperatureLog: z.boolean().optional(),
+	/** The sentence about the run that a person confirmed as seen in the lab, where the time unit was chosen by hand. */
+	seenInLab: z.string().max(300).optional()
 });
 export type Conditions = z.infer<typeof conditionsSchema>;
 

@@ -1,5 +1,6 @@
 import type { ConfirmedPrediction } from '$lib/schemas/fit-analysis';
 import type { RunContent } from '$lib/schemas/run';
+import { asFitted } from '$lib/schemas/temperature-log';
 import { ENGINE_VERSION } from '$lib/kinetics/version';
 import { appendAudit } from '../audit/append';
 import { write } from '../database';
@@ -35,7 +36,7 @@ function usable(run: RunContent, request: { species: { id: string }[] }): RunCon
 	const known = new Set(request.species.map((s) => s.id));
 	const channels = run.channels.filter((c) => Object.keys(c.weights).every((id) => known.has(id)));
 	const initial = Object.fromEntries(Object.entries(run.initial).filter(([id]) => known.has(id)));
-	return { ...run, id: undefined, channels, initial };
+	return { ...asFitted(run), id: undefined, channels, initial };
 }
 
 /** Holds a revision of a run against the fit. */

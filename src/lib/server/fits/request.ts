@@ -1,5 +1,6 @@
 import type { FitFinding, FitOptions, FitRequest } from '$lib/schemas/fit';
 import type { RunContent } from '$lib/schemas/run';
+import { asFitted, logSpan, usesLog } from '$lib/schemas/temperature-log';
 import { isFitted, type Fittable } from '$lib/schemas/quantity';
 import {
 	isEquilibrium,
@@ -71,6 +72,32 @@ function withoutStrangers(run: RequestRun, known: Set<string>, issues: FitFindin
 		return false;
 	});
 	return { ...content, id: requestRunId(number), channels, initial: Object.fromEntries(initial) };
+}
+
+/** The log stays on the run's record; whether it also counts in the fit is said with the fit. */
+function withTemperature(run: RequestRun, issues: FitFinding[]): RequestRun {
+	const { content, number } = run;
+	const span = logSpan(content);
+	if (!span) return run;
+	const runs = [requestRunId(number)];
+	const range = `from ${span.lowC} to ${span.highC} °C`;
+	if (!usesLog(content)) {
+		const message = `Run ${number} counts as held at the stated ${span.statedC} °C; its log (${range}) is on the run's record only.`;
+		issues.push(finding('note', 'temperature-stated', message, { runs }));
+	} else {
+		const message = `Run ${number}: the measured temperature log (${range}) is the program of the run in this fit.`;
+		issues.push(finding('note', 'temperature-log-used', message, { runs }));
+	}
+	return { ...run, content: asFitted(content) };
+}
+
+/** Without an activation energy a constant is the same at every temperature, and a program changes nothing. */
+function noteIdleLog(runs: RunContent[], steps: StepContent[], issues: FitFinding[]): void {
+	const logged = runs.filter((run) => run.temperatureLog).flatMap((run) => run.id ?? []);
+	if (logged.length === 0 || !steps.flatMap(laws).some((law) => law.activationEnergy === undefined)) return;
+	const message =
+		'A temperature log changes nothing at a step without an activation energy. Give the scheme one, or have it fitted over several temperatures.';
+	issues.push(finding('caution', 'log-without-energy', message, { runs: logged }));
 }
 
 const laws = (step: StepContent): RateLawContent[] => [
@@ -180,11 +207,14 @@ export function buildRequest(
 ): BuiltRequest {
 	const issues: FitFinding[] = [];
 	const known = new Set(scheme.species.map((s) => s.id));
-	const contents = runs.map((run) => openInRun(withoutStrangers(run, known, issues), opened));
+	const contents = runs.map((run) =>
+		openInRun(withoutStrangers(withTemperature(run, issues), known, issues), opened)
+	);
 	const at = temperaturesOf(contents);
 	const { species, steps, referenceTemperature } =
 		at.highK - at.lowK <= SAME_TEMPERATURE_K
 			? atOneTemperature(scheme, at, issues)
 			: overTemperatures(scheme, at, energies, issues);
+	noteIdleLog(contents, steps, issues);
 	return { request: { species, steps, referenceTemperature, runs: contents, options }, issues };
 }

@@ -13,6 +13,7 @@ const same = (a: unknown, b: unknown): boolean => contentHash(a ?? null) === con
 const CONDITIONS: [keyof RunContent, string][] = [
 	['temperature', 'temperature'],
 	['temperatureLog', 'temperature log'],
+	['useTemperatureLog', 'temperature log as the program in fits'],
 	['initial', 'charge'],
 	['excess', 'excess'],
 	['timeUnit', 'time unit'],

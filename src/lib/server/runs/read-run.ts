@@ -12,6 +12,8 @@ export interface RunRevisionView {
 	createdBy: string;
 	createdAt: Date;
 	contentHash: string;
+	/** The file that this revision was read from, where it is another one than before. */
+	file: { id: string; fileName: string; previousId: string | null } | null;
 	/** Against the revision before it. */
 	differences: Difference[];
 }
@@ -37,7 +39,21 @@ export interface RunView {
 	canWrite: boolean;
 }
 
-function historyOf(revisions: RunRevision[], names: Map<string, string>): RunRevisionView[] {
+function fileOf(
+	revision: RunRevision,
+	before: RunRevision | null,
+	files: Map<string, string>
+): RunRevisionView['file'] {
+	const { sheetId } = revision;
+	if (!sheetId || sheetId === before?.sheetId) return null;
+	return { id: sheetId, fileName: files.get(sheetId) ?? 'a sheet', previousId: before?.sheetId ?? null };
+}
+
+function historyOf(
+	revisions: RunRevision[],
+	names: Map<string, string>,
+	files: Map<string, string>
+): RunRevisionView[] {
 	return revisions
 		.map((revision, i) => ({
 			id: revision.id,
@@ -46,6 +62,7 @@ function historyOf(revisions: RunRevision[], names: Map<string, string>): RunRev
 			createdBy: names.get(revision.createdById) ?? 'somebody who has left',
 			createdAt: revision.createdAt,
 			contentHash: revision.contentHash,
+			file: fileOf(revision, i === 0 ? null : revisions[i - 1], files),
 			differences: i === 0 ? [] : runDifferences(revisions[i - 1].content, revision.content)
 		}))
 		.reverse();
@@ -59,15 +76,17 @@ export async function readRun(actor: Actor, runId: string): Promise<RunView> {
 		fitsOfRun(run.id)
 	]);
 	const current = revisions.find((r) => r.id === run.currentRevisionId)!;
-	const [sheet, people] = await Promise.all([
-		current.sheetId
-			? Sheet.findByPk(current.sheetId, { attributes: ['id', 'fileName', 'sha256'] })
-			: Promise.resolve(null),
+	const [sheets, people] = await Promise.all([
+		Sheet.findAll({
+			where: { id: [...new Set(revisions.map((r) => r.sheetId).filter((id) => id !== null))] },
+			attributes: ['id', 'fileName', 'sha256']
+		}),
 		User.findAll({
 			where: { id: [...new Set(revisions.map((r) => r.createdById))] },
 			attributes: ['id', 'name']
 		})
 	]);
+	const sheet = sheets.find((s) => s.id === current.sheetId);
 	const numberOf = new Map(revisions.map((r) => [r.id, r.number]));
 	return {
 		id: run.id,
@@ -80,7 +99,11 @@ export async function readRun(actor: Actor, runId: string): Promise<RunView> {
 		revisionId: current.id,
 		content: current.content,
 		contentHash: current.contentHash,
-		revisions: historyOf(revisions, new Map(people.map((p) => [p.id, p.name]))),
+		revisions: historyOf(
+			revisions,
+			new Map(people.map((p) => [p.id, p.name])),
+			new Map(sheets.map((s) => [s.id, s.fileName]))
+		),
 		sheet: sheet ? { id: sheet.id, fileName: sheet.fileName, sha256: sheet.sha256 } : null,
 		tableKey: current.tableKey,
 		fits: fits.map((fit) => ({

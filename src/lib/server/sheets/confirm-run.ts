@@ -1,24 +1,28 @@
 import type { RunContent } from '$lib/schemas/run';
-import type { GridWorkbook, Settlement, TableProposal } from '$lib/schemas/sheet';
+import { withLogChoice } from '$lib/schemas/temperature-log';
+import type { Conditions, GridWorkbook, Settlement, TableProposal } from '$lib/schemas/sheet';
 import {
 	confirmRunSchema,
 	type ConfirmRun,
 	type ConfirmRunInput,
 	type TableWork
 } from '$lib/schemas/sheet-work';
+import { contentHash } from '../audit/canonical';
 import { write, type Tx } from '../database';
 import { Run, RunRevision, Sheet } from '../database/models';
 import { AppError, notFound, versionChanged, type FieldProblem } from '../errors';
 import type { Actor } from '../policy';
+import { carryExclusions } from '../runs/carry-exclusions';
 import { addRun } from '../runs/create-run';
 import { findRun } from '../runs/find';
-import { requireReason, requireRunVersion } from '../runs/revisions';
+import { currentRevision, requireReason, requireRunVersion } from '../runs/revisions';
 import { revise } from '../runs/revise-run';
 import { findStudy } from '../studies/find';
 import { examine, workOn } from './examine';
 import { findSheet } from './find';
 import { countOpen } from './save-sheet-work';
 import { keepMapping } from './save-mapping';
+import { signedCorrections } from './signed-corrections';
 import { surroundingsOf } from './surroundings';
 import { workOf, type StoredWork } from './work';
 
@@ -83,10 +87,13 @@ interface Settled {
 	settlement: Settlement;
 }
 
-/** Corrections carry who made them and when; nobody can write another name into them. */
-function signedCorrections(actor: Actor, corrections: TableWork['corrections']): TableWork['corrections'] {
-	const at = new Date().toISOString();
-	return corrections.map((c) => ({ ...c, by: actor.name, at }));
+/** What was decided besides the cells: which temperature counts, and what was confirmed as seen in the lab. */
+function withChoices(content: RunContent, conditions: Conditions | undefined): RunContent {
+	const chosen = withLogChoice(content, conditions?.useTemperatureLog);
+	const seen = conditions?.seenInLab;
+	if (!seen) return chosen;
+	const line = `Time unit chosen by hand; confirmed as seen in the lab: ${seen}`;
+	return { ...chosen, conversions: [...(chosen.conversions ?? []), line.slice(0, 400)].slice(-500) };
 }
 
 async function settleTable(actor: Actor, sheet: Sheet, input: ConfirmRun): Promise<Settled> {
@@ -99,7 +106,7 @@ async function settleTable(actor: Actor, sheet: Sheet, input: ConfirmRun): Promi
 	const work: TableWork = {
 		mapping: input.conditions ? { ...mapping, conditions: input.conditions } : mapping,
 		answers: input.answers,
-		corrections: signedCorrections(actor, input.corrections),
+		corrections: signedCorrections(actor, input.corrections, workOf(sheet.work).tables[input.tableKey]),
 		name: input.name
 	};
 	const { settlements } = await examine({
@@ -134,15 +141,22 @@ async function writeRun(
 	input: ConfirmRun,
 	settled: Settled
 ): Promise<Pick<ConfirmedRun, 'id' | 'number' | 'name' | 'version' | 'revision' | 'revisionId'>> {
-	const content = withSigned(actor, requireRun(settled.settlement));
 	const { work } = settled;
+	const content = withChoices(withSigned(actor, requireRun(settled.settlement)), work.mapping.conditions);
 	const { tableKey, revisionOf } = input;
 	if (revisionOf) {
 		const run = await findRun(actor, revisionOf.runId, 'run.write', tx);
 		if (run.studyId !== sheet.studyId) throw notFound('run of this study');
 		await requireRunVersion(run, revisionOf.version, tx);
 		const reason = requireReason(revisionOf.reason);
-		const saved = await revise(tx, actor, run, { content, reason, sheetId: sheet.id, tableKey });
+		const before = await currentRevision(run, tx);
+		const next = carryExclusions(before.content, content);
+		if (contentHash(next) === before.contentHash)
+			throw new AppError(
+				'invalid',
+				`What was read is what run ${run.number} holds already; there is nothing to revise.`
+			);
+		const saved = await revise(tx, actor, run, { content: next, reason, sheetId: sheet.id, tableKey });
 		const { version, revision, revisionId } = saved;
 		return { id: run.id, number: run.number, name: run.name, version, revision, revisionId };
 	}
@@ -157,6 +171,12 @@ async function writeRun(
 	});
 	const { id, number, name, version } = run;
 	return { id, number, name, version, revision: 1, revisionId: revision.id };
+}
+
+/** Whether equal times are samples or injections is an answer, and asked once: it goes into the mapping that is kept. */
+function asAnswered({ work, settlement }: Settled): TableWork {
+	const replicates = settlement.mapping.replicates ?? work.mapping.replicates;
+	return replicates ? { ...work, mapping: { ...work.mapping, replicates } } : work;
 }
 
 /** Work as it was confirmed, so that the page shows it again and the count of open questions is right. */
@@ -186,7 +206,7 @@ export async function confirmRun(actor: Actor, input: ConfirmInput): Promise<Con
 		);
 		if (count !== 1) throw versionChanged({ version: now.version, work: workOf(now.work) });
 		const made = await writeRun(tx, actor, sheet, asked, settled);
-		if (settled.table) await keepMapping(tx, actor, sheet.groupId, settled.table, settled.work);
+		if (settled.table) await keepMapping(tx, actor, sheet.groupId, settled.table, asAnswered(settled));
 		return { ...made, conversions: settled.settlement.conversions, rest: settled.settlement.rest };
 	});
 }

@@ -6,6 +6,7 @@ import { versionChanged } from '../errors';
 import type { Actor } from '../policy';
 import { examine } from './examine';
 import { findSheet } from './find';
+import { signedCorrections } from './signed-corrections';
 import { surroundingsOf } from './surroundings';
 import { workOf, type StoredWork } from './work';
 
@@ -30,13 +31,21 @@ export async function countOpen(sheet: Sheet, work: SheetWork, done: string[] = 
 		.reduce((sum, [, settlement]) => sum + settlement.open, 0);
 }
 
+function signed(actor: Actor, work: SheetWork, stored: SheetWork): SheetWork {
+	const tables = Object.entries(work.tables).map(([key, table]) => [
+		key,
+		{ ...table, corrections: signedCorrections(actor, table.corrections, stored.tables[key]) }
+	]);
+	return { tables: Object.fromEntries(tables) as SheetWork['tables'] };
+}
+
 /** Keeps mapping, answers and corrections beside the sheet; nothing of it touches the file as received. */
 export async function saveSheetWork(
 	actor: Actor,
 	input: SaveSheetWorkInput
 ): Promise<{ version: number; savedAt: Date; open: number }> {
 	const sheet = await findSheet(actor, input.sheetId, 'sheet.upload', { with: ['reading'] });
-	const work = sheetWorkSchema.parse(input.work);
+	const work = signed(actor, sheetWorkSchema.parse(input.work), workOf(sheet.work));
 	const stored: StoredWork = { ...work, open: await countOpen(sheet, work) };
 	return write(async (tx) => {
 		const now = await findSheet(actor, input.sheetId, 'sheet.upload', { tx });
