@@ -11,7 +11,7 @@
 import type { FitFinding, FitRequest } from '../../schemas/fit';
 import { isFitted } from '../../schemas/quantity';
 import type { Network } from '../types';
-import { fromSi, isUnitOf, UnitError } from '../units';
+import { fromSi, isUnitOf, toSi, UnitError } from '../units';
 import { linearOf, type Linear } from './affine';
 import { isRelativeUnit, runId, type Slot } from './slots';
 
@@ -28,6 +28,8 @@ export interface ChannelModel {
 	loq: number | null;
 	/** Free parameters fitted as a response factor of this channel. */
 	scaleFitted: boolean;
+	/** Shown beside the detector's own channels: a share of their total, without adding to it. */
+	besideTotal?: boolean;
 }
 
 const AREA_PERCENT = /^(area|lcap)\s*-?\s*%?$/i;
@@ -43,7 +45,7 @@ export function readChannels(
 	issues: FitFinding[]
 ): ChannelModel[] {
 	const run = request.runs[index];
-	const shareOf = chargeForShares(run);
+	const shareOf = chargeForShares(run, request.species);
 	const seen = new Set<string>();
 	return run.channels.map((channel) => {
 		if (seen.has(channel.id))
@@ -91,15 +93,21 @@ function responseOf(
 	return linearOf(slots, free, id);
 }
 
-/** The whole charge in mol/L where a percentage can refer to it; null where the charge itself is relative or fitted. */
-function chargeForShares(run: FitRequest['runs'][number]): number | null {
+/**
+ * The whole charge in mol/L, species in excess left out, where a percentage can refer to it; null where the charge is relative
+ * itself. A charge that is fitted counts with the value stated for it: that is what the lab divided by.
+ */
+function chargeForShares(run: FitRequest['runs'][number], species: FitRequest['species']): number | null {
 	let total = 0;
-	for (const amount of Object.values(run.initial)) {
-		if (isFitted(amount)) return null;
-		if (amount.value === 0) continue;
-		if (!/mol|M$|g\/|mg\//.test(amount.unit) || /mol\s*%|mol\/mol/.test(amount.unit)) return null;
-		if (!isUnitOf(amount.unit, 'concentration')) return null;
-		total += amount.value / fromSi(1, amount.unit, 'concentration');
+	for (const [id, amount] of Object.entries(run.initial)) {
+		const of = species.find((s) => s.id === id);
+		const stated = isFitted(amount) ? amount.guess : amount;
+		if (!stated) return null;
+		if (stated.value === 0 || of?.role === 'reagent in excess') continue;
+		if (!/mol|M$|g\/|mg\//.test(stated.unit) || /mol\s*%|mol\/mol/.test(stated.unit)) return null;
+		const context = of?.molarMassGPerMol === undefined ? {} : { molarMassGPerMol: of.molarMassGPerMol };
+		if (!isUnitOf(stated.unit, 'concentration', context)) return null;
+		total += toSi(stated, 'concentration', context);
 	}
 	return total > 0 ? total : null;
 }

@@ -17,7 +17,7 @@ import { straightLine } from './straight-line';
 function balanceChannels(
 	problem: KineticProblem,
 	run: RunModel
-): { channel: string; weight: number }[] | null {
+): { channels: { channel: string; weight: number }[]; total: Float64Array } | null {
 	const totals = conservedTotals(problem.network).filter(({ weights }) => weights.every((w) => w >= 0));
 	const charged = totals.filter(({ weights }) =>
 		run.charge.some((c, i) => weights[i] > 0 && (c.constant !== 0 || c.terms.length > 0))
@@ -34,17 +34,16 @@ function balanceChannels(
 			else
 				channels.push({ channel: own.id, weight: m / (own.weights[0] * Math.exp(own.lnResponse.constant)) });
 		});
-		if (complete && channels.length > 1) return channels;
+		if (complete && channels.length > 1) return { channels, total: weights };
 	}
 	return null;
 }
 
 const count = (weights: Float64Array) => weights.reduce((a, w) => a + (w !== 0 ? 1 : 0), 0);
 
-function chargeTotal(problem: KineticProblem, run: RunModel, x: ArrayLike<number>): number {
-	let total = 0;
-	for (let i = 0; i < problem.species.length; i++) total += evaluateLinear(run.charge[i], x);
-	return total;
+/** Σ m_i c_i(0): what of the charge counts in this total. */
+function chargedIn(total: Float64Array, run: RunModel, x: ArrayLike<number>): number {
+	return total.reduce((sum, m, i) => sum + m * evaluateLinear(run.charge[i], x), 0);
 }
 
 /** One entry for each run that has a wholly assayed conserved total. */
@@ -54,9 +53,11 @@ export function massBalance(
 	confidence: number
 ): FitReport['massBalance'] {
 	return problem.runs.flatMap((run) => {
-		const channels = balanceChannels(problem, run);
-		const charge = chargeTotal(problem, run, x);
-		if (!channels || !(charge > 0)) return [];
+		const balance = balanceChannels(problem, run);
+		if (!balance) return [];
+		const { channels } = balance;
+		const charge = chargedIn(balance.total, run, x);
+		if (!(charge > 0)) return [];
 		const given = problem.request.runs[run.index];
 		const out = new Set((given.exclusions ?? []).map((e) => `${e.index}|${e.channel ?? '*'}`));
 		const percent: { time: number; value: number }[] = [];

@@ -12,6 +12,7 @@
  * | A | the `terms` of each affine function |
  */
 import { evaluateLinear } from './affine';
+import type { ChannelModel } from './channels';
 import type { LeastSquaresProblem } from './levenberg-marquardt';
 import type { Point } from './points';
 import type { KineticProblem, RunModel } from './problem';
@@ -30,6 +31,9 @@ interface RunState {
 	/** Species that no area-% channel of the run sees: they share the total with response factor one. */
 	unassayed: number[];
 }
+
+/** Whether the areas of a channel make part of the total that area % refers to. */
+const inTotal = (channel: ChannelModel): boolean => channel.areaPercent && !channel.besideTotal;
 
 /** Evaluates one compiled problem; holds all storage, so that `evaluate` allocates nothing. */
 export class KineticModel implements LeastSquaresProblem {
@@ -104,8 +108,12 @@ export class KineticModel implements LeastSquaresProblem {
 		const own = this.total;
 		own.set(gradient);
 		let sum = value;
+		if (channel.besideTotal) {
+			gradient.fill(0);
+			sum = 0;
+		}
 		for (let c = 0; c < state.model.channels.length; c++)
-			if (c !== point.channel && state.model.channels[c].areaPercent) {
+			if (c !== point.channel && inTotal(state.model.channels[c])) {
 				sum += this.signal(state, c, point.time, x, false);
 			}
 		for (let q = 0; q < state.unassayed.length; q++)
@@ -171,7 +179,7 @@ function prepare(model: RunModel, problem: KineticProblem): RunState {
 		? [...new Set(model.rateForms.flatMap((f) => [...f.base.terms, ...f.energy.terms].map((t) => t.free)))]
 		: model.lnRates.map((_, d) => d).filter((d) => model.lnRates[d].terms.length > 0);
 	const charges = model.charge.map((_, i) => i).filter((i) => model.charge[i].terms.length > 0);
-	const seen = new Set(model.channels.filter((c) => c.areaPercent).flatMap((c) => Array.from(c.species)));
+	const seen = new Set(model.channels.filter(inTotal).flatMap((c) => Array.from(c.species)));
 	const times = model.timesS.length;
 	const wantSlopes = model.offset.terms.length > 0;
 	return {

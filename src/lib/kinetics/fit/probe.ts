@@ -5,6 +5,7 @@
 import type { FitRequest } from '../../schemas/fit';
 import { isFitted, type Fittable } from '../../schemas/quantity';
 import type { RunContent } from '../../schemas/run';
+import { isUnitOf } from '../units';
 import { KineticModel } from './model';
 import type { Point } from './points';
 import { compileProblem, type KineticProblem } from './problem';
@@ -33,6 +34,9 @@ export function probeModel(
 	const filled = probeRun(request, run, known);
 	const problem = compileProbe(request, filled, times);
 	const at = problem.runs.findIndex((r) => r.id === filled.id);
+	// A species is a share of what the detector sees; as one more channel it would be counted twice.
+	for (const channel of problem.runs[at].channels)
+		if (request.species.some((s) => channel.id === speciesChannel(s.id))) channel.besideTotal = true;
 	return { problem, model: probed(problem, at, times), at };
 }
 
@@ -54,10 +58,15 @@ function probeRun(request: FitRequest, run: RunContent, known: (id: string) => b
 			throw new RangeError(`The charge of ${species} in the run to predict is not known. Give its value.`);
 		})
 	);
-	const unitOf = (species: string) =>
-		run.channels.find((c) => ownChannel(c, species))?.unit ??
-		Object.values(run.initial).map((a) => (isFitted(a) ? a.guess?.unit : a.unit))[0] ??
-		'mol/L';
+	const unitOf = ({ id, molarMassGPerMol }: FitRequest['species'][number]): string => {
+		const unit =
+			run.channels.find((c) => ownChannel(c, id))?.unit ??
+			Object.values(run.initial).map((a) => (isFitted(a) ? a.guess?.unit : a.unit))[0] ??
+			'mol/L';
+		// A mass concentration of a species without a molar mass cannot be given.
+		const asMass = molarMassGPerMol === undefined && isUnitOf(unit, 'concentration', { molarMassGPerMol: 1 });
+		return asMass && !isUnitOf(unit, 'concentration') ? 'mol/L' : unit;
+	};
 	return {
 		...run,
 		id: source >= 0 ? name : PROBE,
@@ -69,7 +78,7 @@ function probeRun(request: FitRequest, run: RunContent, known: (id: string) => b
 			...request.species.map((s) => ({
 				id: speciesChannel(s.id),
 				weights: { [s.id]: 1 },
-				unit: unitOf(s.id)
+				unit: unitOf(s)
 			}))
 		]
 	};

@@ -78,6 +78,8 @@ export class Profiler {
 	private slope = NaN;
 	/** The re-optimised parameters of the last evaluation. */
 	readonly last: Float64Array;
+	/** The same at the last point inside the interval. */
+	private readonly anchor: Float64Array;
 
 	constructor(private readonly input: ProfileInput) {
 		const { model, uncertainty, confidence } = input;
@@ -86,6 +88,7 @@ export class Profiler {
 		this.upper = new Float64Array(model.p);
 		this.start = new Float64Array(model.p);
 		this.last = new Float64Array(model.p);
+		this.anchor = new Float64Array(model.p);
 		this.t = studentQuantile(0.5 + confidence / 2, uncertainty.degreesOfFreedom);
 	}
 
@@ -103,6 +106,7 @@ export class Profiler {
 		for (let k = 0; k < 60; k++) {
 			const reach = inside + sense * step;
 			const value = sense * (reach - bound) >= 0 ? bound : reach;
+			this.anchor.set(this.last);
 			const tau = this.tau(j, value, inside);
 			if (this.better) return null;
 			if (tau >= this.t * (1 - CLOSE)) return this.close(j, inside, value, tau, bound);
@@ -115,24 +119,31 @@ export class Profiler {
 		return null;
 	}
 
-	/** Root of τ − t: Newton steps with the exact slope, kept between a point inside and one outside. */
-	private close(j: number, inside: number, outside: number, tau: number, bound: number): number {
-		let [a, b] = [inside, outside];
+	/**
+	 * Root of τ − t: Newton steps with the exact slope, kept between a point inside and one outside. Each starts from the
+	 * point inside: far outside the re-optimisation may have lost its way, and what it found there is no place to start from.
+	 */
+	private close(j: number, start: number, outside: number, tau: number, bound: number): number | null {
+		let [inside, b] = [start, outside];
 		let value = outside;
-		for (let k = 0; k < 40; k++) {
-			if (tau < this.t) a = value;
-			else b = value;
+		for (let k = 0; k < 60; k++) {
+			if (tau < this.t) {
+				inside = value;
+				this.anchor.set(this.last);
+			} else b = value;
 			let next = value + (this.t - tau) / this.slope;
 			// Close enough for one last Newton step to square the error away.
 			if (Math.abs(tau - this.t) <= CLOSE * this.t && Number.isFinite(next))
-				return Math.abs(next - inside) > Math.abs(bound - inside) ? bound : next;
-			if (!(next > Math.min(a, b) && next < Math.max(a, b))) next = 0.5 * (a + b);
-			if (Math.abs(b - a) <= 1e-12 * Math.max(Math.abs(a), Math.abs(b))) return next;
-			tau = this.tau(j, next, value);
+				return Math.abs(next - start) > Math.abs(bound - start) ? bound : next;
+			if (!(next > Math.min(inside, b) && next < Math.max(inside, b))) next = 0.5 * (inside + b);
+			if (Math.abs(b - inside) <= 1e-12 * Math.max(Math.abs(inside), Math.abs(b), 1)) break;
+			this.last.set(this.anchor);
+			tau = this.tau(j, next, inside);
 			if (this.better) return value;
 			value = next;
 		}
-		return value;
+		// All the way to the bound without reaching t: open.
+		return b === bound ? null : 0.5 * (inside + b);
 	}
 
 	/** τ at a value of parameter j, from the last re-optimised point. */

@@ -3,7 +3,8 @@
  *
  *     c(t) = V e^{Λt} V⁻¹ c₀
  *     ∂c/∂ln k_d = k_d ∫₀ᵗ e^{K(t−u)} (Σ ν_i e_i − e_j) c_j(u) du = V z,  z_a = w_a Σ_b φ_ab V_jb y_b
- * with y = V⁻¹c₀, w = k_d V⁻¹(Σ ν_i e_i − e_j) and φ_ab = (e^{λ_a t} − e^{λ_b t})/(λ_a − λ_b), the divided difference.
+ * with y = V⁻¹c₀, w = k_d V⁻¹(Σ ν_i e_i − e_j) (within a reversible block from the differences of its modes, which lose nothing
+ * where the step is fast and nearly at rest) and φ_ab = (e^{λ_a t} − e^{λ_b t})/(λ_a − λ_b), the divided difference.
  * The inner sums depend on the reactant j alone and are shared by its steps. Where the eigenbasis is poor, or complex,
  * `StepPropagator` answers instead. Both are held to the engine's own `SensitivityWorkspace` in the tests.
  *
@@ -19,7 +20,7 @@
 import { SpectralBasis, type Direction } from './spectral';
 import { StepPropagator } from './step-propagator';
 
-/** Largest error in c(0) and in the slope at 0, relative, that the eigenbasis may show. */
+/** Largest error in c(0), relative, that the eigenbasis may show. */
 const CONSISTENCY = 1e-11;
 
 export class RunKernel {
@@ -84,7 +85,7 @@ export class RunKernel {
 		return true;
 	}
 
-	/** y and w; false where V e^{0} V⁻¹ c₀ or V Λ V⁻¹ c₀ miss c₀ and K c₀. */
+	/** y and w; false where V V⁻¹ c₀ misses c₀. */
 	private project(constants: Float64Array, charge: Float64Array): boolean {
 		const { n, basis, y, w, rates, directions } = this;
 		const { inverse } = basis;
@@ -96,7 +97,12 @@ export class RunKernel {
 		for (let p = 0; p < rates.length; p++) {
 			const { from, products } = directions[rates[p]];
 			const k = constants[rates[p]];
+			const within = basis.withinBlock[rates[p]] === 1 && products.length === 1;
 			for (let a = 0; a < n; a++) {
+				if (within) {
+					w[p * n + a] = k * basis.differences[rates[p] * n + a];
+					continue;
+				}
 				let sum = -inverse[a * n + from];
 				for (let q = 0; q < products.length; q++)
 					sum += products[q].coefficient * inverse[a * n + products[q].to];

@@ -3,8 +3,7 @@
  *
  * Problem: K = V Λ V⁻¹ for thousands of sets of constants. Strongly connected components, taken in the order of flow, make K
  * block lower triangular. A block of one species has its eigenvalue on the diagonal; a block whose constants obey detailed
- * balance is similar to a symmetric matrix, S = D⁻¹ K D with Dᵢ² = πᵢ, and is turned by Jacobi rotations. In the basis of the
- * blocks K becomes a triangular T with the eigenvalues on its diagonal, whose eigenvectors follow by substitution:
+ * balance is turned by one-sided Jacobi rotations (`balanced-block.ts`). In the basis of the blocks K becomes a triangular T with the eigenvalues on its diagonal, whose eigenvectors follow by substitution:
  *     Xᵢⱼ = Σ_{j≤l<i} Tᵢₗ Xₗⱼ / (λⱼ − λᵢ).
  * Where eigenvalues of coupled blocks nearly coincide, X grows without limit; the routine then declines (returns false) and
  * the caller uses the confluent or block-matrix way. It also declines where a block breaks detailed balance.
@@ -16,10 +15,10 @@
  * | T, X, X⁻¹ | `t`, `x`, `xInverse` |
  * | V, V⁻¹, Λ | `vectors`, `inverse`, `rates` (species order) |
  *
- * Sources: Tarjan, SIAM J. Comput. 1 (1972) 146; Wei & Prater, Adv. Catal. 13 (1962) 203 (symmetry by detailed balance);
- * Golub & Van Loan, Matrix Computations, 8.5 (Jacobi) and 7.6 (triangular eigenvectors).
+ * Sources: Tarjan, SIAM J. Comput. 1 (1972) 146; Golub & Van Loan, Matrix Computations, 7.6 (triangular eigenvectors).
  */
 import { componentsOf } from '../components';
+import { BalancedBlock } from './balanced-block';
 
 export interface Direction {
 	/** Index of the species consumed. */
@@ -27,7 +26,7 @@ export interface Direction {
 	products: { to: number; coefficient: number }[];
 }
 
-/** Growth of V·V⁻¹ beyond which the basis costs too many digits. */
+/** Growth |X|·|X⁻¹| beyond which the basis is given up: up to it derivatives hold 1e-11 of the charge (run-kernel-limits.test.ts). */
 const MAX_GROWTH = 1e6;
 
 export class SpectralBasis {
@@ -36,6 +35,10 @@ export class SpectralBasis {
 	readonly vectors: Float64Array;
 	/** Row-major: inverse[a·n + i]. */
 	readonly inverse: Float64Array;
+	/** differences[d·n + a] = mode a of V⁻¹(e_to − e_from), for a direction d that stays within its block. */
+	readonly differences: Float64Array;
+	/** 1 for such a direction. */
+	readonly withinBlock: Uint8Array;
 	private readonly order: number[];
 	private readonly place: number[];
 	private readonly blocks: [number, number][];
@@ -45,9 +48,8 @@ export class SpectralBasis {
 	private readonly t: Float64Array;
 	private readonly x: Float64Array;
 	private readonly xInverse: Float64Array;
-	private readonly weight: Float64Array;
-	private readonly known: Uint8Array;
-	private readonly queue: Int32Array;
+	/** One for each block of several species. */
+	private readonly balanced: (BalancedBlock | null)[];
 	private readonly lambda: Float64Array;
 
 	constructor(
@@ -75,9 +77,11 @@ export class SpectralBasis {
 		this.inverse = square();
 		this.rates = new Float64Array(n);
 		this.lambda = new Float64Array(n);
-		this.weight = new Float64Array(n);
-		this.known = new Uint8Array(n);
-		this.queue = new Int32Array(n);
+		this.balanced = groups.map((group) => (group.length > 1 ? new BalancedBlock(group, directions) : null));
+		this.differences = new Float64Array(directions.length * n);
+		this.withinBlock = new Uint8Array(directions.length);
+		for (const block of this.balanced)
+			for (const { direction } of block?.inner ?? []) this.withinBlock[direction] = 1;
 	}
 
 	/** Decomposes K for these constants (one per direction, > 0, 1/s). False: use another way for this set. */
@@ -85,7 +89,10 @@ export class SpectralBasis {
 		this.assemble(constants);
 		this.basis.fill(0);
 		this.basisInverse.fill(0);
-		for (const [from, to] of this.blocks) if (!this.turnBlock(from, to)) return false;
+		for (let b = 0; b < this.blocks.length; b++) {
+			const [from, to] = this.blocks[b];
+			if (!this.turnBlock(from, to, this.balanced[b], constants)) return false;
+		}
 		this.couple();
 		if (!this.triangularVectors()) return false;
 		this.combine();
@@ -105,105 +112,25 @@ export class SpectralBasis {
 		}
 	}
 
-	private turnBlock(from: number, to: number): boolean {
+	/** Rates, basis and inverse of one block. */
+	private turnBlock(from: number, to: number, block: BalancedBlock | null, constants: Float64Array): boolean {
 		const { n, k, basis, basisInverse, lambda } = this;
-		if (to - from === 1) {
+		if (!block) {
 			lambda[from] = k[from * n + from];
 			basis[from * n + from] = basisInverse[from * n + from] = 1;
 			return true;
 		}
-		if (!this.balanceWeights(from, to)) return false;
-		this.symmetrise(from, to);
-		this.jacobi(from, to);
+		if (!block.turn(constants)) return false;
 		for (let i = from; i < to; i++) {
-			const w = Math.exp(this.weight[i]);
+			const w = Math.exp(block.weight[i - from]);
 			for (let a = from; a < to; a++) {
-				const q = this.x[i * n + a];
-				basis[i * n + a] = q * w;
-				basisInverse[a * n + i] = q / w;
+				const u = block.vector(a - from, i - from);
+				basis[i * n + a] = u * w;
+				basisInverse[a * n + i] = u / w;
 			}
 		}
-		for (let a = from; a < to; a++) lambda[a] = this.t[a * n + a];
+		for (let a = from; a < to; a++) lambda[a] = block.rates[a - from];
 		return true;
-	}
-
-	/** ½ ln π along a spanning tree of the block, then a check of detailed balance on every pair. */
-	private balanceWeights(from: number, to: number): boolean {
-		const { n, k, weight, known, queue } = this;
-		known.fill(0, from, to);
-		weight[from] = 0;
-		known[from] = 1;
-		queue[0] = from;
-		let size = 1;
-		for (let head = 0; head < size; head++) {
-			const j = queue[head];
-			for (let i = from; i < to; i++) {
-				if (known[i] || !(k[i * n + j] > 0 && k[j * n + i] > 0)) continue;
-				weight[i] = weight[j] + 0.5 * Math.log(k[i * n + j] / k[j * n + i]);
-				known[i] = 1;
-				queue[size++] = i;
-			}
-		}
-		if (size < to - from) return false;
-		for (let i = from; i < to; i++)
-			for (let j = from; j < i; j++) {
-				const there = k[i * n + j];
-				const back = k[j * n + i];
-				if (there === 0 && back === 0) continue;
-				if (!(there > 0 && back > 0)) return false;
-				const broken = weight[i] - weight[j] - 0.5 * Math.log(there / back);
-				if (Math.abs(broken) > 1e-13 * (1 + Math.abs(weight[i]) + Math.abs(weight[j]))) return false;
-			}
-		return true;
-	}
-
-	/** S into `t`, the identity into `x`, for the block. */
-	private symmetrise(from: number, to: number): void {
-		const { n, k, t, x } = this;
-		for (let i = from; i < to; i++) {
-			for (let j = from; j < to; j++) x[i * n + j] = i === j ? 1 : 0;
-			t[i * n + i] = k[i * n + i];
-			for (let j = from; j < i; j++) t[i * n + j] = t[j * n + i] = Math.sqrt(k[i * n + j] * k[j * n + i]);
-		}
-	}
-
-	private jacobi(from: number, to: number): void {
-		const { n, t } = this;
-		for (let sweep = 0; sweep < 40; sweep++) {
-			let turned = false;
-			for (let p = from; p < to - 1; p++)
-				for (let q = p + 1; q < to; q++) {
-					const off = Math.abs(t[p * n + q]);
-					if (off === 0 || off <= 1e-17 * Math.sqrt(Math.abs(t[p * n + p] * t[q * n + q]))) continue;
-					this.rotate(from, to, p, q);
-					turned = true;
-				}
-			if (!turned) return;
-		}
-	}
-
-	private rotate(from: number, to: number, p: number, q: number): void {
-		const { n, t, x } = this;
-		const off = t[p * n + q];
-		const theta = (t[q * n + q] - t[p * n + p]) / (2 * off);
-		const tangent = (theta < 0 ? -1 : 1) / (Math.abs(theta) + Math.sqrt(1 + theta * theta));
-		const c = 1 / Math.sqrt(1 + tangent * tangent);
-		const s = tangent * c;
-		t[p * n + p] -= tangent * off;
-		t[q * n + q] += tangent * off;
-		t[p * n + q] = t[q * n + p] = 0;
-		for (let i = from; i < to; i++) {
-			if (i !== p && i !== q) {
-				const a = t[i * n + p];
-				const b = t[i * n + q];
-				t[i * n + p] = t[p * n + i] = c * a - s * b;
-				t[i * n + q] = t[q * n + i] = s * a + c * b;
-			}
-			const a = x[i * n + p];
-			const b = x[i * n + q];
-			x[i * n + p] = c * a - s * b;
-			x[i * n + q] = s * a + c * b;
-		}
 	}
 
 	/** Off-diagonal blocks of T = basis⁻¹ K basis. */
@@ -282,6 +209,20 @@ export class SpectralBasis {
 				}
 				vectors[a * n + order[i]] = forward;
 				inverse[a * n + order[i]] = backward;
+			}
+		}
+		for (let b = 0; b < this.blocks.length; b++) this.combineDifferences(this.balanced[b], this.blocks[b][0]);
+	}
+
+	private combineDifferences(block: BalancedBlock | null, first: number): void {
+		if (!block) return;
+		const { n, xInverse, differences } = this;
+		for (let place = 0; place < block.inner.length; place++) {
+			const row = block.inner[place].direction * n;
+			for (let a = 0; a < n; a++) differences[row + a] = 0;
+			for (let l = 0; l < block.m; l++) {
+				const value = block.difference(l, place);
+				for (let a = first; a < n; a++) differences[row + a] += xInverse[a * n + first + l] * value;
 			}
 		}
 	}
