@@ -168,7 +168,14 @@ function drawMarks(chart: Chart, layer: Layer) {
 		ctx.textBaseline = 'top';
 		const right = px + 7 + ctx.measureText(mark.label).width < chart.width - 4;
 		ctx.textAlign = right ? 'left' : 'right';
-		ctx.fillText(mark.label, px + (right ? 7 : -7), chartArea.top + 2 + (i % 4) * 16);
+		const [x, y] = [px + (right ? 7 : -7), chartArea.top + 2 + (i % 4) * 16];
+		// A rim of paper keeps the words apart from the curves that they cross.
+		ctx.setLineDash([]);
+		ctx.strokeStyle = layer.palette.card;
+		ctx.lineWidth = 5;
+		ctx.lineJoin = 'round';
+		ctx.strokeText(mark.label, x, y);
+		ctx.fillText(mark.label, x, y);
 		ctx.restore();
 	});
 }
