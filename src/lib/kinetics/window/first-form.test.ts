@@ -73,7 +73,7 @@ describe('the window of the invented case A → B → C (40 °C, A NMT 1.0 %, C 
 		expect(hold!.spans[0]).toMatchObject({ bindsFrom: 0, bindsTo: 1 });
 		expect(outsideStudied).toBe(false);
 		expect(criteria[0].text).toBe('A NMT 1 % of charge');
-		expect(summary).toBe('40 °C: Every criterion holds from 3.84 to 4.64 h');
+		expect(summary).toBe('40 °C: every criterion holds from 3.84 to 4.64 h');
 	});
 
 	it('gives intervals that agree with those of the constants alone, and with first order', () => {

@@ -47,7 +47,7 @@ export function firstFormWindow(input: FirstFormInput): FirstFormResult {
 	const { final } = propagated.nominal.solution;
 	return {
 		kind: 'first form',
-		summary: `${Number(temperatureC.toFixed(2))} °C: ${hold ? hold.sentence.split('. ')[0].replace(/\.$/, '') : (maxima[0]?.sentence.split('; ')[0] ?? 'no criteria')}`,
+		summary: `${Number(temperatureC.toFixed(2))} °C: ${hold ? briefly(hold.sentence) : (maxima[0]?.sentence.split('; ')[0] ?? 'no criteria')}`,
 		temperatureC,
 		studiedTemperatureC: fit.studied?.temperatureC ?? null,
 		outsideStudied,
@@ -66,3 +66,9 @@ export function firstFormWindow(input: FirstFormInput): FirstFormResult {
 		engineVersion: ENGINE_VERSION
 	};
 }
+
+/** First sentence of an answer, to stand behind a colon. */
+const briefly = (sentence: string): string => {
+	const first = sentence.split('. ')[0].replace(/\.$/, '');
+	return first.charAt(0).toLowerCase() + first.slice(1);
+};
