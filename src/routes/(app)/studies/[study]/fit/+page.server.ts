@@ -1,8 +1,10 @@
 import { fail, redirect } from '@sveltejs/kit';
 import { readFitForm } from '$lib/schemas/fit-form';
-import { AppError } from '$lib/server/errors';
+import { AppError, notFound } from '$lib/server/errors';
 import { fitInput } from '$lib/server/fits/fit-input';
 import { listFits } from '$lib/server/fits/list-fits';
+import { presetOf } from '$lib/server/fits/preset';
+import { readFit } from '$lib/server/fits/read-fit';
 import { startFit } from '$lib/server/fits/start-fit';
 import { requireActor } from '$lib/server/hooks/actor';
 import { page } from '$lib/server/http';
@@ -12,11 +14,14 @@ import type { Actions, PageServerLoadEvent, RequestEvent } from './$types';
 export const load = page(async (event: PageServerLoadEvent) => {
 	const actor = requireActor(event);
 	event.depends('study:fits');
-	const [fits, runs] = await Promise.all([
+	const from = event.url.searchParams.get('from');
+	const [fits, runs, begun] = await Promise.all([
 		listFits(actor, event.params.study),
-		listRuns(actor, event.params.study)
+		listRuns(actor, event.params.study),
+		from ? readFit(actor, from) : null
 	]);
-	return { fits, runs };
+	if (begun && begun.studyId !== event.params.study) throw notFound('fit of this study');
+	return { fits, runs, preset: begun && presetOf(begun), presetNumber: begun?.number ?? null };
 });
 
 async function start(event: RequestEvent) {
