@@ -94,6 +94,8 @@ test('the same questions are answered from the keyboard alone', async ({ page })
 	await signIn(page, PEOPLE.chemist);
 	const study = await studyWith(page, 'Messy workbook by keyboard', REVERSIBLE);
 	await upload(page, study, MESSY);
+	// The group knows these headers from an earlier sheet: what it knows is not asked again.
+	const asked = /\d+ ask/.exec(await counts(page).innerText())![0];
 	await page.getByRole('button', { name: 'Next open question' }).focus();
 	await page.keyboard.press('Enter');
 	await expect(finding(page, 'B18').getByRole('button', { name: /^Enter the time/ })).toBeFocused();
@@ -107,7 +109,7 @@ test('the same questions are answered from the keyboard alone', async ({ page })
 		await page.keyboard.press('ArrowRight');
 	await expect(missing).toBeFocused();
 	await page.keyboard.press('Space');
-	await expect(counts(page)).toHaveText(/^0 stop · 7 ask/);
+	await expect(counts(page)).toHaveText(new RegExp(`^0 stop · ${asked}`));
 	// Undo and redo belong to the answers as well, and what was answered is kept.
 	await page.keyboard.press('Control+z');
 	await expect(counts(page)).toHaveText(/^1 stop/);
@@ -115,7 +117,7 @@ test('the same questions are answered from the keyboard alone', async ({ page })
 	await expect(counts(page)).toHaveText(/^0 stop/);
 	await expect(page.getByRole('status').filter({ hasText: /^Saved/ })).toBeVisible();
 	await page.reload({ waitUntil: 'networkidle' });
-	await expect(counts(page)).toHaveText(/^0 stop · 7 ask/);
+	await expect(counts(page)).toHaveText(new RegExp(`^0 stop · ${asked}`));
 	// From a cell of the sheet to its question.
 	const grid = page.getByRole('grid');
 	await grid.focus();
