@@ -9,7 +9,9 @@ import { isUnitOf } from '../units';
 import { KineticModel } from './model';
 import type { Point } from './points';
 import { compileProblem, type KineticProblem } from './problem';
+import { runId } from './slots';
 
+/** Id of a run that is none of the request's; lengthened where a run of the request carries it. */
 const PROBE = 'prediction';
 const speciesChannel = (id: string) => `species ${id}`;
 
@@ -23,15 +25,17 @@ export interface Probe {
 
 /**
  * @param known whether the fit has an estimate for this parameter id (amounts local to a run)
+ * @param foreign the run is none of the request's, whatever its id: it takes nothing local from a run that happens to share it
  * @throws RangeError when an amount of the run is not known or the request cannot be compiled
  */
 export function probeModel(
 	request: FitRequest,
 	run: RunContent,
 	times: number[],
-	known: (id: string) => boolean
+	known: (id: string) => boolean,
+	foreign = false
 ): Probe {
-	const filled = probeRun(request, run, known);
+	const filled = probeRun(request, run, known, foreign);
 	const problem = compileProbe(request, filled, times);
 	const at = problem.runs.findIndex((r) => r.id === filled.id);
 	// A species is a share of what the detector sees; as one more channel it would be counted twice.
@@ -47,9 +51,17 @@ export const ownChannel = (channel: RunContent['channels'][number], species: str
 };
 
 /** The run with its unknown amounts filled in and a channel for every species. */
-function probeRun(request: FitRequest, run: RunContent, known: (id: string) => boolean): RunContent {
-	const source = request.runs.findIndex((r, i) => r === run || (r.id ?? `r${i + 1}`) === run.id);
-	const name = source >= 0 ? (request.runs[source].id ?? `r${source + 1}`) : run.id;
+function probeRun(
+	request: FitRequest,
+	run: RunContent,
+	known: (id: string) => boolean,
+	foreign: boolean
+): RunContent {
+	const ids = request.runs.map(runId);
+	const source = foreign ? -1 : request.runs.findIndex((r, i) => r === run || ids[i] === run.id);
+	const name = source >= 0 ? ids[source] : null;
+	let free = PROBE;
+	while (ids.includes(free)) free += '-';
 	const initial: RunContent['initial'] = Object.fromEntries(
 		Object.entries(run.initial).map(([species, amount]): [string, Fittable] => {
 			if (!isFitted(amount)) return [species, amount];
@@ -69,8 +81,9 @@ function probeRun(request: FitRequest, run: RunContent, known: (id: string) => b
 	};
 	return {
 		...run,
-		id: source >= 0 ? name : PROBE,
+		id: name ?? free,
 		initial,
+		...(name === null ? { timeOffset: statedOffset(run) } : {}),
 		exclusions: [],
 		replicates: undefined,
 		channels: [
@@ -84,6 +97,11 @@ function probeRun(request: FitRequest, run: RunContent, known: (id: string) => b
 	};
 }
 
+/** A time offset that the fit did not estimate is known only where it was stated. */
+function statedOffset({ timeOffset }: RunContent): RunContent['timeOffset'] {
+	return timeOffset && isFitted(timeOffset) ? timeOffset.guess : timeOffset;
+}
+
 /** The request with the run to predict in the place of its own, or after the others; parameters stay the same. */
 function compileProbe(request: FitRequest, probe: RunContent, times: number[]): KineticProblem {
 	const filled: RunContent = {
@@ -94,7 +112,7 @@ function compileProbe(request: FitRequest, probe: RunContent, times: number[]): 
 		}))
 	};
 	const runs = request.runs.map((r, i) => {
-		const id = r.id ?? `r${i + 1}`;
+		const id = runId(r, i);
 		return id === probe.id ? filled : { ...r, id };
 	});
 	if (!runs.includes(filled)) runs.push(filled);

@@ -84,6 +84,29 @@ function printSetup(workbook: Workbook, input: WorkbookInput): void {
 		});
 	}
 }
+/**
+ * The style part as the standard has it: a fill names its pattern, colours carry their opacity, and a list without entries is
+ * left out. Programs that read strictly refuse the whole file otherwise.
+ */
+function tidyStyles(workbook: Workbook): void {
+	const { _node } = (workbook as unknown as { _styleSheet: { _node: StyleNode } })._styleSheet;
+	_node.children = _node.children.filter((c) => c.name !== 'numFmts' || c.children.length > 0);
+	const visit = (node: StyleNode): void => {
+		if (node.name === 'fill' && node.children.length === 0)
+			node.children.push({ name: 'patternFill', attributes: { patternType: 'none' }, children: [] });
+		const { rgb } = node.attributes ?? {};
+		if (typeof rgb === 'string' && rgb.length === 6) node.attributes!.rgb = `FF${rgb}`;
+		for (const child of node.children ?? []) if (typeof child === 'object') visit(child);
+	};
+	visit(_node);
+}
+
+interface StyleNode {
+	name: string;
+	attributes?: Record<string, unknown>;
+	children: StyleNode[];
+}
+
 const escapeFooter = (text: string): string => text.replaceAll('&', '&&');
 
 /**
@@ -107,5 +130,6 @@ export async function buildWorkbook(input: WorkbookInput): Promise<Buffer> {
 		workbook.sheets().map((s) => s.name())
 	);
 	printSetup(workbook, input);
+	tidyStyles(workbook);
 	return workbook.outputAsync();
 }

@@ -1,8 +1,11 @@
 import { at, literal, span, type SheetWriter } from '../sheet-writer';
 import { SHEETS, TOLERANCE, type Layout } from '../layout';
 import type { PlanPoint, RecalculationPlan } from '../plan';
+import { toleranceOf } from './curves';
 
 const FIRST = 12;
+
+type Channel = RecalculationPlan['channels'][number][number];
 
 /** Predicted − observed and the sum of squares, live from the rate constants, held against what the fit stored. */
 export function writeResiduals(sheet: SheetWriter, plan: RecalculationPlan, layout: Layout): void {
@@ -33,14 +36,16 @@ export function writeResiduals(sheet: SheetWriter, plan: RecalculationPlan, layo
 	sheet.text(5, 1, 'Weighted sum of squares');
 	sheet.formula(5, 2, points.length ? `SUM(${span(FIRST, 11, last, 11)})` : '0', ssr);
 	sheet.number(5, 3, report.weightedSsr);
-	sheet.formula(5, 4, `ABS(B5-C5)<=${literal(TOLERANCE)}*ABS(C5)+${literal(1e-24)}`, true);
+	const stray = strayOfSum(plan);
+	sheet.formula(5, 4, `ABS(B5-C5)<=${literal(TOLERANCE)}*ABS(C5)+${literal(1e-24 + stray)}`, true);
 	sheet.row(6, ['Values counted', report.pointsUsed, '', 'Degrees of freedom', report.degreesOfFreedom]);
 	sheet.text(7, 1, 'Residual standard error s');
 	const hasS = report.residualStandardError !== null && report.degreesOfFreedom > 0;
 	if (hasS) {
 		sheet.formula(7, 2, 'SQRT(B5/E6)', Math.sqrt(ssr / report.degreesOfFreedom));
 		sheet.number(7, 3, report.residualStandardError!);
-		sheet.formula(7, 4, `ABS(B7-C7)<=${literal(TOLERANCE)}*ABS(C7)+${literal(1e-24)}`, true);
+		const strayOfS = stray > 0 ? stray / Math.sqrt(Math.max(ssr, stray) * report.degreesOfFreedom) : 0;
+		sheet.formula(7, 4, `ABS(B7-C7)<=${literal(TOLERANCE)}*ABS(C7)+${literal(1e-24 + strayOfS)}`, true);
 	} else sheet.text(7, 2, 'no degrees of freedom');
 	sheet.row(8, ['Values given as a limit', report.pointsCensored]);
 	sheet.text(9, 1, 'All agree');
@@ -89,11 +94,12 @@ function writePoint(
 		above: `IF(H${row}<F${row},${gap},0)`
 	}[point.kind];
 	sheet.formula(row, 10, formula, beyond(point) ? point.observed - point.predicted : 0);
+	const stray = strayOf(plan, point);
 	sheet.formula(row, 11, `(J${row}/G${row})^2`, weightedSquare(point));
 	sheet.formula(
 		row,
 		12,
-		`ABS(H${row}-I${row})<=${literal(TOLERANCE)}*MAX(ABS(F${row}),ABS(I${row}),${literal(1e-12)})`,
+		`ABS(H${row}-I${row})<=${literal(TOLERANCE)}*MAX(ABS(F${row}),ABS(I${row}),${literal(1e-12)})${stray > 0 ? `+${literal(stray)}` : ''}`,
 		true
 	);
 }
@@ -119,6 +125,40 @@ function signal(plan: RecalculationPlan, layout: Layout, point: PlanPoint, index
 		const weight = channel.weights[i];
 		return weight === 1 ? cells[s] : `${literal(weight)}*${cells[s]}`;
 	}).join('+');
-	const response = layout.si.get(`${channel.id}.responseFactor`);
-	return response ? `${response}*(${sum})` : sum;
+	const factor = responseOf(plan, layout, channel);
+	return factor ? `${factor}*(${sum})` : sum;
 }
+
+/**
+ * The response factor of a channel of one run: the cell on "Parameters" where that is the one which this run has, else the
+ * run's own number, or nothing where the run states none.
+ */
+function responseOf(plan: RecalculationPlan, layout: Layout, channel: Channel): string | null {
+	const id = `${channel.id}.responseFactor`;
+	const { constant, terms } = channel.lnResponse;
+	const own = Math.exp(constant);
+	const listed = plan.parameters.find((p) => p.id === id)?.si;
+	const same = listed !== undefined && Math.abs(listed - own) <= 1e-12 * own;
+	if (terms.length > 0 || (same && own !== 1)) return layout.si.get(id) ?? null;
+	return own === 1 ? null : literal(own);
+}
+
+/** By how much a prediction on "Verify" may stray in a run whose rates differ by many decades; 0 elsewhere. */
+function strayOf(plan: RecalculationPlan, point: PlanPoint): number {
+	const run = plan.runs[point.run];
+	const tolerance = toleranceOf(run);
+	if (run.logged || tolerance <= TOLERANCE) return 0;
+	const channel = plan.channels[point.run][point.channel];
+	if (channel.areaPercent) return 100 * tolerance;
+	const charge = run.charge.reduce((sum, c) => sum + Math.abs(c.value), 0);
+	const listed = plan.parameters.find((p) => p.id === `${channel.id}.responseFactor`)?.si ?? 1;
+	const factor = channel.lnResponse.terms.length > 0 ? listed : Math.exp(channel.lnResponse.constant);
+	return tolerance * charge * factor * channel.weights.reduce((sum, w) => sum + Math.abs(w), 0);
+}
+
+/** The same for the weighted sum of squares. */
+const strayOfSum = (plan: RecalculationPlan): number =>
+	plan.points.reduce((sum, p) => {
+		const stray = strayOf(plan, p) / p.sigma;
+		return sum + stray * (2 * Math.sqrt(weightedSquare(p)) + stray);
+	}, 0);
