@@ -6,6 +6,7 @@ import type { Block } from '$lib/schemas/sheet';
 import type { SheetView } from './grid';
 import { headersAbove } from './header-rows';
 import { continues, isDataRow, isFooterRow, isHeaderRow, isLimitRow, lookAt, type RowLook } from './rows';
+import { isTotalsRow } from './totals';
 import { sideBySide } from './side-by-side';
 
 export interface FoundBlock {
@@ -30,7 +31,7 @@ export function findBlocks(view: SheetView): FoundBlock[] {
 	let used = 0;
 	for (let i = 0; i < looks.length && found.length < MOST_TABLES; i++) {
 		if (!isDataRow(looks[i])) continue;
-		const band = growBand(looks, i);
+		const band = growBand(view, looks, i);
 		const headers = headersAbove(view, looks, i, used, band);
 		found.push(...sideBySide(view, looks, { ...band, ...headers, floor: used }));
 		used = band.end;
@@ -54,7 +55,7 @@ export interface Band {
 /** Blank rows that a table may contain. */
 const GAP = 2;
 
-function growBand(looks: RowLook[], start: number): Band {
+function growBand(view: SheetView, looks: RowLook[], start: number): Band {
 	const band: Band = {
 		start,
 		stop: start + 1,
@@ -74,16 +75,25 @@ function growBand(looks: RowLook[], start: number): Band {
 		band.last = Math.max(band.last, look.last);
 		band.stop++;
 	}
+	setTotalsApart(view, looks, band);
 	band.end = band.stop;
-	takeFooters(looks, band);
+	takeFooters(view, looks, band);
 	return band;
 }
 
-function takeFooters(looks: RowLook[], band: Band): void {
+/** Sums or means of the rows above, such as the totals row of a table that names none: left to the footers, and asked about. */
+function setTotalsApart(view: SheetView, looks: RowLook[], band: Band): void {
+	const rows = looks.slice(band.start, band.stop).map((look) => look.r);
+	while (band.stop - band.start > 3 && isTotalsRow(view, rows.slice(0, band.stop - band.start))) band.stop--;
+}
+
+function takeFooters(view: SheetView, looks: RowLook[], band: Band): void {
+	const rows = looks.slice(band.start, band.stop).map((look) => look.r);
 	while (band.end < looks.length) {
 		const look = looks[band.end];
 		const gap = look.r - looks[band.end - 1].r - 1;
-		if (isHeaderRow(look) || (isDataRow(look) && !isFooterRow(look)) || gap > 1) return;
+		const totals = isTotalsRow(view, [...rows, look.r]);
+		if (isHeaderRow(look) || (isDataRow(look) && !isFooterRow(look) && !totals) || gap > 1) return;
 		if (gap === 1 && !isFooterRow(look)) return;
 		// A lone text right before a header is that table's title.
 		const next = looks[band.end + 1];

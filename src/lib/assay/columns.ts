@@ -101,7 +101,8 @@ export function matchSpecies(header: ColumnHeader, species: SpeciesContent[]): s
 /** The same for any text, such as the name of a peak. */
 export function matchName(text: string, species: SpeciesContent[]): string | null {
 	const plain = text.replace(/[\s\u00a0]+/g, ' ').trim();
-	const candidates = [plain, ...variants(plain)];
+	const unmarked = plain.replace(/[\s]*[¹²³⁴-⁹*†‡§]+$/, '');
+	const candidates = [plain, ...variants(plain), unmarked, ...variants(unmarked)];
 	for (const same of [exact, caseless]) {
 		for (const candidate of candidates) {
 			const ids = new Set(species.filter((s) => same(candidate, s)).map((s) => s.id));

@@ -36,7 +36,7 @@ export function numberText(text: string): NumberText | null {
 	const simple = simpleNumber(text);
 	if (simple) return simple;
 	if (!/[\d\uff10-\uff19]/.test(text) || text.length > 80) return null;
-	const trimmed = text.replace(MINUS, '-').trim();
+	const trimmed = exponentText(text).replace(MINUS, '-').trim();
 	const inner = trimmed.replace(/^([+-])[\s\u00a0]+/, '$1');
 	if (/\d[\s\u00a0\u2000-\u200a\u202f]+[\d]/.test(inner) && !SPACED.test(inner)) return null;
 	const plain = plainNumberText(inner);
@@ -44,6 +44,20 @@ export function numberText(text: string): NumberText | null {
 	const point = readAs(plain, '.');
 	const comma = readAs(plain, ',');
 	return point === null && comma === null ? null : { point, comma };
+}
+
+const RAISED = '⁰¹²³⁴⁵⁶⁷⁸⁹';
+const POWER =
+	/(\d)\s*[×x*·]\s*10\s*(?:\^\s*\(?([+\-\u2212]?\d{1,2})\)?|([⁺⁻]?[⁰¹²³⁴⁵⁶⁷⁸⁹]{1,2})|([-\u2212]\d{1,2}))$/i;
+
+/** "1.2 × 10⁻⁴" and "1.2 x 10^-4" as "1.2e-4". */
+function exponentText(text: string): string {
+	return text.trim().replace(POWER, (_, digit: string, caret?: string, raised?: string, signed?: string) => {
+		const plain = raised
+			?.replace(/[⁰¹²³⁴-⁹]/g, (d) => String(RAISED.indexOf(d)))
+			.replace(/[⁺⁻]/, (s) => (s === '⁻' ? '-' : ''));
+		return `${digit}e${(caret ?? plain ?? signed ?? '').replace(MINUS, '-')}`;
+	});
 }
 
 /** The common case without regular expressions: digits with at most one separator that cannot part thousands. */

@@ -14,6 +14,7 @@ import type {
 } from '$lib/schemas/sheet';
 import { type Channel, settleChannels } from './channels';
 import { askCharge, checkCount } from './checks';
+import { askControls } from './control-rows';
 import { convertValues } from './conversions';
 import { noteCopies } from './copies';
 import { settleDecimal } from './decimal-rule';
@@ -59,7 +60,9 @@ export function settle(input: SettleInput): Settlement {
 	settleStructure(ex, found, headers);
 	const rows = dataRows(ex);
 	const hidden = askHidden(ex, rows);
-	const used = rows.filter((r) => !hidden.has(r));
+	const shown = rows.filter((r) => !hidden.has(r));
+	const controls = askControls(ex, shown);
+	const used = shown.filter((r) => !controls.has(r));
 	const channels = settleChannels(ex, headers);
 	stopWithoutColumns(ex, channels);
 	const samples = samplesOf(ex, used, channels);

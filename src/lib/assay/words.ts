@@ -43,6 +43,11 @@ export const isStandardWord = (text: string): boolean => STANDARD.test(text.trim
 export const isPeakWord = (text: string): boolean => PEAK.test(text.trim());
 export const isPeakValueWord = (text: string): boolean => PEAK_VALUE.test(text.trim());
 
+/** Names of samples that are none of the reaction: blanks, standards, controls. */
+const CONTROL =
+	/^(blanks?|blk|blanc|blindwert|diluent|solvent blank|wash|std\.?|standards?|ref(erence|\.)? ?(std|standard)\.?|sst|system suitability|qc|control|kontroll?e?|kontrollprobe|cal(ibration|ibrant|\.)?|kalibrier\p{L}*|[ée]talon|bracketing)(?: ?(std|standard|sample|probe)\.?)?[\s_.#-]*[a-z]?\d{0,3}(?:\s*\(.*\))?$/iu;
+export const isControlName = (text: string): boolean => text.length <= 60 && CONTROL.test(text.trim());
+
 /** First cell of a row under (or over) the data that is not a sample. */
 const FOOTER = begins(
 	'mean',
@@ -58,7 +63,7 @@ const FOOTER = begins(
 	'x̄',
 	'sd',
 	's\\.d\\.',
-	'std\\.?',
+	'std\\.?(?![\\s_.#-]*\\d)',
 	'stdev',
 	'st\\.? ?dev\\.?',
 	'standard deviation',

@@ -5,6 +5,7 @@ import { CELL } from '$lib/schemas/cell-flags';
 import type { CellValue, GridCell, GridSheet } from '$lib/schemas/sheet';
 import { CELL_TEXT, type ReadingLimits } from './limits';
 import type { Package } from './package';
+import { RaisedRuns } from './raised';
 import { damaged, SheetRefusal } from './refusal';
 import type { StyleTable } from './styles';
 import { ownText } from './xml';
@@ -69,6 +70,7 @@ class SheetReader {
 	private value = '';
 	private inCell = false;
 	private collecting = false;
+	private readonly runs = new RaisedRuns();
 	private phonetic = 0;
 	private active = false;
 
@@ -90,6 +92,7 @@ class SheetReader {
 	}
 
 	open(name: string, a: Readonly<Record<string, string>>): void {
+		if (this.inCell) this.runs.open(name, a);
 		switch (name) {
 			case 'c':
 				return this.openCell(a);
@@ -122,10 +125,12 @@ class SheetReader {
 	}
 
 	text(text: string): void {
-		if (this.collecting && this.value.length <= CELL_TEXT) this.value += text.slice(0, CELL_TEXT);
+		if (this.collecting && this.value.length <= CELL_TEXT)
+			this.value += this.runs.of(text.slice(0, CELL_TEXT));
 	}
 
 	close(name: string): void {
+		if (this.inCell) this.runs.close(name);
 		switch (name) {
 			case 'c':
 				return this.closeCell();

@@ -2,6 +2,7 @@
 import type { GridSheet, GridWorkbook } from '$lib/schemas/sheet';
 import { CELL_TEXT, type ReadingLimits } from './limits';
 import { Package, workbookPart } from './package';
+import { RaisedRuns } from './raised';
 import { damaged, SheetRefusal } from './refusal';
 import { CellBudget, readSheet, type SheetSource } from './sheet-xml';
 import { readStyles } from './styles';
@@ -76,17 +77,20 @@ function readStrings(pack: Package, part: string | undefined, limits: ReadingLim
 	let text = '';
 	let collecting = false;
 	let phonetic = 0;
+	const runs = new RaisedRuns();
 	let characters = 0;
 	pack.read(part, {
-		open: (name) => {
+		open: (name, a) => {
+			runs.open(name, a);
 			if (name === 'si') text = '';
 			else if (name === 'rPh') phonetic++;
 			else if (name === 't') collecting = phonetic === 0;
 		},
 		text: (piece) => {
-			if (collecting && text.length <= CELL_TEXT) text += piece.slice(0, CELL_TEXT);
+			if (collecting && text.length <= CELL_TEXT) text += runs.of(piece.slice(0, CELL_TEXT));
 		},
 		close: (name) => {
+			runs.close(name);
 			if (name === 't') collecting = false;
 			else if (name === 'rPh') phonetic--;
 			else if (name === 'si') {
