@@ -96,7 +96,10 @@ export interface FitReport {
 	/** Ids of the fitted parameters in the order of `correlation` and `covariance`. */
 	fittedIds: string[];
 	correlation: number[][];
-	/** Covariance on the scale of estimation (ln for rate constants, response factors and amounts; J/mol for energies). */
+	/**
+	 * Covariance on the scale of estimation: ln for rate constants, equilibrium constants and response factors; as they are for
+	 * energies (J/mol), amounts (mol/L) and time offsets (s). See `scales`.
+	 */
 	covariance: number[][];
 	/** 'ln' or 'linear' per fitted parameter: the scale of `covariance`. */
 	scales: ('ln' | 'linear')[];

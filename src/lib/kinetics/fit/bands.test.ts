@@ -90,4 +90,43 @@ describe('a confirmation run', () => {
 		expect(outcome.points.find((p) => p.time === 2)!.inside).toBe(false);
 		expect(outcome.points.find((p) => p.kind === 'below')!.inside).toBe(true);
 	});
+
+	it('is not taken for the fitted run whose id it happens to share', () => {
+		const local = fitRequest.parse({
+			...request,
+			runs: [
+				decay({
+					initial: { A: { fit: true, guess: { value: 1, unit: 'mol/L' } } },
+					timeOffset: { value: 0.1, unit: 'h' }
+				}),
+				decay({ id: 'prediction' })
+			]
+		});
+		const fitted = fit(local);
+		const k = fitted.parameters.find((p) => p.id === 's1.forward.kRef')!.estimate;
+		// Another charge and another clock under the same id, as both labs count their runs from one.
+		const run = fitRequest.shape.runs.parse([
+			decay({
+				id: 'r1',
+				initial: { A: { fit: true, guess: { value: 0.5, unit: 'mol/L' } } },
+				timeOffset: { fit: true, guess: { value: 0, unit: 'h' } },
+				timepoints: [{ time: 2, values: { A: 0.5 * Math.exp(-2 * k) } }]
+			})
+		])[0];
+		const [point] = confirmationRun(fitted, local, run).points;
+		expect(point.predicted).toBeCloseTo(0.5 * Math.exp(-2 * k), 10);
+		// As a run of the request the same id does mean that run's own estimate.
+		const own = predict(fitted, local, local.runs[0], [2], { only: ['A'] }).series[0].curve[0];
+		const amount = fitted.parameters.find((p) => p.id === 'r1.initial.A')!.estimate;
+		expect(own).toBeCloseTo(amount * Math.exp(-2.1 * k), 10);
+		// The fit itself stays as it was: the other run keeps its data and its place.
+		expect(confirmationRun(fitted, local, { ...run, id: 'prediction' }).points[0].predicted).toBe(
+			point.predicted
+		);
+	});
+
+	it('asks for a charge that it neither states nor guesses', () => {
+		const run = fitRequest.shape.runs.parse([decay({ id: 'r1', initial: { A: { fit: true } } })])[0];
+		expect(() => confirmationRun(report, request, run)).toThrow('The charge of A in the run to predict');
+	});
 });

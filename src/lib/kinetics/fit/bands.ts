@@ -45,7 +45,8 @@ export interface Prediction {
  * Curves and bands of a run under a fit.
  * @param run any run of this scheme: one of the request's, or another with its own temperature and charge
  * @param times in the run's time unit, any order
- * @param options.confidence 0.95 unless given; `only` limits the series to these species or channel ids
+ * @param options.confidence 0.95 unless given; `only` limits the series to these species or channel ids; `foreign` says that
+ *   the run is none of the request's, even where its id is the same
  * @throws RangeError when the run needs an amount that is not known, or report and request do not belong together
  */
 export function predict(
@@ -53,7 +54,7 @@ export function predict(
 	request: FitRequest,
 	run: RunContent,
 	times: number[],
-	options: { confidence?: number; only?: string[] } = {}
+	options: { confidence?: number; only?: string[]; foreign?: boolean } = {}
 ): Prediction {
 	return predictRestored(restoreFit(report, request), report, run, times, options);
 }
@@ -64,10 +65,11 @@ export function predictRestored(
 	report: FitReport,
 	run: RunContent,
 	times: number[],
-	options: { confidence?: number; only?: string[] } = {}
+	options: { confidence?: number; only?: string[]; foreign?: boolean } = {}
 ): Prediction {
 	const known = (id: string) => report.parameters.some((p) => p.id === id);
-	const { problem, model, at } = probeModel(fitted.problem.request, run, times, known);
+	const { request } = fitted.problem;
+	const { problem, model, at } = probeModel(request, run, times, known, options.foreign);
 	const x = estimatesOf(report, problem);
 	const predictions = new Float64Array(model.m);
 	const jacobian = new Float64Array(model.m * model.p);
@@ -167,7 +169,7 @@ export interface Confirmation {
 }
 
 /**
- * Predicts a run that the fit did not use and counts its values inside the prediction band.
+ * Predicts a run that the fit did not use (its id may be that of one it used: it is not taken for it) and counts its values inside the prediction band.
  * Rows at time zero are left out (the charge predicts them), as are excluded cells.
  * @throws RangeError when the fit gives no band
  */
@@ -180,7 +182,7 @@ export function confirmationRun(
 	const rows = run.timepoints.map((row, index) => ({ row, index })).filter(({ row }) => row.time > 0);
 	const times = rows.map(({ row }) => row.time);
 	const only = run.channels.map((c) => c.id);
-	const { series, findings } = predict(report, request, run, times, { confidence, only });
+	const { series, findings } = predict(report, request, run, times, { confidence, only, foreign: true });
 	const out = new Set((run.exclusions ?? []).map((e) => `${e.index}|${e.channel ?? '*'}`));
 	const points: ConfirmationPoint[] = [];
 	for (const { kind, id, curve, prediction } of series) {

@@ -12,6 +12,7 @@
  * | f (response factor) | `ChannelModel.lnResponse` |
  * | τ (time offset, added to the recorded times) | `RunModel.offset` |
  */
+import { isFitted } from '$lib/schemas/quantity';
 import type { FitFinding, FitRequest } from '../../schemas/fit';
 import { GAS_CONSTANT, inverseTemperatureGap } from '../rate-laws';
 import { toNetwork } from '../from-scheme';
@@ -141,8 +142,16 @@ function checkSpecies(network: Network, request: FitRequest, issues: FitFinding[
 	}
 	request.runs.forEach((run, index) => {
 		const id = runId(run, index);
-		for (const species of Object.keys(run.initial))
+		for (const [species, amount] of Object.entries(run.initial)) {
 			if (!known.has(species)) unknown(species, `The charge of run ${id}`);
+			if (!isFitted(amount) && amount.value < 0)
+				issues.push({
+					code: 'charge-invalid',
+					level: 'stop',
+					message: `Run ${id}: the charge of ${species} must not be below zero; found ${amount.value} ${amount.unit}.`,
+					runs: [id]
+				});
+		}
 		for (const channel of run.channels)
 			for (const species of Object.keys(channel.weights))
 				if (!known.has(species)) unknown(species, `Channel ${channel.id} of run ${id}`);
