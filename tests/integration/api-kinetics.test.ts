@@ -58,6 +58,28 @@ const fit = async (body: unknown, who = actor) => call(postFit, { actor: who, bo
 const solve = async (body: unknown, who = actor) => call(postSolve, { actor: who, body });
 
 describe('POST /api/v1/kinetics/fit', () => {
+	it('fits no scheme that a recorded fit would be refused for, and no charge below zero', async () => {
+		const sound = { ...CHAIN, runs: [{ ...RUN_50C, id: 'r1' }], options: { starts: 2, profiles: false } };
+		const [first, second] = CHAIN.steps;
+		const wrong: [unknown, RegExp][] = [
+			[{ ...sound, species: [...CHAIN.species, { id: 'A' }] }, /Species A is listed twice/],
+			[{ ...sound, steps: [first, { ...second, id: first.id }] }, /Two steps have the id s1/],
+			[
+				{
+					...sound,
+					runs: [{ ...RUN_50C, id: 'r1', initial: { A: { value: -0.5, unit: 'mol/L' } } }]
+				},
+				/charge of A must not be below zero/
+			]
+		];
+		for (const [body, words] of wrong) {
+			const { status, body: problem } = await fit(body);
+			expect(status).toBe(422);
+			expect((problem as Problem).detail).toMatch(words);
+		}
+		expect((await fit(sound)).status).toBe(200);
+	});
+
 	it.each(['%', 'mol/L'])(
 		'alpha-pinene in %s: the published constants and sum of squares (Fuguitt & Hawkins 1947; Dolan, Moré & Munson 2004)',
 		async (unit) => {

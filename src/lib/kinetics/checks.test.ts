@@ -51,6 +51,12 @@ describe('checks of a network', () => {
 		['a negative constant', network('AB', [step('s1', 'A', ['B'], -1)]), 'constant-invalid', 's1'],
 		['a constant that is no number', network('AB', [step('s1', 'A', ['B'], NaN)]), 'constant-invalid', 's1'],
 		[
+			'two steps of one id',
+			network('ABC', [step('s1', 'A', ['B']), step('s1', 'B', ['C'])]),
+			'step-duplicate',
+			's1'
+		],
+		[
 			'a reversible split',
 			network('ABC', [step('s1', 'A', ['B', 'C'], 1, law(1))]),
 			'reversible-not-one-to-one',

@@ -170,7 +170,14 @@ function excessOf(step: Step): RateLaw['excess'] {
 
 function duplicateSteps(network: Network): NetworkIssue[] {
 	const seen = new Map<string, string>();
+	const ids = new Set<string>();
 	return network.steps.flatMap((step) => {
+		// Constants are named by the id of their step: two of one id would silently share them.
+		if (ids.has(step.id))
+			return [
+				stop('step-duplicate', `Two steps have the id ${step.id}. Give each its own.`, { stepId: step.id })
+			];
+		ids.add(step.id);
 		const key = `${step.reactant}>${step.products
 			.map((p) => `${p.coefficient} ${p.species}`)
 			.sort()

@@ -12,8 +12,8 @@
  * | f (response factor) | `ChannelModel.lnResponse` |
  * | τ (time offset, added to the recorded times) | `RunModel.offset` |
  */
-import { isFitted } from '$lib/schemas/quantity';
 import type { FitFinding, FitRequest } from '../../schemas/fit';
+import { isFitted } from '../../schemas/quantity';
 import { GAS_CONSTANT, inverseTemperatureGap } from '../rate-laws';
 import { toNetwork } from '../from-scheme';
 import type { Network, RateLaw } from '../types';

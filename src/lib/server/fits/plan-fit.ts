@@ -137,7 +137,8 @@ function availableParameters(slots: Slot[], request: FitRequest): PlannedParamet
 	];
 }
 
-function schemeIssues(request: FitRequest): FitFinding[] {
+/** What is wrong with the scheme itself, whatever the runs. */
+export function schemeIssues(request: FitRequest): FitFinding[] {
 	const { network } = toNetwork(request);
 	return checkNetwork(network).map(({ level, code, message }) => ({ level, code, message }));
 }

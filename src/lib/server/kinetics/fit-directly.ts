@@ -1,6 +1,7 @@
 import type { FitReport, FitRequest } from '$lib/schemas/fit';
 import { limitEngineCalls } from '../api/limit';
 import { AppError } from '../errors';
+import { schemeIssues } from '../fits/plan-fit';
 import { fitWorker } from '../fits/worker-source';
 import { callEngine } from '../jobs/engine-calls';
 import type { Actor } from '../policy';
@@ -36,5 +37,10 @@ export async function fitDirectly(
 			`This call fits at most ${MOST_POINTS} points; these runs have ${points}. Use a recorded fit: POST /api/v1/studies/{id}/fits.`
 		);
 	await limitEngineCalls(actor);
+	const stops = schemeIssues(request).filter((issue) => issue.level === 'stop');
+	if (stops.length)
+		throw new AppError('invalid', stops.map((s) => s.message).join(' '), {
+			fields: stops.map(({ message }) => ({ field: 'steps', message }))
+		});
 	return callEngine<FitReport>({ source: fitWorker(), task: request, signal });
 }
