@@ -121,5 +121,8 @@ export function inPlainWords(
 		});
 		text = text.replace(new RegExp(`\\b(?:run )?(${runs})\\b`, 'g'), (_all, id: string) => runNames[id]);
 	}
-	return text;
+	return text.replace(/\b(\w+)\.responseFactor\b/g, (id) => {
+		const name = parameterName(id, scheme, runNames);
+		return `${name.letter} of ${name.subscript}`;
+	});
 }

@@ -28,7 +28,7 @@ export function channelSlot(channel: ChannelContent, species: readonly SpeciesCo
 	return index < 0 ? species.length : (species[index].series ?? index);
 }
 
-function measured(run: RunContent, channel: ChannelContent): ChartPoint[] {
+export function measured(run: RunContent, channel: ChannelContent): ChartPoint[] {
 	return run.timepoints.flatMap((point, index): ChartPoint[] => {
 		const value = point.values[channel.id] ?? null;
 		if (value === null) return [];
