@@ -31,4 +31,10 @@ export { jointRegion, type JointRegion } from './joint-region';
 export { bootstrap, leaveOneRunOut, withExcludedValues, type Bootstrap, type RunInfluence } from './refit';
 export { identifiability, type Identifiability } from './identifiability';
 export { maxima, type Maximum } from './maximum';
+export {
+	decisionQuantities,
+	type DecisionOptions,
+	type DecisionQuantity,
+	type DecisionQuestion
+} from './decision';
 export { profileCurves, type ProfileCurve } from './profile-curve';
