@@ -40,11 +40,13 @@ interface Adverse {
 	basis: string;
 }
 
-const holdTemperature = (content: RecipeContent): { value: number; coldest: number } | null => {
+const holdTemperature = (
+	content: RecipeContent
+): { value: number; coldest: number; hottest: number } | null => {
 	const point = content.setPoints.find((s) => s.kind === 'temperature' && s.unit.replace(/\s/g, '') === '°C');
 	if (!point) return null;
 	const ends = [point.value, ...(point.par ?? []), ...(point.nor ?? [])].filter((v) => v !== null);
-	return { value: point.value, coldest: Math.min(...ends) };
+	return { value: point.value, coldest: Math.min(...ends), hottest: Math.max(...ends) };
 };
 
 /** Most accumulation within the recipe's own ranges: lower 95 % limit of k, at the coldest permitted temperature. */
@@ -59,7 +61,18 @@ function adverse(rate: RateForCaution, doseTimeH: number, content: RecipeContent
 	return { kPerH, xacc: accumulation(kPerH, doseTimeH), atC: hold.coldest, basis };
 }
 
-function mtsrOf(facts: CautionFacts, worst: Adverse): { mtsr: number; rise: number } | null {
+/** Temperatures at which the MTSR is looked for, from the coldest to the hottest permitted. */
+const MTSR_POINTS = 200;
+
+/**
+ * Highest MTSR within the recipe's own ranges. A colder batch accumulates more, a hotter one starts higher: which of them
+ * counts for more depends on the rise, so that the whole range is gone through.
+ */
+function mtsrOf(
+	facts: CautionFacts,
+	rate: RateForCaution,
+	doseTimeH: number
+): { mtsr: number; atC: number } | null {
 	const { heat } = facts.content;
 	const hold = holdTemperature(facts.content);
 	if (
@@ -70,7 +83,16 @@ function mtsrOf(facts: CautionFacts, worst: Adverse): { mtsr: number; rise: numb
 	)
 		return null;
 	const rise = adiabaticRise(heat.reactionEnthalpyKJPerMol, heat.limitingMolPerKg, heat.heatCapacityKJPerKgK);
-	return { rise, mtsr: (worst.atC ?? hold.value) + worst.xacc * rise };
+	const k = rate.lowerPerH ?? rate.perH;
+	let highest = { mtsr: -Infinity, atC: hold.coldest };
+	for (let i = 0; i <= MTSR_POINTS; i++) {
+		const atC = hold.coldest + ((hold.hottest - hold.coldest) * i) / MTSR_POINTS;
+		const factor =
+			rate.energyJPerMol === null ? 1 : arrheniusFactor(rate.energyJPerMol, atC, rate.referenceC);
+		const mtsr = atC + accumulation(k * factor, doseTimeH) * rise;
+		if (mtsr > highest.mtsr) highest = { mtsr, atC };
+	}
+	return highest;
 }
 
 function orderSentence(heat: HeatData, mtsr: number): string {
@@ -83,12 +105,16 @@ function orderSentence(heat: HeatData, mtsr: number): string {
 	return `The order of the temperatures entered corresponds to class ${found} of the published scheme; classification is made by process safety.`;
 }
 
+/** Where in the permitted range the highest MTSR lies, unless that is where the accumulation was stated. */
+const elsewhere = (atC: number, statedC: number | null): string =>
+	statedC === null || Math.abs(atC - statedC) < 0.05 ? '' : ` (highest from ${plain(atC)} °C)`;
+
 function doseCautions(facts: CautionFacts): CautionDraft[] {
 	const { heat } = facts.content;
 	const rate = facts.rates.find((r) => r.id === heat.doseParameter);
 	if (heat.doseTimeH === null || !rate) return [];
 	const worst = adverse(rate, heat.doseTimeH, facts.content);
-	const thermal = mtsrOf(facts, worst);
+	const thermal = mtsrOf(facts, rate, heat.doseTimeH);
 	const share = worst.xacc * 100;
 	const nearLimit =
 		thermal !== null &&
@@ -97,7 +123,7 @@ function doseCautions(facts: CautionFacts): CautionDraft[] {
 	if (share <= facts.thresholds.accumulationPercent && !nearLimit) return [];
 	const at = worst.atC === null ? '' : ` and ${plain(worst.atC)} °C`;
 	const mtsr = thermal
-		? `; the calculated MTSR is ${Math.round(thermal.mtsr)} °C`
+		? `; the calculated MTSR is ${Math.round(thermal.mtsr)} °C${elsewhere(thermal.atC, worst.atC)}`
 		: '; the MTSR is not assessed';
 	return [
 		{

@@ -60,6 +60,21 @@ describe('cautions', () => {
 		expect(found?.found).toMatch(/MTSR is 104 °C/);
 		expect(found?.found).toMatch(/class 3/);
 	});
+	it('looks for the highest MTSR over the whole permitted range, at its hot end where the rise is small', () => {
+		const par = { ...at60, setPoints: [{ ...at60.setPoints[0], par: [55, 70] as [number, number] }] };
+		const withEnergy = (energyJPerMol: number) => [
+			{ id: 's1.forward.kRef', perH: 0.4, lowerPerH: 0.4, energyJPerMol, referenceC: 60 }
+		];
+		const found = (heat: typeof dosed, energy: number) =>
+			cautions(facts({ ...par, heat }, { rates: withEnergy(energy) })).find(
+				(c) => c.code === 'heat-accumulation'
+			)?.found;
+		// Rise 20 K, Ea 20 kJ/mol: 70 °C + 20 K · Xacc(0.4934 1/h · 2 h) = 70 + 20 · 0.6359 = 82.7 °C; from 55 °C only 69.3 °C.
+		const small = { ...dosed, reactionEnthalpyKJPerMol: (-20 * 1.9) / 1.2 };
+		expect(found(small, 20_000)).toMatch(/MTSR is 83 °C \(highest from 70 °C\)/);
+		// Rise 88.4 K, Ea 72 kJ/mol: the cold end, 55 + 88.4 · 0.7685 = 122.9 °C.
+		expect(found(dosed, 72_000)).toMatch(/MTSR is 123 °C\./);
+	});
 	it('marks set-points and ranges that leave the studied range', () => {
 		const wide = sampleRecipe({ setPoints: [{ ...sampleRecipe().setPoints[0], par: [38, 52] }] });
 		expect(cautions(facts(wide)).find((c) => c.code === 'outside-studied-range')?.found).toMatch(

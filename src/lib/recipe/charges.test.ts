@@ -68,6 +68,23 @@ describe('charges at a scale', () => {
 		expect(lines[1].massKg).toBeCloseTo(3.468, 12);
 		expect(lines[2].massKg).toBeCloseTo(1.5, 12);
 	});
+	it('reckons the amount in a weighed solution from its concentration and density, not from the molar mass', () => {
+		const acid = charge({
+			id: 'b',
+			material: 'Acid, 2 mol/L',
+			measure: { by: 'weight', value: 1.1 },
+			molarMassGPerMol: 36.46,
+			solutionMolPerL: 2,
+			densityKgPerL: 1.1
+		});
+		const { lines } = chargesAt([limiting, acid], { value: 2, unit: 'kg' });
+		expect(lines[1].massKg).toBeCloseTo(2.2, 12);
+		expect(lines[1].volumeL).toBeCloseTo(2, 12);
+		expect(lines[1].amountMol).toBeCloseTo(4, 12);
+		expect(lines[1].equivalents).toBeCloseTo(0.4, 12);
+		const unknown = chargesAt([limiting, { ...acid, densityKgPerL: null }], { value: 2, unit: 'kg' });
+		expect(unknown.lines[1]).toMatchObject({ amountMol: null, missing: ['density of Acid, 2 mol/L'] });
+	});
 	it('fills up to the set-point concentration with what the other materials leave', () => {
 		const solid = { ...limiting, densityKgPerL: 1.25 };
 		const solvent = charge({

@@ -6,6 +6,7 @@ import type { ChargeLine, Scale } from '$lib/schemas/recipe';
  *     n = m · w / M          amount of a material of assay w (w/w)
  *     V = m / ρ              volume of a liquid
  *     V = n / c              volume of a solution of concentration c
+ *     n = m · c / ρ          amount in a solution that is weighed
  *     eq = n / n(limiting)
  *
  * | symbol | name here | unit |
@@ -84,6 +85,11 @@ function fromAmount(line: ChargeLine, amountMol: number): Partial<ChargeFigures>
 }
 
 function fromMass(line: ChargeLine, massKg: number): Partial<ChargeFigures> {
+	if (line.solutionMolPerL !== null) {
+		// What a kilogram of solution holds follows from its concentration and density, not from the molar mass.
+		if (line.densityKgPerL === null) return { massKg };
+		return solutionFigures(line, (massKg / line.densityKgPerL) * line.solutionMolPerL);
+	}
 	return {
 		massKg,
 		amountMol: amountOf(line, massKg),
@@ -122,7 +128,10 @@ function missingOf(line: ChargeLine, found: Partial<ChargeFigures>, reference: R
 		missing.push(`molar mass of ${line.material}`);
 	else if ((found.massKg ?? null) === null && line.solutionMolPerL === null)
 		missing.push(`molar mass of ${line.material}`);
-	if (line.solutionMolPerL !== null && (found.massKg ?? null) === null)
+	if (
+		line.solutionMolPerL !== null &&
+		[found.massKg, found.amountMol].some((figure) => (figure ?? null) === null)
+	)
 		missing.push(`density of ${line.material}`);
 	return missing;
 }

@@ -85,6 +85,32 @@ describe('the first draft of a recipe', () => {
 		const { hold } = draft(window({ fromH: 8.73, fromBoundH: 8.86, toH: null, toBoundH: null }));
 		expect(hold).toMatchObject({ stated: null, notBefore: 8.9 });
 	});
+	it('takes no charge from data that are shares of it, and reads g/L through the molar mass', () => {
+		const charged = (value: number, unit: string) =>
+			prefill({
+				title: 'HX-22 hold',
+				decision: 'How long may B wait at 5 °C?',
+				criteria: [],
+				facts: {
+					fit: {
+						...fit,
+						request: {
+							...request,
+							runs: [{ ...request.runs[0], initial: { B: { value, unit } } }]
+						}
+					} as Fit,
+					schemeName: 'Scheme 1',
+					schemeNumber: 1,
+					runs: []
+				},
+				window: null
+			});
+		const share = charged(100, '%');
+		expect(share.setPoints.some((p) => p.kind === 'charge')).toBe(false);
+		expect(share.charges).toEqual([]);
+		expect(share.basis.studiedChargeMolPerL).toEqual({});
+		expect(charged(60, 'g/L').setPoints.find((p) => p.kind === 'charge')).toMatchObject({ value: 0.4 });
+	});
 	it('says that no bound was computed when there is none', () => {
 		expect(draft(window({ toBoundH: null })).hold).toMatchObject({ stated: 47, bound: null });
 		expect(draft(window({ toBoundH: null })).hold?.basis).toMatch(/no bound was computed/);

@@ -12,7 +12,7 @@ import {
 } from '$lib/schemas/recipe';
 import type { CriterionContent } from '$lib/schemas/study';
 import type { RunContent } from '$lib/schemas/run';
-import { toSi } from '$lib/kinetics/units';
+import { isUnitOf, toSi } from '$lib/kinetics/units';
 import type { FitFacts } from './fit-facts';
 import type { WindowFacts } from './window-facts';
 
@@ -37,14 +37,23 @@ function nearestRun(runs: RunContent[], temperatureC: number | null): RunContent
 }
 
 /** Charges that were fixed and above zero, mol/L where the unit allows: the window's, else those of the nearest run. */
-function chargesOf(run: RunContent, ofWindow: Record<string, Quantity>): Map<string, number> {
+function chargesOf(
+	run: RunContent,
+	ofWindow: Record<string, Quantity>,
+	species: FitFacts['fit']['request']['species']
+): Map<string, number> {
 	const found = new Map<string, number>();
 	const given = Object.keys(ofWindow).length > 0 ? ofWindow : run.initial;
-	for (const [species, amount] of Object.entries(given)) {
+	for (const [id, amount] of Object.entries(given)) {
 		const stated = isFitted(amount) ? amount.guess : amount;
-		if (!stated || stated.value <= 0) continue;
+		// "100 %" says how the assay is counted, not how much was charged.
+		if (!stated || stated.value <= 0 || isUnitOf(stated.unit, 'fraction')) continue;
+		const molarMassGPerMol = species.find((s) => s.id === id)?.molarMassGPerMol;
 		try {
-			found.set(species, tidy(toSi(stated, 'concentration')));
+			found.set(
+				id,
+				tidy(toSi(stated, 'concentration', molarMassGPerMol === undefined ? {} : { molarMassGPerMol }))
+			);
 		} catch {
 			// An area or a mass without molar mass gives no concentration: the person enters the charge.
 		}
@@ -234,7 +243,7 @@ export function prefill(input: PrefillInput): RecipeContent {
 	const wanted = window?.facts?.temperatureC ?? null;
 	const run = nearestRun(runs, wanted);
 	const temperatureC = tidy(wanted ?? celsius(run));
-	const charges = chargesOf(run, window?.charge ?? {});
+	const charges = chargesOf(run, window?.charge ?? {}, facts.fit.request.species);
 	const hold = holdOf(window, temperatureC);
 	const { report } = facts.fit;
 	return recipeContent.parse({
@@ -250,7 +259,9 @@ export function prefill(input: PrefillInput): RecipeContent {
 			inputHash: facts.fit.inputHash,
 			engineVersion: facts.fit.engineVersion,
 			studiedTemperatureC: report.studied.temperatureC,
-			studiedChargeMolPerL: report.studied.chargeMolPerL,
+			studiedChargeMolPerL: Object.fromEntries(
+				Object.entries(report.studied.chargeMolPerL).filter(([id]) => charges.has(id))
+			),
 			lastTimeH: report.studied.lastTimeH
 		},
 		setPoints: setPointsOf(input, temperatureC, charges, hold),
