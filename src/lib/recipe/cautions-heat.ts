@@ -105,6 +105,24 @@ function orderSentence(heat: HeatData, mtsr: number): string {
 	return `The order of the temperatures entered corresponds to class ${found} of the published scheme; classification is made by process safety.`;
 }
 
+function doseNotAssessed({ content: { heat } }: CautionFacts): CautionDraft {
+	return {
+		topic: 'heat',
+		code: 'accumulation-not-assessed',
+		kind: 'not assessed',
+		title: 'Accumulation while dosing: not assessed.',
+		found: `A dosing time of ${plain(heat.doseTimeH!)} h was entered, but ${
+			heat.doseParameter === null
+				? 'no rate constant was named for the dosed reagent'
+				: `${heat.doseParameter} is no first-order constant of this fit`
+		}.`,
+		why: 'What has accumulated reacts on by itself when cooling fails. A colder batch accumulates more.',
+		unknown:
+			'How much of the dosed reagent is unreacted at the end of the dose. A missing figure is not a small one.',
+		inputs: { doseTimeH: heat.doseTimeH, doseParameter: heat.doseParameter }
+	};
+}
+
 /** Where in the permitted range the highest MTSR lies, unless that is where the accumulation was stated. */
 const elsewhere = (atC: number, statedC: number | null): string =>
 	statedC === null || Math.abs(atC - statedC) < 0.05 ? '' : ` (highest from ${plain(atC)} °C)`;
@@ -112,7 +130,8 @@ const elsewhere = (atC: number, statedC: number | null): string =>
 function doseCautions(facts: CautionFacts): CautionDraft[] {
 	const { heat } = facts.content;
 	const rate = facts.rates.find((r) => r.id === heat.doseParameter);
-	if (heat.doseTimeH === null || !rate) return [];
+	if (heat.doseTimeH === null) return [];
+	if (!rate) return [doseNotAssessed(facts)];
 	const worst = adverse(rate, heat.doseTimeH, facts.content);
 	const thermal = mtsrOf(facts, rate, heat.doseTimeH);
 	const share = worst.xacc * 100;

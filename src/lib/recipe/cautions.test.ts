@@ -60,6 +60,13 @@ describe('cautions', () => {
 		expect(found?.found).toMatch(/MTSR is 104 °C/);
 		expect(found?.found).toMatch(/class 3/);
 	});
+	it('says that accumulation is not assessed when the dose has a time but no rate constant', () => {
+		for (const doseParameter of [null, 's9.forward.kRef']) {
+			const all = cautions(facts({ ...at60, heat: { ...dosed, doseParameter } }));
+			expect(all.find((c) => c.code === 'accumulation-not-assessed')?.kind).toBe('not assessed');
+			expect(all.some((c) => c.code === 'heat-accumulation')).toBe(false);
+		}
+	});
 	it('looks for the highest MTSR over the whole permitted range, at its hot end where the rise is small', () => {
 		const par = { ...at60, setPoints: [{ ...at60.setPoints[0], par: [55, 70] as [number, number] }] };
 		const withEnergy = (energyJPerMol: number) => [

@@ -109,7 +109,8 @@ export function ratesOf(request: FitRequest, report: FitReport): RateForCaution[
 		if (!p.id.endsWith('.kRef')) return [];
 		const value = perHour(p.estimate, p.unit);
 		if (value === null) return [];
-		const lower = p.profileCi95?.[0] ?? p.ci95?.[0] ?? null;
+		// A profile that stays open downwards leaves nothing to rely on: the constant may be zero.
+		const lower = p.profileCi95 ? (p.profileCi95[0] ?? 0) : (p.ci95?.[0] ?? null);
 		return [
 			{
 				id: p.id,
