@@ -9,6 +9,7 @@
 import type { FitFinding, FitParameter, FitReport, FitRequest } from '../../schemas/fit';
 import { ENGINE_VERSION } from '../version';
 import { evaluateLinear, linearOf } from './affine';
+import { watchOver } from './cancelled';
 import { leverages } from './covariance';
 import { studentQuantile } from './distributions';
 import { structuralFindings, planIssues } from './checks';
@@ -39,7 +40,7 @@ export interface FitProgress {
 
 export interface FitHooks {
 	onProgress?: (progress: FitProgress) => void;
-	/** Asked before every evaluation of the model; true stops the fit by FitCancelled. */
+	/** Asked many times in every evaluation of the model; true stops the fit by FitCancelled. Must answer quickly. */
 	cancelled?: () => boolean;
 }
 
@@ -64,8 +65,9 @@ export function fit(request: FitRequest, hooks: FitHooks = {}): FitReport {
 	const stops = early.filter((i) => i.level === 'stop');
 	if (stops.length) throw new FitRequestError(stops);
 	const model = new KineticModel(problem);
+	model.watch = watchOver(hooks.cancelled);
 	const box = searchBox(problem);
-	early.push(...identifiabilityFindings(problem, box), ...structuralFindings(problem));
+	early.push(...identifiabilityFindings(problem, box, model.watch), ...structuralFindings(problem));
 	const outcome = problem.free.length > 0 ? runSearch(model, box, request, hooks) : nothingToSearch(model);
 	outcome.minima = withoutPlateaus(outcome.minima, model.m);
 	if (outcome.minima.length === 0) throw new FitRequestError([noFiniteStart()]);

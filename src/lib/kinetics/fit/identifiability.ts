@@ -13,6 +13,7 @@
  * 608 (from memory).
  */
 import type { FitFinding } from '../../schemas/fit';
+import type { Watch } from './cancelled';
 import { covarianceFromJacobian } from './covariance';
 import { leastSquares } from './levenberg-marquardt';
 import { KineticModel } from './model';
@@ -71,14 +72,19 @@ function denseProblem(problem: KineticProblem): KineticProblem {
 }
 
 /** Structural checks of a compiled problem. Cost: a few evaluations of the model for every pair of rate constants. */
-export function identifiability(problem: KineticProblem, box: SearchBox): Identifiability {
+export function identifiability(
+	problem: KineticProblem,
+	box: SearchBox,
+	watch: Watch | null = null
+): Identifiability {
 	if (problem.free.length === 0) return { flat: [], exchanges: [] };
 	const dense = denseProblem(problem);
 	const model = new KineticModel(dense);
+	model.watch = watch;
 	const first = flatAt(model, genericPoint(box, 0));
 	// A direction that is flat at one point only is an accident of that point.
 	const flat = first.length > 0 && flatAt(model, genericPoint(box, 1)).length > 0 ? first : [];
-	return { flat, exchanges: flat.length > 0 ? [] : exchanges(dense, box) };
+	return { flat, exchanges: flat.length > 0 ? [] : exchanges(dense, box, watch) };
 }
 
 function flatAt(model: KineticModel, x: Float64Array): FlatDirection[] {
@@ -110,14 +116,14 @@ export function describeDirection(
 	return { parameters: members.map((m) => m.id), weights: members.map((m) => m.weight / largest) };
 }
 
-function exchanges(problem: KineticProblem, box: SearchBox): [string, string][] {
+function exchanges(problem: KineticProblem, box: SearchBox, watch: Watch | null): [string, string][] {
 	const rates = problem.free.flatMap((s, j) => (s.kind === 'rate' ? [j] : []));
 	const scales = problem.free.flatMap((s, j) => (s.kind === 'response' || s.kind === 'amount' ? [j] : []));
 	const found: [string, string][] = [];
 	if (scales.length === 0) return found;
 	for (let a = 0; a < rates.length; a++)
 		for (let b = a + 1; b < rates.length && rates.length <= 8; b++)
-			if (exchangeable(problem, box, rates[a], rates[b], scales))
+			if (exchangeable(problem, box, rates[a], rates[b], scales, watch))
 				found.push([problem.free[rates[a]].id, problem.free[rates[b]].id]);
 	return found;
 }
@@ -127,11 +133,13 @@ function exchangeable(
 	box: SearchBox,
 	a: number,
 	b: number,
-	scales: number[]
+	scales: number[],
+	watch: Watch | null
 ): boolean {
 	const x = genericPoint(box, 2);
 	if (Math.abs(x[a] - x[b]) < 0.5) x[a] += 1;
 	const target = new KineticModel(problem);
+	target.watch = watch;
 	const residuals = new Float64Array(target.m);
 	const jacobian = new Float64Array(target.m * target.p);
 	if (!target.evaluate(x, residuals, jacobian)) return false;
@@ -139,6 +147,7 @@ function exchangeable(
 	const size = observed.reduce((sum, v) => sum + v * v, 0);
 	const points = problem.points.map((p, i) => ({ ...p, observed: observed[i] }));
 	const model = new KineticModel(problem, points);
+	model.watch = watch;
 	const swapped = x.slice();
 	swapped[a] = x[b];
 	swapped[b] = x[a];
@@ -153,8 +162,12 @@ function exchangeable(
 }
 
 /** The structural checks in words. */
-export function identifiabilityFindings(problem: KineticProblem, box: SearchBox): FitFinding[] {
-	const { flat, exchanges: pairs } = identifiability(problem, box);
+export function identifiabilityFindings(
+	problem: KineticProblem,
+	box: SearchBox,
+	watch: Watch | null = null
+): FitFinding[] {
+	const { flat, exchanges: pairs } = identifiability(problem, box, watch);
 	return [
 		...flat.map((direction) => ({
 			code: 'structurally-undetermined',

@@ -12,6 +12,7 @@
  * | A | the `terms` of each affine function |
  */
 import { evaluateLinear } from './affine';
+import type { Watch } from './cancelled';
 import type { ChannelModel } from './channels';
 import type { LeastSquaresProblem } from './levenberg-marquardt';
 import type { Point } from './points';
@@ -41,6 +42,8 @@ export class KineticModel implements LeastSquaresProblem {
 	readonly p: number;
 	/** Predictions in the channels' units, in the order of the points. */
 	readonly predictions: Float64Array;
+	/** Asked before every run, and inside the long ones; throws to stop the evaluation. */
+	watch: Watch | null = null;
 	private readonly states: RunState[];
 	private readonly gradient: Float64Array;
 	private readonly total: Float64Array;
@@ -85,6 +88,7 @@ export class KineticModel implements LeastSquaresProblem {
 	}
 
 	private solveRun(state: RunState, x: Float64Array): boolean {
+		this.watch?.();
 		const { model, constants, charge, times } = state;
 		for (let d = 0; d < constants.length; d++) {
 			const lnk = evaluateLinear(model.lnRates[d], x);
@@ -95,7 +99,7 @@ export class KineticModel implements LeastSquaresProblem {
 		const shift = evaluateLinear(model.offset, x);
 		for (let k = 0; k < times.length; k++) times[k] = Math.max(0, model.timesS[k] + shift);
 		if (state.kernel instanceof ProgramKernel) return state.kernel.evaluate(x, charge, times);
-		return state.kernel.evaluate(constants, charge, times);
+		return state.kernel.evaluate(constants, charge, times, this.watch);
 	}
 
 	/** The prediction of a point; its derivatives go to `gradient`. */
@@ -170,6 +174,13 @@ export class KineticModel implements LeastSquaresProblem {
 		}
 		return weight * kernel.curves[k * n + i];
 	}
+}
+
+/** A model of another problem that is stopped as the first one is. */
+export function watched(problem: KineticProblem, like: KineticModel): KineticModel {
+	const model = new KineticModel(problem);
+	model.watch = like.watch;
+	return model;
 }
 
 function prepare(model: RunModel, problem: KineticProblem): RunState {

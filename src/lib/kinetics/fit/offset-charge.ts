@@ -8,7 +8,7 @@ import type { FitFinding, FitRequest } from '../../schemas/fit';
 import { isFitted } from '../../schemas/quantity';
 import { covarianceFromJacobian } from './covariance';
 import type { FindingsInput } from './findings';
-import { KineticModel } from './model';
+import { KineticModel, watched } from './model';
 import { compileProblem } from './problem';
 import { searchMinima } from './search';
 import { runId, toReported } from './slots';
@@ -87,7 +87,7 @@ const CLEARLY_BETTER = 10;
  * Where the residuals show a pattern and no offset was fitted: would a time offset (quench lag) explain it?
  * Only a proposal; the reported fit is not changed.
  */
-export function quenchLag({ problem, best, report }: FindingsInput): FitFinding[] {
+export function quenchLag({ problem, model, best, report }: FindingsInput): FitFinding[] {
 	const patterned =
 		(report.runsTest !== null && report.runsTest.p < 0.1) ||
 		(report.lackOfFit !== null && report.lackOfFit.p < 0.05);
@@ -106,7 +106,7 @@ export function quenchLag({ problem, best, report }: FindingsInput): FitFinding[
 		const j = problem.free.findIndex((f) => f.id === slot.id);
 		return j >= 0 ? best.x[j] : 0;
 	});
-	const { minima } = searchMinima(new KineticModel(variant), searchBox(variant), [start]);
+	const { minima } = searchMinima(watched(variant, model), searchBox(variant), [start]);
 	const other = minima.length ? aicc(variant.counted, variant.free.length, minima[0].result.ssr) : null;
 	if (other === null || other > report.aicc - CLEARLY_BETTER) return [];
 	const { x } = minima[0].result;

@@ -17,6 +17,7 @@
  * Sources: Daleckii & Krein (1965); Van Loan, IEEE Trans. Autom. Control 23 (1978) 395; McCurdy, Ng & Parlett, Math. Comp.
  * 43 (1984) 501 (divided differences of the exponential).
  */
+import type { Watch } from './cancelled';
 import { SpectralBasis, type Direction } from './spectral';
 import { StepPropagator } from './step-propagator';
 
@@ -73,13 +74,22 @@ export class RunKernel {
 		this.w = new Float64Array(rates.length * n);
 	}
 
-	/** Fills the arrays at ascending times. @returns false where no way gives finite numbers. */
-	evaluate(constants: Float64Array, charge: Float64Array, timesS: Float64Array): boolean {
+	/**
+	 * Fills the arrays at ascending times.
+	 * @param watch called between times where an evaluation can take long
+	 * @returns false where no way gives finite numbers
+	 */
+	evaluate(
+		constants: Float64Array,
+		charge: Float64Array,
+		timesS: Float64Array,
+		watch: Watch | null = null
+	): boolean {
 		if (this.basis.decompose(constants) && this.project(constants, charge)) {
 			for (let k = 0; k < this.times; k++) this.atTime(k, timesS[k]);
 		} else {
 			this.steps ??= new StepPropagator(this.n, this.directions, this.rates, this.charges);
-			if (!this.steps.run(constants, charge, timesS, this)) return false;
+			if (!this.steps.run(constants, charge, timesS, this, watch)) return false;
 		}
 		if (this.wantSlopes) this.fillSlopes(constants);
 		return true;

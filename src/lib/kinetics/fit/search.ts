@@ -4,16 +4,12 @@
  * Two end points are the same minimum when their parameters agree, or when the misfit between them (at the midpoint) is no
  * larger than at both: then they lie in one flat valley. Everything is in a fixed order, so the same seed gives the same bits.
  */
+import { FitCancelled } from './cancelled';
 import type { KineticModel } from './model';
 import { LeastSquaresWorkspace, leastSquares, type LeastSquaresResult } from './levenberg-marquardt';
 import type { SearchBox } from './starts';
 
-export class FitCancelled extends Error {
-	constructor() {
-		super('The fit was cancelled.');
-		this.name = 'FitCancelled';
-	}
-}
+export { FitCancelled };
 
 export interface Minimum {
 	result: LeastSquaresResult;

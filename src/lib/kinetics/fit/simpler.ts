@@ -3,7 +3,7 @@
  */
 import type { FitFinding, FitRequest } from '../../schemas/fit';
 import type { FindingsInput } from './findings';
-import { KineticModel } from './model';
+import { watched } from './model';
 import { compileProblem } from './problem';
 import { searchMinima } from './search';
 import { searchBox } from './starts';
@@ -32,7 +32,7 @@ export function withoutDirection(request: FitRequest, parameter: string): FitReq
 	};
 }
 
-export function simplerScheme({ problem, profiles, best, report }: FindingsInput): FitFinding[] {
+export function simplerScheme({ problem, model, profiles, best, report }: FindingsInput): FitFinding[] {
 	if (!profiles || report.aicc === null) return [];
 	const findings: FitFinding[] = [];
 	problem.free.forEach((slot, j) => {
@@ -44,7 +44,7 @@ export function simplerScheme({ problem, profiles, best, report }: FindingsInput
 			reduced.free,
 			(s) => best.x[problem.free.findIndex((f) => f.id === s.id)]
 		);
-		const { minima } = searchMinima(new KineticModel(reduced), searchBox(reduced), [start]);
+		const { minima } = searchMinima(watched(reduced, model), searchBox(reduced), [start]);
 		const other = minima.length ? aicc(reduced.counted, reduced.free.length, minima[0].result.ssr) : null;
 		if (other === null || other > report.aicc! + 2) return;
 		findings.push({

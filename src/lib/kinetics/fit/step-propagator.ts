@@ -6,7 +6,8 @@
  *     L_d = ∂E/∂ ln k_d: L ← A L + dA M term by term, then L ← E L + L E with each squaring
  *     c ← E c,   s_d ← E s_d + L_d c
  *
- * A has no negative entry, so the series of E has no cancellation, whatever the rates.
+ * A has no negative entry, so the series of E has no cancellation, whatever the rates. Species stand in the order of flow, so that
+ * all matrices are block lower triangular; L_d has no entry above the block of its reactant nor to the right of it.
  *
  * | symbol | variable |
  * | ------ | -------- |
@@ -18,7 +19,8 @@
  * scaling and squaring); Mathias, SIAM J. Matrix Anal. Appl. 14 (1993) 1061 and Al-Mohy & Higham, ibid. 30 (2009) 1639
  * (derivative by differentiating the algorithm).
  */
-import type { Direction } from './spectral';
+import type { Watch } from './cancelled';
+import { flowOrder, type Direction } from './spectral';
 import { StepSeries } from './step-series';
 
 /** Largest q h of an interval that is taken on vectors. */
@@ -41,6 +43,12 @@ export class StepPropagator {
 	private readonly state: Float64Array;
 	private readonly outflow: Float64Array;
 	private readonly onVectors: StepSeries;
+	/** Species in the order of flow, where all matrices are block lower triangular. */
+	private readonly order: number[];
+	private readonly place: number[];
+	/** Where the block of each place begins and ends. */
+	private readonly begin: Int32Array;
+	private readonly end: Int32Array;
 
 	constructor(
 		private readonly n: number,
@@ -61,6 +69,20 @@ export class StepPropagator {
 		this.state = new Float64Array((1 + rates.length + charges.length) * n);
 		this.outflow = new Float64Array(n);
 		this.onVectors = new StepSeries(n, directions, rates, charges.length);
+		const groups = flowOrder(n, directions);
+		this.order = groups.flat();
+		this.place = new Array<number>(n);
+		this.begin = new Int32Array(n);
+		this.end = new Int32Array(n);
+		let first = 0;
+		for (const group of groups) {
+			group.forEach((species, i) => {
+				this.place[species] = first + i;
+				this.begin[first + i] = first;
+				this.end[first + i] = first + group.length;
+			});
+			first += group.length;
+		}
 	}
 
 	/**
@@ -71,7 +93,8 @@ export class StepPropagator {
 		constants: Float64Array,
 		charge: Float64Array,
 		timesS: Float64Array,
-		out: { curves: Float64Array; rateDerivatives: Float64Array; chargeDerivatives: Float64Array }
+		out: { curves: Float64Array; rateDerivatives: Float64Array; chargeDerivatives: Float64Array },
+		watch: Watch | null = null
 	): boolean {
 		const { n, rates, charges, state } = this;
 		const times = timesS.length;
@@ -80,6 +103,7 @@ export class StepPropagator {
 		charges.forEach((species, q) => (state[(1 + rates.length + q) * n + species] = 1));
 		let at = 0;
 		for (let k = 0; k < times; k++) {
+			watch?.();
 			const h = timesS[k] - at;
 			if (h > 0 && !this.advance(constants, h)) return false;
 			for (let i = 0; i < n; i++) {
@@ -103,13 +127,14 @@ export class StepPropagator {
 			return true;
 		}
 		if (!this.exponential(constants, h)) return false;
-		c.set(state.subarray(0, n));
+		const { order } = this;
+		for (let i = 0; i < n; i++) c[i] = state[order[i]];
 		for (let row = 0; row * n < state.length; row++) {
 			next.fill(0);
 			for (let i = 0; i < n; i++)
-				for (let j = 0; j < n; j++) next[i] += this.e[i * n + j] * state[row * n + j];
+				for (let j = 0; j < this.end[i]; j++) next[i] += this.e[i * n + j] * state[row * n + order[j]];
 			if (row > 0 && row <= rates.length) multiplyAdd(this.l, (row - 1) * n * n, c, n, next, 0);
-			state.set(next, row * n);
+			for (let i = 0; i < n; i++) state[row * n + order[i]] = next[i];
 		}
 		return true;
 	}
@@ -137,15 +162,43 @@ export class StepPropagator {
 		for (let i = 0; i < l.length; i++) l[i] *= shrink;
 		for (let s = 0; s < squarings; s++) {
 			for (let r = 0; r < rates.length; r++) {
+				// L_d has rows from its reactant's block on, and columns up to it.
+				const at = this.place[this.directions[rates[r]].from];
+				const [first, last] = [this.begin[at], this.end[at]];
 				const block = r * n * n;
-				product(e, 0, l, block, n, this.lSpare);
-				product(l, block, e, 0, n, this.spare);
-				for (let i = 0; i < n * n; i++) l[block + i] = this.lSpare[i] + this.spare[i];
+				this.product(e, 0, l, block, this.lSpare, first, last);
+				this.product(l, block, e, 0, this.spare, first, last);
+				for (let i = first; i < n; i++)
+					for (let j = i * n; j < i * n + last; j++) l[block + j] = this.lSpare[j] + this.spare[j];
 			}
-			product(e, 0, e, 0, n, this.spare);
+			this.product(e, 0, e, 0, this.spare, 0, n);
 			e.set(this.spare);
 		}
 		return true;
+	}
+
+	/** out = X Y for block lower triangular X, Y that begin at the offsets; rows from `first`, columns up to `last` alone. */
+	private product(
+		x: Float64Array,
+		xFrom: number,
+		y: Float64Array,
+		yFrom: number,
+		out: Float64Array,
+		first: number,
+		last: number
+	): void {
+		const { n, end } = this;
+		for (let i = first; i < n; i++) {
+			const row = i * n;
+			for (let j = 0; j < last; j++) out[row + j] = 0;
+			for (let l = 0; l < end[i]; l++) {
+				const value = x[xFrom + row + l];
+				if (value === 0) continue;
+				const reach = Math.min(end[l], last);
+				const from = yFrom + l * n;
+				for (let j = 0; j < reach; j++) out[row + j] += value * y[from + j];
+			}
+		}
 	}
 
 	/** K + qI into `a`, formed without subtracting; returns q. */
@@ -153,11 +206,12 @@ export class StepPropagator {
 		const { n, a, outflow, directions } = this;
 		a.fill(0);
 		const q = this.largestOutflow(constants);
-		for (let i = 0; i < n; i++) a[i * n + i] = q - outflow[i];
+		const { order, place } = this;
+		for (let i = 0; i < n; i++) a[i * n + i] = q - outflow[order[i]];
 		for (let d = 0; d < directions.length; d++) {
 			const { from, products } = directions[d];
 			for (let p = 0; p < products.length; p++)
-				a[products[p].to * n + from] += constants[d] * products[p].coefficient;
+				a[place[products[p].to] * n + place[from]] += constants[d] * products[p].coefficient;
 		}
 		return q;
 	}
@@ -172,38 +226,24 @@ export class StepPropagator {
 		for (let m = 1; m <= TERMS; m++) {
 			for (let r = 0; r < rates.length; r++) {
 				const block = r * n * n;
-				product(a, 0, lTerm, block, n, lSpare);
 				const { from, products } = directions[rates[r]];
+				const at = this.place[from];
+				const [first, last] = [this.begin[at], this.end[at]];
+				this.product(a, 0, lTerm, block, lSpare, first, last);
 				const k = constants[rates[r]] * scaled;
-				for (let j = 0; j < n; j++) {
-					const row = k * term[from * n + j];
-					lSpare[from * n + j] -= row;
+				for (let j = 0; j < last; j++) {
+					const row = k * term[at * n + j];
+					lSpare[at * n + j] -= row;
 					for (let p = 0; p < products.length; p++)
-						lSpare[products[p].to * n + j] += row * products[p].coefficient;
+						lSpare[this.place[products[p].to] * n + j] += row * products[p].coefficient;
 				}
-				for (let i = 0; i < n * n; i++) l[block + i] += lTerm[block + i] = lSpare[i] / m;
+				for (let i = first; i < n; i++)
+					for (let j = i * n; j < i * n + last; j++) l[block + j] += lTerm[block + j] = lSpare[j] / m;
 			}
-			product(a, 0, term, 0, n, spare);
+			this.product(a, 0, term, 0, spare, 0, n);
 			for (let i = 0; i < n * n; i++) e[i] += term[i] = spare[i] / m;
 		}
 	}
-}
-
-/** out = X Y for n × n row-major blocks that begin at the offsets. */
-function product(
-	x: Float64Array,
-	xFrom: number,
-	y: Float64Array,
-	yFrom: number,
-	n: number,
-	out: Float64Array
-): void {
-	for (let i = 0; i < n; i++)
-		for (let j = 0; j < n; j++) {
-			let sum = 0;
-			for (let l = 0; l < n; l++) sum += x[xFrom + i * n + l] * y[yFrom + l * n + j];
-			out[i * n + j] = sum;
-		}
 }
 
 /** out[target + i] += Σ_j X_ij v_j. */
