@@ -165,6 +165,48 @@ describe('the numbers of the workbook, recalculated by an independent spreadshee
 		).toHaveLength(3);
 	});
 
+	it('takes the response factor that a run states, also where runs differ', async () => {
+		const data = rows.slice(1, 8);
+		const factor = (value: number) => [
+			{ id: 'A', weights: { A: 1 }, unit: 'mol/L' },
+			{ id: 'B', weights: { B: 1 }, unit: 'mol/L', responseFactor: { value, unit: '1' } },
+			{ id: 'C', weights: { C: 1 }, unit: 'mol/L' }
+		];
+		for (const [first, second] of [
+			[1.1, 1.3],
+			[1, 1.3]
+		]) {
+			const asked = request(
+				[step('s1', 'A', 'B', 1), step('s2', 'B', 'C', 1, 1)],
+				[
+					first === 1 ? run('r1', 50, data) : { ...run('r1', 50, data), channels: factor(first) },
+					{ ...run('r2', 50, data), channels: factor(second) }
+				]
+			);
+			const { book, layout } = await numbers(asked, fit(asked));
+			expectStoredValues(book);
+			for (const check of layout.checks)
+				expect(book.value(check.sheet, check.cell.replaceAll('$', '')), check.sheet).toBe(true);
+		}
+	});
+
+	it('holds its checks where rates differ by nine decades, with the tolerance that such a ladder has', async () => {
+		const fixed = ['s1.forward.kRef', 's1.reverse.kRef', 's2.forward.kRef'];
+		const data = [0.01, 1, 100, 1000].map((t) => [t, 0.25, 0.25, 0.01]);
+		const asked = request(
+			[step('s1', 'A', 'B', 3.6e6, 3.6e6), step('s2', 'B', 'C', 3.6e-3)],
+			[run('r1', 50, data)],
+			{ fixed }
+		);
+		const report = fit(asked);
+		const { book, layout } = await numbers(asked, report);
+		for (const check of layout.checks)
+			expect(book.value(check.sheet, check.cell.replaceAll('$', '')), check.sheet).toBe(true);
+		// A changed constant is still seen: A and B fall with half the slow constant.
+		book.set(SHEETS.parameters, book.beside(SHEETS.parameters, 's2.forward.kRef'), 4e-3);
+		expect(book.value(SHEETS.residuals, 'B9')).toBe(false);
+	});
+
 	it('uses nothing but plain functions: no array, volatile or linking ones', async () => {
 		const { book } = await numbers(clean, report);
 		const used = new Set(book.formulas.flatMap((f) => f.formula.match(/[A-Z][A-Z.]*(?=\()/g) ?? []));

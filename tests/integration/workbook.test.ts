@@ -137,6 +137,12 @@ describe('the QA workbook of a validated recipe', () => {
 		expect(sheets.every((xml) => /<oddFooter>.*&amp;P\/&amp;N/.test(xml))).toBe(true);
 	});
 
+	it('has a style part that strict readers accept', () => {
+		const styles = strFromU8(unzipSync(new Uint8Array(bytes))['xl/styles.xml']);
+		expect(styles).not.toMatch(/<fill\/>|<fill><\/fill>|<numFmts\/>/);
+		for (const [, colour] of styles.matchAll(/rgb="([^"]*)"/g)) expect(colour).toMatch(/^[0-9A-F]{8}$/);
+	});
+
 	it('is kept byte for byte, on the audit trail, for QA and group lead alone', async () => {
 		const kept = await WorkbookExport.findAll({ where: { groupId: group.id } });
 		expect(kept).toHaveLength(1);
