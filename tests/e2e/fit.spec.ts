@@ -1,0 +1,161 @@
+/** Fits in the browser: long work that may be left, cancelled and found again; failures that come before anything good. */
+import { expect, test, type Page } from '@playwright/test';
+import { expectAccessible } from './accessibility';
+import { ONE_WAY, REVERSIBLE, contentOf, studyWith } from './drawn';
+import { PEOPLE, signIn, watchConsole } from './support';
+import { confirmSheet, startFit, upload } from './story';
+
+const SHEETS = { clean: 'tests/fixtures/s01_clean_50C.csv', hidden: 'tests/fixtures/s09_autocat.csv' };
+
+/** The newest fit begun with a search wide enough to be watched. */
+async function startLongFit(page: Page, study: string): Promise<string> {
+	await page.goto(`/studies/${study}/fit`, { waitUntil: 'networkidle' });
+	await page.getByText('Charges, energies, error model, search').click();
+	await page.getByLabel('Starting points').fill('500');
+	await page.getByLabel('Seed of the search').fill(String(1 + (Date.now() % 100_000)));
+	await page.getByRole('button', { name: 'Start the fit' }).click();
+	await expect(page).toHaveURL(/\/fit\/[0-9a-f-]{36}/);
+	return page.url();
+}
+
+/** Readings of a probe every few seconds, made up: enough of them to keep a wide search busy for a while. */
+function probeSheet(): Buffer {
+	const lines = ['Time (h),A (mol/L),B (mol/L),C (mol/L)'];
+	for (let i = 1; i <= 3000; i++) {
+		const t = i / 250;
+		const a = 0.5 * Math.exp(-0.8 * t) + 0.004 * Math.sin(12.9898 * i);
+		const b =
+			0.5 * (1 - Math.exp(-0.8 * t)) * (0.25 + 0.75 * Math.exp(-0.4 * t)) + 0.004 * Math.sin(78.233 * i);
+		lines.push([t, a, b, 0.5 - a - b].map((x) => Math.max(x, 0.0004).toFixed(5)).join(','));
+	}
+	return Buffer.from(lines.join('\n'));
+}
+
+async function studyOf(page: Page, name: string, sheet: Parameters<typeof upload>[2]): Promise<string> {
+	await signIn(page, PEOPLE.chemist);
+	const study = await studyWith(page, name, REVERSIBLE);
+	await upload(page, study, sheet);
+	await confirmSheet(page, { celsius: '50', charge: { 'A, HX-14': '0.5' } });
+	return study;
+}
+
+test('a long fit shows its progress, goes on while the page is left, and is cancelled on the record', async ({
+	page
+}) => {
+	const errors = watchConsole(page);
+	const study = await studyOf(page, 'A long search', {
+		name: 'probe.csv',
+		mimeType: 'text/csv',
+		buffer: probeSheet()
+	});
+	const fit = await startLongFit(page, study);
+	const bar = page.getByRole('progressbar');
+	await expect(bar).toBeVisible();
+	await expect(page.getByText(/% of the work/)).toBeVisible();
+	await expectAccessible(page, 'a running fit');
+	await page.goto('/studies');
+	await page.goto(`/studies/${study}/fit`, { waitUntil: 'networkidle' });
+	await expect(
+		page
+			.getByRole('row')
+			.filter({ hasText: /running|waiting/i })
+			.first()
+	).toBeVisible();
+	await page.goto(fit, { waitUntil: 'networkidle' });
+	await expect(bar).toBeVisible();
+	await page.getByRole('button', { name: 'Cancel', exact: true }).click();
+	await expect(page.getByText('The fit was cancelled')).toBeVisible();
+	await page.goto(`/studies/${study}/fit`);
+	await expect(page.getByRole('row').filter({ hasText: /cancelled/i })).toHaveCount(1);
+	expect(errors).toEqual([]);
+});
+
+test('equal inputs lead to the fit that is there; two fits stand side by side', async ({ page }) => {
+	const errors = watchConsole(page);
+	const study = await studyOf(page, 'Equal fits', SHEETS.clean);
+	await page.goto(`/studies/${study}/fit`, { waitUntil: 'networkidle' });
+	await startFit(page);
+	const first = page.url();
+	await page.goto(`/studies/${study}/fit`, { waitUntil: 'networkidle' });
+	await page.getByRole('button', { name: 'Start the fit' }).click();
+	await expect(page.getByText(/were fitted before; this is that fit/)).toBeVisible();
+	expect(page.url().split('?')[0]).toBe(first.split('?')[0]);
+
+	await page.goto(`/studies/${study}/scheme`, { waitUntil: 'networkidle' });
+	await page.getByRole('button', { name: 'Step 2 runs both ways' }).click();
+	await expect(page.getByRole('status').filter({ hasText: /^Saved/ })).toBeVisible();
+	await page.goto(`/studies/${study}/fit`, { waitUntil: 'networkidle' });
+	await page.getByRole('button', { name: 'Start the fit' }).click();
+	await expect(page.getByRole('heading', { name: 'Constants at 50 °C' })).toBeVisible({ timeout: 60_000 });
+	await page.goto(`/studies/${study}/fit`, { waitUntil: 'networkidle' });
+	await expect(page.getByRole('button', { name: 'Compare the chosen fits' })).toBeDisabled();
+	for (const number of [1, 2]) await page.getByRole('checkbox', { name: `Compare fit ${number}` }).check();
+	await page.getByRole('button', { name: 'Compare the chosen fits' }).click();
+	await expect(page.getByRole('heading', { name: 'Figures and constants' })).toBeVisible();
+	// Story H1: the irreversible second step is AICc 145 worse.
+	const difference = page.getByRole('row', { name: /^AICc above the lowest/ });
+	await expect(difference).toContainText('0.0');
+	await expect(difference).toContainText(/14[3-7]\.\d/);
+	expect(errors).toEqual([]);
+});
+
+test('a hidden autocatalysis: the failure stands before any constant (story H9)', async ({ page }) => {
+	await signIn(page, PEOPLE.chemist);
+	const study = await studyWith(page, 'Hidden autocatalysis', contentOf([{ from: 'A', to: 'B', k: 0.5 }]));
+	await upload(page, study, SHEETS.hidden);
+	for (const column of ['B1', 'C1']) {
+		const question = page.locator('[data-finding]', {
+			has: page.getByRole('button', { name: column, exact: true })
+		});
+		await question.getByRole('button', { name: 'It is …' }).click();
+		await question.getByRole('combobox', { name: 'Species' }).selectOption({ label: 'A (HX-14)' });
+		await question.getByRole('button', { name: 'Take it' }).click();
+	}
+	await answerEverything(page);
+	await page.goto(`/studies/${study}/fit`, { waitUntil: 'networkidle' });
+	await page.getByText('Charges, energies, error model, search').click();
+	await page.getByLabel('Error model').selectOption('replicates');
+	await page.getByRole('button', { name: 'Start the fit' }).click();
+	const first = page.locator('#main').getByRole('heading', { level: 2 }).first();
+	await expect(first).toHaveText('This scheme does not describe these data as it stands', {
+		timeout: 60_000
+	});
+	// Lack of fit of the story, computed for the design brief: F 45.4 on 8 and 9 degrees of freedom, critical value 3.23.
+	await expect(
+		page.getByText(/F = 45\.4 on 8 and 9 degrees of freedom, critical value 3\.23/).first()
+	).toBeVisible();
+	await expect(page.getByText(/autocatalysis/i).first()).toBeVisible();
+	await expect(page.getByText(/needs a written justification/)).toBeVisible();
+	await expect(page.getByText(/\bsafe\b|good fit|\bpass(ed)?\b/i)).toHaveCount(0);
+});
+
+test('a signal of B alone gives two answers, and the fit refuses to choose (story H3)', async ({ page }) => {
+	await signIn(page, PEOPLE.chemist);
+	const study = await studyWith(page, 'Signal of B alone', ONE_WAY);
+	await upload(page, study, 'tests/fixtures/s03_B_signal_only.csv');
+	await page.getByRole('button', { name: 'Let the fit find the response factor' }).click();
+	await answerEverything(page);
+	await page.goto(`/studies/${study}/fit`, { waitUntil: 'networkidle' });
+	await page.getByRole('button', { name: 'Start the fit' }).click();
+	await expect(
+		page.getByRole('heading', { name: 'These data have more than one answer, so none is given' })
+	).toBeVisible({ timeout: 60_000 });
+	const main = page.locator('#main');
+	await expect(main).toContainText(/0\.80/);
+	await expect(main).toContainText(/0\.15/);
+	await expect(main).toContainText(/5\.3/);
+	await expect(page.getByRole('heading', { name: /are determined by these data/ })).toHaveCount(0);
+});
+
+/** Takes the first answer of each question left and the charge of the invented reaction, then makes the run. */
+async function answerEverything(page: Page): Promise<void> {
+	const next = page.getByRole('button', { name: 'Next open question' });
+	for (let i = 0; i < 8 && (await next.isVisible()); i++) {
+		await next.click();
+		await page.keyboard.press('Space');
+	}
+	await page.getByRole('textbox', { name: 'Temperature', exact: true }).fill('50');
+	await page.getByRole('group', { name: 'Charge at time zero' }).getByRole('textbox').first().fill('1');
+	await page.getByRole('button', { name: /^Make run/ }).click();
+	await expect(page).toHaveURL(/\/data\/runs\//);
+}
