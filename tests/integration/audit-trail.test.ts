@@ -175,7 +175,8 @@ describe('the database', () => {
 		const raw = (sql: string) => db.database().sequelize.query(sql);
 		for (const sql of [
 			"UPDATE audit_events SET reason = 'x' WHERE seq = 1",
-			'DELETE FROM audit_events WHERE seq = 1'
+			'DELETE FROM audit_events WHERE seq = 1',
+			'INSERT OR REPLACE INTO audit_events SELECT * FROM audit_events WHERE seq = 1'
 		])
 			await expect(raw(sql)).rejects.toMatchObject({
 				parent: { message: expect.stringContaining('append-only') as string }

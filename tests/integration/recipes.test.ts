@@ -287,6 +287,9 @@ describe('review and signature', () => {
 		const content = { ...view.shown.content, other: 'slipped in' };
 		const change = write((tx) => RecipeVersion.update({ content }, { where: { id }, transaction: tx }));
 		await expect(change).rejects.toThrow();
+		await expect(
+			write((tx) => RecipeVersion.update({ state: 'draft' }, { where: { id }, transaction: tx }))
+		).rejects.toThrow();
 		await expect(write((tx) => RecipeVersion.destroy({ where: { id }, transaction: tx }))).rejects.toThrow();
 		expect((await RecipeVersion.findByPk(id))?.content).not.toHaveProperty('other', 'slipped in');
 	});
