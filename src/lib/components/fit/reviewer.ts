@@ -1,5 +1,6 @@
 import type { FitReport } from '$lib/schemas/fit';
 import { significant } from '$lib/client/numbers';
+import { isAmbiguous } from './solutions';
 import { undetermined } from './words';
 
 export interface ReviewerRow {
@@ -66,9 +67,16 @@ function determined(report: FitReport): ReviewerRow {
 	const fitted = report.fittedIds.length;
 	const values = report.singularValues;
 	const spread = values.length > 1 ? values[0] / values[values.length - 1] : null;
+	const size =
+		spread !== null && Number.isFinite(spread)
+			? ` (largest to smallest singular value ${significant(spread, 2)})`
+			: '';
+	const count = open ? `${fitted - open} of ${fitted}` : fitted === 1 ? 'the one' : `all ${fitted}`;
 	return {
 		label: 'Determined',
-		value: `${open === 0 ? `all ${fitted} fitted constants` : `${fitted - open} of ${fitted} fitted constants`}${spread !== null && Number.isFinite(spread) ? ` (largest to smallest singular value ${significant(spread, 2)})` : ''}`,
+		value: isAmbiguous(report)
+			? `no: ${report.alternatives.length + 1} solutions, some fit alike`
+			: `${count} fitted ${fitted === 1 ? 'constant' : 'constants'}${size}`,
 		ask: 'Does each constant have a limit on both sides, or could it be anything?'
 	};
 }

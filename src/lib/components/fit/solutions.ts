@@ -1,5 +1,5 @@
 /** The distinct minima of a search as rows to compare, and the sample that would decide between those that fit alike. */
-import type { FitReport } from '$lib/schemas/fit';
+import type { FitFinding, FitReport } from '$lib/schemas/fit';
 import type { SchemeContent } from '$lib/schemas/scheme';
 import { inPlainWords } from './words';
 
@@ -44,3 +44,11 @@ export function decidingWords(
 	const sentence = /One sample would decide:.*$/.exec(message ?? '')?.[0];
 	return sentence ? inPlainWords(sentence, scheme, runNames) : null;
 }
+
+/** A caution about heat that must stand beside the failure that it explains. */
+export const isDanger = (finding: FitFinding): boolean =>
+	finding.code === 'acceleration' && finding.level !== 'stop';
+
+/** Whether several solutions fit alike, so that none is the answer. */
+export const isAmbiguous = (report: FitReport): boolean =>
+	report.findings.some((f) => f.code === 'ambiguous-solutions');

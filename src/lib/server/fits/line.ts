@@ -11,8 +11,9 @@ export function undetermined(report: FitReport): string[] {
 	return [...new Set([...named, ...open.map((p) => p.id)])];
 }
 
-/** Unit of the residuals, where every column has the same. */
+/** Unit of s, where every column has the same; under weights other than constant ones s is a bare number. */
 function unitOf(request: FitRequest | undefined): string {
+	if (request?.options.weighting.model !== 'constant') return '';
 	const units = new Set(request?.runs.flatMap((run) => run.channels.map((c) => c.unit)));
 	return units.size === 1 ? ` ${[...units][0]}` : '';
 }

@@ -19,7 +19,13 @@ export const load = page(async (event: PageServerLoadEvent) => {
 	const runIds = preset?.runIds ?? query.getAll('run');
 	if (!schemeId || runIds.length === 0)
 		throw new AppError('invalid', 'Choose a scheme and at least one run on the fit page first.');
-	const plan = await planFit(actor, { studyId: study, schemeId, runIds, settings: preset?.parameters });
+	const plan = await planFit(actor, {
+		studyId: study,
+		schemeId,
+		runIds,
+		settings: preset?.parameters,
+		options: begun?.request.options
+	});
 	const estimates = Object.fromEntries((begun?.report?.parameters ?? []).map((p) => [p.id, p.estimate]));
 	return {
 		request: plan.request,
