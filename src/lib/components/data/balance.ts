@@ -1,6 +1,7 @@
 /** Mass balance of a run: the sum of what is assayed, in % of the charge, where such a sum means anything. */
 import { isFitted } from '$lib/schemas/quantity';
 import type { RunContent } from '$lib/schemas/run';
+import { slopeWithInterval, type Slope } from '$lib/assay/statistics';
 import { toSi, UnitError } from '$lib/kinetics/units';
 
 export interface BalanceRow {
@@ -69,4 +70,37 @@ export function balanceOf(content: RunContent): Balance | null {
 		highest: Math.max(...percents),
 		basis: charge === null ? 'the first complete row' : 'the charge'
 	};
+}
+
+export interface BalanceTrend {
+	/** % per time unit, with its 95 % interval. */
+	slope: Slope;
+	line: { x: [number, number]; y: [number, number] };
+}
+
+/** Straight line through the balance by least squares; null below three rows or at one single time. */
+export function balanceTrend(balance: Balance): BalanceTrend | null {
+	const x = balance.rows.map((row) => row.time);
+	const y = balance.rows.map((row) => row.percent);
+	const slope = slopeWithInterval(x, y);
+	if (!slope) return null;
+	const mean = (list: number[]) => list.reduce((sum, v) => sum + v, 0) / list.length;
+	const [mx, my] = [mean(x), mean(y)];
+	const ends: [number, number] = [Math.min(...x), Math.max(...x)];
+	const at = (t: number) => my + slope.value * (t - mx);
+	return { slope, line: { x: ends, y: [at(ends[0]), at(ends[1])] } };
+}
+
+const signed = (n: number): string => `${n < 0 ? '−' : '+'}${Math.abs(Number(n.toPrecision(3)))}`;
+
+export function trendWords(trend: BalanceTrend | null, timeUnit: string): string {
+	if (!trend) return 'Too few complete rows for a trend.';
+	const { value, low, high } = trend.slope;
+	const range = `${signed(value)} % per ${timeUnit} (95 % interval ${signed(low)} to ${signed(high)})`;
+	if (low <= 0 && high >= 0) return `It changes by ${range}: no trend beyond the scatter.`;
+	const cause =
+		value < 0
+			? 'A species that is not seen, or a loss, would look like this.'
+			: 'Evaporation of solvent would look like this.';
+	return `It changes by ${range}: a trend. ${cause}`;
 }

@@ -24,6 +24,7 @@ import type {
 import type { SheetWork, TableWork } from '$lib/schemas/sheet-work';
 import { DrawnTables } from './drawn';
 import { litCells } from './lit';
+import { stamp } from './stamp';
 
 export interface DeskInput {
 	sheetId: string;
@@ -35,6 +36,10 @@ export interface DeskInput {
 	/** Keys of the tables that are runs already. */
 	confirmed: string[];
 	canWrite: boolean;
+	/** Name that a correction carries until the service has signed it. */
+	me: string;
+	/** Told after each save; what else shows the count of open questions can ask for it anew. */
+	onsaved?: () => void;
 }
 
 interface Conflict {
@@ -166,9 +171,22 @@ export class Desk {
 		this.change({ mapping: { ...mapping, headerRows, block: { ...mapping.block, firstRow, lastRow } } });
 	}
 
+	/** Another block counts as the data; columns that are new to it are proposed like any other. */
+	setBlock(block: Block): void {
+		if (!this.own) return;
+		const { mapping } = this.own;
+		const headerRows = mapping.headerRows.filter((r) => r < block.firstRow);
+		const kept = mapping.columns.filter((c) => c.column >= block.firstColumn && c.column <= block.lastColumn);
+		const proposed = this.drawn.columnsOf({ key: 'edge', sheet: mapping.sheet, block, headerRows });
+		const added = proposed.filter((c) => !kept.some((k) => k.column === c.column));
+		const columns = [...kept, ...added].sort((a, b) => a.column - b.column);
+		this.change({ mapping: { ...mapping, headerRows, block, columns } }, 'block');
+	}
+
 	correct(cell: string, original: string, corrected: string, reason: string): void {
 		const sheet = this.own?.mapping.sheet ?? '';
-		this.change({ corrections: [...this.without(cell), { sheet, cell, original, corrected, reason }] });
+		const [by, at] = [this.input.me, stamp()];
+		this.change({ corrections: [...this.without(cell), { sheet, cell, original, corrected, reason, by, at }] });
 	}
 	uncorrect(cell: string): void {
 		this.change({ corrections: this.without(cell) });
@@ -220,7 +238,10 @@ export class Desk {
 			body: JSON.stringify({ work })
 		});
 		const body = (await response.json()) as { version: number; code?: string; detail?: string; data?: Conflict };
-		if (response.ok) return { kind: 'saved', version: body.version };
+		if (response.ok) {
+			this.input.onsaved?.();
+			return { kind: 'saved', version: body.version };
+		}
 		if (body.code === 'version-changed' && body.data) return { kind: 'conflict', theirs: body.data };
 		const again = response.status >= 500 || response.status === 429;
 		return { kind: 'failed', message: body.detail ?? 'the service refused it', again };

@@ -1,6 +1,6 @@
 import { proposeBlock } from '$lib/assay';
 import type { SpeciesContent } from '$lib/schemas/scheme';
-import type { Block, GridWorkbook, SavedMapping, TableProposal } from '$lib/schemas/sheet';
+import type { Block, ColumnMapping, GridWorkbook, SavedMapping, TableProposal } from '$lib/schemas/sheet';
 
 export interface DrawnPlace {
 	key: string;
@@ -18,6 +18,12 @@ export class DrawnTables {
 		private readonly species: SpeciesContent[],
 		private readonly saved: SavedMapping[]
 	) {}
+
+	/** Columns of a block as the reader would propose them; nothing is kept. */
+	columnsOf({ key, sheet, block, headerRows }: DrawnPlace): ColumnMapping[] {
+		const { workbook, species, saved } = this;
+		return proposeBlock(workbook, species, sheet, block, headerRows, key, { saved })?.mapping.columns ?? [];
+	}
 
 	propose({ key, sheet, block, headerRows }: DrawnPlace): TableProposal | null {
 		const before = this.tables.get(key);

@@ -19,6 +19,7 @@ export function valueText(value: AssayValue | undefined): string {
 /** What a revision changed, for a person: quantities and lists in words, never raw records. */
 export function changeText(value: unknown): string {
 	if (value === null || value === undefined) return 'nothing';
+	if (typeof value === 'boolean') return value ? 'yes' : 'no';
 	if (typeof value === 'string' || typeof value === 'number') return String(value);
 	if (typeof value !== 'object') return JSON.stringify(value);
 	if ('value' in value && 'unit' in value) return quantityText(value as Quantity);

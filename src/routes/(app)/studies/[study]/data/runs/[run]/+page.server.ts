@@ -4,6 +4,7 @@ import { exclusionSchema } from '$lib/schemas/run';
 import { AppError } from '$lib/server/errors';
 import { requireActor } from '$lib/server/hooks/actor';
 import { page } from '$lib/server/http';
+import { chooseTemperature } from '$lib/server/runs/choose-temperature';
 import { excludePoint } from '$lib/server/runs/exclude-point';
 import { readRun } from '$lib/server/runs/read-run';
 import { restorePoint } from '$lib/server/runs/restore-point';
@@ -20,6 +21,11 @@ const place = z.object({
 	index: z.coerce.number().int().nonnegative(),
 	/** Empty: the whole row. */
 	channel: z.string().transform((text) => text || null),
+	reason: z.string()
+});
+const program = z.object({
+	version: z.coerce.number().int().positive(),
+	use: z.enum(['log', 'stated']),
 	reason: z.string()
 });
 const exclusion = place.extend({ reasonCode: exclusionSchema.shape.reasonCode });
@@ -43,6 +49,12 @@ export const actions = {
 		const actor = requireActor(event);
 		const form = exclusion.parse(Object.fromEntries(await event.request.formData()));
 		return attempt(() => excludePoint(actor, { ...form, runId: event.params.run }));
+	}),
+	program: page(async (event: RequestEvent) => {
+		const actor = requireActor(event);
+		const { use, ...form } = program.parse(Object.fromEntries(await event.request.formData()));
+		const useLog = use === 'log';
+		return attempt(() => chooseTemperature(actor, { ...form, useLog, runId: event.params.run }));
 	}),
 	restore: page(async (event: RequestEvent) => {
 		const actor = requireActor(event);
