@@ -25,8 +25,11 @@ const sticksOut = (page: Page) =>
 	page.evaluate(() => {
 		const { scrollWidth, clientWidth } = document.documentElement;
 		if (scrollWidth <= clientWidth) return [];
+		// What scrolls within itself does not widen the page.
+		const scrolls = (e: Element | null): boolean =>
+			e !== null && (getComputedStyle(e).overflowX !== 'visible' || scrolls(e.parentElement));
 		const wide = [...document.querySelectorAll('body *')].filter(
-			(e) => e.getBoundingClientRect().right > clientWidth + 1
+			(e) => e.getBoundingClientRect().left + e.scrollWidth > clientWidth + 1 && !scrolls(e.parentElement)
 		);
 		const name = (e: Element) => `${e.tagName.toLowerCase()}.${[...e.classList].join('.')}`;
 		return [`${scrollWidth} px wide:`, ...wide.slice(-4).map(name)];

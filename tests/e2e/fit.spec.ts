@@ -125,7 +125,7 @@ test('a hidden autocatalysis: the failure stands before any constant (story H9)'
 		page.getByText(/F = 45\.4 on 8 and 9 degrees of freedom, critical value 3\.23/).first()
 	).toBeVisible();
 	await expect(page.getByText(/autocatalysis/i).first()).toBeVisible();
-	await expect(page.getByText(/needs a written justification/)).toBeVisible();
+	await expect(page.getByText(/A recipe on this fit needs a written/)).toBeVisible();
 	await expect(page.getByText(/\bsafe\b|good fit|\bpass(ed)?\b/i)).toHaveCount(0);
 });
 
