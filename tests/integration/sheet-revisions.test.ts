@@ -4,6 +4,7 @@ import { makeWork } from './support/work';
 import { Mapping, type Group } from '../../src/lib/server/database/models';
 import { planFit } from '../../src/lib/server/fits/plan-fit';
 import type { Actor } from '../../src/lib/server/policy';
+import { chooseTemperature } from '../../src/lib/server/runs/choose-temperature';
 import { excludePoint } from '../../src/lib/server/runs/exclude-point';
 import { readRun } from '../../src/lib/server/runs/read-run';
 import { compareSheets } from '../../src/lib/server/sheets/compare-sheets';
@@ -224,5 +225,26 @@ describe('what is decided on a sheet', () => {
 		const { made } = await runOf(studyId, 'clean.csv', CLEAN, { seenInLab });
 		const { content } = await readRun(chemist, made.id);
 		expect(content.conversions?.at(-1)).toContain(`confirmed as seen in the lab: ${seenInLab}`);
+	});
+});
+
+describe('which temperature counts', () => {
+	it('is changed later as a revision with a reason, and only where it is a change', async () => {
+		const { studyId } = await work();
+		const { made } = await runOf(studyId, 'logged.csv', logged(57.3));
+		const ask = { runId: made.id, reason: 'The probe hung in the vapour.' };
+		await expect(chooseTemperature(chemist, { ...ask, version: 1, useLog: true })).rejects.toMatchObject({
+			code: 'wrong-state'
+		});
+		await chooseTemperature(chemist, { ...ask, version: 1, useLog: false });
+		const { content, revisions } = await readRun(chemist, made.id);
+		expect(content.useTemperatureLog).toBe(false);
+		expect(revisions[0]).toMatchObject({
+			reason: ask.reason,
+			differences: [{ field: 'temperature log as the program in fits', from: true, to: false }]
+		});
+		await expect(chooseTemperature(chemist, { ...ask, version: 1, useLog: true })).rejects.toMatchObject({
+			code: 'version-changed'
+		});
 	});
 });
