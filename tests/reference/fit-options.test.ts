@@ -48,7 +48,7 @@ describe.each(cases)('$name', (entry) => {
 		expect(report.parameters.map((p) => p.id).sort()).toEqual(Object.keys(expected.parameters).sort());
 		for (const { id, estimate, standardError } of report.parameters) {
 			const [value, error] = expected.parameters[id];
-			expect(relative(estimate, value), `${id}: ${estimate} for ${value}`).toBeLessThan(3e-8);
+			expect(relative(estimate, value), `${id}: ${estimate} for ${value}`).toBeLessThan(1e-9);
 			if (error === null) expect(standardError).toBeNull();
 			else expect(relative(standardError!, error), `error of ${id}`).toBeLessThan(1e-7);
 		}

@@ -46,6 +46,11 @@ export interface LeastSquaresOptions {
 	maxEvaluations?: number;
 	/** First trust radius as a multiple of ‖D x₀‖ (or itself where that is zero). */
 	factor?: number;
+	/**
+	 * Full Gauss–Newton steps after the sum of squares has stopped changing, kept while they at least halve the optimality: the
+	 * sum shows a parameter to the square root of rounding only, the gradient shows it to rounding. 0 unless given.
+	 */
+	polish?: number;
 	/** Asked before every evaluation; true stops at once with status 'cancelled'. */
 	cancelled?: () => boolean;
 }
@@ -168,7 +173,10 @@ class Search {
 		w.scale.fill(0);
 		for (;;) {
 			const status = this.iterate();
-			if (status) return this.finish(status);
+			if (!status) continue;
+			if (status !== 'cancelled' && status !== 'evaluations')
+				for (let k = 0; k < (this.options.polish ?? 0) && this.polish(); k++);
+			return this.finish(status);
 		}
 	}
 
@@ -205,6 +213,35 @@ class Search {
 			}
 			if (verdict) return verdict;
 		}
+	}
+
+	/** One full step; kept, and true, where it at least halves the optimality and the sum of squares stays. */
+	private polish(): boolean {
+		const { w, problem } = this;
+		this.measure();
+		const before = this.optimality;
+		if (!(before > this.gtol) || this.freeCount === 0) return false;
+		w.trust.factor(w.jacobians[this.current], w.residuals[this.current], w.free, this.freeCount);
+		this.mu = 0;
+		this.radius = Number.MAX_VALUE;
+		this.propose();
+		if (this.clipped || this.options.cancelled?.()) return false;
+		const next = 1 - this.current;
+		this.evaluations++;
+		if (!problem.evaluate(w.trial, w.residuals[next], w.jacobians[next])) return false;
+		const ssr = norm(w.residuals[next]) ** 2;
+		if (!(ssr <= this.ssr * (1 + 1e-13)) || !finite(w.jacobians[next])) return false;
+		const held = { x: w.x.slice(), ssr: this.ssr };
+		w.x.set(w.trial);
+		this.ssr = ssr;
+		this.current = next;
+		this.measure();
+		if (this.optimality <= 0.5 * before) return true;
+		w.x.set(held.x);
+		this.ssr = held.ssr;
+		this.current = 1 - next;
+		this.measure();
+		return false;
 	}
 
 	/** Gradient, column norms, free set and optimality at the current point. */

@@ -70,7 +70,7 @@ export function searchMinima(
 		const fine = leastSquares(
 			model,
 			candidate.result.x,
-			{ ...common, maxEvaluations: 400, factor: 10 },
+			{ ...common, maxEvaluations: 400, factor: 10, polish: 6 },
 			workspace
 		);
 		evaluations += fine.evaluations;
