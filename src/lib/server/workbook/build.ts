@@ -69,14 +69,24 @@ function writeText(open: (name: string) => SheetWriter, input: WorkbookInput, la
 	writeAssumptions(open(SHEETS.assumptions), input);
 }
 
-/** Every page of a print carries record and version. */
+/** Every page of a print carries record and version; a sheet is as wide as a page, but for the one that would be too small to read. */
 function printSetup(workbook: Workbook, input: WorkbookInput): void {
 	const footer = `&L${escapeFooter(`${input.recipe.id} v${input.shown.number}`)}&CUncontrolled when printed&R&P/&N`;
 	for (const sheet of workbook.sheets()) {
 		const internals = sheet as unknown as {
-			_sheetDataNode?: unknown;
+			_sheetPrNode?: { children: unknown[] };
 			_node?: { children: { name: string; attributes?: object; children?: unknown[] }[] };
 		};
+		const attributes: Record<string, unknown> = { paperSize: 9, orientation: 'landscape' };
+		if (sheet.name() !== SHEETS.verify) {
+			Object.assign(attributes, { fitToWidth: 1, fitToHeight: 0 });
+			internals._sheetPrNode?.children.push({
+				name: 'pageSetUpPr',
+				attributes: { fitToPage: 1 },
+				children: []
+			});
+		}
+		internals._node?.children.push({ name: 'pageSetup', attributes, children: [] });
 		internals._node?.children.push({
 			name: 'headerFooter',
 			attributes: {},
