@@ -118,7 +118,10 @@ test('from a scheme dragged with the mouse to a recipe that a second person vali
 		.click();
 	await expect(reader.getByRole('button', { name: /Pilot Hall/ })).toBeVisible();
 	await reader.goto('/shared');
-	await reader.getByRole('link', { name: /Ring closure of the story/ }).first().click();
+	await reader
+		.getByRole('link', { name: /Ring closure of the story/ })
+		.first()
+		.click();
 	await expect(reader.getByRole('heading', { name: /Ring closure of the story/ }).first()).toBeVisible();
 	await reader.goto(`/studies/${study}/scheme`);
 	await expect(reader.getByRole('heading', { level: 1 })).toContainText(/not found/i);

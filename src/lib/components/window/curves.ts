@@ -24,7 +24,7 @@ export function windowSeries(
 	end: number
 ): ChartSeries[] {
 	const times = Array.from({ length: 200 }, (_, i) => (end * i) / 199);
-	const { series } = predict(report, fit, windowRun(request, fit), times);
+	const { series } = predict(report, fit, windowRun(request, fit), times, { foreign: true });
 	return fit.species.flatMap((s, i) => {
 		const found = series.find((p) => p.kind === 'species' && p.id === s.id);
 		if (!found) return [];

@@ -82,6 +82,6 @@ export function analyse(task: AnalysisTask, hooks: FitHooks = {}): unknown {
 	const only = task.run.channels.map((c) => c.id);
 	return {
 		confirmation: confirmationRun(report, request, task.run),
-		curves: predict(report, request, task.run, task.times, { only })
+		curves: predict(report, request, task.run, task.times, { only, foreign: true })
 	} satisfies ConfirmedPrediction;
 }
