@@ -136,3 +136,57 @@ describe('ways of writing numbers', () => {
 		expect([asked, values('B')]).toEqual([[], [0, 0.1, 0.2, 0.3]]);
 	});
 });
+
+describe('a date column beside the times of day', () => {
+	const rows =
+		'Date;Time;A (mol/L)\n30.01.2026;09:00;0,5\n;21:00;0,4\n31.01.2026;10:00;0,3\n02.02.2026;10:00;0,2\n';
+
+	it('is read together with them, so that 10:00 of the next day is 25 h and not 1 h (B16)', () => {
+		const workbook = csv(rows);
+		const mapping = { ...propose(workbook, species).tables[0].mapping, conditions };
+		const first = settle({ workbook, species, mapping });
+		const [open] = first.findings.filter((f) => f.open);
+		expect(open.message).toBe(
+			'Column A holds dates (30.01.2026 to 02.02.2026) beside the times in column B. Times of day on these dates?'
+		);
+		expect(first.preview.map((p) => p.time)).toEqual([null, null, null, null]);
+		const answers = { [open.id]: { key: 'together' } };
+		const [start] = settle({ workbook, species, mapping, answers }).findings.filter((f) => f.open);
+		expect(start.rule).toBe('B16');
+		const { run } = settle({
+			workbook,
+			species,
+			mapping,
+			answers: { ...answers, [start.id]: { key: 'first' } }
+		});
+		expect([run?.timeUnit, run?.timepoints.map((p) => p.time)]).toEqual(['h', [0, 12, 25, 73]]);
+	});
+
+	it('stored as cells of a workbook: whole days and parts of a day', () => {
+		const day = (v: number) => ({ v, format: 'dd.mm.yyyy' });
+		const clock = (v: number) => ({ v, format: 'hh:mm' });
+		const workbook = book([
+			['Date', 'Time', 'A (mol/L)'],
+			[day(46052), clock(0.375), 0.5],
+			[day(46053), clock(0.375), 0.4],
+			[day(46053), clock(0.75), 0.3]
+		]);
+		const mapping = { ...propose(workbook, species).tables[0].mapping, conditions };
+		const [open] = settle({ workbook, species, mapping }).findings.filter((f) => f.open);
+		const { preview, findings } = settle({
+			workbook,
+			species,
+			mapping,
+			answers: { [open.id]: { key: 'together' }, 'B16:Data!start': { key: 'first' } }
+		});
+		expect(findings.filter((f) => f.open)).toEqual([]);
+		expect(preview.map((p) => p.time)).toEqual([0, 24, 33]);
+	});
+
+	it('on one date only, asks nothing about it', () => {
+		const workbook = csv(
+			'Date;Time;A (mol/L)\n30.01.2026;09:00;0,5\n30.01.2026;10:00;0,4\n30.01.2026;11:00;0,3\n'
+		);
+		expect(read(workbook).findings.filter((f) => f.rule === 'B16')).toEqual([]);
+	});
+});

@@ -1,6 +1,7 @@
-/** The time column: every sample gets its elapsed time, in the unit of the column. The rules stand in the files named in the imports. */
+/** The time column: every sample gets its elapsed time, in the unit of the column. B18 and B25 for cells that hold no time; README.md lists the other rules. */
 import type { Block, TimeUnit } from '$lib/schemas/sheet';
 import type { ColumnHeader } from './columns';
+import { withDates } from './date-and-time';
 import { elapsed, noteWrapped } from './elapsed-time';
 import { because, ENTER, type Examination } from './examination';
 import { address } from './grid';
@@ -20,10 +21,12 @@ export function settleTimes(ex: Examination, samples: Sample[], headers: Map<num
 	const column = timeColumn(ex);
 	const header = headers.get(column);
 	const kept = dropUnreadable(ex, samples);
-	const readings = kept.map((s) => ex.time(s.time.row, s.time.column));
+	const written = kept.map((s) => ex.time(s.time.row, s.time.column));
+	const dated = withDates(ex, kept, written);
+	const readings = dated ?? written;
 	stopMixedKinds(ex, kept, readings, column);
 	const unit = timeUnit(ex, kept, readings, header, column);
-	const seconds = elapsed(ex, kept, readings, header, unit);
+	const seconds = dated ? elapsed(ex, kept, readings, header, unit) : kept.map(() => null);
 	const timed: Timed[] = kept.map((sample, i) => {
 		const reading = readings[i];
 		const plain = reading.kind === 'number' && unit.stated ? reading.value : null;
