@@ -14,6 +14,7 @@ import { startQueue, stopQueue } from '../../src/lib/server/jobs/queue';
 import { jobEnd } from '../../src/lib/server/jobs/wait';
 import type { Actor } from '../../src/lib/server/policy';
 import { createRecipe } from '../../src/lib/server/recipes/create-recipe';
+import { readRun } from '../../src/lib/server/runs/read-run';
 import { receiveSheet } from '../../src/lib/server/sheets/receive-sheet';
 import { computeWindow } from '../../src/lib/server/windows/compute-window';
 import { actorOf, makeActor, makeGroup, makePerson, openTestDatabase } from './support';
@@ -71,6 +72,8 @@ const windowInput = () => ({
 interface Entry {
 	expected: Expected;
 	options?: () => CallOptions;
+	/** Where the call needs more than its address. */
+	query?: () => string;
 }
 const entry = (expected: Expected, body?: () => unknown): Entry => ({
 	expected,
@@ -129,6 +132,13 @@ const CALLS: Record<string, Entry> = {
 	'GET /api/v1/openapi.json': entry(ANYBODY),
 	'GET /studies/[study]/data/template': entry(READ),
 	'POST /studies/[study]/fit/plan': entry(READ),
+	'POST /studies/[study]/fit/[fit]/analysis': entry(READ, () => ({ kind: 'influence' })),
+	'GET /studies/[study]/fit/[fit]/confirmation/[revision]': entry(READ),
+	'GET /studies/[study]/fit/compare/separate': entry(READ),
+	'GET /studies/[study]/data/sheets/[sheet]/difference': {
+		expected: READ,
+		query: () => `?from=${ids.sheet}`
+	},
 	'GET /open': entry(ANYBODY),
 	'POST /choose-group': entry(ANYBODY),
 	'GET /records/export': entry(TRAIL),
@@ -147,7 +157,9 @@ const PAGE_EXPECTED: Record<string, Expected> = {
 	'/studies/[study]/data/runs/[run]': READ,
 	'/studies/[study]/fit': READ,
 	'/studies/[study]/fit/[fit]': READ,
-	'/studies/[study]/fit/compare': ANYBODY, // without a fit named there is nothing to show; the frame asks
+	'/studies/[study]/fit/[fit]/plan': READ,
+	'/studies/[study]/fit/by-hand': READ,
+	'/studies/[study]/fit/compare': READ,
 	'/studies/[study]/window': READ,
 	'/studies/[study]/window/[window]': READ,
 	'/studies/[study]/recipe': READ,
@@ -196,6 +208,7 @@ beforeAll(async () => {
 		study: work.studyId,
 		scheme: work.schemeId,
 		run: work.runIds[0],
+		revision: (await readRun(people.chemist, work.runIds[0])).revisionId,
 		fit: fit.id,
 		sheet: sheet.id,
 		window: window.id,
@@ -253,7 +266,9 @@ describe('every call', () => {
 		const wrong: string[] = [];
 		for (const who of WHO) {
 			const options = { ...optionsOf(key, method), params: paramsOf(route, ids), actor: people[who] };
-			const status = await statusOf(() => call(handler, { ...options, path: pathOf(route) }));
+			const status = await statusOf(() =>
+				call(handler, { ...options, path: pathOf(route) + (CALLS[key].query?.() ?? '') })
+			);
 			const expected = CALLS[key].expected[who];
 			if (!fits(status, expected)) wrong.push(`${who}: ${status} instead of ${expected}`);
 		}

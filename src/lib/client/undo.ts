@@ -19,7 +19,12 @@ export const startHistory = <T>(present: T): History<T> => ({
 	at: 0
 });
 
-export function change<T>(history: History<T>, next: T, key: string | null = null, now = Date.now()): History<T> {
+export function change<T>(
+	history: History<T>,
+	next: T,
+	key: string | null = null,
+	now = Date.now()
+): History<T> {
 	if (next === history.present) return history;
 	const merges = key !== null && key === history.key && now - history.at < MERGE_MS;
 	const past = merges ? history.past : [...history.past, history.present].slice(-LONGEST);

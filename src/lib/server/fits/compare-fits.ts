@@ -1,6 +1,7 @@
 import type { Comparison } from '$lib/kinetics/fit/compare';
 import { AppError, notFound } from '../errors';
 import type { Actor } from '../policy';
+import { findStudy } from '../studies/find';
 import { analyseInThread } from './analyse-fit';
 import { readFit, type FitView } from './read-fit';
 
@@ -40,6 +41,7 @@ export async function compareFits(
 	actor: Actor,
 	input: { studyId: string; fitIds: string[]; signal?: AbortSignal }
 ): Promise<ComparedFits> {
+	await findStudy(actor, input.studyId, 'study.read');
 	const ids = [...new Set(input.fitIds)].slice(0, MOST_COMPARED);
 	const all = await Promise.all(ids.map((id) => readFit(actor, id)));
 	if (all.some((fit) => fit.studyId !== input.studyId)) throw notFound('fit of this study');

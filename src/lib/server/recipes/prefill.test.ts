@@ -98,7 +98,7 @@ describe('the first draft of a recipe', () => {
 							...request,
 							runs: [{ ...request.runs[0], initial: { B: { value, unit } } }]
 						}
-					} as Fit,
+					} as unknown as Fit,
 					schemeName: 'Scheme 1',
 					schemeNumber: 1,
 					runs: []

@@ -4,6 +4,7 @@ import { presetOf } from '$lib/server/fits/preset';
 import { readFit } from '$lib/server/fits/read-fit';
 import { requireActor } from '$lib/server/hooks/actor';
 import { page } from '$lib/server/http';
+import { readStudy } from '$lib/server/studies/read-study';
 import type { PageServerLoadEvent } from './$types';
 
 /** The scheme over the chosen runs, ready to be moved by hand; from an earlier fit with its estimates, when one is named. */
@@ -12,6 +13,8 @@ export const load = page(async (event: PageServerLoadEvent) => {
 	const { study } = event.params;
 	const query = event.url.searchParams;
 	const from = query.get('from');
+	// Who may not see the study learns nothing of what is missing in the address.
+	await readStudy(actor, study);
 	const begun = from ? await readFit(actor, from) : null;
 	if (begun && begun.studyId !== study) throw notFound('fit of this study');
 	const preset = begun && presetOf(begun);
