@@ -20,6 +20,9 @@ describe('figures of a window', () => {
 	it('say never instead of a number', () => {
 		expect(valueText(figure(null, null))).toBe('never');
 	});
+	it('do not say never where something holds without end', () => {
+		expect(valueText({ ...figure(null, [null, null]), state: 'no end' })).toBe('no end');
+	});
 	it('say open where an end is not determined', () => {
 		expect(intervalText(figure(3, [null, 5]))).toMatch(/^open to/);
 	});

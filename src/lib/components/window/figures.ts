@@ -13,9 +13,9 @@ function digitsFor(value: number, interval: [number | null, number | null] | nul
 }
 
 export function valueText(figure: Figure): string {
-	return figure.value === null
-		? 'never'
-		: significant(figure.value, digitsFor(figure.value, figure.interval));
+	if (figure.state === 'no end') return 'no end';
+	if (figure.value === null) return 'never';
+	return significant(figure.value, digitsFor(figure.value, figure.interval));
 }
 
 export function intervalText(figure: Figure): string {
