@@ -80,7 +80,7 @@ test('a messy workbook: every question with its cell, corrections with their rea
 
 	await page.goto(`/studies/${study}/fit`);
 	await startFit(page);
-	// Constants of the story, computed for the design brief: k1 0.796, k2 0.298, k−2 0.0957 1/h.
+	// Constants of the story, computed for this invented data set: k1 0.796, k2 0.298, k−2 0.0957 1/h.
 	for (const [step, k] of [
 		['A → B', 0.796],
 		['B → C', 0.298],

@@ -120,7 +120,7 @@ test('a hidden autocatalysis: the failure stands before any constant (story H9)'
 	await expect(first).toHaveText('This scheme does not describe these data as it stands', {
 		timeout: 60_000
 	});
-	// Lack of fit of the story, computed for the design brief: F 45.4 on 8 and 9 degrees of freedom, critical value 3.23.
+	// Lack of fit of the story, computed for this invented data set: F 45.4 on 8 and 9 degrees of freedom, critical value 3.23.
 	await expect(
 		page.getByText(/F = 45\.4 on 8 and 9 degrees of freedom, critical value 3\.23/).first()
 	).toBeVisible();

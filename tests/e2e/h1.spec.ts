@@ -66,7 +66,7 @@ test('from a scheme dragged with the mouse to a recipe that a second person vali
 	await page.goto(`/studies/${study}/fit`);
 	await page.getByRole('checkbox', { name: /^Run 2/ }).uncheck();
 	await startFit(page);
-	// Figures of the story, computed for the design brief: k1 0.794 ± 0.007, k2 0.297 ± 0.004, k−2 0.0952 ± 0.0030 1/h.
+	// Figures of the story, computed for this invented data set: k1 0.794 ± 0.007, k2 0.297 ± 0.004, k−2 0.0952 ± 0.0030 1/h.
 	for (const [step, estimate, standardError] of [
 		['A → B', 0.794, 0.007],
 		['B → C', 0.297, 0.004],

@@ -122,7 +122,7 @@ describe('checks of a network', () => {
 });
 
 describe("Wegscheider's condition", () => {
-	// The loop A ⇌ B ⇌ C ⇌ A with 1.0/0.5, 0.8/0.2, 0.3/x 1/h needs x = 2.4 (trade brief of this project).
+	// The loop A ⇌ B ⇌ C ⇌ A with 1.0/0.5, 0.8/0.2, 0.3/x 1/h needs x = 2.4 (a worked example of ours).
 	const loop = (x: number) =>
 		network('ABC', [
 			step('s1', 'A', ['B'], 1, law(0.5)),

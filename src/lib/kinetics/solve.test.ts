@@ -27,7 +27,7 @@ const torture = (gap: number) =>
 
 describe('A → B ⇌ C with 0.4, 0.3, 0.1, whose matrix is defective', () => {
 	it('gives the concentrations worked out for it at 2.5 and 5', () => {
-		// Figures to five decimals from the trade brief of this project; exact: c_A = e^{-0.4 t}.
+		// Figures to five decimals of a worked example of ours; exact: c_A = e^{-0.4 t}.
 		const solution = solve(torture(0), first(3));
 		const expected = [
 			[2.5, 0.36788, 0.43394, 0.19818],
@@ -75,7 +75,7 @@ describe('exact cases', () => {
 		expect(pair.im).toBeCloseTo(Math.sqrt(0.75), 14);
 		const at = solution.at(1);
 		expect(at[0]).toBeCloseTo(1 / 3 + (2 / 3) * Math.exp(-1.5) * Math.cos(Math.sqrt(0.75)), 14);
-		// The trade brief's figures to five decimals; they add up to 1.00001, so the last place is uncertain.
+		// The worked example's figures to five decimals; they add up to 1.00001, so the last place is uncertain.
 		[0.42971, 0.38328, 0.18702].forEach((value, i) => expect(Math.abs(at[i] - value)).toBeLessThan(1e-5));
 	});
 	it('rates of 1e6, 1 and 1e-6 in one chain', () => {

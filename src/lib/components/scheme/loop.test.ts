@@ -13,7 +13,7 @@ const step = (id: string, from: string, to: string, forward: number, reverse: nu
 });
 const broken = (content: SchemeContent) => checkNetwork(toNetwork(content).network).find(closesByOneConstant);
 
-/** The loop of the design brief: A ⇌ B ⇌ C ⇌ A with 1.0/0.5, 0.8/0.2, 0.3/kAC; it balances at kAC = 2.4 (computed there). */
+/** A ⇌ B ⇌ C ⇌ A with 1.0/0.5, 0.8/0.2, 0.3/kAC; it balances at kAC = 2.4 (1·0.8·0.3 over 0.5·0.2). */
 const loop = (kAC: number): SchemeContent => ({
 	species: ['A', 'B', 'C'].map((id) => ({ id, name: '' })),
 	steps: [step('s1', 'A', 'B', 1, 0.5), step('s2', 'B', 'C', 0.8, 0.2), step('s3', 'C', 'A', 0.3, kAC)],
