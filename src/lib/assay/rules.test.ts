@@ -216,6 +216,14 @@ describe('the table', () => {
 		expect(answer(workbook, { B32: { key: 'ignore' } }).run?.channels.map((c) => c.id)).toEqual(['A']);
 	});
 
+	it.each(['Dilution', 'Verdünnung'])(
+		'B32: a column of dilutions (%s) is asked, not passed over in silence',
+		(head) => {
+			const workbook = book(changed({}, ['Time (h)', 'A (mol/L)', head]));
+			expect(findingsOf(workbook, 'B32')[0]).toMatchObject({ level: 'ask', open: true });
+		}
+	);
+
 	it('B32: names match but for case, with "conc." and brackets around them, and by name and symbol', () => {
 		const heads = [
 			'a (mol/L)',

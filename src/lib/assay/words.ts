@@ -18,7 +18,7 @@ const COUNTER = /^(no\.?|nr\.?|#|n°|entry|line|row|index|lfd\.? ?nr\.?|pos\.?|s
 const INJECTION =
 	/^(inj\.?|injection|einspritzung|injektion|replicate|rep\.?|repeat|wdh\.?|wiederholung|inj\.? ?(no\.?|nr\.?|#))$/i;
 const COMMENT =
-	/^(comments?|remarks?|notes?|bemerkung(en)?|kommentar(e)?|anmerkung(en)?|remarques?|observaciones|analyst|operator|initials|checked( by)?|analytiker|k[üu]rzel|method|methode|instrument|batch|charge(n-?nr)?|lot|file|data ?file|dilution|verd[üu]nnung)$/i;
+	/^(comments?|remarks?|notes?|bemerkung(en)?|kommentar(e)?|anmerkung(en)?|remarques?|observaciones|analyst|operator|initials|checked( by)?|analytiker|k[üu]rzel|method|methode|instrument|batch|charge(n-?nr)?|lot|file|data ?file)$/i;
 const TOTAL =
 	/^(sum|total|totals|summe|gesamt|σ|Σ|somme|suma|mass ?balance|balance|bilanz|massenbilanz|total area|sum of areas|total peaks?)\b/i;
 const STANDARD =
