@@ -1,6 +1,6 @@
 import { z } from 'zod';
 import { criterionSchema } from './criterion';
-import { id, quantity } from './quantity';
+import { id } from './quantity';
 
 export const RECIPE_STATES = [
 	'draft',
@@ -239,6 +239,3 @@ export const createRecipeForm = z.object({
 	scale: scaleSchema.optional()
 });
 export type CreateRecipeForm = z.infer<typeof createRecipeForm>;
-
-/** What the API takes when a single quantity has to be given, kept for scripts. */
-export const scaleQuantity = quantity;

@@ -43,7 +43,7 @@ export async function enqueue(tx: Tx, job: NewJob): Promise<Job> {
 	return row;
 }
 
-/** Starts what waits, as far as there are threads free. Safe to call at any time. */
+/** Starts what waits, as far as there are threads free. May be called at any time. */
 export function wake(): Promise<void> {
 	starting = starting.then(startWaiting, startWaiting);
 	return starting;

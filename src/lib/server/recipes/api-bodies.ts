@@ -19,7 +19,6 @@ export const submitBody = z.strictObject({
 });
 export const returnBody = z.strictObject({ number, version, comment: commentText });
 export const shareBody = z.strictObject({ number, groupId: z.uuid() });
-export const endShareBody = z.strictObject({ shareId: z.uuid() });
 export const withdrawBody = z.strictObject({ number, version, reason: reasonText });
 export const versionBody = z.strictObject({
 	reason: reasonText,

@@ -1,6 +1,7 @@
 import { Op, type WhereOptions } from 'sequelize';
 import type { RecipeState } from '$lib/schemas/recipe';
 import { FitRun, Recipe, RecipeVersion, Run, Share, Study, User } from '../database/models';
+import { containing, wordsOf } from '../database/text-filter';
 import { isId } from '../ids';
 import { requireCan, type Actor } from '../policy';
 import { findStudy } from '../studies/find';
@@ -35,13 +36,10 @@ export interface ListRecipesInput {
 }
 
 function matching(input: ListRecipesInput): WhereOptions {
-	const words = (input.filter ?? '').trim().split(/\s+/).filter(Boolean).slice(0, 8);
-	// The wildcards of LIKE, typed as text, stand for any one character: near enough for finding, and portable.
-	const like = (word: string) => ({ [Op.like]: `%${word.replace(/[%_\\]/g, '_')}%` });
 	return {
 		groupId: input.groupId,
 		...(input.studyId ? { studyId: input.studyId } : {}),
-		[Op.and]: words.map((word) => ({ title: like(word) }))
+		[Op.and]: wordsOf(input.filter).map((word) => ({ title: containing(word) }))
 	};
 }
 

@@ -1,5 +1,6 @@
 import { col, fn, Op, type WhereOptions } from 'sequelize';
 import { Fit, Group, Run, Scheme, Study, User } from '../database/models';
+import { containing, wordsOf } from '../database/text-filter';
 import { isId } from '../ids';
 import { requireCan, type Actor } from '../policy';
 
@@ -46,13 +47,12 @@ async function countsOf(model: Counted, studyIds: string[]): Promise<Map<string,
 }
 
 function matching(groupId: string, filter = ''): WhereOptions {
-	const words = filter.trim().split(/\s+/).filter(Boolean).slice(0, 8);
-	// The wildcards of LIKE, typed as text, stand for any one character: near enough for finding, and portable.
-	const like = (word: string) => ({ [Op.like]: `%${word.replace(/[%_\\]/g, '_')}%` });
 	return {
 		groupId,
 		archivedAt: null,
-		[Op.and]: words.map((word) => ({ [Op.or]: [{ name: like(word) }, { decision: like(word) }] }))
+		[Op.and]: wordsOf(filter).map((word) => ({
+			[Op.or]: [{ name: containing(word) }, { decision: containing(word) }]
+		}))
 	};
 }
 

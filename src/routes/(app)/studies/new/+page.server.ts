@@ -1,6 +1,7 @@
 import { fail, redirect } from '@sveltejs/kit';
 import { isEmptyRow, messagesOf, rowsOf, toCriterion } from '$lib/components/study/criteria-form';
 import { studyForm } from '$lib/schemas/study';
+import { posted } from '$lib/server/forms';
 import { requireActor, requireGroup } from '$lib/server/hooks/actor';
 import { page } from '$lib/server/http';
 import { requireCan } from '$lib/server/policy';
@@ -13,19 +14,14 @@ export const load = page((event: PageServerLoadEvent) => {
 	return { groupId };
 });
 
-const text = (form: FormData, name: string): string => {
-	const value = form.get(name);
-	return typeof value === 'string' ? value : '';
-};
-
 export const actions = {
 	default: page(async (event: RequestEvent) => {
 		const actor = requireActor(event);
 		const form = await event.request.formData();
 		// The group that the page showed, not the one chosen meanwhile in another window.
-		const groupId = text(form, 'groupId') || requireGroup(event);
+		const groupId = posted(form, 'groupId') || requireGroup(event);
 		const rows = rowsOf(form).filter((row) => !isEmptyRow(row));
-		const typed = { name: text(form, 'name'), decision: text(form, 'decision'), rows };
+		const typed = { name: posted(form, 'name'), decision: posted(form, 'decision'), rows };
 		const read = studyForm.safeParse({
 			name: typed.name,
 			decision: typed.decision,
