@@ -6,6 +6,9 @@ import { schemeContent } from './scheme';
 /**
  * Parameter ids: `<step>.forward.kRef`, `<step>.reverse.kRef`, `<step>.forward.activationEnergy`,
  * `<step>.reverse.equilibriumConstant`, `<run>.initial.<species>`, `<channel>.responseFactor`, `<run>.timeOffset`.
+ *
+ * A parameter named in `local` has a value of its own in each run instead: `<run>.<step>.forward.k`, `<run>.<step>.reverse.k`
+ * and `<run>.<step>.reverse.K` at the run's own temperature, `<run>.<channel>.responseFactor`.
  */
 export const fitOptions = z.strictObject({
 	fixed: z.array(z.string()).max(200).default([]),
@@ -36,7 +39,16 @@ export const fitOptions = z.strictObject({
 		.max(2 ** 31 - 1)
 		.default(1),
 	profiles: z.boolean().default(true),
-	confidenceLevel: z.number().min(0.5).max(0.999).default(0.95)
+	confidenceLevel: z.number().min(0.5).max(0.999).default(0.95),
+	/**
+	 * Shared ids (`s1.forward.kRef`, `s1.reverse.equilibriumConstant`, `B.responseFactor`) of parameters that take a value of
+	 * their own in each run. Left out: all are shared.
+	 */
+	local: z.array(z.string()).max(100).optional(),
+	/** Left out: least squares. `determinant`: the criterion of Box & Draper for responses whose errors go together. */
+	criterion: z.enum(['least squares', 'determinant']).optional(),
+	/** False: parameters that enter linearly are searched for like the others. Left out: eliminated wherever that is exact. */
+	variableProjection: z.boolean().optional()
 });
 export type FitOptions = z.infer<typeof fitOptions>;
 
@@ -68,6 +80,29 @@ export interface FitParameter {
 	state: 'fitted' | 'fixed' | 'tied' | 'at bound';
 	/** Standard error of the natural logarithm, for parameters that are fitted on the log scale. */
 	logStandardError?: number | null;
+	/** A parameter that is local to a run: the run, and the shared id that it stands in for. */
+	local?: { run: string; of: string };
+}
+
+/** What the determinant criterion stands on and leaves. */
+export interface DeterminantSummary {
+	/** Channels taken together, in the order of `residualCovariance`. */
+	responses: string[];
+	/** Rows in which every response has a value; the criterion uses these alone. */
+	rows: number;
+	/** Rows left out because a response is missing or below a limit. */
+	rowsLeftOut: number;
+	/** ln |ZᵀZ| at the estimates, over the independent combinations. */
+	logDeterminant: number;
+	/** ln |ZᵀZ| of the least-squares estimates, to compare. */
+	logDeterminantLeastSquares: number;
+	/** ZᵀZ/(rows − parameters), in the channels' units. */
+	residualCovariance: number[][];
+	residualCorrelation: number[][];
+	/** Linear dependencies among the responses (a mass balance, a value obtained by difference), taken out before. */
+	dependencies: { weights: Record<string, number>; words: string }[];
+	/** How many starting points reached the reported minimum, of how many. */
+	starts: { reached: number; run: number };
 }
 
 /** One residual: enough to plot it, weigh it and find its cell again. */
@@ -134,6 +169,17 @@ export interface FitReport {
 	startsConverged: number;
 	engineVersion: string;
 	seed: number;
+	/**
+	 * Ids of the parameters that enter linearly and were eliminated from the search (variable projection); empty where none was.
+	 * Estimates, errors and intervals are those of the full problem.
+	 */
+	eliminated?: string[];
+	/** Why nothing, or not everything that enters linearly, was eliminated; one sentence, left out where there is nothing to say. */
+	eliminationNote?: string;
+	/** Left out: least squares. */
+	criterion?: 'least squares' | 'determinant';
+	/** With the determinant criterion. `weightedSsr` and s then describe the misfit at its estimates, not what was minimised. */
+	determinant?: DeterminantSummary;
 	/** Lowest and highest run temperature and charge, SI and °C, for "studied range". */
 	studied: {
 		temperatureC: [number, number];

@@ -34,6 +34,8 @@ export interface FitProgress {
 	stage: string;
 	done: number;
 	total: number;
+	/** Share of the whole work that is done, 0 to 1; never goes back. */
+	fraction?: number;
 	/** Best weighted sum of squares so far. */
 	best?: number;
 }

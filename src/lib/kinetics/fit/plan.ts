@@ -24,6 +24,10 @@ export interface PlannedParameter {
 	tiedTo: { id: string; factor: number } | null;
 	/** The run that it belongs to, for an amount or a time offset; null for a parameter shared by all runs. */
 	run: string | null;
+	/** The shared id that it stands in for, where it is local to a run. */
+	localOf?: string;
+	/** Whether naming it in `options.local` gives each run a value of its own (or, for a local one, did). */
+	mayBeLocal?: boolean;
 }
 
 export interface FitPlan {
@@ -34,6 +38,8 @@ export interface FitPlan {
 	pointsUsed: number;
 	pointsCensored: number;
 	degreesOfFreedom: number;
+	/** Ids of parameters that enter linearly and will be eliminated from the search. */
+	eliminated?: string[];
 	issues: FitFinding[];
 }
 
