@@ -69,8 +69,10 @@ export function balanceWeights({ m, rate, unit }: BlockFlows): Float64Array | nu
 				queue.push(j);
 			} else if (Math.abs(log[j] - value) > BALANCE * (1 + Math.abs(value))) return null;
 		}
-	const top = log.reduce((a, b) => Math.max(a, b));
-	return log.map((value) => value - top);
+	let top = -Infinity;
+	for (let i = 0; i < m; i++) top = Math.max(top, log[i]);
+	for (let i = 0; i < m; i++) log[i] -= top;
+	return log;
 }
 
 /** All modes of a component with the given balance weights. */
@@ -82,14 +84,29 @@ export function symmetricModes(flows: BlockFlows, logWeights: Float64Array): Sym
 	if (closed)
 		modes.push({ rate: 0, vector: rootWeights(logWeights), image: new Float64Array(columns.length) });
 	modes.sort((a, b) => a.rate - b.rate);
-	const scale = pairs.map(([i, j]) => -Math.exp(-logWeights[i] / 2) / Math.sqrt(flows.rate[i * m + j]));
-	return {
-		logWeights,
-		rates: Float64Array.from(modes, (mode) => mode.rate),
-		vectors: modes.map((mode) => mode.vector),
-		pairs,
-		differences: modes.map((mode) => Float64Array.from(scale, (factor, p) => factor * mode.image[p]))
-	};
+	const rates = new Float64Array(m);
+	const vectors: Float64Array[] = [];
+	const differences: Float64Array[] = [];
+	for (let mode = 0; mode < m; mode++) {
+		rates[mode] = modes[mode].rate;
+		vectors.push(modes[mode].vector);
+		differences.push(differencesOf(modes[mode].image, pairs, flows, logWeights));
+	}
+	return { logWeights, rates, vectors, pairs, differences };
+}
+
+function differencesOf(
+	image: Float64Array,
+	pairs: [number, number][],
+	{ m, rate }: BlockFlows,
+	logWeights: Float64Array
+): Float64Array {
+	const differences = new Float64Array(pairs.length);
+	for (let p = 0; p < pairs.length; p++) {
+		const [i, j] = pairs[p];
+		differences[p] = -(Math.exp(-logWeights[i] / 2) / Math.sqrt(rate[i * m + j])) * image[p];
+	}
+	return differences;
 }
 
 interface RateVector {
@@ -137,7 +154,12 @@ function fromColumns(columns: Float64Array[]): RateVector[] {
 
 /** Otherwise rotate the rows and gather the rotations; without exits the smallest row is the stationary mode, known exactly. */
 function fromRows(columns: Float64Array[], m: number, closed: boolean): RateVector[] {
-	const rows = Array.from({ length: m }, (_, i) => Float64Array.from(columns, (column) => column[i]));
+	const rows: Float64Array[] = [];
+	for (let i = 0; i < m; i++) {
+		const row = new Float64Array(columns.length);
+		for (let j = 0; j < columns.length; j++) row[j] = columns[j][i];
+		rows.push(row);
+	}
 	const vectors = identity(m);
 	oneSidedJacobi(rows, vectors);
 	const modes = rows.map((row, j) => ({ rate: -(norm(row) ** 2), vector: vectors[j], image: row }));
@@ -146,21 +168,25 @@ function fromRows(columns: Float64Array[], m: number, closed: boolean): RateVect
 }
 
 function identity(m: number): Float64Array[] {
-	return Array.from({ length: m }, (_, i) => {
+	const rows: Float64Array[] = [];
+	for (let i = 0; i < m; i++) {
 		const row = new Float64Array(m);
 		row[i] = 1;
-		return row;
-	});
+		rows.push(row);
+	}
+	return rows;
 }
 
 function rootWeights(logWeights: Float64Array): Float64Array {
-	const root = logWeights.map((value) => Math.exp(value / 2));
+	const root = new Float64Array(logWeights.length);
+	for (let i = 0; i < root.length; i++) root[i] = Math.exp(logWeights[i] / 2);
 	const size = norm(root);
-	return root.map((value) => value / size);
+	for (let i = 0; i < root.length; i++) root[i] /= size;
+	return root;
 }
 
 function norm(vector: Float64Array): number {
 	let sum = 0;
-	for (const value of vector) sum += value * value;
+	for (let i = 0; i < vector.length; i++) sum += vector[i] * vector[i];
 	return Math.sqrt(sum);
 }

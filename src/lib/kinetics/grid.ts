@@ -1,20 +1,29 @@
 /**
- * Real simple modes on an equally spaced grid of times: N times cost some 3√N exponentials a mode instead of N.
+ * Real simple modes on an equally spaced grid of times: N times cost some √N exponentials a mode instead of N.
  *
- *     e^{λ(t₀ + (mB + j)Δ)} = e^{λ(t₀ + mBΔ)} · e^{λjΔ},   B ≈ 2√N (longer rows cost less than more calls)
+ *     e^{λ(t₀ + (mB + j)Δ)} = e^{λ(t₀ + mBΔ)} · e^{λjΔ},   B ≈ 4√N
  *
- * The first factor is folded into the amplitudes once for B times; what remains a time is a short sum of products, taken
- * species by species over the modes that the species has. The rounding of a product of two exponentials is that of one.
+ * The first factor is folded into the amplitudes once for B times; what remains a time is a short sum of products
+ * (`term-sums.ts`). Both tables of factors are made in the same manner from √B exponentials. The rounding of a
+ * product of exponentials is that of one.
+ *
+ * Whether a value is small beside its terms is first asked of a whole block: every factor falls with time, so that the
+ * positive terms at the block's end and the negative ones at its start bound the values between from below.
  *
  * | symbol | name here |
  * | --- | --- |
- * | e^{λ_l jΔ} | `fine[l][j]` |
- * | e^{λ_l(t₀ + mBΔ)} | `coarse[l]` |
+ * | e^{λ_l jΔ} | `fine[j·width + l]` |
+ * | e^{λ_l(t₀ + mBΔ)} | `far[m·width + l]`, of the block at hand `coarse[l]` |
  */
 import type { ClosedForm } from './closed-form';
+import { TermSums } from './term-sums';
 
 /** Fewer times than this are not worth the tables. */
 const FEWEST = 48;
+/** Times of a block, over √N. */
+const BLOCK = 4;
+/** Rows that are looked through one by one. */
+const SHORT = 8;
 
 /** Spacing of an equally spaced list of times ≥ 0 (to rounding), 0 when it is not one. */
 export function gridStep(timesS: ArrayLike<number>): number {
@@ -25,7 +34,7 @@ export function gridStep(timesS: ArrayLike<number>): number {
 	if (!(first >= 0) || !(step > 0) || !Number.isFinite(step)) return 0;
 	for (let k = 1; k < count; k++) {
 		const expected = first + k * step;
-		if (Math.abs(timesS[k] - expected) > 4 * Number.EPSILON * expected) return 0;
+		if (!(Math.abs(timesS[k] - expected) <= 4 * Number.EPSILON * expected)) return 0;
 	}
 	return step;
 }
@@ -48,188 +57,122 @@ export interface GridTrust {
  * @returns the grid indices at which some value is small beside its terms and has to be evaluated otherwise
  */
 export function curvesOnGrid(form: ClosedForm, grid: Grid, trust: GridTrust, out: Float64Array): number[] {
-	const { n, width, amplitudes, re } = form;
+	const { n, width, re } = form;
 	const { firstS, stepS, count } = grid;
-	const block = Math.ceil(2 * Math.sqrt(count));
-	const fine = fineTables(re, stepS, block);
-	const coarse = new Float64Array(width);
-	const modes = new Int32Array(width);
-	const scaled = new Float64Array(width);
+	const size = Math.min(count, Math.ceil(BLOCK * Math.sqrt(count)));
+	const sums = new TermSums(form);
+	const blocks = Math.ceil(count / size);
+	const fine = room(0, size * width);
+	const far = room(1, blocks * width);
+	factors(re, { firstS: 0, stepS, count: size }, fine);
+	factors(re, { firstS, stepS: size * stepS, count: blocks }, far);
 	const unsure: number[] = [];
-	for (let start = 0; start < count; start += block) {
-		const rows = Math.min(block, count - start);
-		for (let l = 0; l < width; l++) coarse[l] = Math.exp(re[l] * (firstS + start * stepS));
-		let sure = true;
-		for (let s = 0; s < n; s++) {
-			let constant = 0;
-			let terms = 0;
-			for (let l = 0; l < width; l++) {
-				const amplitude = amplitudes[s * width + l];
-				if (amplitude === 0) continue;
-				if (re[l] === 0) constant += amplitude;
-				else {
-					modes[terms] = l;
-					scaled[terms++] = amplitude * coarse[l];
-				}
-			}
-			const lowest = sumTerms(fine, modes, scaled, terms, constant, out, start * n + s, n, rows);
-			if (!(lowest >= trust.trusted[s])) sure = false;
-		}
-		if (!sure) gatherUnsure(form, trust, { fine, coarse, start, rows }, out, unsure);
+	for (let start = 0, m = 0; start < count; start += size, m++) {
+		const rows = Math.min(size, count - start);
+		const coarse = far.subarray(m * width, (m + 1) * width);
+		sums.write(fine, coarse, out, start * n, rows);
+		gatherUnsure(form, trust, { fine, coarse, start }, 0, rows, out, unsure);
 	}
 	return unsure;
 }
 
-/** e^{λ_l jΔ} for j < block, one array a mode. */
-function fineTables(re: Float64Array, stepS: number, block: number): Float64Array[] {
-	const tables: Float64Array[] = [];
-	for (let l = 0; l < re.length; l++) {
-		const table = new Float64Array(block);
-		for (let j = 0; j < block; j++) table[j] = re[l] === 0 ? 1 : Math.exp(re[l] * (j * stepS));
-		tables.push(table);
+/** e^{λ_l (t₀ + jΔ)} for j < count, times-major, into `table` (which may be longer). */
+function factors(re: Float64Array, grid: Grid, table: Float64Array): void {
+	const { firstS, stepS, count } = grid;
+	const width = re.length;
+	const near = Math.ceil(Math.sqrt(count));
+	for (let l = 0; l < width; l++) {
+		const rate = re[l];
+		for (let q = 0, at = l; q < near; q++, at += width) table[at] = Math.exp(rate * (q * stepS));
+		const end = width * count;
+		for (let j = near; j < count; j += near) {
+			const base = Math.exp(rate * (firstS + j * stepS));
+			const stop = Math.min(end, (j + near) * width);
+			for (let at = l, to = j * width + l; to < stop; at += width, to += width) table[to] = base * table[at];
+		}
+		if (firstS === 0) continue;
+		const base = Math.exp(rate * firstS);
+		for (let at = l; at < near * width; at += width) table[at] *= base;
 	}
-	return tables;
 }
 
-/**
- * out[offset + j·stride] = constant + Σ scaled[i] fine[modes[i]][j], three terms at a time so that the amplitudes stay in
- * registers. Returns the smallest value written.
- */
-function sumTerms(
-	fine: Float64Array[],
-	modes: Int32Array,
-	scaled: Float64Array,
-	terms: number,
-	constant: number,
-	out: Float64Array,
-	offset: number,
-	stride: number,
-	rows: number
-): number {
-	const end = offset + rows * stride;
-	if (terms === 0) {
-		for (let to = offset; to < end; to += stride) out[to] = constant;
-		return constant;
-	}
-	let lowest =
-		terms === 1
-			? one(fine[modes[0]], scaled[0], constant, out, offset, stride, end)
-			: terms === 2
-				? two(fine[modes[0]], fine[modes[1]], scaled[0], scaled[1], constant, out, offset, stride, end)
-				: three(fine[modes[0]], fine[modes[1]], fine[modes[2]], scaled, constant, out, offset, stride, end);
-	for (let i = 3; i < terms; i++) lowest = more(fine[modes[i]], scaled[i], out, offset, stride, end);
-	return lowest;
-}
+const spare = [new Float64Array(0), new Float64Array(0)];
 
-function one(
-	f: Float64Array,
-	a: number,
-	c: number,
-	out: Float64Array,
-	offset: number,
-	stride: number,
-	end: number
-) {
-	let lowest = Infinity;
-	for (let j = 0, to = offset; to < end; j++, to += stride) {
-		const value = c + a * f[j];
-		out[to] = value;
-		if (value < lowest) lowest = value;
-	}
-	return lowest;
-}
-
-function two(
-	f: Float64Array,
-	g: Float64Array,
-	a: number,
-	b: number,
-	c: number,
-	out: Float64Array,
-	offset: number,
-	stride: number,
-	end: number
-): number {
-	let lowest = Infinity;
-	for (let j = 0, to = offset; to < end; j++, to += stride) {
-		const value = c + a * f[j] + b * g[j];
-		out[to] = value;
-		if (value < lowest) lowest = value;
-	}
-	return lowest;
-}
-
-function three(
-	f: Float64Array,
-	g: Float64Array,
-	h: Float64Array,
-	scaled: Float64Array,
-	c: number,
-	out: Float64Array,
-	offset: number,
-	stride: number,
-	end: number
-): number {
-	const [a, b, d] = [scaled[0], scaled[1], scaled[2]];
-	let lowest = Infinity;
-	for (let j = 0, to = offset; to < end; j++, to += stride) {
-		const value = c + a * f[j] + b * g[j] + d * h[j];
-		out[to] = value;
-		if (value < lowest) lowest = value;
-	}
-	return lowest;
-}
-
-/** Adds one more term to what stands. */
-function more(
-	f: Float64Array,
-	a: number,
-	out: Float64Array,
-	offset: number,
-	stride: number,
-	end: number
-): number {
-	let lowest = Infinity;
-	for (let j = 0, to = offset; to < end; j++, to += stride) {
-		const value = out[to] + a * f[j];
-		out[to] = value;
-		if (value < lowest) lowest = value;
-	}
-	return lowest;
+/** Room for a table, kept from one call to the next: allocating it would cost as much as filling it. */
+function room(which: 0 | 1, length: number): Float64Array {
+	if (spare[which].length < length) spare[which] = new Float64Array(length);
+	return spare[which];
 }
 
 interface Block {
-	fine: Float64Array[];
+	fine: Float64Array;
 	coarse: Float64Array;
+	/** Grid index of its first row. */
 	start: number;
-	rows: number;
 }
 
+/** Rows from … to − 1 of a block, halved until a part is above doubt or short enough to be looked through. */
 function gatherUnsure(
 	form: ClosedForm,
 	trust: GridTrust,
-	b: Block,
+	block: Block,
+	from: number,
+	to: number,
 	out: Float64Array,
 	unsure: number[]
 ): void {
-	const { n } = form;
-	const { trusted } = trust;
-	for (let j = 0, at = b.start * n; j < b.rows; j++) {
-		let sure = true;
-		for (let s = 0; s < n; s++, at++)
-			if (
-				!(Math.abs(out[at]) >= trusted[s]) &&
-				!(trust.exactAmplitudes && decayed(form, trust, b, j, s, out[at]))
-			)
-				sure = false;
-		if (!sure) unsure.push(b.start + j);
+	if (allTrusted(form, trust, block, from, to - 1)) return;
+	if (to - from > SHORT) {
+		const middle = (from + to) >> 1;
+		gatherUnsure(form, trust, block, from, middle, out, unsure);
+		gatherUnsure(form, trust, block, middle, to, out, unsure);
+		return;
 	}
+	for (let j = from; j < to; j++) if (!rowTrusted(form, trust, block, j, out)) unsure.push(block.start + j);
+}
+
+/** Whether no species can fall below what is trusted between two rows. */
+function allTrusted(
+	{ n, width, amplitudes }: ClosedForm,
+	{ trusted }: GridTrust,
+	{ fine, coarse }: Block,
+	first: number,
+	last: number
+): boolean {
+	const early = first * width;
+	const late = last * width;
+	for (let s = 0, at = 0; s < n; s++) {
+		let lowest = 0;
+		for (let l = 0; l < width; l++, at++) {
+			const term = amplitudes[at] * coarse[l];
+			lowest += term * fine[(term > 0 ? late : early) + l];
+		}
+		if (!(lowest >= trusted[s])) return false;
+	}
+	return true;
+}
+
+function rowTrusted(form: ClosedForm, trust: GridTrust, block: Block, j: number, out: Float64Array): boolean {
+	const { n } = form;
+	for (let s = 0, at = (block.start + j) * n; s < n; s++, at++) {
+		const value = Math.abs(out[at]);
+		if (value >= trust.trusted[s]) continue;
+		if (!trust.exactAmplitudes || !decayed(form, trust, block, j, s, value)) return false;
+	}
+	return true;
 }
 
 /** A small value is fine where its terms have decayed as much. */
-function decayed(form: ClosedForm, trust: GridTrust, b: Block, j: number, s: number, value: number): boolean {
+function decayed(
+	form: ClosedForm,
+	{ smallest }: GridTrust,
+	{ fine, coarse }: Block,
+	j: number,
+	s: number,
+	value: number
+): boolean {
+	const { width, sizes } = form;
 	let size = 0;
-	for (let l = 0, at = s * form.width; l < form.width; l++, at++)
-		size += form.sizes[at] * b.coarse[l] * b.fine[l][j];
-	return Math.abs(value) >= trust.smallest * size;
+	for (let l = 0, at = s * width; l < width; l++, at++) size += sizes[at] * coarse[l] * fine[j * width + l];
+	return value >= smallest * size;
 }

@@ -44,15 +44,20 @@ function rotation(a: Float64Array, b: Float64Array): number {
 	if (ab === 0 || Math.abs(ab) <= ORTHOGONAL * Math.sqrt(aa) * Math.sqrt(bb)) return 0;
 	const zeta = (bb - aa) / (2 * ab);
 	if (!Number.isFinite(zeta)) return 0;
-	return (zeta >= 0 ? 1 : -1) / (Math.abs(zeta) + Math.hypot(1, zeta));
+	return (zeta >= 0 ? 1 : -1) / (Math.abs(zeta) + hypotenuse(zeta));
 }
 
 function rotate(a: Float64Array, b: Float64Array, tangent: number): void {
-	const cosine = 1 / Math.hypot(1, tangent);
+	const cosine = 1 / hypotenuse(tangent);
 	const sine = cosine * tangent;
 	for (let i = 0; i < a.length; i++) {
 		const value = a[i];
 		a[i] = cosine * value - sine * b[i];
 		b[i] = sine * value + cosine * b[i];
 	}
+}
+
+/** √(1 + x²), without overflow; Math.hypot costs several times as much. */
+function hypotenuse(x: number): number {
+	return Math.abs(x) > 1e8 ? Math.abs(x) : Math.sqrt(1 + x * x);
 }

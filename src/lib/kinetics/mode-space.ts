@@ -74,12 +74,13 @@ export function modeSpace(system: LinearSystem, parts: Components, balance: Bloc
 	};
 	const modesOf = new Int32Array(parts.blocks.length);
 	let first = 0;
-	parts.blocks.forEach((block, b) => {
+	for (let b = 0; b < parts.blocks.length; b++) {
+		const block = parts.blocks[b];
 		modesOf[b] = first;
 		if (block.length === 1) singleBlock(space, system, block[0], first);
 		else coupledBlock(space, system, block, first, balance.exits, balance.unit[b]);
 		first += block.length;
-	});
+	}
 	couple(space, system, parts, modesOf);
 	return space;
 }
@@ -123,10 +124,12 @@ function blockFlows(system: LinearSystem, block: Int32Array, exits: Float64Array
 	const rate = new Float64Array(m * m);
 	for (const t of system.transfers) {
 		const i = block.indexOf(t.from);
-		const j = block.indexOf(t.to);
-		if (i >= 0 && j >= 0) rate[i * m + j] += t.rate * t.coefficient;
+		const j = i < 0 ? -1 : block.indexOf(t.to);
+		if (j >= 0) rate[i * m + j] += t.rate * t.coefficient;
 	}
-	return { m, rate, exits: Float64Array.from(block, (species) => exits[species]), unit };
+	const own = new Float64Array(m);
+	for (let i = 0; i < m; i++) own[i] = exits[block[i]];
+	return { m, rate, exits: own, unit };
 }
 
 function balancedBlock(
@@ -137,25 +140,42 @@ function balancedBlock(
 	logWeights: Float64Array
 ): void {
 	const { n, v, w, vBound, wBound } = space;
-	if (logWeights.some((value) => value < -WIDEST_WEIGHTS)) space.usable = false;
+	for (let i = 0; i < flows.m; i++) if (logWeights[i] < -WIDEST_WEIGHTS) space.usable = false;
 	const { rates, vectors, pairs, differences } = symmetricModes(flows, logWeights);
-	pairs.forEach(([i, j], p) => {
-		const values = Float64Array.from(differences, (row) => row[p]);
-		space.pairDifferences.set(block[i] * n + block[j], { first, values });
-		space.pairDifferences.set(block[j] * n + block[i], { first, values: values.map((value) => -value) });
-	});
+	for (let p = 0; p < pairs.length; p++) notePair(space, block, first, pairs[p], p, differences);
 	for (let j = 0; j < flows.m; j++) {
-		const mode = first + j;
-		space.lambda.re[mode] = rates[j];
-		space.kinds[mode] = 'detailed balance';
-		block.forEach((species, i) => {
-			const root = Math.exp(Math.max(logWeights[i], -WIDEST_WEIGHTS) / 2);
+		space.lambda.re[first + j] = rates[j];
+		space.kinds[first + j] = 'detailed balance';
+	}
+	for (let i = 0; i < flows.m; i++) {
+		const species = block[i];
+		const root = Math.exp(Math.max(logWeights[i], -WIDEST_WEIGHTS) / 2);
+		for (let j = 0, mode = first; j < flows.m; j++, mode++) {
 			v.re[species * n + mode] = root * vectors[j][i];
 			w.re[mode * n + species] = vectors[j][i] / root;
 			vBound[species * n + mode] = root;
 			wBound[mode * n + species] = 1 / root;
-		});
+		}
 	}
+}
+
+/** Keeps the differences of the left vectors across one reversible pair, both ways round. */
+function notePair(
+	{ n, pairDifferences }: ModeSpace,
+	block: Int32Array,
+	first: number,
+	[i, j]: [number, number],
+	pair: number,
+	differences: Float64Array[]
+): void {
+	const forward = new Float64Array(differences.length);
+	const reverse = new Float64Array(differences.length);
+	for (let mode = 0; mode < differences.length; mode++) {
+		forward[mode] = differences[mode][pair];
+		reverse[mode] = -differences[mode][pair];
+	}
+	pairDifferences.set(block[i] * n + block[j], { first, values: forward });
+	pairDifferences.set(block[j] * n + block[i], { first, values: reverse });
 }
 
 function generalBlock(

@@ -23,6 +23,7 @@
 import { blockWeights, type BlockWeights } from './block-weights';
 import { basis, basisSlope, closedForm, type ClosedForm } from './closed-form';
 import { components, type Components } from './components';
+import { earlyCurves, fastestOutflow, isEarly } from './early-series';
 import { curvesOnGrid, gridStep, type Grid } from './grid';
 import { finalComposition } from './final-composition';
 import { modeGroups } from './mode-groups';
@@ -66,6 +67,7 @@ class NetworkSolution implements Solution {
 	private readonly verdict: Judgement;
 	private readonly parts: Components;
 	private readonly balance: BlockWeights;
+	private readonly fastest: number;
 	private readonly phi: Float64Array;
 	private readonly work: Float64Array;
 	private propagator: Propagator | null = null;
@@ -78,6 +80,7 @@ class NetworkSolution implements Solution {
 		readonly charge: Float64Array
 	) {
 		this.n = system.n;
+		this.fastest = fastestOutflow(system);
 		this.parts = components(system);
 		this.balance = blockWeights(system, this.parts);
 		const space = modeSpace(system, this.parts, this.balance);
@@ -174,7 +177,9 @@ class NetworkSolution implements Solution {
 			while (end < unsure.length && unsure[end] === unsure[end - 1] + 1) end++;
 			const run = { firstS: firstS + unsure[i] * stepS, stepS, count: end - i };
 			const target = out.subarray(unsure[i] * n, (unsure[i] + run.count) * n);
-			if (run.count >= LONG_RUN) this.exact().applyGrid(run, this.charge, target);
+			const lastS = run.firstS + (run.count - 1) * stepS;
+			if (isEarly(this.fastest, lastS)) earlyCurves(this.system, this.fastest, this.charge, run, target);
+			else if (run.count >= LONG_RUN) this.exact().applyGrid(run, this.charge, target);
 			else
 				for (let k = 0; k < run.count; k++)
 					this.exact().apply(run.firstS + k * stepS, this.charge, target.subarray(k * n, (k + 1) * n));

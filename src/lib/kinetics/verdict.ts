@@ -37,9 +37,9 @@ const TOLERANCE = 1e-13;
 const OWN_TOLERANCE = 5e-14;
 /** Error of the non-negative evaluation, of the total charge. */
 const PROPAGATOR_ERROR = 3e-14;
-/** A value this small beside its terms is evaluated by the non-negative way: it keeps 1e-10 of itself by the bound … */
-const SMALLEST = 1e-5;
-/** … and 5e-10 where only the comparison vouches for it. */
+/** A value this small beside its terms is evaluated by the non-negative way: it keeps 5e-10 of itself by the bound … */
+const SMALLEST = 2e-6;
+/** … and also where only the comparison vouches for it. */
 const SMALLEST_COMPARED = 1e-4;
 
 export function judge(
