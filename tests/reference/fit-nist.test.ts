@@ -4,7 +4,8 @@
  */
 import { describe, expect, it } from 'vitest';
 import { covarianceFromJacobian } from '../../src/lib/kinetics/fit/covariance';
-import { leastSquares, type LeastSquaresProblem } from '../../src/lib/kinetics/fit/levenberg-marquardt';
+import type { LeastSquaresProblem } from '../../src/lib/kinetics/fit/least-squares';
+import { leastSquares } from '../../src/lib/kinetics/fit/levenberg-marquardt';
 import { straightLine } from '../../src/lib/kinetics/fit/straight-line';
 import boxBod from './c04_nist_BoxBOD.json';
 import chwirut1 from './c04_nist_Chwirut1.json';

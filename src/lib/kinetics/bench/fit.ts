@@ -7,7 +7,8 @@
 import { fitRequest, type FitRequest } from '../../schemas/fit';
 import { fit } from '../fit/fit';
 import { KineticModel } from '../fit/model';
-import { LeastSquaresWorkspace, leastSquares } from '../fit/levenberg-marquardt';
+import { LeastSquaresWorkspace } from '../fit/least-squares';
+import { leastSquares } from '../fit/levenberg-marquardt';
 import { compileProblem } from '../fit/problem';
 import { normalNumbers, uniformNumbers } from '../fit/sequence';
 import { searchBox } from '../fit/starts';

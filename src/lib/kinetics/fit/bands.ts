@@ -15,7 +15,7 @@ import { varianceAlong } from './covariance';
 import { studentQuantile } from './distributions';
 import type { KineticModel } from './model';
 import { ownChannel, probeModel } from './probe';
-import type { RunModel } from './problem';
+import type { RunModel } from './run-model';
 import { estimatesOf, restoreFit, type RestoredFit } from './restore';
 import { sigmaFor } from './weights';
 

@@ -2,7 +2,8 @@
  * Profile-likelihood interval of a time that a condition on the curve defines (see `decision.ts` for formulas and sources).
  */
 import type { CurveOfSpecies } from './decision-curve';
-import { leastSquares, LeastSquaresWorkspace, type LeastSquaresProblem } from './levenberg-marquardt';
+import { LeastSquaresWorkspace, type LeastSquaresProblem } from './least-squares';
+import { leastSquares } from './levenberg-marquardt';
 import type { RestoredFit } from './restore';
 import { FitCancelled } from './search';
 import { searchBox, type SearchBox } from './starts';

@@ -9,7 +9,7 @@ import { ambiguityFindings } from './ambiguity';
 import { fitQualityFindings } from './finding-quality';
 import { parameterFindings } from './finding-parameters';
 import { dataFindings } from './finding-data';
-import type { LeastSquaresResult } from './levenberg-marquardt';
+import type { LeastSquaresResult } from './least-squares';
 import type { KineticModel } from './model';
 import type { KineticProblem } from './problem';
 import type { ProfileInterval } from './profile';

@@ -12,7 +12,8 @@
 import type { FitReport, FitRequest } from '../../schemas/fit';
 import { fQuantile } from './distributions';
 import type { FitHooks } from './fit';
-import { LeastSquaresWorkspace, leastSquares } from './levenberg-marquardt';
+import { LeastSquaresWorkspace } from './least-squares';
+import { leastSquares } from './levenberg-marquardt';
 import { restoreFit, type RestoredFit } from './restore';
 import { FitCancelled } from './search';
 import { toReported, type Slot } from './slots';

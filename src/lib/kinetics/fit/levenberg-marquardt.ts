@@ -10,7 +10,7 @@
  * | ------ | -------- |
  * | r, J   | `residuals`, `jacobian` (column-major, J[j·m + i] = ∂rᵢ/∂xⱼ) |
  * | D      | `scale` |
- * | Δ      | `radius` |
+ * | Δ, μ   | `trust.radius`, `trust.mu` |
  * | p      | `step` |
  *
  * Sources: Moré, "The Levenberg–Marquardt algorithm: implementation and theory", Lecture Notes in Mathematics 630 (1978)
@@ -18,104 +18,18 @@
  * Departure: residuals and Jacobian are computed together at a trial point, because the closed form gives both at little
  * more than the cost of one.
  */
-import { norm } from './linear-algebra';
-import { TrustStep } from './trust-step';
-
-export interface LeastSquaresProblem {
-	/** Residuals. */
-	m: number;
-	/** Parameters. */
-	p: number;
-	/**
-	 * Fills `residuals` (m) and `jacobian` (m × p, column-major) at x.
-	 * Returns false where the model cannot be evaluated; the step is then shortened.
-	 */
-	evaluate(x: Float64Array, residuals: Float64Array, jacobian: Float64Array): boolean;
-}
-
-export interface LeastSquaresOptions {
-	/** Length p; −Infinity where unbounded. Equal bounds hold a parameter fixed. */
-	lower?: ArrayLike<number>;
-	upper?: ArrayLike<number>;
-	/** Relative reduction of the sum of squares below which the search has converged. */
-	ftol?: number;
-	/** Relative change of the scaled parameters below which the search has converged. */
-	xtol?: number;
-	/** Cosine of the largest angle between the residual vector and a column of J below which it has converged. */
-	gtol?: number;
-	maxEvaluations?: number;
-	/** First trust radius as a multiple of ‖D x₀‖ (or itself where that is zero). */
-	factor?: number;
-	/**
-	 * Full Gauss–Newton steps after the sum of squares has stopped changing, kept while they at least halve the optimality: the
-	 * sum shows a parameter to the square root of rounding only, the gradient shows it to rounding. 0 unless given.
-	 */
-	polish?: number;
-	/** Asked before every evaluation; true stops at once with status 'cancelled'. */
-	cancelled?: () => boolean;
-}
-
-export type LeastSquaresStatus =
-	| 'gradient' // optimality reached
-	| 'reduction' // the sum of squares changes no more
-	| 'step' // the parameters change no more
-	| 'rounding' // no further progress in double precision
-	| 'evaluations' // the limit on evaluations
-	| 'not finite' // the model cannot be evaluated at the start
-	| 'cancelled';
-
-export interface LeastSquaresResult {
-	status: LeastSquaresStatus;
-	converged: boolean;
-	x: Float64Array;
-	residuals: Float64Array;
-	jacobian: Float64Array;
-	/** Sum of squared residuals. */
-	ssr: number;
-	evaluations: number;
-	iterations: number;
-	/** Largest cosine between the residual vector and a free column of J; 0 for a zero residual. */
-	optimality: number;
-	/** −1, +1 for a parameter held at its lower or upper bound at the end, else 0. */
-	activeBounds: Int8Array;
-}
+import { finite, norm } from './linear-algebra';
+import {
+	LeastSquaresWorkspace,
+	type LeastSquaresOptions,
+	type LeastSquaresProblem,
+	type LeastSquaresResult,
+	type LeastSquaresStatus
+} from './least-squares';
+import { measureSlope } from './slope';
+import { TrustRadius } from './trust-radius';
 
 const EPSILON = 2.220446049250313e-16;
-
-/** Reusable storage for problems of one shape, so that many starts allocate nothing in their loops. */
-export class LeastSquaresWorkspace {
-	readonly residuals: [Float64Array, Float64Array];
-	readonly jacobians: [Float64Array, Float64Array];
-	readonly x: Float64Array;
-	readonly trial: Float64Array;
-	readonly step: Float64Array;
-	readonly scale: Float64Array;
-	readonly gradient: Float64Array;
-	readonly free: Int32Array;
-	readonly norms: Float64Array;
-	readonly trust: TrustStep;
-
-	constructor(
-		readonly m: number,
-		readonly p: number
-	) {
-		this.residuals = [new Float64Array(m), new Float64Array(m)];
-		this.jacobians = [new Float64Array(m * p), new Float64Array(m * p)];
-		this.x = new Float64Array(p);
-		this.trial = new Float64Array(p);
-		this.step = new Float64Array(p);
-		this.scale = new Float64Array(p);
-		this.gradient = new Float64Array(p);
-		this.free = new Int32Array(p);
-		this.norms = new Float64Array(p);
-		this.trust = new TrustStep(m, p);
-	}
-}
-
-const finite = (v: Float64Array): boolean => {
-	for (let i = 0; i < v.length; i++) if (!Number.isFinite(v[i])) return false;
-	return true;
-};
 
 /**
  * Minimises the sum of squares from `start`.
@@ -131,16 +45,15 @@ export function leastSquares(
 }
 
 class Search {
-	private readonly lower: ArrayLike<number>;
-	private readonly upper: ArrayLike<number>;
+	readonly lower: ArrayLike<number>;
+	readonly upper: ArrayLike<number>;
 	private readonly ftol: number;
 	private readonly xtol: number;
 	private readonly gtol: number;
 	private readonly maxEvaluations: number;
 	private current = 0;
 	private ssr = Infinity;
-	private radius = 0;
-	private mu = 0;
+	private readonly trust = new TrustRadius();
 	private evaluations = 0;
 	private iterations = 0;
 	private optimality = Infinity;
@@ -190,7 +103,7 @@ class Search {
 		w.trust.factor(w.jacobians[this.current], w.residuals[this.current], w.free, this.freeCount);
 		for (;;) {
 			const length = this.propose();
-			if (this.iterations === 1) this.radius = Math.min(this.radius, length || this.radius);
+			if (this.iterations === 1) this.trust.radius = Math.min(this.trust.radius, length || this.trust.radius);
 			if (this.evaluations >= this.maxEvaluations) return 'evaluations';
 			if (this.options.cancelled?.()) return 'cancelled';
 			const next = 1 - this.current;
@@ -200,7 +113,10 @@ class Search {
 			const trialSsr = ok && Number.isFinite(size) && finite(w.jacobians[next]) ? size * size : Infinity;
 			const actual = trialSsr === Infinity ? -1 : 1 - trialSsr / this.ssr;
 			const ratio = this.predicted > 0 ? actual / this.predicted : 0;
-			this.resize(ratio, actual, length, trialSsr);
+			this.trust.resize(
+				{ ratio, actual, length, finite: trialSsr !== Infinity, predicted: this.predicted },
+				() => this.relativeSlope()
+			);
 			const verdict = this.verdict(actual, ratio, length);
 			// The last step moves the parameters by less than the sum of squares can show: its digits are kept all the same.
 			const better = trialSsr < this.ssr || (verdict === 'reduction' && trialSsr <= this.ssr * (1 + 1e-14));
@@ -222,8 +138,8 @@ class Search {
 		const before = this.optimality;
 		if (!(before > this.gtol) || this.freeCount === 0) return false;
 		w.trust.factor(w.jacobians[this.current], w.residuals[this.current], w.free, this.freeCount);
-		this.mu = 0;
-		this.radius = Number.MAX_VALUE;
+		this.trust.mu = 0;
+		this.trust.radius = Number.MAX_VALUE;
 		this.propose();
 		if (this.clipped || this.options.cancelled?.()) return false;
 		const next = 1 - this.current;
@@ -244,30 +160,10 @@ class Search {
 		return false;
 	}
 
-	/** Gradient, column norms, free set and optimality at the current point. */
 	private measure(): void {
-		const { w, problem } = this;
-		const r = w.residuals[this.current];
-		const jac = w.jacobians[this.current];
-		const size = Math.sqrt(this.ssr);
-		this.freeCount = 0;
-		this.optimality = 0;
-		for (let j = 0; j < problem.p; j++) {
-			let dot = 0;
-			for (let i = 0, c = j * problem.m; i < problem.m; i++) dot += jac[c + i] * r[i];
-			w.gradient[j] = dot;
-			const length = (w.norms[j] = norm(jac, j * problem.m, problem.m));
-			if (this.held(j, dot)) continue;
-			w.free[this.freeCount++] = j;
-			if (length > 0 && size > 0)
-				this.optimality = Math.max(this.optimality, Math.abs(dot) / (length * size));
-		}
-	}
-
-	private held(j: number, gradient: number): boolean {
-		const x = this.w.x[j];
-		if (this.lower[j] === this.upper[j]) return true;
-		return (x <= this.lower[j] && gradient >= 0) || (x >= this.upper[j] && gradient <= 0);
+		const found = measureSlope(this.problem, this.w, this.current, this.ssr, this);
+		this.freeCount = found.freeCount;
+		this.optimality = found.optimality;
 	}
 
 	/** D grows to the largest column norms; the first radius is set from D x. */
@@ -276,7 +172,7 @@ class Search {
 		for (let j = 0; j < problem.p; j++) w.scale[j] = Math.max(w.scale[j], w.norms[j]);
 		if (this.iterations > 1) return;
 		const factor = this.options.factor ?? 100;
-		this.radius = factor * (this.scaledNorm(w.x) || 1);
+		this.trust.radius = factor * (this.scaledNorm(w.x) || 1);
 	}
 
 	private scaledNorm(v: Float64Array): number {
@@ -288,7 +184,7 @@ class Search {
 	/** Fills `trial` and `step`, sets `predicted` (relative) and returns ‖D step‖. */
 	private propose(): number {
 		const { w, problem } = this;
-		this.mu = w.trust.solve(w.scale, this.radius, this.mu);
+		this.trust.mu = w.trust.solve(w.scale, this.trust.radius, this.trust.mu);
 		w.step.fill(0);
 		this.clipped = false;
 		for (let k = 0; k < this.freeCount; k++) w.step[w.free[k]] = w.trust.step[k];
@@ -313,29 +209,7 @@ class Search {
 		const along = w.trust.lengthAlong(w.step) ** 2;
 		this.predicted = this.clipped
 			? (-2 * slope - along) / this.ssr
-			: (along + 2 * this.mu * length * length) / this.ssr;
-	}
-
-	private resize(ratio: number, actual: number, length: number, trialSsr: number): void {
-		if (trialSsr === Infinity || this.predicted <= 0) {
-			this.radius = 0.1 * Math.min(this.radius, length);
-			this.mu *= 10;
-			return;
-		}
-		if (ratio <= 0.25) {
-			let shrink = 0.5;
-			if (actual < 0) {
-				const slope = this.relativeSlope();
-				shrink = (0.5 * slope) / (slope + 0.5 * actual);
-				if (!(shrink >= 0.1)) shrink = 0.1;
-				if (shrink > 0.5) shrink = 0.5;
-			}
-			this.radius = shrink * Math.min(this.radius, 10 * length);
-			this.mu /= shrink;
-		} else if (this.mu === 0 || ratio >= 0.75) {
-			this.radius = Math.max(this.radius, 2 * length);
-			this.mu *= 0.5;
-		}
+			: (along + 2 * this.trust.mu * length * length) / this.ssr;
 	}
 
 	private relativeSlope(): number {
@@ -349,8 +223,8 @@ class Search {
 		if (Math.abs(actual) <= still && this.predicted <= this.ftol && (still > this.ftol || ratio <= 2))
 			return 'reduction';
 		const reach = this.scaledNorm(this.w.x);
-		if (this.radius <= this.xtol * reach) return 'step';
-		if (length <= EPSILON * reach || this.radius <= EPSILON * reach) return 'rounding';
+		if (this.trust.radius <= this.xtol * reach) return 'step';
+		if (length <= EPSILON * reach || this.trust.radius <= EPSILON * reach) return 'rounding';
 		if (Math.abs(actual) <= EPSILON && this.predicted <= EPSILON && ratio < 1e-4) return 'rounding';
 		return null;
 	}

@@ -30,6 +30,12 @@ export function norm(v: ArrayLike<number>, from = 0, length = v.length - from): 
 	return largest * Math.sqrt(sum);
 }
 
+/** Whether every entry is a finite number. */
+export const finite = (v: Float64Array): boolean => {
+	for (let i = 0; i < v.length; i++) if (!Number.isFinite(v[i])) return false;
+	return true;
+};
+
 function swapColumns(a: Float64Array, m: number, first: number, second: number): void {
 	for (let i = 0; i < m; i++) {
 		const t = a[first * m + i];
@@ -215,44 +221,4 @@ export function singularValues(a: ArrayLike<number>, m: number, n: number): Sing
 	const vectors = new Float64Array(n * n);
 	order.forEach((from, to) => vectors.set(v.subarray(from * n, from * n + n), to * n));
 	return { values: Float64Array.from(order, (j) => sizes[j]), vectors };
-}
-
-/** The inverse of a symmetric positive definite matrix (row arrays), or null when it is not positive definite. */
-export function invertPositiveDefinite(matrix: number[][]): number[][] | null {
-	const factor = cholesky(matrix);
-	if (!factor) return null;
-	const n = matrix.length;
-	const inverse = Array.from({ length: n }, () => new Array<number>(n).fill(0));
-	for (let column = 0; column < n; column++) {
-		const x = new Array<number>(n).fill(0);
-		for (let i = 0; i < n; i++) {
-			let sum = i === column ? 1 : 0;
-			for (let k = 0; k < i; k++) sum -= factor[i][k] * x[k];
-			x[i] = sum / factor[i][i];
-		}
-		for (let i = n - 1; i >= 0; i--) {
-			let sum = x[i];
-			for (let k = i + 1; k < n; k++) sum -= factor[k][i] * x[k];
-			x[i] = sum / factor[i][i];
-		}
-		for (let i = 0; i < n; i++) inverse[i][column] = x[i];
-	}
-	return inverse;
-}
-
-/** Lower Cholesky factor of a symmetric matrix (row arrays), or null when it is not positive definite. */
-export function cholesky(matrix: number[][]): number[][] | null {
-	const n = matrix.length;
-	const l = Array.from({ length: n }, () => new Array<number>(n).fill(0));
-	for (let i = 0; i < n; i++) {
-		for (let j = 0; j <= i; j++) {
-			let sum = matrix[i][j];
-			for (let k = 0; k < j; k++) sum -= l[i][k] * l[j][k];
-			if (i === j) {
-				if (!(sum > 0)) return null;
-				l[i][i] = Math.sqrt(sum);
-			} else l[i][j] = sum / l[j][j];
-		}
-	}
-	return l;
 }

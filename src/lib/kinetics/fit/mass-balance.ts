@@ -10,7 +10,8 @@ import type { FitReport } from '../../schemas/fit';
 import { conservedTotals } from '../conserved';
 import { evaluateLinear } from './affine';
 import { studentQuantile } from './distributions';
-import type { KineticProblem, RunModel } from './problem';
+import type { KineticProblem } from './problem';
+import type { RunModel } from './run-model';
 import { straightLine } from './straight-line';
 
 /** Weights over the assayed channels of a run, or null where no conserved total is wholly assayed. */

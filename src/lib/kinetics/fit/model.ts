@@ -14,9 +14,10 @@
 import { evaluateLinear } from './affine';
 import type { Watch } from './cancelled';
 import type { ChannelModel } from './channels';
-import type { LeastSquaresProblem } from './levenberg-marquardt';
+import type { LeastSquaresProblem } from './least-squares';
 import type { Point } from './points';
-import type { KineticProblem, RunModel } from './problem';
+import type { KineticProblem } from './problem';
+import type { RunModel } from './run-model';
 import { ProgramKernel } from './program-kernel';
 import { RunKernel } from './run-kernel';
 

@@ -8,7 +8,7 @@
  */
 import type { FitFinding, FitRequest } from '../../schemas/fit';
 import type { AssayValue } from '../../schemas/run';
-import type { RunModel } from './problem';
+import type { RunModel } from './run-model';
 
 export interface Point {
 	run: number;

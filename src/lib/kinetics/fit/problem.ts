@@ -14,47 +14,16 @@
  */
 import type { FitFinding, FitRequest } from '../../schemas/fit';
 import { isFitted } from '../../schemas/quantity';
-import { GAS_CONSTANT, inverseTemperatureGap } from '../rate-laws';
 import { toNetwork } from '../from-scheme';
-import type { Network, RateLaw } from '../types';
-import { toSi, UnitError } from '../units';
-import { constantLinear, linearOf, scaleLinear, sumLinear, type Linear } from './affine';
-import { readChannels, type ChannelModel } from './channels';
-import { readPoints, type Point } from './points';
-import { readSlots, runId, type Slot } from './slots';
-import type { Direction } from './spectral';
+import type { Network } from '../types';
+import { UnitError } from '../units';
+import type { Point } from './points';
+import { readSlots } from './read-slots';
+import { compileRun, type RunModel } from './run-model';
+import { runId, type Slot } from './slots';
 import { assignSigmas } from './weights';
 
-export interface RunModel {
-	id: string;
-	index: number;
-	temperatureK: number;
-	timeUnit: FitRequest['runs'][number]['timeUnit'];
-	/** Seconds in one unit of recorded time. */
-	timeFactor: number;
-	/** Recorded times in s, ascending, each once. */
-	timesS: Float64Array;
-	directions: Direction[];
-	/** Step and sense of each direction. */
-	names: { step: string; sense: 'forward' | 'reverse' }[];
-	/** ln k at the run's temperature. */
-	lnRates: Linear[];
-	/** The same at any temperature, for a run with a log. */
-	rateForms: RateForm[];
-	charge: Linear[];
-	offset: Linear;
-	channels: ChannelModel[];
-	points: Point[];
-	/** Measured temperature over time (recorded time in s, K), where there is a log. */
-	log: { timesS: Float64Array; temperaturesK: Float64Array } | null;
-}
-
-/** ln k(T) = base − energy·(1/T − 1/T_ref)/R [+ ln(T/T_ref) in Eyring's form]. */
-export interface RateForm {
-	base: Linear;
-	energy: Linear;
-	eyring: boolean;
-}
+export type { RunModel };
 
 export interface KineticProblem {
 	request: FitRequest;
@@ -76,8 +45,6 @@ export interface Compilation {
 	slots: Map<string, Slot>;
 	issues: FitFinding[];
 }
-
-export const TIME_FACTORS = { s: 1, min: 60, h: 3600, d: 86400 } as const;
 
 /**
  * Compiles a request. `problem` is null while an issue of level 'stop' stands.
@@ -162,147 +129,4 @@ function checkSpecies(network: Network, request: FitRequest, issues: FitFinding[
 			level: 'stop',
 			message: 'The scheme has no finished step, so there is nothing to fit.'
 		});
-}
-
-function compileRun(
-	request: FitRequest,
-	network: Network,
-	slots: Map<string, Slot>,
-	free: Slot[],
-	index: number,
-	issues: FitFinding[]
-): RunModel {
-	const run = request.runs[index];
-	const id = runId(run, index);
-	const temperatureK = toSi(run.temperature, 'temperature');
-	if (!(temperatureK > 0))
-		throw new RangeError(
-			`a temperature above 0 K is expected; found ${run.temperature.value} ${run.temperature.unit}.`
-		);
-	const timeFactor = TIME_FACTORS[run.timeUnit];
-	const model: RunModel = {
-		id,
-		index,
-		temperatureK,
-		timeUnit: run.timeUnit,
-		timeFactor,
-		timesS: new Float64Array(0),
-		directions: [],
-		names: [],
-		lnRates: [],
-		rateForms: [],
-		charge: network.species.map((s) =>
-			Object.hasOwn(run.initial, s.id) ? linearOf(slots, free, `${id}.initial.${s.id}`) : constantLinear(0)
-		),
-		offset: run.timeOffset ? linearOf(slots, free, `${id}.timeOffset`) : constantLinear(0),
-		channels: readChannels(request, network, slots, free, index, issues),
-		points: [],
-		log: readLog(run, timeFactor)
-	};
-	addDirections(model, network, slots, free, excessOf(run));
-	readPoints(run, model, request.options.useTimeZeroRow, issues);
-	return model;
-}
-
-function readLog(run: FitRequest['runs'][number], timeFactor: number): RunModel['log'] {
-	if (!run.temperatureLog || run.temperatureLog.length < 2) return null;
-	const rows = [...run.temperatureLog].sort((a, b) => a.time - b.time);
-	return {
-		timesS: Float64Array.from(rows, (r) => r.time * timeFactor),
-		temperaturesK: Float64Array.from(rows, (r) => r.celsius + 273.15)
-	};
-}
-
-function excessOf(run: FitRequest['runs'][number]): Record<string, number> {
-	return Object.fromEntries(Object.entries(run.excess).map(([s, q]) => [s, toSi(q, 'concentration')]));
-}
-
-function addDirections(
-	model: RunModel,
-	network: Network,
-	slots: Map<string, Slot>,
-	free: Slot[],
-	excess: Record<string, number>
-): void {
-	const index = new Map(network.species.map((s, i) => [s.id, i]));
-	const push = (
-		step: string,
-		sense: 'forward' | 'reverse',
-		from: string,
-		products: Direction['products'],
-		form: RateForm
-	) => {
-		if (form.base.constant === -Infinity) return;
-		model.directions.push({ from: index.get(from)!, products });
-		model.names.push({ step, sense });
-		model.rateForms.push(form);
-		model.lnRates.push(lnRateAt(form, model.temperatureK, network.referenceTemperatureK));
-	};
-	for (const step of network.steps) {
-		const law = (name: string, of: RateLaw) => rateForm(name, of, slots, free, excess);
-		const forward = law(`${step.id}.forward`, step.forward);
-		const products = step.products.map((p) => ({ to: index.get(p.species)!, coefficient: p.coefficient }));
-		push(step.id, 'forward', step.reactant, products, forward);
-		if (!step.reverse) continue;
-		if (step.products.length !== 1 || step.products[0].coefficient !== 1)
-			throw new RangeError(`step ${step.id} is reversible but not one to one; split it into two steps.`);
-		const reverse =
-			step.reverse.form === 'equilibrium'
-				? throughEquilibrium(forward, step.id, slots, free)
-				: law(`${step.id}.reverse`, step.reverse);
-		const back = [{ to: index.get(step.reactant)!, coefficient: 1 }];
-		push(step.id, 'reverse', step.products[0].species, back, reverse);
-	}
-}
-
-/** ln k of a direction at a temperature. */
-export function lnRateAt(form: RateForm, temperatureK: number, referenceK: number): Linear {
-	const gap = inverseTemperatureGap(temperatureK, referenceK);
-	return sumLinear(
-		form.base,
-		scaleLinear(form.energy, -gap / GAS_CONSTANT),
-		constantLinear(form.eyring ? Math.log(temperatureK / referenceK) : 0)
-	);
-}
-
-function rateForm(
-	name: string,
-	law: RateLaw,
-	slots: Map<string, Slot>,
-	free: Slot[],
-	excess: Record<string, number>
-): RateForm {
-	const parts = [linearOf(slots, free, `${name}.kRef`)];
-	for (const { species, order } of law.excess) {
-		const concentration = excess[species];
-		if (concentration === undefined || concentration < 0)
-			throw new RangeError(
-				`the concentration of ${species}, held in excess by ${name}, is missing. Give it under "excess".`
-			);
-		parts.push(constantLinear(order === 0 ? 0 : order * Math.log(concentration)));
-	}
-	const energy = `${name}.activationEnergy`;
-	return {
-		base: sumLinear(...parts),
-		energy: slots.has(energy) ? linearOf(slots, free, energy) : constantLinear(0),
-		eyring: law.form === 'eyring'
-	};
-}
-
-/** k_reverse = k_forward/K: ln K and ΔH° are taken off. */
-function throughEquilibrium(
-	forward: RateForm,
-	step: string,
-	slots: Map<string, Slot>,
-	free: Slot[]
-): RateForm {
-	const constant = linearOf(slots, free, `${step}.reverse.equilibriumConstant`);
-	const enthalpy = `${step}.reverse.enthalpy`;
-	return {
-		base: sumLinear(forward.base, scaleLinear(constant, -1)),
-		energy: slots.has(enthalpy)
-			? sumLinear(forward.energy, scaleLinear(linearOf(slots, free, enthalpy), -1))
-			: forward.energy,
-		eyring: forward.eyring
-	};
 }

@@ -17,7 +17,8 @@
  * 1923 (open profiles as practical non-identifiability).
  */
 import { studentQuantile } from './distributions';
-import { LeastSquaresWorkspace, leastSquares, type LeastSquaresResult } from './levenberg-marquardt';
+import { LeastSquaresWorkspace, type LeastSquaresResult } from './least-squares';
+import { leastSquares } from './levenberg-marquardt';
 import type { KineticModel } from './model';
 import { FitCancelled } from './search';
 import type { SearchBox } from './starts';

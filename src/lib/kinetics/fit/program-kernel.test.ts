@@ -5,7 +5,7 @@ import { programFromLog, runProgram } from '../programs';
 import { fit } from './fit';
 import { KineticModel } from './model';
 import { compileProblem } from './problem';
-import { thin } from './program-kernel';
+import { thin } from './temperature-chain';
 
 const log = [
 	[0, 15],

@@ -15,17 +15,14 @@
  * Sources: Blanes & Moan, Appl. Numer. Math. 56 (2006) 1519; Alvermann & Fehske, J. Comput. Phys. 230 (2011) 5930.
  */
 import { evaluateLinear, type Linear } from './affine';
-import type { RunModel } from './problem';
+import type { RunModel } from './run-model';
 import { GAS_CONSTANT, inverseTemperatureGap } from '../rate-laws';
 import { RunKernel } from './run-kernel';
+import { TemperatureChain } from './temperature-chain';
 
 const ALPHA_1 = 0.25 + Math.sqrt(3) / 6;
 const ALPHA_2 = 0.25 - Math.sqrt(3) / 6;
 const GAUSS = Math.sqrt(3) / 6;
-/** Largest change of temperature within one piece, K. */
-const PIECE_K = 0.75;
-/** A log is thinned to a chain of lines that stay this close to it, K. */
-const THIN_K = 0.05;
 
 export class ProgramKernel {
 	readonly curves: Float64Array;
@@ -34,8 +31,7 @@ export class ProgramKernel {
 	readonly chargeDerivatives: Float64Array;
 	readonly slopes: Float64Array;
 	private readonly stage: RunKernel;
-	private readonly logTimes: Float64Array;
-	private readonly logTemperatures: Float64Array;
+	private readonly chain: TemperatureChain;
 	private readonly lnBase: Float64Array;
 	private readonly energy: Float64Array;
 	private readonly k1: Float64Array;
@@ -65,9 +61,7 @@ export class ProgramKernel {
 		this.slopes = new Float64Array(times * n);
 		const all = (length: number) => Array.from({ length }, (_, i) => i);
 		this.stage = new RunKernel(n, model.directions, 1, all(directions), all(n), false);
-		const log = thin(model.log!.timesS, model.log!.temperaturesK, THIN_K);
-		this.logTimes = log.times;
-		this.logTemperatures = log.temperatures;
+		this.chain = new TemperatureChain(model.log!);
 		this.lnBase = new Float64Array(directions);
 		this.energy = new Float64Array(directions);
 		this.k1 = new Float64Array(directions);
@@ -102,49 +96,13 @@ export class ProgramKernel {
 		let t = 0;
 		for (let k = 0; k < timesS.length; k++) {
 			while (t < timesS[k]) {
-				const end = Math.min(timesS[k], this.pieceEnd(t));
+				const end = Math.min(timesS[k], this.chain.pieceEnd(t));
 				if (!this.advance(t, end - t)) return false;
 				t = end;
 			}
 			this.record(k, timesS[k]);
 		}
 		return true;
-	}
-
-	/** Where the piece that begins at t ends: at the next bend of the log, or after 0.75 K. */
-	private pieceEnd(t: number): number {
-		const { logTimes, logTemperatures } = this;
-		const last = logTimes.length - 1;
-		if (t >= logTimes[last]) return Infinity;
-		if (t < logTimes[0]) return logTimes[0];
-		let i = 0;
-		let high = last;
-		while (high - i > 1) {
-			const middle = (i + high) >> 1;
-			if (logTimes[middle] <= t) i = middle;
-			else high = middle;
-		}
-		const span = logTimes[i + 1] - logTimes[i];
-		const change = Math.abs(logTemperatures[i + 1] - logTemperatures[i]);
-		const pieces = Math.max(1, Math.ceil(change / PIECE_K));
-		const done = Math.floor(((t - logTimes[i]) / span) * pieces + 1e-9);
-		return done + 1 >= pieces ? logTimes[i + 1] : logTimes[i] + (span * (done + 1)) / pieces;
-	}
-
-	private temperature(t: number): number {
-		const { logTimes, logTemperatures } = this;
-		const last = logTimes.length - 1;
-		if (t <= logTimes[0]) return logTemperatures[0];
-		if (t >= logTimes[last]) return logTemperatures[last];
-		let i = 0;
-		let high = last;
-		while (high - i > 1) {
-			const middle = (i + high) >> 1;
-			if (logTimes[middle] <= t) i = middle;
-			else high = middle;
-		}
-		const part = (t - logTimes[i]) / (logTimes[i + 1] - logTimes[i]);
-		return logTemperatures[i] + part * (logTemperatures[i + 1] - logTemperatures[i]);
 	}
 
 	/** Fills constants at a temperature and returns (1/T − 1/T_ref)/R. */
@@ -159,8 +117,8 @@ export class ProgramKernel {
 	}
 
 	private advance(t: number, h: number): boolean {
-		const early = this.temperature(t + (0.5 - GAUSS) * h);
-		const late = this.temperature(t + (0.5 + GAUSS) * h);
+		const early = this.chain.at(t + (0.5 - GAUSS) * h);
+		const late = this.chain.at(t + (0.5 + GAUSS) * h);
 		const gap1 = this.constants(early, this.k1);
 		const gap2 = this.constants(late, this.k2);
 		if (early === late) return this.exponential(h, 1, 0, gap1, gap2);
@@ -209,7 +167,7 @@ export class ProgramKernel {
 		for (let r = 0; r < charges.length; r++)
 			for (let i = 0; i < n; i++)
 				this.chargeDerivatives[(r * times + k) * n + i] = sensitivity[(parameters.length + r) * n + i];
-		this.constants(this.temperature(t), k1);
+		this.constants(this.chain.at(t), k1);
 		slopes.fill(0, k * n, (k + 1) * n);
 		for (let d = 0; d < model.directions.length; d++) {
 			const { from, products } = model.directions[d];
@@ -219,36 +177,4 @@ export class ProgramKernel {
 				slopes[k * n + products[p].to] += flow * products[p].coefficient;
 		}
 	}
-}
-
-/** A chain of lines through some of the points that stays within `tolerance` of all of them (Douglas & Peucker 1973). */
-export function thin(
-	times: Float64Array,
-	temperatures: Float64Array,
-	tolerance: number
-): { times: Float64Array; temperatures: Float64Array } {
-	const keep = new Uint8Array(times.length);
-	keep[0] = keep[times.length - 1] = 1;
-	const spans: [number, number][] = [[0, times.length - 1]];
-	for (let span = spans.pop(); span; span = spans.pop()) {
-		const [a, b] = span;
-		const slope = (temperatures[b] - temperatures[a]) / (times[b] - times[a] || 1);
-		let worst = tolerance;
-		let at = -1;
-		for (let i = a + 1; i < b; i++) {
-			const off = Math.abs(temperatures[i] - temperatures[a] - slope * (times[i] - times[a]));
-			if (off > worst) {
-				worst = off;
-				at = i;
-			}
-		}
-		if (at < 0) continue;
-		keep[at] = 1;
-		spans.push([a, at], [at, b]);
-	}
-	const kept = Array.from(times.keys()).filter((i) => keep[i] && (i === 0 || times[i] > times[i - 1]));
-	return {
-		times: Float64Array.from(kept, (i) => times[i]),
-		temperatures: Float64Array.from(kept, (i) => temperatures[i])
-	};
 }

@@ -8,7 +8,8 @@
  */
 import type { FitReport, FitRequest } from '../../schemas/fit';
 import { fit, type FitHooks } from './fit';
-import { LeastSquaresWorkspace, leastSquares } from './levenberg-marquardt';
+import { LeastSquaresWorkspace } from './least-squares';
+import { leastSquares } from './levenberg-marquardt';
 import { KineticModel } from './model';
 import { compileProblem } from './problem';
 import { fromReported, runId, toReported, type Slot } from './slots';

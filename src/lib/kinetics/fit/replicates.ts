@@ -6,7 +6,7 @@
 import type { FitRequest } from '../../schemas/fit';
 import { isFitted } from '../../schemas/quantity';
 import type { Point } from './points';
-import type { RunModel } from './problem';
+import type { RunModel } from './run-model';
 
 function conditionsKey(request: FitRequest, run: RunModel): string {
 	const given = request.runs[run.index];

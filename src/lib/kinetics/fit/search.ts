@@ -6,7 +6,8 @@
  */
 import { FitCancelled } from './cancelled';
 import type { KineticModel } from './model';
-import { LeastSquaresWorkspace, leastSquares, type LeastSquaresResult } from './levenberg-marquardt';
+import { LeastSquaresWorkspace, type LeastSquaresResult } from './least-squares';
+import { leastSquares } from './levenberg-marquardt';
 import type { SearchBox } from './starts';
 
 export { FitCancelled };

@@ -5,7 +5,8 @@
  * everything is over before the first sample. Starting points fill that span (on the logarithm) by a seeded low-discrepancy
  * sequence; the bounds lie decades outside it, so that a parameter found at one says "not determined", not "chosen by us".
  */
-import type { KineticProblem, RunModel } from './problem';
+import type { KineticProblem } from './problem';
+import type { RunModel } from './run-model';
 import { evaluateLinear } from './affine';
 import { haltonSequence } from './sequence';
 import type { Slot } from './slots';

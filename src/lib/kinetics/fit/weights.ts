@@ -12,7 +12,8 @@
  * Source: Bates & Watts (1988) 1.3 and 3.8; Draper & Smith, Applied Regression Analysis, 2.1 (pure error).
  */
 import type { FitFinding, FitRequest } from '../../schemas/fit';
-import type { KineticProblem, RunModel } from './problem';
+import type { KineticProblem } from './problem';
+import type { RunModel } from './run-model';
 import { replicateGroups } from './replicates';
 
 type Weighting = FitRequest['options']['weighting'];

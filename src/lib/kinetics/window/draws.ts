@@ -20,7 +20,7 @@
  * Math. 2 (1960) 84.
  */
 import { chiSquareQuantile, normalQuantile } from '../fit/distributions';
-import { cholesky } from '../fit/linear-algebra';
+import { cholesky } from '../fit/positive-definite';
 import { haltonSequence } from '../fit/sequence';
 import type { NetworkParameter } from './parameters';
 
