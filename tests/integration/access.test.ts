@@ -135,6 +135,7 @@ const CALLS: Record<string, Entry> = {
 	'POST /studies/[study]/fit/[fit]/analysis': entry(READ, () => ({ kind: 'influence' })),
 	'GET /studies/[study]/fit/[fit]/confirmation/[revision]': entry(READ),
 	'GET /studies/[study]/fit/compare/separate': entry(READ),
+	'GET /studies/[study]/fit/[fit]/place': entry(READ),
 	'GET /studies/[study]/data/sheets/[sheet]/difference': {
 		expected: READ,
 		query: () => `?from=${ids.sheet}`

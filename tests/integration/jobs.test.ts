@@ -4,6 +4,8 @@ import { Job, JobEvent, type Group } from '../../src/lib/server/database/models'
 import { registerKind } from '../../src/lib/server/jobs/kinds';
 import { cancelJob, enqueue, startQueue, stopQueue, wake } from '../../src/lib/server/jobs/queue';
 import { closeStreams, eventStream } from '../../src/lib/server/jobs/stream';
+import { startThread } from '../../src/lib/server/jobs/thread';
+import { aheadOf } from '../../src/lib/server/jobs/waiting';
 import type { Actor } from '../../src/lib/server/policy';
 import { makeActor, makeGroup, openTestDatabase } from './support';
 
@@ -46,7 +48,7 @@ beforeAll(async () => {
 });
 afterEach(stopQueue);
 
-async function add(task: Record<string, unknown>): Promise<string> {
+async function add(task: Record<string, unknown>, by = actor): Promise<string> {
 	const job = await write((tx) =>
 		enqueue(tx, {
 			kind: 'count',
@@ -54,7 +56,7 @@ async function add(task: Record<string, unknown>): Promise<string> {
 			studyId: null,
 			input: task,
 			inputHash: JSON.stringify(task),
-			createdById: actor.userId
+			createdById: by.userId
 		})
 	);
 	await wake();
@@ -130,6 +132,52 @@ describe('the job queue', () => {
 			expect(recorded).toContain(`cancelled ${id} ${colleague.name}`);
 			expect(await cancelJob(id, colleague)).toBe(false);
 		}
+	});
+
+	it('has the end on record before the thread is gone, and begins the next job only after that', async () => {
+		await startQueue();
+		const busy = await add({ ms: 30_000, deaf: true });
+		const next = await add({ ms: 5 });
+		await until(busy, 'running');
+		await cancelJob(busy, actor);
+		// The thread never looked at its flag; nothing of it is waited for.
+		expect((await Job.findByPk(busy))?.status).toBe('cancelled');
+		expect((await Job.findByPk(next))?.status).toBe('queued');
+		await until(next, 'done');
+		const seen = await types(busy);
+		expect(seen.filter((t) => t !== 'progress')).toEqual(['queued', 'running', 'cancelled']);
+		expect(seen.at(-1)).toBe('cancelled');
+	});
+
+	it('a thread that is called off is refused first and gone afterwards, without a word of its own', async () => {
+		const order: string[] = [];
+		const told: unknown[] = [];
+		const thread = startThread({
+			source: WORKER,
+			task: { ms: 30_000, deaf: true },
+			onProgress: (p) => told.push(p)
+		});
+		const refused = thread.result.catch((caught: Error) => order.push(caught.name));
+		const gone = thread.gone.then(() => order.push('gone'));
+		while (told.length === 0) await new Promise((resolve) => setTimeout(resolve, 5));
+		thread.cancel();
+		const before = told.length;
+		await Promise.all([refused, gone]);
+		expect(order).toEqual(['ThreadCancelled', 'gone']);
+		expect(told).toHaveLength(before);
+	});
+
+	it('people take turns: the first of one comes before the second of another', async () => {
+		const [one, colleague] = [await makeActor(group), await makeActor(group)];
+		const mine = [await add({ ms: 5 }, one), await add({ ms: 5 }, one), await add({ ms: 5 }, one)];
+		const theirs = await add({ ms: 5 }, colleague);
+		expect(await aheadOf(theirs)).toBe(1);
+		expect(await aheadOf(mine[1])).toBe(2);
+		await startQueue();
+		await until(mine[2], 'done');
+		const begun = await Job.findAll({ where: { id: [...mine, theirs] }, order: [['startedAt', 'ASC']] });
+		expect(begun.map((job) => job.id).indexOf(theirs)).toBeLessThanOrEqual(1);
+		expect(await aheadOf(theirs)).toBeNull();
 	});
 
 	it('cancels a job that still waits without starting it', async () => {

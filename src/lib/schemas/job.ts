@@ -5,6 +5,8 @@ export interface JobProgress {
 	stage: string;
 	done: number;
 	total: number;
+	/** Share of the whole work, 0 to 1, where it is known better than done of total. */
+	fraction?: number;
 	/** Best misfit so far. */
 	best?: number;
 }

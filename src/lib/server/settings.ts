@@ -38,6 +38,8 @@ const schema = z.object({
 	UPLOAD_LIMIT_MB: z.coerce.number().min(1).max(100).default(20),
 	/** Worker threads for fits. */
 	FIT_WORKERS: z.coerce.number().int().min(1).max(32).default(1),
+	/** Fits that one person may have waiting or running at the same time. */
+	FITS_PER_PERSON: z.coerce.number().int().min(1).max(1000).default(5),
 	/** Failed sign-ins before a person has to wait. */
 	SIGN_IN_ATTEMPTS: z.coerce.number().int().min(3).max(100).default(5),
 	/** Requests a minute and person to the stateless engine calls. */

@@ -4,6 +4,7 @@ import type { FitReport, FitRequest } from '$lib/schemas/fit';
 import type { JobProgress, JobStatus } from '$lib/schemas/job';
 import { Fit, FitRun, Job, Run, RunRevision, Scheme, SchemeVersion, User } from '../database/models';
 import { notFound } from '../errors';
+import { aheadOf } from '../jobs/waiting';
 import { isId } from '../ids';
 import { can, requireCan, type Action, type Actor } from '../policy';
 import { groupsInSight } from '../studies/find';
@@ -31,6 +32,8 @@ export interface FitView {
 	number: number | null;
 	status: JobStatus;
 	progress: JobProgress | null;
+	/** How many will be begun before it, while it waits; null once it runs. */
+	ahead: number | null;
 	/** Why it failed, in words. */
 	error: string | null;
 	report: FitReport | null;
@@ -60,9 +63,18 @@ export interface FitView {
 }
 
 /** The job of a fit that the actor may see and do this with. */
-export async function findFitJob(actor: Actor, fitId: unknown, action: Action): Promise<Job> {
+export async function findFitJob(
+	actor: Actor,
+	fitId: unknown,
+	action: Action,
+	options: { withoutInput?: boolean } = {}
+): Promise<Job> {
 	if (!isId(fitId)) throw notFound('fit');
-	const job = await Job.findOne({ where: { id: fitId, kind: 'fit', groupId: groupsInSight(actor) } });
+	const job = await Job.findOne({
+		where: { id: fitId, kind: 'fit', groupId: groupsInSight(actor) },
+		// The input of a large fit takes longer to read than all the rest.
+		...(options.withoutInput ? { attributes: { exclude: ['input'] } } : {})
+	});
 	if (!job) throw notFound('fit');
 	requireCan(actor, job.groupId, action, 'fit');
 	return job;
@@ -119,11 +131,12 @@ async function previousOf(job: Job, engineVersion: string | null): Promise<FitVi
 export async function readFit(actor: Actor, fitId: string): Promise<FitView> {
 	const job = await findFitJob(actor, fitId, 'study.read');
 	const input = job.input as FitJobInput;
-	const [fit, scheme, runs, author] = await Promise.all([
+	const [fit, scheme, runs, author, ahead] = await Promise.all([
 		Fit.findByPk(job.id),
 		schemeOf(input),
 		runsOf(job, input),
-		User.findByPk(job.createdById, { attributes: ['id', 'name'] })
+		User.findByPk(job.createdById, { attributes: ['id', 'name'] }),
+		job.status === 'queued' ? aheadOf(job.id) : null
 	]);
 	const open = job.status === 'queued' || job.status === 'running';
 	const engineVersion = fit?.report.engineVersion ?? null;
@@ -134,6 +147,7 @@ export async function readFit(actor: Actor, fitId: string): Promise<FitView> {
 		number: fit?.number ?? null,
 		status: job.status,
 		progress: (job.progress as JobProgress | null) ?? null,
+		ahead,
 		error: job.error,
 		report: fit?.report ?? null,
 		request: fit?.request ?? input.request,

@@ -6,7 +6,9 @@ import { write, type Tx } from '../database';
 import { Fit, Job } from '../database/models';
 import { AppError } from '../errors';
 import { enqueue, wake } from '../jobs/queue';
+import { openJobs } from '../jobs/waiting';
 import type { Actor } from '../policy';
+import { settings } from '../settings';
 import { findStudy } from '../studies/find';
 import { makePlan, type FitPlan, type PlanFitInput } from './plan-fit';
 
@@ -67,6 +69,18 @@ function jobInput(plan: FitPlan): FitJobInput {
 	};
 }
 
+/** The computer is everybody's: one person cannot fill the queue. */
+async function requireRoom(tx: Tx, actor: Actor): Promise<void> {
+	const most = settings().FITS_PER_PERSON;
+	const open = await openJobs('fit', actor.userId, tx);
+	if (open < most) return;
+	throw new AppError(
+		'too-many-requests',
+		`${open === 1 ? 'One fit of yours is' : `${open} fits of yours are`} waiting or running, and ${most} at a time ${most === 1 ? 'is' : 'are'} the most for one person, so that others get their turn. Wait until one has ended, or cancel one that is not needed; then start this one again.`,
+		{ data: { open, most, retryAfterS: 10 } }
+	);
+}
+
 /** Queues the job and writes the audit entry; an equal fit that is there is given instead. */
 export async function enqueueFit(
 	tx: Tx,
@@ -76,6 +90,7 @@ export async function enqueueFit(
 	const { studyId, groupId, input, inputHash } = about;
 	const equal = await equalFit(tx, studyId, inputHash);
 	if (equal) return { id: equal, reused: true };
+	await requireRoom(tx, actor);
 	const job = await enqueue(tx, {
 		kind: 'fit',
 		groupId,

@@ -5,6 +5,6 @@ import { findFitJob } from './read-fit';
 
 /** The numbered events of a fit, from the one after `lastEventId` on. */
 export async function streamFit(actor: Actor, fitId: string, lastEventId: number): Promise<Response> {
-	const job = await findFitJob(actor, fitId, 'study.read');
+	const job = await findFitJob(actor, fitId, 'study.read', { withoutInput: true });
 	return eventStream(job.id, ENDED.includes(job.status), lastEventId);
 }

@@ -73,9 +73,15 @@ export async function callEngine<R>(call: EngineCall): Promise<R> {
 	} finally {
 		clearTimeout(timer);
 		call.signal?.removeEventListener('abort', cancel);
-		if (thread) active.delete(thread);
-		giveSlot();
+		// The slot is taken until the thread is gone: else called-off work would pile up behind the limit.
+		if (thread) void thread.gone.then(() => release(thread!));
+		else giveSlot();
 	}
+}
+
+function release(thread: Thread<unknown>): void {
+	active.delete(thread);
+	giveSlot();
 }
 
 export function stopEngine(): void {

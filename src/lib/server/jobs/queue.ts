@@ -1,17 +1,18 @@
 import { Op } from 'sequelize';
-import { toActor } from '../auth/actor';
 import { write, type Tx } from '../database';
-import { Job, newId, User } from '../database/models';
+import { Job, newId } from '../database/models';
 import { log } from '../log';
 import type { Actor } from '../policy';
 import { settings } from '../settings';
-import { addEvent, tellListeners, type NumberedEvent } from './events';
+import { end, failAfterAll, requeue } from './endings';
+import { addEvent, tellListeners } from './events';
 import { kindOf } from './kinds';
+import { progressWriter } from './progress';
 import { startThread, ThreadRefused, type Thread } from './thread';
+import { waitingInTurn } from './waiting';
 
 /** A job that brought the service down this often is not tried again. */
 const MOST_ATTEMPTS = 3;
-const PROGRESS_EVERY_MS = 300;
 const HEARTBEAT_MS = 5000;
 
 interface Running {
@@ -20,7 +21,10 @@ interface Running {
 	handBack: boolean;
 	/** Who called it off, if somebody did. */
 	cancelledBy: Actor | null;
+	/** The end is written. */
 	ended: Promise<void>;
+	/** The end is written and the thread is gone. */
+	over: Promise<void>;
 }
 
 const running = new Map<string, Running>();
@@ -61,29 +65,33 @@ async function startWaiting(): Promise<void> {
 	}
 }
 
-/** Takes the oldest waiting job; the conditional update makes sure that nobody else has taken it. */
+/** Takes the job whose turn it is; the conditional update makes sure that nobody else has taken it. */
 async function claimNext(): Promise<Job | null> {
-	const next = await Job.findOne({ where: { status: 'queued' }, order: [['id', 'ASC']], attributes: ['id'] });
-	if (!next) return null;
+	const [id] = await waitingInTurn();
+	if (!id) return null;
 	const now = new Date();
 	const claimed = await write(async (tx) => {
 		const [count] = await Job.update(
 			{ status: 'running', startedAt: now, heartbeatAt: now },
-			{ where: { id: next.id, status: 'queued' }, transaction: tx }
+			{ where: { id, status: 'queued' }, transaction: tx }
 		);
 		if (count !== 1) return null;
-		await Job.increment('attempts', { where: { id: next.id }, transaction: tx });
-		const event = await addEvent(tx, next.id, 'running', { status: 'running' });
-		return { event, job: await Job.findByPk(next.id, { transaction: tx }) };
+		await Job.increment('attempts', { where: { id }, transaction: tx });
+		const event = await addEvent(tx, id, 'running', { status: 'running' });
+		return { event, job: await Job.findByPk(id, { transaction: tx }) };
 	});
 	if (!claimed?.job) return claimNext();
-	tellListeners(next.id, claimed.event);
+	tellListeners(id, claimed.event);
 	return claimed.job;
 }
 
 function begin(job: Job): Thread<unknown> {
 	const kind = kindOf(job.kind);
-	return startThread({ source: kind.source(), task: kind.task(job), onProgress: progressWriter(job.id) });
+	return startThread({
+		source: kind.source(),
+		task: kind.task(job),
+		onProgress: progressWriter(job.id, () => running.get(job.id)?.cancelledBy === null)
+	});
 }
 
 async function run(job: Job): Promise<void> {
@@ -93,7 +101,13 @@ async function run(job: Job): Promise<void> {
 	} catch (error) {
 		return failAfterAll(job, error);
 	}
-	const entry: Running = { thread, handBack: false, cancelledBy: null, ended: Promise.resolve() };
+	const entry: Running = {
+		thread,
+		handBack: false,
+		cancelledBy: null,
+		ended: Promise.resolve(),
+		over: Promise.resolve()
+	};
 	running.set(job.id, entry);
 	const heartbeat = setInterval(() => void beat(job.id), HEARTBEAT_MS);
 	entry.ended = thread.result
@@ -102,11 +116,12 @@ async function run(job: Job): Promise<void> {
 			(caught: unknown) => endWithout(job, entry, caught)
 		)
 		.catch((error: unknown) => failAfterAll(job, error))
-		.finally(() => {
-			clearInterval(heartbeat);
-			running.delete(job.id);
-			void wake();
-		});
+		.finally(() => clearInterval(heartbeat));
+	// The next one begins when this one's thread has given its memory back.
+	entry.over = Promise.all([entry.ended, thread.gone]).then(() => {
+		running.delete(job.id);
+		void wake();
+	});
 }
 
 async function beat(jobId: string): Promise<void> {
@@ -117,64 +132,6 @@ async function beat(jobId: string): Promise<void> {
 	} catch (error) {
 		log().warn({ err: error, jobId }, 'heartbeat not written');
 	}
-}
-
-/** Keeps only the newest of what comes in faster than it is worth writing down. */
-function progressWriter(jobId: string): (progress: unknown) => void {
-	let newest: unknown;
-	let waiting = false;
-	const save = async (): Promise<void> => {
-		waiting = false;
-		if (!running.has(jobId)) return;
-		const progress = newest;
-		try {
-			const event = await write(async (tx) => {
-				const [count] = await Job.update(
-					{ progress: progress as object, heartbeatAt: new Date() },
-					{ where: { id: jobId, status: 'running' }, transaction: tx }
-				);
-				return count === 1 ? addEvent(tx, jobId, 'progress', progress) : null;
-			});
-			if (event) tellListeners(jobId, event);
-		} catch (error) {
-			log().warn({ err: error, jobId }, 'progress not written');
-		}
-	};
-	return (progress) => {
-		newest = progress;
-		if (waiting) return;
-		waiting = true;
-		setTimeout(() => void save(), PROGRESS_EVERY_MS);
-	};
-}
-
-/** Who asked for the job, as the person is now; the end of the job is recorded under the same name. */
-async function starter(job: Job): Promise<Actor> {
-	const user = await User.findByPk(job.createdById);
-	if (!user) throw new Error(`The person who started job ${job.id} is not there.`);
-	return toActor(user, 'job', null);
-}
-
-type End = 'done' | 'failed' | 'cancelled';
-
-async function end(
-	job: Job,
-	record: (tx: Tx, actor: Actor) => Promise<Record<string, unknown> | void>,
-	status: End,
-	error: string | null = null,
-	by?: Actor
-): Promise<void> {
-	const actor = by ?? (await starter(job));
-	const event = await write(async (tx): Promise<NumberedEvent | null> => {
-		const [count] = await Job.update(
-			{ status, error, finishedAt: new Date() },
-			{ where: { id: job.id, status: 'running' }, transaction: tx }
-		);
-		if (count !== 1) return null;
-		const told = (await record(tx, actor)) ?? {};
-		return addEvent(tx, job.id, status, { status, ...(error ? { message: error } : {}), ...told });
-	});
-	if (event) tellListeners(job.id, event);
 }
 
 function endWithout(job: Job, entry: Running, caught: unknown): Promise<void> {
@@ -188,35 +145,6 @@ function endWithout(job: Job, entry: Running, caught: unknown): Promise<void> {
 			: `The computation met a fault that nobody foresaw. Reference for your admin: job ${job.id}`;
 	if (!(caught instanceof ThreadRefused)) log().error({ err: caught, jobId: job.id }, 'a job failed');
 	return end(job, (tx, actor) => kind.failed(tx, job, actor, message), 'failed', message);
-}
-
-/** Even the end could not be written as it should have been (a full disk, a result that is not one). */
-async function failAfterAll(job: Job, error: unknown): Promise<void> {
-	log().error({ err: error, jobId: job.id }, 'the end of a job could not be recorded');
-	const message = `The result could not be recorded. Reference for your admin: job ${job.id}`;
-	try {
-		await end(job, (tx, actor) => kindOf(job.kind).failed(tx, job, actor, message), 'failed', message);
-	} catch (again) {
-		log().error({ err: again, jobId: job.id }, 'a failed job could not be marked');
-	}
-}
-
-/** `orderly`: handed back by a service that stops, so that it does not count as an attempt. */
-async function requeue(jobId: string, why: string, orderly: boolean): Promise<void> {
-	const event = await write(async (tx) => {
-		const [count] = await Job.update(
-			{
-				status: 'queued',
-				startedAt: null,
-				heartbeatAt: null,
-				progress: null,
-				...(orderly ? { attempts: 0 } : {})
-			},
-			{ where: { id: jobId, status: 'running' }, transaction: tx }
-		);
-		return count === 1 ? addEvent(tx, jobId, 'queued', { status: 'queued', message: why }) : null;
-	});
-	if (event) tellListeners(jobId, event);
 }
 
 /** At the start: what was running when the service went down is begun again, unless it is what brought it down. */
@@ -247,7 +175,7 @@ export async function stopQueue(): Promise<void> {
 		entry.handBack = true;
 		entry.thread.cancel();
 	}
-	await Promise.all([...running.values()].map((entry) => entry.ended));
+	await Promise.all([...running.values()].map((entry) => entry.over));
 }
 
 /** Takes no more work, while open requests still finish. */
@@ -255,8 +183,12 @@ export function closeQueue(): void {
 	accepting = false;
 }
 
+/** What the end of a job needs of it: all but its input, which can be large. */
+const WITHOUT_INPUT = { exclude: ['input'] };
+
 /**
- * Calls a job off: one that waits ends at once, one that runs is asked to stop. False when it had ended before.
+ * Calls a job off: one that waits ends at once, one that runs is stopped, and its end is on record when this returns, whether
+ * its thread has noticed or not. False when it had ended before.
  */
 export async function cancelJob(jobId: string, actor: Actor): Promise<boolean> {
 	const outcome = await write(async (tx) => {
@@ -270,7 +202,7 @@ export async function cancelJob(jobId: string, actor: Actor): Promise<boolean> {
 			{ where: { id: jobId, status: 'queued' }, transaction: tx }
 		);
 		if (waiting !== 1) return { asked: true, event: null };
-		const job = await Job.findByPk(jobId, { transaction: tx });
+		const job = await Job.findByPk(jobId, { attributes: WITHOUT_INPUT, transaction: tx });
 		await kindOf(job!.kind).cancelled(tx, job!, actor);
 		return { asked: true, event: await addEvent(tx, jobId, 'cancelled', { status: 'cancelled' }) };
 	});

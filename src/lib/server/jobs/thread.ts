@@ -28,14 +28,17 @@ export interface ThreadOptions {
 	task: unknown;
 	onProgress?: (progress: unknown) => void;
 	heapMb?: number;
-	/** How long a worker may take to notice that it is called off before its thread is ended. */
-	graceMs?: number;
 }
 
 export interface Thread<R> {
 	result: Promise<R>;
-	/** Asks the worker to stop; ends its thread when it has not within the grace time. */
+	/**
+	 * Calls the work off: `result` is refused at once, and the thread is ended whatever it is busy with. A result that is on
+	 * its way is dropped.
+	 */
 	cancel(): void;
+	/** The thread has ended and its memory is free; comes after `result`, however that went. */
+	gone: Promise<void>;
 }
 
 function refusal(message: ThreadMessage & { type: 'refused' }): ThreadRefused {
@@ -55,7 +58,7 @@ function crash(error: NodeJS.ErrnoException): Error {
  * turns 1 when the work is called off, so that even a busy loop can see it.
  */
 export function startThread<R>(options: ThreadOptions): Thread<R> {
-	const { source, task, onProgress, heapMb = 768, graceMs = 200 } = options;
+	const { source, task, onProgress, heapMb = 768 } = options;
 	const stop = new SharedArrayBuffer(4);
 	const worker = new Worker(source, {
 		eval: true,
@@ -63,27 +66,28 @@ export function startThread<R>(options: ThreadOptions): Thread<R> {
 		resourceLimits: { maxOldGenerationSizeMb: heapMb }
 	});
 	let cancelled = false;
-	let timer: NodeJS.Timeout | undefined;
+	let callOff: () => void;
 	const result = new Promise<R>((resolve, reject) => {
+		callOff = () => reject(new ThreadCancelled());
 		worker.on('message', (message: ThreadMessage) => {
-			if (message.type === 'progress') return cancelled ? undefined : onProgress?.(message.progress);
-			if (cancelled) reject(new ThreadCancelled());
-			else if (message.type === 'result') resolve(message.result as R);
+			if (cancelled) return;
+			if (message.type === 'progress') return onProgress?.(message.progress);
+			if (message.type === 'result') resolve(message.result as R);
 			else reject(refusal(message));
 			void worker.terminate();
 		});
-		worker.once('error', (error) => reject(cancelled ? new ThreadCancelled() : crash(error)));
-		worker.once('exit', (code) => {
-			clearTimeout(timer);
-			// Settled long before in the ordinary case: this speaks only when the thread ended without a word.
-			reject(cancelled ? new ThreadCancelled() : new Error(`The worker ended with code ${code}.`));
-		});
+		worker.once('error', (error) => reject(crash(error)));
+		// Settled long before in the ordinary case: this speaks only when the thread ended without a word.
+		worker.once('exit', (code) => reject(new Error(`The worker ended with code ${code}.`)));
 	});
+	const gone = new Promise<void>((resolve) => worker.once('exit', () => resolve()));
 	const cancel = (): void => {
 		if (cancelled) return;
 		cancelled = true;
+		// Nobody waits for the thread: one that is deep in a matrix would not look at its flag for a while.
+		callOff();
 		Atomics.store(new Int32Array(stop), 0, 1);
-		timer = setTimeout(() => void worker.terminate(), graceMs);
+		void worker.terminate();
 	};
-	return { result, cancel };
+	return { result, cancel, gone };
 }

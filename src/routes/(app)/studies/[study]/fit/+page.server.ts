@@ -32,8 +32,8 @@ async function start(event: RequestEvent) {
 		const fit = await startFit(actor, fitInput(event.params.study, form.data));
 		redirect(303, `/studies/${event.params.study}/fit/${fit.id}${fit.reused ? '?equal' : ''}`);
 	} catch (caught) {
-		if (caught instanceof AppError && caught.code === 'invalid')
-			return fail(422, { message: caught.message });
+		if (caught instanceof AppError && ['invalid', 'too-many-requests'].includes(caught.code))
+			return fail(caught.status, { message: caught.message });
 		throw caught;
 	}
 }

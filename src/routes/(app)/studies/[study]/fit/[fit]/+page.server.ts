@@ -25,14 +25,16 @@ export const load = page(async (event: PageServerLoadEvent) => {
 	return { fit, confirmations, unused };
 });
 
+const SAID: string[] = ['wrong-state', 'invalid', 'unavailable', 'too-many-requests'];
+
 /** What cannot be done in this state is said on the page; everything else is an error page. */
 async function orSay(work: () => Promise<unknown>) {
 	try {
 		await work();
 		return { done: true };
 	} catch (caught) {
-		if (caught instanceof AppError && ['wrong-state', 'invalid', 'unavailable'].includes(caught.code))
-			return fail(422, { message: caught.message });
+		if (caught instanceof AppError && SAID.includes(caught.code))
+			return fail(caught.status, { message: caught.message });
 		throw caught;
 	}
 }
@@ -47,8 +49,10 @@ async function confirm(event: RequestEvent) {
 
 async function again(event: RequestEvent) {
 	const { study, fit } = event.params;
-	const { id } = await refit(requireActor(event), fit);
-	redirect(303, `/studies/${study}/fit/${id}?beside=${fit}`);
+	return orSay(async () => {
+		const { id } = await refit(requireActor(event), fit);
+		redirect(303, `/studies/${study}/fit/${id}?beside=${fit}`);
+	});
 }
 
 export const actions: Actions = { cancel: page(cancel), confirm: page(confirm), refit: page(again) };
