@@ -27,6 +27,7 @@ export {
 	type SeparatingSample
 } from './compare';
 export { samplingPlan, type SamplingOptions, type SamplingPlan, type ExpectedWidth } from './sampling-plan';
+export { planSamplesFor } from './plan-samples';
 export { jointRegion, type JointRegion } from './joint-region';
 export { bootstrap, leaveOneRunOut, withExcludedValues, type Bootstrap, type RunInfluence } from './refit';
 export { identifiability, type Identifiability } from './identifiability';

@@ -8,7 +8,8 @@ import type { RunContent } from '../../schemas/run';
 import { studentQuantile } from './distributions';
 import { cholesky, invertPositiveDefinite } from './positive-definite';
 import { probeModel, type Probe } from './probe';
-import { estimatesOf, restoreFit } from './restore';
+import type { KineticProblem } from './problem';
+import { estimatesOf, restoreFit, type RestoredFit } from './restore';
 import { spread } from './sampling-grid';
 import type { ExpectedWidth, SamplingOptions, SamplingPlan } from './sampling-plan';
 import { reportedFactor, toReported } from './slots';
@@ -23,6 +24,8 @@ export class Design {
 	private readonly rows: number[][][];
 	private readonly s: number;
 	private readonly gap: number;
+	/** The problem with its own error model: the probe's points carry none. */
+	private readonly measured: KineticProblem;
 
 	constructor(
 		private readonly request: FitRequest,
@@ -34,20 +37,23 @@ export class Design {
 		const known = (id: string) => report?.parameters.some((p) => p.id === id) ?? true;
 		this.probe = probeModel(request, run, grid, known);
 		const { problem } = this.probe;
+		const fitted = report ? restoreFit(report, request) : null;
+		// Without a fit the error model stands on the request's weights alone.
+		this.measured = fitted?.problem ?? { ...problem, request };
 		this.x = report ? estimatesOf(report, problem) : searchBox(problem).guess;
 		this.scale = problem.free.map((slot, j) => (slot.scale === 'ln' ? 1 : Math.abs(this.x[j]) || 1));
 		this.s = report?.residualStandardError ?? options.expectedSd ?? 1;
-		this.prior = this.priorInformation();
+		this.prior = this.priorInformation(fitted);
 		this.rows = this.sensitivities(this.probe);
 		this.gap = options.minimumGap ?? 0;
 	}
 
 	/** JᵀJ/s² of the fit so far, per scaled parameter. */
-	private priorInformation(): number[][] {
+	private priorInformation(fitted: RestoredFit | null): number[][] {
 		const p = this.x.length;
 		const empty = Array.from({ length: p }, () => new Array<number>(p).fill(0));
-		if (!this.report) return empty;
-		const { model } = restoreFit(this.report, this.request);
+		if (!fitted) return empty;
+		const { model } = fitted;
 		const jacobian = new Float64Array(model.m * p);
 		model.evaluate(this.x, new Float64Array(model.m), jacobian);
 		for (let i = 0; i < p; i++)
@@ -69,12 +75,14 @@ export class Design {
 		const channels = problem.runs[at].channels;
 		const assayed = (id: string) =>
 			!id.startsWith('species ') && (!this.options.channels || this.options.channels.includes(id));
+		const largest = out.reduce((size, v) => Math.max(size, Math.abs(v)), 0);
 		const count = Math.max(...model.points.map((q) => q.index)) + 1;
 		const rows: number[][][] = Array.from({ length: count }, () => []);
 		model.points.forEach((point, i) => {
 			const { id } = channels[point.channel];
 			if (!assayed(id)) return;
-			const sigma = this.s * sigmaFor(problem, id, out[i]);
+			// Without a fit a proportional error has no largest value to take its floor from: the curve's own stands in.
+			const sigma = this.s * (sigmaFor(this.measured, id, out[i]) || 0.01 * largest || 1);
 			rows[point.index].push(
 				Array.from({ length: p }, (_, j) => (jacobian[j * model.m + i] * this.scale[j]) / sigma)
 			);
