@@ -2,7 +2,8 @@
 import type { ChannelContent } from '$lib/schemas/run';
 import type { FindingOption } from '$lib/schemas/sheet';
 import { type Channel, headerCell } from './channels';
-import { type Examination, figure, someOf } from './examination';
+import type { Examination } from './examination';
+import { figure, someOf } from './wording';
 import { type Content, mapValue, tidy } from './scaling';
 import type { Point } from './timepoints';
 

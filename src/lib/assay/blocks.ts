@@ -5,9 +5,19 @@
 import type { Block } from '$lib/schemas/sheet';
 import type { SheetView } from './grid';
 import { headersAbove } from './header-rows';
-import { continues, isDataRow, isFooterRow, isHeaderRow, isLimitRow, lookAt, type RowLook } from './rows';
+import {
+	continues,
+	isDataRow,
+	isFooterRow,
+	isHeaderRow,
+	isLimitRow,
+	isNumberedHeader,
+	lookAt,
+	type RowLook
+} from './rows';
 import { isTotalsRow } from './totals';
 import { sideBySide } from './side-by-side';
+import type { TextLine } from './titles';
 
 export interface FoundBlock {
 	block: Block;
@@ -18,8 +28,8 @@ export interface FoundBlock {
 	/** Rows inside the block without data. */
 	leftOutRows: number[];
 	title: string;
-	/** Texts above the table, nearest first, with their row. */
-	above: { row: number; text: string }[];
+	/** Texts above the table, nearest first, with their row; below it too where times run across. Rows of the sheet as received. */
+	above: TextLine[];
 }
 
 /** At most this many tables of a sheet are offered. */
@@ -30,7 +40,7 @@ export function findBlocks(view: SheetView): FoundBlock[] {
 	const found: FoundBlock[] = [];
 	let used = 0;
 	for (let i = 0; i < looks.length && found.length < MOST_TABLES; i++) {
-		if (!isDataRow(looks[i])) continue;
+		if (!isDataRow(looks[i]) || isNumberedHeader(looks[i], looks[i + 1])) continue;
 		const band = growBand(view, looks, i);
 		const headers = headersAbove(view, looks, i, used, band);
 		found.push(...sideBySide(view, looks, { ...band, ...headers, floor: used }));
@@ -70,6 +80,7 @@ function growBand(view: SheetView, looks: RowLook[], start: number): Band {
 		const look = looks[band.stop];
 		const gap = look.r - looks[band.stop - 1].r - 1;
 		if (gap > GAP || (gap > 0 && !isDataRow(look)) || !continues(look, band.first, band.last)) break;
+		if (isNumberedHeader(look, looks[band.stop + 1])) break;
 		for (let r = look.r - gap; r < look.r; r++) band.leftOut.push(r);
 		band.first = Math.min(band.first, look.first);
 		band.last = Math.max(band.last, look.last);

@@ -1,6 +1,7 @@
 /** Units in the cells: B5 for a unit behind the number, B21 for percentages beside plain numbers. */
 import { type Channel, channelName } from './channels';
-import { type Examination, figure, plural, someOf } from './examination';
+import type { Examination } from './examination';
+import { figure, plural, someOf } from './wording';
 import { convertUnit } from './limits';
 import { askSpots, cellsOf, letter, type NumberSpot, ofKind, type Spot } from './spots';
 import { isRelative } from './units';

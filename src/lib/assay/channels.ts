@@ -2,8 +2,8 @@
 import type { ColumnMapping, PeakMapping, ValueUnit } from '$lib/schemas/sheet';
 import type { ColumnHeader } from './columns';
 import type { Examination } from './examination';
-import { address, columnLetter } from './grid';
 import { settleDoubles } from './quantity-rules';
+import type { ReplicateKind } from './replicate-columns';
 import { askPeak, askSpecies } from './species-rules';
 import { askUnit, asUnit } from './value-unit';
 
@@ -15,28 +15,31 @@ export interface Channel {
 	/** Column of the values; in the long layout the value column, with the peak's name. */
 	column: number;
 	peak?: string;
-	/** Further columns that are replicate samples of the same channel. */
+	/** Further columns that are replicates of the same channel, and of what. */
 	replicates: number[];
+	replicateKind: ReplicateKind;
 	loq: number | null;
 	lod: number | null;
 	responseFactor: number | null;
 	fitResponse: boolean;
 	label: string;
+	/** "column E", or "row 5" where times run across. */
+	place: string;
 	mapping: ColumnMapping | PeakMapping;
 }
 
 /** How a message names a channel: "A (column E)". */
 export const channelName = (c: Channel): string =>
-	c.peak === undefined ? `${c.label} (column ${columnLetter(c.column)})` : `${c.label} (peak "${c.peak}")`;
+	c.peak === undefined ? `${c.label} (${c.place})` : `${c.label} (peak "${c.peak}")`;
 
 /** Part of a finding's id: the column or the peak, which other answers do not change. */
 export const channelKey = (c: Channel): string =>
-	c.peak === undefined ? columnLetter(c.column) : `peak-${c.peak}`.slice(0, 120);
+	c.peak === undefined ? c.place.replace(/^column /, '').replace(' ', '-') : `peak-${c.peak}`.slice(0, 120);
 
 /** Where a question about the whole column points: its header cell. */
 export function headerCell(ex: Examination, column: number): string {
 	const rows = ex.mapping.headerRows;
-	return address(rows.length > 0 ? rows[rows.length - 1] : ex.mapping.block.firstRow, column);
+	return ex.at(rows.length > 0 ? rows[rows.length - 1] : ex.mapping.block.firstRow, column);
 }
 
 export function settleChannels(ex: Examination, headers: Map<number, ColumnHeader>): Channel[] {
@@ -53,22 +56,28 @@ function wideChannels(ex: Examination, headers: Map<number, ColumnHeader>): Chan
 		.filter((c) => c.role === 'species' && !replicates.absorbed.has(c.column))
 		.map((c) => {
 			askUnit(ex, c, headers.get(c.column), headerCell(ex, c.column));
-			return channelOf(c, c.column, uniqueId(c.weights ?? {}, ids), replicates.of.get(c.column) ?? []);
+			return {
+				...channelOf(ex, c, c.column, uniqueId(c.weights ?? {}, ids)),
+				replicates: replicates.of.get(c.column)?.columns ?? [],
+				replicateKind: replicates.of.get(c.column)?.kind ?? 'samples'
+			};
 		});
 }
 
-function channelOf(c: ColumnMapping, column: number, id: string, replicates: number[]): Channel {
+function channelOf(ex: Examination, c: ColumnMapping, column: number, id: string): Channel {
 	return {
 		id,
 		weights: c.weights ?? {},
 		unit: asUnit(c.unit),
 		column,
-		replicates,
+		replicates: [],
+		replicateKind: 'samples',
 		loq: c.loq ?? null,
 		lod: c.lod ?? null,
 		responseFactor: c.responseFactor ?? null,
 		fitResponse: c.fitResponse ?? false,
 		label: nameOf(c.weights ?? {}),
+		place: ex.places.series(column),
 		mapping: c
 	};
 }
@@ -98,7 +107,7 @@ function peakChannels(ex: Examination, headers: Map<number, ColumnHeader>): Chan
 		if (peak.ignore || !hasSpecies(peak.weights)) continue;
 		const base: ColumnMapping = { column: value.column, role: 'species', unit: value.unit, ...pick(peak) };
 		channels.push({
-			...channelOf(base, value.column, uniqueId(peak.weights ?? {}, ids), []),
+			...channelOf(ex, base, value.column, uniqueId(peak.weights ?? {}, ids)),
 			peak: peak.peak,
 			mapping: peak
 		});

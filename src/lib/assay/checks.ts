@@ -1,8 +1,8 @@
 /** What the table as a whole must offer: amounts at time zero (B33), enough points (B34). */
 import type { FindingOption } from '$lib/schemas/sheet';
 import type { Channel } from './channels';
-import { type Examination, figure, plural } from './examination';
-import { address } from './grid';
+import type { Examination } from './examination';
+import { figure, plural } from './wording';
 import type { Point } from './timepoints';
 
 /** B33: without a row at time zero the charge has to come from somewhere. */
@@ -42,7 +42,7 @@ export function askCharge(ex: Examination, points: Point[], channels: Channel[])
 	const taken = ex.ask({
 		rule: 'B33',
 		level: 'ask',
-		cells: [address(ex.mapping.block.firstRow, ex.mapping.block.firstColumn)],
+		cells: [ex.at(ex.mapping.block.firstRow, ex.mapping.block.firstColumn)],
 		key: 'charge',
 		found: `the first sample at ${figure(Math.min(...times))}, none at time zero`,
 		expected: 'the amounts at time zero',
@@ -64,7 +64,7 @@ export function checkCount(
 ): void {
 	const times = new Set(points.map((p) => p.time).filter((t) => t !== null)).size;
 	const values = points.reduce((n, p) => n + channels.filter((c) => p.values.get(c.id) != null).length, 0);
-	const cells = [address(ex.mapping.block.firstRow, ex.mapping.block.firstColumn)];
+	const cells = [ex.at(ex.mapping.block.firstRow, ex.mapping.block.firstColumn)];
 	if (parameters !== null && values < parameters)
 		ex.ask({
 			rule: 'B34',

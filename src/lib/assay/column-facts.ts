@@ -3,12 +3,12 @@ import type { GridWorkbook } from '$lib/schemas/sheet';
 import { readCell } from './cells';
 import { type ColumnFacts, readHeaders } from './columns';
 import type { SheetView } from './grid';
-import { type FoundTable, viewOf } from './tables';
+import { type FoundTable, viewOfTable } from './tables';
 import { timeColumnOf } from './time-column';
 
 /** A time column by header, or by its numbers, and at least one other column of numbers. */
 export function isTable(workbook: GridWorkbook, found: FoundTable): boolean {
-	const view = viewOf(workbook, found.sheet);
+	const view = viewOfTable(workbook, found);
 	if (!view) return false;
 	const time = timeColumnOf(view, found);
 	if (time === 0 || found.block.lastRow === found.block.firstRow) return false;

@@ -1,6 +1,6 @@
 /** Rows of blanks, standards and controls in an injection list (B27): they are no samples of the reaction, and are asked about. */
-import { plural, someOf, type Examination } from './examination';
-import { address } from './grid';
+import type { Examination } from './examination';
+import { plural, someOf } from './wording';
 import { isControlName } from './words';
 
 /** Rows that are left out. */
@@ -11,7 +11,7 @@ export function askControls(ex: Examination, rows: number[]): Set<number> {
 		for (const { column } of columns) {
 			const name = ex.view.cell(row, column)?.[1];
 			if (typeof name === 'string' && isControlName(name) && !names.has(row))
-				names.set(row, { cell: address(row, column), name: name.trim() });
+				names.set(row, { cell: ex.at(row, column), name: name.trim() });
 		}
 	if (names.size === 0 || names.size === rows.length) return new Set();
 	const found = someOf([...new Set([...names.values()].map((n) => `"${n.name}"`))]);

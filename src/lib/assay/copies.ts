@@ -1,7 +1,7 @@
 /** B35: columns and cells that look copied. */
 import { type Channel, channelName } from './channels';
-import { type Examination, figure, plural } from './examination';
-import { address } from './grid';
+import type { Examination } from './examination';
+import { figure, plural } from './wording';
 import type { Point } from './timepoints';
 
 /** B35: columns that look copied. */
@@ -11,7 +11,7 @@ export function noteCopies(ex: Examination, points: Point[], channels: Channel[]
 	);
 	channels.forEach((c, i) => {
 		const own = series[i];
-		const cells = [address(ex.mapping.block.firstRow, c.column)];
+		const cells = [ex.at(ex.mapping.block.firstRow, c.column)];
 		const run = longestRun(own);
 		if (own.length >= 4 && own.every((v) => v === own[0]))
 			ex.note({
@@ -38,7 +38,7 @@ export function noteCopies(ex: Examination, points: Point[], channels: Channel[]
 			)
 				ex.note({
 					rule: 'B35',
-					cells: [...cells, address(ex.mapping.block.firstRow, channels[j].column)],
+					cells: [...cells, ex.at(ex.mapping.block.firstRow, channels[j].column)],
 					key: `pair-${c.id}-${channels[j].id}`,
 					found: 'two identical columns',
 					message: `${channelName(c)} and ${channelName(channels[j])} hold the same values throughout. A copied column?`

@@ -1,6 +1,6 @@
 /** B16 for two columns: a date beside a time of day, brought together where the dates differ, so that the next morning is not the same hour. */
-import { plural, type Examination } from './examination';
-import { address, columnLetter } from './grid';
+import type { Examination } from './examination';
+import { capital, plural } from './wording';
 import type { Sample } from './samples';
 import type { TimeReading } from './times';
 
@@ -16,11 +16,11 @@ export function withDates(ex: Examination, samples: Sample[], readings: TimeRead
 	const taken = ex.ask({
 		rule: 'B16',
 		level: 'ask',
-		cells: [address(samples[0].row, column.column), address(samples[0].row, time)],
+		cells: [ex.at(samples[0].row, column.column), ex.at(samples[0].row, time)],
 		key: 'date-column',
-		found: `dates in column ${columnLetter(column.column)} beside times in column ${columnLetter(time)}`,
+		found: `dates in ${ex.places.series(column.column)} beside times in ${ex.places.series(time)}`,
 		expected: 'one moment for each sample',
-		message: `Column ${columnLetter(column.column)} holds dates (${dates[0].text} to ${dates[dates.length - 1].text}) beside the times in column ${columnLetter(time)}. Times of day on these dates?`,
+		message: `${capital(ex.places.series(column.column))} holds dates (${dates[0].text} to ${dates[dates.length - 1].text}) beside the times in ${ex.places.series(time)}. Times of day on these dates?`,
 		options: [
 			{ key: 'together', label: 'Yes: date and time of day together' },
 			{ key: 'apart', label: 'No: the times stand by themselves' }
@@ -29,7 +29,7 @@ export function withDates(ex: Examination, samples: Sample[], readings: TimeRead
 	if (!taken) return null;
 	if (taken.key === 'apart') return readings;
 	ex.conversions.push(
-		`Dates of column ${columnLetter(column.column)} and times of day of column ${columnLetter(time)} read together (${plural(readings.length, 'row')}).`
+		`Dates of ${ex.places.series(column.column)} and times of day of ${ex.places.series(time)} read together (${plural(readings.length, ex.places.line)}).`
 	);
 	return readings.map((r, i) => joined(dates[i], r));
 }

@@ -1,7 +1,8 @@
 /** B6: one decimal sign for the whole file, told by its cells or asked once. */
 import type { FindingOption } from '$lib/schemas/sheet';
 import { numberPart } from './cells';
-import { type Examination, figure, someOf } from './examination';
+import type { Examination } from './examination';
+import { figure, someOf } from './wording';
 import { address } from './grid';
 import { decide, type DecimalVotes, noVotes, vote } from './numbers';
 

@@ -1,7 +1,7 @@
 /** Elapsed seconds of each reading of the time column; B14 notes what h:mm cannot show, B17 asks what "1:30" as text means. */
 import type { ColumnHeader } from './columns';
-import { type Examination, figure, someOf } from './examination';
-import { address } from './grid';
+import type { Examination } from './examination';
+import { figure, someOf } from './wording';
 import type { Sample } from './samples';
 import { absoluteSeconds } from './stamps';
 import { clockSeconds, isClock } from './time-of-day';
@@ -51,7 +51,7 @@ function colonForm(
 	const taken = ex.ask({
 		rule: 'B17',
 		level: 'ask',
-		cells: own.map((i) => address(samples[i].time.row, samples[i].time.column)),
+		cells: own.map((i) => ex.at(samples[i].time.row, samples[i].time.column)),
 		key: 'colon',
 		found: `"${text}" as text`,
 		expected: 'hours and minutes, or minutes and seconds',
@@ -79,7 +79,7 @@ export function noteWrapped(ex: Examination, samples: Sample[], readings: TimeRe
 		const seconds = daysToSeconds(r.days);
 		return [
 			{
-				cell: address(s.time.row, s.time.column),
+				cell: ex.at(s.time.row, s.time.column),
 				shown: r.text,
 				stored: clockText(seconds),
 				hours: figure(secondsIn(seconds, 'h'))

@@ -1,7 +1,6 @@
 /** What one table is examined with: sheet, mapping, answers and corrections, and the findings that arise. */
 import type { SpeciesContent } from '$lib/schemas/scheme';
 import type {
-	Answer,
 	Answers,
 	CellCorrection,
 	Finding,
@@ -9,12 +8,14 @@ import type {
 	FindingOption,
 	GridWorkbook,
 	Mapping,
-	Need,
-	ValueField
+	Need
 } from '$lib/schemas/sheet';
+import { take, type Taken } from './answers';
 import { type CellReading, readCell } from './cells';
-import { address, displayText, parseAddress, SheetView } from './grid';
-import { type Decimal, parseNumber } from './numbers';
+import { displayText, parseAddress, SheetView } from './grid';
+import type { Decimal } from './numbers';
+import { asColumns, Places } from './orientation';
+import { joinTime, type TimePart } from './time-parts';
 import { readTime, type TimeReading } from './times';
 
 export interface Checks {
@@ -25,6 +26,7 @@ export interface Checks {
 	temperatureK: number;
 }
 
+/** Until a site or a group says otherwise. */
 export const CHECKS: Checks = { massBalanceLow: 95, massBalanceHigh: 105, temperatureK: 2 };
 
 export interface FindingSpec {
@@ -39,24 +41,20 @@ export interface FindingSpec {
 	key?: string;
 }
 
-/** An answer that is complete: its option exists and every value that the option needs is there and readable. */
-export interface Taken {
-	key: string;
-	reason?: string;
-	number(field?: string): number;
-	text(field?: string): string;
-}
-
 const MOST_CELLS = 200;
 
 export class Examination {
 	readonly view: SheetView;
+	/** In columns, whichever way the table lies: see `orientation.ts`. */
 	readonly mapping: Mapping;
+	readonly places: Places;
 	readonly findings: Finding[] = [];
 	readonly conversions: string[] = [];
 	readonly needs: Need[] = [];
 	readonly corrections: CellCorrection[];
 	decimal: Decimal | null;
+	/** Columns that make up one time, largest unit first; empty where one column does. */
+	timeParts: TimePart[] = [];
 	private readonly overlay = new Map<string, string>();
 
 	constructor(
@@ -68,7 +66,8 @@ export class Examination {
 		readonly checks: Checks = CHECKS,
 		view?: SheetView
 	) {
-		this.mapping = structuredClone(mapping);
+		this.mapping = structuredClone(asColumns(mapping));
+		this.places = new Places(mapping.across !== undefined);
 		const sheet = workbook.sheets.find((s) => s.name === mapping.sheet);
 		this.view = view ?? new SheetView(workbook, sheet ?? EMPTY_SHEET);
 		this.decimal = mapping.decimal;
@@ -78,6 +77,11 @@ export class Examination {
 
 	get sheet(): string {
 		return this.mapping.sheet;
+	}
+
+	/** Address on the sheet as received. */
+	at(row: number, column: number): string {
+		return this.places.at(row, column);
 	}
 
 	/** The text as received. */
@@ -90,24 +94,35 @@ export class Examination {
 			this.workbook,
 			this.view.cell(row, column),
 			this.decimal,
-			this.overlay.get(address(row, column))
+			this.overlay.get(this.at(row, column))
 		);
 	}
 
+	/** The time in a cell; in the first of several columns that make up one time, the time of them all. */
 	time(row: number, column: number): TimeReading {
+		const [main] = this.timeParts;
+		if (main?.column !== column) return this.timeCell(row, column);
+		return joinTime(
+			this.timeParts,
+			this.timeParts.map((part) => this.timeCell(row, part.column))
+		);
+	}
+
+	private timeCell(row: number, column: number): TimeReading {
 		const cell = this.view.mergedCell(row, column);
-		return readTime(this.workbook, cell, this.decimal, this.overlay.get(address(row, column)));
+		return readTime(this.workbook, cell, this.decimal, this.overlay.get(this.at(row, column)));
 	}
 
 	isCorrected(row: number, column: number): boolean {
-		return this.overlay.has(address(row, column));
+		return this.overlay.has(this.at(row, column));
 	}
 
 	/** Lays what the person entered over a cell; the cell as received stays. */
 	correct(cell: string, corrected: string, reason: string): void {
-		const at = parseAddress(cell);
-		if (!at) return;
-		const original = this.shown(at.row, at.column).slice(0, 200);
+		const place = parseAddress(cell);
+		if (!place) return;
+		const { row, column } = this.places.across ? { row: place.column, column: place.row } : place;
+		const original = this.shown(row, column).slice(0, 200);
 		this.overlay.set(cell, corrected);
 		if (this.corrections.some((c) => c.cell === cell && c.corrected === corrected)) return;
 		const why =
@@ -121,6 +136,12 @@ export class Examination {
 			corrected: corrected.slice(0, 200),
 			reason: why.slice(0, 500)
 		});
+	}
+
+	/** A time entered for a row is the whole time: of several columns that make it up, the others then count nothing. */
+	correctTime(row: number, column: number, text: string, reason: string): void {
+		this.correct(this.at(row, column), text, reason);
+		for (const part of this.timeParts.slice(1)) this.correct(this.at(row, part.column), '0', reason);
 	}
 
 	/** Records a finding and gives back its answer when there is a complete one. A note is never open. */
@@ -171,70 +192,6 @@ const EMPTY_SHEET = {
 	lastRow: 0,
 	lastColumn: 0
 };
-
-function take(
-	answer: Answer | undefined,
-	options: FindingOption[],
-	decimal: Decimal | null
-): { taken: Taken | null; problem?: string } {
-	if (!answer) return { taken: null };
-	const option = options.find((o) => o.key === answer.key);
-	if (!option)
-		return { taken: null, problem: 'This answer no longer fits what the sheet holds. Choose again.' };
-	const values = answer.values ?? {};
-	for (const field of option.needsValue ?? []) {
-		const problem = fieldProblem(
-			field,
-			Object.hasOwn(values, field.key) ? values[field.key] : undefined,
-			decimal
-		);
-		if (problem) return { taken: null, problem };
-	}
-	const number = (field = 'value') => asNumber(values[field], decimal) ?? NaN;
-	const text = (field = 'value') => String(values[field] ?? '').trim();
-	return { taken: { key: answer.key, reason: answer.reason, number, text } };
-}
-
-function fieldProblem(
-	field: ValueField,
-	value: string | number | undefined,
-	decimal: Decimal | null
-): string | null {
-	if (value === undefined || String(value).trim() === '') return `${field.label} is missing.`;
-	if (field.kind === 'number' && asNumber(value, decimal) === null) return `"${value}" is not a number.`;
-	if (field.kind === 'choice' && !field.choices?.some((c) => c.key === value))
-		return `"${value}" is not among the choices.`;
-	return null;
-}
-
-/** A typed number: the file's own convention first, else the only reading there is. */
-function asNumber(value: string | number | undefined, decimal: Decimal | null): number | null {
-	if (typeof value === 'number') return Number.isFinite(value) ? value : null;
-	if (value === undefined) return null;
-	return parseNumber(value, decimal) ?? parseNumber(value, null);
-}
-
-/** Up to six significant digits, for messages. */
-export const figure = (n: number): string => String(Number(n.toPrecision(6)));
-
-/** "A1, A2 and 3 more", for messages. */
-export function someOf(items: string[], most = 4): string {
-	if (items.length <= most) return items.join(', ');
-	return `${items.slice(0, most - 1).join(', ')} and ${items.length - most + 1} more`;
-}
-
-export const plural = (n: number, one: string, many = one + 's'): string => `${n} ${n === 1 ? one : many}`;
-
-export const ENTER = (label = 'Enter the value'): FindingOption => ({
-	key: 'enter',
-	label,
-	needsValue: [{ key: 'value', label: 'Value', kind: 'text' }]
-});
-
-export const MISSING: FindingOption = { key: 'missing', label: 'Leave as missing' };
-
-/** The reason of an answer in brackets, for the record. */
-export const because = (reason: string | undefined): string => (reason ? ` (${reason})` : '');
 
 /** A number that has to be greater than zero; null, with the finding reopened, when it is not. */
 export function positive(ex: Examination, value: number | undefined, what: string): number | null {

@@ -1,11 +1,10 @@
 /** B29: hidden rows, columns and sheets and active filters are shown and asked about, never dropped or used silently. */
-import { type Examination, plural, someOf } from './examination';
-import { address, columnLetter } from './grid';
-import { rowsText } from './structure';
+import type { Examination } from './examination';
+import { capital } from './wording';
 
 /** B29: hidden rows, columns and sheets, active filters. Rows that the person leaves out are returned. */
 export function askHidden(ex: Examination, rows: number[]): Set<number> {
-	const { view, mapping } = ex;
+	const { view, mapping, places } = ex;
 	if (view.sheet.state !== 'visible') askHiddenSheet(ex);
 	const hidden = rows.filter((r) => view.rowHidden(r));
 	const out = new Set<number>();
@@ -14,11 +13,11 @@ export function askHidden(ex: Examination, rows: number[]): Set<number> {
 		const taken = ex.ask({
 			rule: 'B29',
 			level: 'ask',
-			cells: hidden.map((r) => address(r, mapping.block.firstColumn)),
+			cells: hidden.map((r) => ex.at(r, mapping.block.firstColumn)),
 			key: 'rows',
-			found: `${rowsText(hidden)} hidden${why}`,
-			expected: 'a choice; hidden rows are neither dropped nor used silently',
-			message: `${hidden.length === 1 ? 'Row' : 'Rows'} ${someOf(hidden.map(String))} of "${ex.sheet}" ${hidden.length === 1 ? 'is' : 'are'} hidden${why}. Do they belong to the data?`,
+			found: `${places.samples(hidden)} hidden${why}`,
+			expected: `a choice; hidden ${places.line}s are neither dropped nor used silently`,
+			message: `${capital(places.samples(hidden))} of "${ex.sheet}" ${hidden.length === 1 ? 'is' : 'are'} hidden${why}. Do they belong to the data?`,
 			options: [
 				{ key: 'include', label: 'Use them too' },
 				{ key: 'leave-out', label: 'Leave them out' }
@@ -26,7 +25,7 @@ export function askHidden(ex: Examination, rows: number[]): Set<number> {
 		});
 		if (taken?.key === 'leave-out') {
 			hidden.forEach((r) => out.add(r));
-			ex.conversions.push(`Hidden ${rowsText(hidden)} left out.`);
+			ex.conversions.push(`Hidden ${places.samples(hidden)} left out.`);
 		}
 	}
 	askHiddenColumns(ex);
@@ -37,7 +36,7 @@ function askHiddenSheet(ex: Examination): void {
 	ex.ask({
 		rule: 'B29',
 		level: 'ask',
-		cells: [address(ex.mapping.block.firstRow, ex.mapping.block.firstColumn)],
+		cells: [ex.at(ex.mapping.block.firstRow, ex.mapping.block.firstColumn)],
 		key: 'sheet',
 		found: `sheet "${ex.sheet}" is ${ex.view.sheet.state}`,
 		expected: 'a choice; hidden sheets are not used silently',
@@ -49,15 +48,16 @@ function askHiddenSheet(ex: Examination): void {
 function askHiddenColumns(ex: Examination): void {
 	const hidden = ex.mapping.columns.filter((c) => c.role !== 'ignore' && ex.view.columnHidden(c.column));
 	if (hidden.length === 0) return;
-	const letters = hidden.map((c) => columnLetter(c.column));
+	const names = ex.places.manySeries(hidden.map((c) => c.column));
+	const word = ex.places.across ? 'row' : 'column';
 	const taken = ex.ask({
 		rule: 'B29',
 		level: 'ask',
-		cells: hidden.map((c) => address(ex.mapping.block.firstRow, c.column)),
+		cells: hidden.map((c) => ex.at(ex.mapping.block.firstRow, c.column)),
 		key: 'columns',
-		found: `${plural(hidden.length, 'hidden column')}: ${someOf(letters)}`,
-		expected: 'a choice; hidden columns are neither dropped nor used silently',
-		message: `${hidden.length === 1 ? 'Column' : 'Columns'} ${someOf(letters)} of "${ex.sheet}" ${hidden.length === 1 ? 'is' : 'are'} hidden. Do they belong to the data?`,
+		found: `hidden ${names}`,
+		expected: `a choice; hidden ${word}s are neither dropped nor used silently`,
+		message: `${capital(names)} of "${ex.sheet}" ${hidden.length === 1 ? 'is' : 'are'} hidden. Do they belong to the data?`,
 		options: [
 			{ key: 'include', label: 'Use them too' },
 			{ key: 'leave-out', label: 'Leave them out' }
@@ -65,5 +65,5 @@ function askHiddenColumns(ex: Examination): void {
 	});
 	if (taken?.key !== 'leave-out') return;
 	for (const c of hidden) c.role = 'ignore';
-	ex.conversions.push(`Hidden columns ${letters.join(', ')} left out.`);
+	ex.conversions.push(`Hidden ${names} left out.`);
 }

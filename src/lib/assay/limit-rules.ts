@@ -1,7 +1,8 @@
 /** Rules about values at the limits of the method: below LOQ (B8), n.d. (B9), trace (B10), above the range (B12). */
 import type { FindingOption, ValueField } from '$lib/schemas/sheet';
 import { type Channel, channelKey } from './channels';
-import { type Examination, figure, plural, positive, someOf } from './examination';
+import { type Examination, positive } from './examination';
+import { figure, plural, someOf } from './wording';
 import { type LimitKind, type StatedLimits, suggestLimit } from './limits';
 import { askSpots, cellsOf, leaveMissing, letter, ofKind, type Spot } from './spots';
 

@@ -3,6 +3,7 @@ import type { FoundBlock } from './blocks';
 import type { Channel } from './channels';
 import { readValueText } from './cells';
 import type { Decimal } from './numbers';
+import { Places } from './orientation';
 import { address, type SheetView } from './grid';
 import { MASS_FACTOR, MOLAR_FACTOR, readUnit } from './units';
 import { limitKind } from './words';
@@ -28,15 +29,18 @@ const MENTION =
 
 export function statedLimits(
 	view: SheetView,
+	/** The sheet as received, where the lines above the table are. */
+	sheet: SheetView,
 	found: FoundBlock | undefined,
 	decimal: Decimal | null
 ): StatedLimits {
 	const limits: StatedLimits = { byColumn: new Map() };
 	if (!found) return limits;
-	for (const row of found.limitRows) readLimitRow(view, row, found, decimal, limits);
-	const lines = [...found.footerRows.map((f) => f.row), ...found.above.map((a) => a.row)];
-	for (const row of lines)
-		for (const cell of view.cellsOfRow(row))
+	const places = new Places(view !== sheet);
+	for (const row of found.limitRows) readLimitRow(view, row, found, decimal, limits, places);
+	const footers = places.across ? [] : found.footerRows.map((f) => f.row);
+	for (const row of [...footers, ...found.above.map((a) => a.row)])
+		for (const cell of sheet.cellsOfRow(row))
 			if (typeof cell[1] === 'string') mentions(cell[1], address(row, cell[0]), decimal, limits);
 	return limits;
 }
@@ -47,7 +51,8 @@ function readLimitRow(
 	row: number,
 	found: FoundBlock,
 	decimal: Decimal | null,
-	limits: StatedLimits
+	limits: StatedLimits,
+	places: Places
 ): void {
 	const lead = view.cellsOfRow(row).find((c) => typeof c[1] === 'string');
 	const kind = limitKind(String(lead?.[1] ?? ''));
@@ -61,7 +66,7 @@ function readLimitRow(
 		limits.byColumn.set(`${kind}:${cell[0]}`, {
 			value: reading.value,
 			unit: null,
-			source: address(row, cell[0])
+			source: places.at(row, cell[0])
 		});
 	}
 }

@@ -1,6 +1,7 @@
 /** B20: negative values are noise down to −LOQ. B11: a typed 0 stays 0. */
 import type { Channel } from './channels';
-import { type Examination, figure, plural, someOf } from './examination';
+import type { Examination } from './examination';
+import { figure, plural, someOf } from './wording';
 import { askSpots, cellsOf, letter, ofKind, type Spot } from './spots';
 
 export function settleZerosAndNegatives(ex: Examination, channel: Channel, spots: Spot[]): void {

@@ -3,8 +3,8 @@ import { isFitted } from '$lib/schemas/quantity';
 import type { ChannelContent } from '$lib/schemas/run';
 import type { MassBalance, TimeUnit } from '$lib/schemas/sheet';
 import { molarCharge } from './charge';
-import { type Examination, figure, plural, someOf } from './examination';
-import { address } from './grid';
+import type { Examination } from './examination';
+import { figure, plural, someOf } from './wording';
 import { slopeWithInterval } from './statistics';
 import type { Point } from './timepoints';
 
@@ -100,7 +100,7 @@ const signed = (n: number) => (n < 0 ? '−' : '+') + figure(Math.abs(Number(n.t
 function noteBalance(ex: Examination, balance: MassBalance, span: number): void {
 	const { massBalanceLow: low, massBalanceHigh: high } = ex.checks;
 	const outside = balance.rows.filter((r) => r.complete && (r.percent < low || r.percent > high));
-	const cell = (r: { row: number }) => address(r.row, ex.mapping.block.firstColumn);
+	const cell = (r: { row: number }) => ex.at(r.row, ex.mapping.block.firstColumn);
 	if (outside.length > 0)
 		ex.note({
 			rule: 'B36',

@@ -2,7 +2,8 @@
 import type { ChannelContent } from '$lib/schemas/run';
 import type { ValueUnit } from '$lib/schemas/sheet';
 import { type Channel, channelKey, channelName, headerCell, nameOf } from './channels';
-import { type Examination, figure, positive } from './examination';
+import { type Examination, positive } from './examination';
+import { figure } from './wording';
 import type { Content } from './scaling';
 import { MASS_FACTOR } from './units';
 

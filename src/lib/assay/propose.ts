@@ -3,46 +3,16 @@
  * nothing; a person confirms or corrects it, and `settle` makes the run.
  */
 import type { SpeciesContent } from '$lib/schemas/scheme';
-import type {
-	Block,
-	ColumnMapping,
-	ColumnProposal,
-	Finding,
-	GridWorkbook,
-	Mapping,
-	Proposal,
-	SavedMapping,
-	TableProposal
-} from '$lib/schemas/sheet';
-import { readCell } from './cells';
-import { factsOf, isTable } from './column-facts';
-import {
-	type ColumnFacts,
-	type ColumnHeader,
-	guessRole,
-	mappedUnit,
-	matchSpecies,
-	proposeColumn,
-	readHeaders
-} from './columns';
-import { plural, someOf } from './examination';
-import { rangeText, type SheetView } from './grid';
-import { statedLimits } from './limits';
-import { longLayout, peakCounts, peaksOf, useLong } from './long-layout';
-import { decide } from './numbers';
-import { speaksOfTime } from './rows';
-import { savedFor, withSaved } from './saved-mapping';
-import { settle } from './settle';
+import type { Block, Finding, GridWorkbook, Proposal, TableProposal } from '$lib/schemas/sheet';
+import { isTable } from './column-facts';
+import type { SheetView } from './grid';
+import { turnBlock } from './orientation';
+import { proposeTable, type ProposeOptions } from './propose-table';
 import { MOST_COLUMNS } from './side-by-side';
-import { suggestConditions } from './suggestions';
-import { type FoundTable, tablesOf, viewOf, votesOf } from './tables';
-import { timeColumnOf } from './time-column';
+import { blockOnSheet, type FoundTable, overlap, tablesOf, viewOf } from './tables';
+import { plural, someOf } from './wording';
 
-export interface ProposeOptions {
-	saved?: SavedMapping[];
-	/** Constants that the fit of one run would have to find. */
-	parameters?: number;
-}
+export type { ProposeOptions } from './propose-table';
 
 export function propose(
 	workbook: GridWorkbook,
@@ -84,12 +54,17 @@ export function proposeBlock(
 	const view = viewOf(workbook, sheet);
 	if (!view) return null;
 	const block = within(drawn, view);
+	const across = tablesOf(workbook).find(
+		(t) => t.across && t.sheet === sheet && overlap(blockOnSheet(t), block)
+	);
+	if (across) return proposeTable(workbook, species, drawnAcross(across, block), id, options);
 	const near = tablesOf(workbook).find(
 		(t) => t.sheet === sheet && t.block.firstRow <= block.lastRow && t.block.lastRow >= block.firstRow
 	);
 	const headers = headerRows ?? near?.headerRows.filter((r) => r < block.firstRow) ?? [];
 	const found: FoundTable = {
 		sheet,
+		across: false,
 		block,
 		headerRows: headers,
 		limitRows: near?.limitRows ?? [],
@@ -99,6 +74,18 @@ export function proposeBlock(
 		above: near?.above ?? []
 	};
 	return proposeTable(workbook, species, found, id, options);
+}
+
+/** A block drawn over a table whose times run across: the names at its left stay its headers. */
+function drawnAcross(near: FoundTable, drawn: Block): FoundTable {
+	const block = turnBlock(drawn);
+	const firstRow = Math.max(block.firstRow, ...near.headerRows.map((r) => r + 1));
+	return {
+		...near,
+		block: { ...block, firstRow, lastRow: Math.max(block.lastRow, firstRow) },
+		footerRows: [],
+		leftOutRows: near.leftOutRows.filter((r) => r > firstRow && r < block.lastRow)
+	};
 }
 
 /** The part of a drawn block that the sheet fills, at most as wide as a mapping may be. */
@@ -118,112 +105,6 @@ function sheetWords(rows: number, tables: number): string {
 	return rows === 0 ? 'empty' : 'no table with a time column';
 }
 
-function proposeTable(
-	workbook: GridWorkbook,
-	species: SpeciesContent[],
-	found: FoundTable,
-	id: string,
-	options: ProposeOptions
-): TableProposal {
-	const view = viewOf(workbook, found.sheet) as SheetView;
-	const headers = readHeaders(view, found.headerRows, found.block);
-	const facts = new Map(headers.map((h) => [h.column, factsOf(view, found, h.column)]));
-	const columns = columnsOf(view, found, headers, facts, species);
-	const long = longLayout(headers, facts, columns);
-	const decimal = decide(votesOf(workbook)).decimal;
-	let mapping: Mapping = {
-		table: id,
-		sheet: found.sheet,
-		block: found.block,
-		headerRows: found.headerRows,
-		layout: long ? 'long' : 'wide',
-		columns: columns.map((c) => mappingOf(c, headers)),
-		...(long ? { peaks: peaksOf(view, found, long.peak, species) } : {}),
-		leftOutRows: found.leftOutRows,
-		decimal
-	};
-	if (long) useLong(mapping, columns, long);
-	const saved = savedFor(
-		options.saved ?? [],
-		headers.map((h) => h.header)
-	);
-	if (saved) mapping = withSaved(mapping, saved);
-	const settled = settle({ workbook, species, mapping, parameters: options.parameters });
-	const limits = statedLimits(view, found, decimal);
-	const suggested = suggestConditions(view, found, mapping, species, decimal);
-	return {
-		id,
-		title: found.title,
-		sheet: found.sheet,
-		range: rangeText(found.block),
-		block: found.block,
-		headerRows: found.headerRows,
-		footerRows: found.footerRows,
-		columns: columns.map((c, i) => ({ ...c, role: mapping.columns[i].role })),
-		...(mapping.peaks ? { peaks: peakCounts(view, found, long?.peak ?? 0, mapping.peaks) } : {}),
-		mapping,
-		...(saved ? { savedMapping: saved.name } : {}),
-		suggested: {
-			...suggested,
-			...(limits.loq
-				? { loq: { value: limits.loq.value, unit: limits.loq.unit ?? '', source: limits.loq.source } }
-				: {}),
-			...(limits.lod
-				? { lod: { value: limits.lod.value, unit: limits.lod.unit ?? '', source: limits.lod.source } }
-				: {})
-		},
-		findings: settled.findings
-	};
-}
-
-function columnsOf(
-	view: SheetView,
-	found: FoundTable,
-	headers: ColumnHeader[],
-	facts: Map<number, ColumnFacts>,
-	species: SpeciesContent[]
-): ColumnProposal[] {
-	const time = timeColumnOf(view, found);
-	let temperature = false;
-	return headers.map((h) => {
-		const own = facts.get(h.column) ?? { numbers: 0, texts: 0, distinct: 0 };
-		const matched = h.column === time ? null : matchSpecies(h, species);
-		let role = h.column === time ? ('time' as const) : guessRole(h, own, matched);
-		// One log is used; further temperatures (jacket, bath) stay on the sheet.
-		if (role === 'temperature' && temperature) role = 'ignore';
-		if (role === 'temperature') temperature = true;
-		return proposeColumn(view, h, role, matched, own.numbers);
-	});
-}
-
-function mappingOf(c: ColumnProposal, headers: ColumnHeader[]): ColumnMapping {
-	const header = headers.find((h) => h.column === c.column);
-	const unit = header ? mappedUnit(header.unit) : null;
-	const fits =
-		c.role === 'time'
-			? header?.unit?.of === 'time'
-			: c.role === 'temperature'
-				? header?.unit?.of === 'temperature'
-				: header?.unit?.of === 'value';
-	return {
-		column: c.column,
-		role: c.role,
-		unit: fits ? unit : null,
-		...(c.role === 'species' ? { weights: c.species ? { [c.species]: 1 } : {} } : {}),
-		...(c.header ? { label: c.header.slice(0, 120) } : {})
-	};
-}
-
-/** A row that begins with a time word and goes on with numbers. */
-function runsAcross(workbook: GridWorkbook): boolean {
-	return workbook.sheets.some((sheet) =>
-		sheet.rows.slice(0, 200).some(({ c }) => {
-			if (c.length < 4 || typeof c[0][1] !== 'string' || !speaksOfTime(c[0][1])) return false;
-			return c.slice(1).every((cell) => readCell(workbook, cell, null).kind === 'number');
-		})
-	);
-}
-
 function workbookFindings(workbook: GridWorkbook, tables: TableProposal[]): Finding[] {
 	const base = { sheet: '', cells: [], count: 0, expected: '', options: [], open: false };
 	const findings: Finding[] = [];
@@ -235,9 +116,8 @@ function workbookFindings(workbook: GridWorkbook, tables: TableProposal[]): Find
 			rule: 'B1',
 			found: 'no table with a time column and numbers beside it',
 			expected: 'a header row with a time column, for example "Time (h)", and a column for each species',
-			message: runsAcross(workbook)
-				? 'The times seem to run across, one column a sample. One row a sample is expected: copy the table, paste it transposed, and upload it again.'
-				: 'No table was found: a time column with values beside it is expected. Mark the rows yourself, or upload a sheet in the form of the template.',
+			message:
+				'No table was found: a time column with values beside it, or a row of times with values below it, is expected. Mark the rows yourself, or upload a sheet in the form of the template.',
 			open: true
 		});
 	const hidden = workbook.sheets.filter(
@@ -251,7 +131,8 @@ function workbookFindings(workbook: GridWorkbook, tables: TableProposal[]): Find
 			rule: 'B29',
 			sheet: hidden[0].name,
 			found: `${plural(hidden.length, 'hidden sheet')}: ${someOf(hidden.map((s) => `"${s.name}"`))}`,
-			message: `${someOf(hidden.map((s) => `"${s.name}"`))} ${hidden.length === 1 ? 'is a hidden sheet' : 'are hidden sheets'} without a table; not used.`
+			expected: 'tables on sheets that can be seen',
+			message: `${someOf(hidden.map((s) => `"${s.name}"`))} ${hidden.length === 1 ? 'is a hidden sheet' : 'are hidden sheets'} without a table; not used. Unhide ${hidden.length === 1 ? 'it' : 'them'} and upload again if ${hidden.length === 1 ? 'it belongs' : 'they belong'} to the data.`
 		});
 	return findings;
 }

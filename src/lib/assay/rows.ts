@@ -77,6 +77,12 @@ export const isDataRow = (look: RowLook): boolean =>
 	!isFooterRow(look) &&
 	look.texts.length <= look.values.length + 4;
 
+/** "Time (h) | 1 | 2 | 3" above rows of numbers: the names of the columns are numbers, as compounds have them. */
+export function isNumberedHeader(look: RowLook, below: RowLook | undefined): boolean {
+	if (!below || look.texts.length !== 1 || look.lead === '' || !speaksOfTime(look.lead)) return false;
+	return below.numbers.includes(look.first) && below.r - look.r <= 2;
+}
+
 /** Goes on in a table that has begun: any number inside its columns. */
 export const continues = (look: RowLook, first: number, last: number): boolean =>
 	!isFooterRow(look) && look.numbers.some((c) => c >= first && c <= last) && !isHeaderRow(look);

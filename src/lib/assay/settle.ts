@@ -19,16 +19,18 @@ import { convertValues } from './conversions';
 import { noteCopies } from './copies';
 import { settleDecimal } from './decimal-rule';
 import { type Checks, CHECKS, Examination } from './examination';
-import { address } from './grid';
 import { askHidden } from './hidden';
 import { statedLimits } from './limits';
 import { massBalance } from './mass-balance';
+import { asOnSheet, turnBlock } from './orientation';
 import { plausibility } from './plausibility';
+import { averageColumns } from './replicate-columns';
 import { samplesOf, timeColumn } from './samples';
 import { askBlock, dataRows, noteColours, noteFooters, noteHeaders, noteMergesAndDates } from './structure';
 import { headersOf, tableOf, viewOf, votesOf } from './tables';
 import { temperatureLog, type TemperatureLog } from './temperature-log';
 import { timeColumnByHeader } from './time-column';
+import { settleTimeParts } from './time-parts';
 import { settleTimes } from './time-rules';
 import { type Point, pointsOf, settleReplicates } from './timepoints';
 import { settleValues } from './value-rules';
@@ -53,7 +55,7 @@ export function settle(input: SettleInput): Settlement {
 		input.answers,
 		input.corrections,
 		checks,
-		viewOf(input.workbook, input.mapping.sheet)
+		viewOf(input.workbook, input.mapping.sheet, input.mapping.across !== undefined)
 	);
 	const found = tableOf(ex.workbook, ex.mapping);
 	const headers = headersOf(ex.view, ex.mapping);
@@ -65,16 +67,18 @@ export function settle(input: SettleInput): Settlement {
 	const used = shown.filter((r) => !controls.has(r));
 	const channels = settleChannels(ex, headers);
 	stopWithoutColumns(ex, channels);
+	settleTimeParts(ex, used);
 	const samples = samplesOf(ex, used, channels);
 	const times = settleTimes(ex, samples, headers);
-	const limits = statedLimits(ex.view, found, ex.decimal);
+	const limits = statedLimits(ex.view, viewOf(ex.workbook, ex.sheet) ?? ex.view, found, ex.decimal);
 	const values = settleValues(
 		ex,
 		times.samples.map((t) => t.sample),
 		channels,
 		limits
 	);
-	const points = settleReplicates(ex, pointsOf(times.samples, times.unit, channels, values), times.unit);
+	const read = averageColumns(ex, pointsOf(ex, times.samples, times.unit, channels, values), channels);
+	const points = settleReplicates(ex, read, times.unit);
 	const { channels: contents, complete } = convertValues(ex, channels, points);
 	askCharge(ex, points, channels);
 	checkCount(ex, points, channels, input.parameters ?? null);
@@ -92,12 +96,12 @@ export function settle(input: SettleInput): Settlement {
 		findings: sortFindings(ex.findings),
 		open,
 		needs: ex.needs,
-		mapping: ex.mapping,
+		mapping: asOnSheet(ex.mapping),
 		preview: points.map(preview),
 		conversions: ex.conversions,
 		massBalance: balance,
 		plausibility: plausibility(points, contents, times.unit),
-		rest: times.rest,
+		rest: times.rest && (ex.places.across ? turnBlock(times.rest) : times.rest),
 		run: ready ? runOf(ex, points, contents, times.unit, log) : null
 	};
 }
@@ -117,6 +121,7 @@ function settleStructure(
 	askBlock(ex, {
 		blank: moved ? [] : found.leftOutRows,
 		doubtfulRows: moved ? [] : doubtful,
+		time: timeColumn(ex),
 		timeByHeader: moved || timeColumnByHeader(ex.view, mapping.headerRows, mapping.block) > 0,
 		headers: moved || mapping.headerRows.length > 0
 	});
@@ -126,7 +131,7 @@ function settleStructure(
 
 /** A mapping without a time column, or without anything measured, is no run. */
 function stopWithoutColumns(ex: Examination, channels: Channel[]): void {
-	const cells = [address(ex.mapping.block.firstRow, ex.mapping.block.firstColumn)];
+	const cells = [ex.at(ex.mapping.block.firstRow, ex.mapping.block.firstColumn)];
 	if (timeColumn(ex) === 0)
 		ex.ask({
 			rule: 'B1',
@@ -200,7 +205,7 @@ function runOf(
 			values: Object.fromEntries([...p.values].filter(([id]) => ids.has(id))),
 			source: {
 				sheet: ex.sheet.slice(0, 64),
-				row: p.row,
+				...(ex.places.across ? { row: timeColumn(ex), column: p.row } : { row: p.row }),
 				cells: Object.fromEntries([...p.cells].filter(([id]) => ids.has(id)))
 			},
 			...(p.sampleId ? { sampleId: p.sampleId } : {})

@@ -1,8 +1,9 @@
 /** Tables side by side: a band of rows is parted where a second time column begins a table of its own. */
 import type { Band, FoundBlock } from './blocks';
-import { displayText, type SheetView } from './grid';
+import type { SheetView } from './grid';
 import type { Headers } from './header-rows';
 import { type RowLook, speaksOfTime } from './rows';
+import { textsAbove, titleOf } from './titles';
 
 /** Columns of one table. */
 export const MOST_COLUMNS = 400;
@@ -73,7 +74,8 @@ function oneTable(
 		firstColumn: first,
 		lastColumn: Math.min(last, first + MOST_COLUMNS - 1)
 	};
-	const above = textsAbove(view, looks, band, parted ? { first, last } : null);
+	const top = band.headerRows[0] ?? looks[band.start].r;
+	const above = textsAbove(view, top, band.floor, parted ? { first, last } : null);
 	return {
 		block,
 		headerRows: band.headerRows,
@@ -83,31 +85,4 @@ function oneTable(
 		title: titleOf(view, above),
 		above
 	};
-}
-
-function textsAbove(
-	view: SheetView,
-	looks: RowLook[],
-	band: Wide,
-	part: { first: number; last: number } | null
-): { row: number; text: string }[] {
-	const top = band.headerRows[0] ?? looks[band.start].r;
-	const found: { row: number; text: string }[] = [];
-	for (let k = looks.length - 1; k >= band.floor; k--) {
-		const look = looks[k];
-		if (look.r >= top || found.length >= 12) continue;
-		const cells = view.cellsOfRow(look.r).filter((c) => !part || (c[0] >= part.first && c[0] <= part.last));
-		const text = cells
-			.map((c) => displayText(view.workbook, c).trim())
-			.filter(Boolean)
-			.join(' ');
-		if (text) found.push({ row: look.r, text: text.slice(0, 200) });
-	}
-	return found;
-}
-
-/** The nearest line that reads like a title: one cell, or the first line of the sheet. */
-function titleOf(view: SheetView, above: { row: number; text: string }[]): string {
-	const lone = above.find(({ row }) => view.cellsOfRow(row).filter((c) => c[1] !== null).length === 1);
-	return (lone ?? above[above.length - 1])?.text.slice(0, 120) ?? view.sheet.name;
 }

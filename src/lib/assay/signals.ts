@@ -2,7 +2,8 @@
 import type { ChannelContent } from '$lib/schemas/run';
 import { type Channel, channelKey, channelName, headerCell } from './channels';
 import { molarName } from './charge';
-import { type Examination, figure, positive, someOf } from './examination';
+import { type Examination, positive } from './examination';
+import { figure, someOf } from './wording';
 import { convertUnit } from './limits';
 import { type Content, mapValue, tidy } from './scaling';
 import type { Point } from './timepoints';

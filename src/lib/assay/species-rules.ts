@@ -1,8 +1,9 @@
 /** B32: what a column or a peak is, when its name is no species of the scheme. */
 import type { ColumnMapping, FindingOption, PeakMapping } from '$lib/schemas/sheet';
 import { headerCell, nameOf } from './channels';
-import { type Examination, someOf, type Taken } from './examination';
-import { columnLetter } from './grid';
+import type { Taken } from './answers';
+import type { Examination } from './examination';
+import { capital, someOf } from './wording';
 
 function speciesOptions(ex: Examination): FindingOption[] {
 	const choices = ex.species.map((s) => ({
@@ -97,13 +98,13 @@ function whatIsIt(ex: Examination, it: Unmatched): Record<string, number> | 'ign
 }
 
 export function askSpecies(ex: Examination, c: ColumnMapping, header: string): void {
-	const letter = columnLetter(c.column);
+	const place = ex.places.series(c.column);
 	const outcome = whatIsIt(ex, {
 		asked: header
-			? `Column ${letter}, "${header}", is no species of the scheme`
-			: `Column ${letter} has no header`,
-		recorded: `Column ${letter}${header ? ` ("${header}")` : ''}`,
-		found: header ? `header "${header}"` : `column ${letter} without a header`,
+			? `${capital(place)}, "${header}", is no species of the scheme`
+			: `${capital(place)} has no header`,
+		recorded: `${capital(place)}${header ? ` ("${header}")` : ''}`,
+		found: header ? `header "${header}"` : `${place} without a header`,
 		cell: headerCell(ex, c.column)
 	});
 	if (outcome === 'ignore') c.role = 'ignore';

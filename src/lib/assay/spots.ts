@@ -2,15 +2,9 @@
 import type { AssayValue } from '$lib/schemas/run';
 import type { CellReading } from './cells';
 import type { Channel } from './channels';
-import {
-	because,
-	ENTER,
-	type Examination,
-	type FindingSpec,
-	MISSING,
-	someOf,
-	type Taken
-} from './examination';
+import type { Taken } from './answers';
+import type { Examination, FindingSpec } from './examination';
+import { because, ENTER, MISSING, someOf } from './wording';
 import type { Sample } from './samples';
 
 /** One cell of a channel while it is being settled. */

@@ -1,7 +1,6 @@
 /** Date-time stamps (B16): elapsed time as a difference, with the zone asked where a clock change lies inside. */
 import { clockChangeBetween, zoneOffsetsMin } from './clock-changes';
 import type { Examination } from './examination';
-import { address } from './grid';
 import type { Sample } from './samples';
 import { daysToSeconds, readTimeText, type TimeReading } from './times';
 
@@ -13,7 +12,7 @@ export function absoluteSeconds(
 	samples: Sample[],
 	readings: TimeReading[]
 ): (number | null)[] {
-	const cells = samples.map((s) => address(s.time.row, s.time.column));
+	const cells = samples.map((s) => ex.at(s.time.row, s.time.column));
 	const orders = settleOrder(ex, cells, readings);
 	if (!orders) return readings.map(() => null);
 	const days = readings.map((r) =>

@@ -342,27 +342,32 @@ describe('s03, s07, s08, s09', () => {
 		expect(run?.channels[0].unit).toBe('fraction of charge');
 	});
 
-	it('s09: two columns of one species are a stop, and can be replicate samples', () => {
+	it('s09: replicate columns of one species are recognised, and asked once: separate samples or injections', () => {
 		const workbook = read('s09_autocat.csv');
 		const [table] = propose(workbook, species).tables;
-		const named: Answers = {
-			s: { key: 'x' },
-			'B32:s09_autocat!B1': { key: 'species', values: { value: 'A' } },
-			'B32:s09_autocat!C1': { key: 'species', values: { value: 'A' } }
-		};
-		const doubled = settle({ workbook, species, answers: named, mapping: withConditions(table.mapping) });
-		const stop = doubled.findings.filter((f) => f.open);
-		expect(stop.map((f) => [f.level, f.rule])).toEqual([['stop', 'B32']]);
-		const { run } = settle({
-			workbook,
-			species,
-			answers: { ...named, [stop[0].id]: { key: 'replicates' } },
-			mapping: withConditions(table.mapping)
-		});
-		expect(run?.timepoints).toHaveLength(18);
-		expect(run?.timepoints.slice(0, 2).map((p) => [p.time, p.values])).toEqual([
+		const mapping = withConditions(table.mapping);
+		const open = settle({ workbook, species, mapping }).findings.filter((f) => f.open);
+		expect(open.map((f) => [f.level, f.rule, f.message])).toEqual([
+			[
+				'ask',
+				'B13',
+				'Columns B–C for A: the headers number them as replicates. Injections of one sample, or separate samples?'
+			]
+		]);
+		const settleAs = (key: string) =>
+			settle({ workbook, species, mapping, answers: { [open[0].id]: { key } } });
+		const apart = settleAs('samples').run;
+		expect(apart?.timepoints).toHaveLength(18);
+		expect(apart?.timepoints.slice(0, 2).map((p) => [p.time, p.values])).toEqual([
 			[0.25, { A: 0.901 }],
 			[0.25, { A: 0.896 }]
 		]);
+		expect(apart?.replicates).toBe('samples');
+		const averaged = settleAs('injections');
+		expect(averaged.run?.timepoints).toHaveLength(9);
+		expect(averaged.run?.timepoints[0].values.A).toBeCloseTo(0.8985, 12);
+		// Pooled over nine pairs: s² = Σ d²/2 / 9.
+		expect(averaged.conversions.join()).toContain('standard deviation of injection 0.00602771');
+		expect(settleAs('first').run?.timepoints.map((p) => p.values.A)[0]).toBe(0.901);
 	});
 });

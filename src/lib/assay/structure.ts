@@ -1,7 +1,8 @@
 /** Rules about the table as a whole: B1, B2, B27, B30, B31, B37 and errors outside the block (B25). */
 import { CELL } from '$lib/schemas/sheet';
-import { type Examination, plural, someOf } from './examination';
-import { address, hasFlag, rangeText } from './grid';
+import type { Examination } from './examination';
+import { capital, plural, someOf } from './wording';
+import { hasFlag } from './grid';
 
 /** Rows of the block that hold data, in order. */
 export function dataRows(ex: Examination): number[] {
@@ -17,6 +18,8 @@ export interface BlockFacts {
 	blank: number[];
 	/** Rows below that hold numbers and whose first cell does not say why they are no data. */
 	doubtfulRows: number[];
+	/** The time column, and whether its header says so. */
+	time: number;
 	timeByHeader: boolean;
 	headers: boolean;
 }
@@ -24,40 +27,60 @@ export interface BlockFacts {
 /** B1: only asked where the block could be meant otherwise. */
 export function askBlock(ex: Examination, facts: BlockFacts): void {
 	const { block } = ex.mapping;
+	const { places } = ex;
 	const doubts: string[] = [];
 	if (facts.blank.length > 0)
-		doubts.push(`${plural(facts.blank.length, 'blank row')} inside (${someOf(facts.blank.map(String))})`);
-	if (facts.doubtfulRows.length > 0) doubts.push(`${rowsText(facts.doubtfulRows)} below left out`);
-	if (!facts.headers) doubts.push('no header row above');
-	else if (!facts.timeByHeader) doubts.push('no column whose header says time');
+		doubts.push(
+			`${plural(facts.blank.length, `blank ${places.line}`)} inside (${someOf(facts.blank.map((r) => places.sample(r)))})`
+		);
+	if (facts.doubtfulRows.length > 0)
+		doubts.push(`${places.samples(facts.doubtfulRows)} ${places.across ? 'at the right' : 'below'} left out`);
+	if (!facts.headers) doubts.push(places.across ? 'no names at the left' : 'no header row above');
+	else if (!facts.timeByHeader) doubts.push(`no ${places.across ? 'row' : 'column'} whose header says time`);
+	if (places.across) return askAcross(ex, facts.time, doubts);
 	if (doubts.length === 0) return;
 	ex.ask({
 		rule: 'B1',
 		level: 'ask',
-		cells: [address(block.firstRow, block.firstColumn), address(block.lastRow, block.lastColumn)],
-		key: rangeText(block),
-		found: `${rangeText(block)}: ${doubts.join(', ')}`,
+		cells: [ex.at(block.firstRow, block.firstColumn), ex.at(block.lastRow, block.lastColumn)],
+		key: places.range(block),
+		found: `${places.range(block)}: ${doubts.join(', ')}`,
 		expected: 'the rows and columns that hold the data',
 		message: `We read rows ${block.firstRow}–${block.lastRow} of "${ex.sheet}" as the data (${doubts.join('; ')}). Is that right?`,
 		options: [{ key: 'right', label: 'Yes, these rows' }]
 	});
 }
 
-export const rowsText = (rows: number[]) =>
-	rows.length > 1 && rows[rows.length - 1] - rows[0] === rows.length - 1
-		? `rows ${rows[0]}–${rows[rows.length - 1]}`
-		: `${rows.length === 1 ? 'row' : 'rows'} ${someOf(rows.map(String))}`;
+/** B1 for times that run across: never read so without a word. */
+function askAcross(ex: Examination, time: number, doubts: string[]): void {
+	const { block, headerRows } = ex.mapping;
+	const also = doubts.length > 0 ? ` (${doubts.join('; ')})` : '';
+	ex.ask({
+		rule: 'B1',
+		level: 'ask',
+		cells: [
+			ex.at(headerRows.at(-1) ?? block.firstRow, time || block.firstColumn),
+			ex.at(block.lastRow, block.lastColumn)
+		],
+		key: `across-${ex.places.range(block)}`,
+		found: `times in row ${time || block.firstColumn}, one column a sample${also}`,
+		expected: 'one row a sample, or your word that each row is a series',
+		message: `Times run across row ${time || block.firstColumn} of "${ex.sheet}"${also}. Read each row of ${ex.places.range(block)} as a species and each column as a sample?`,
+		options: [{ key: 'right', label: 'Yes, each row is a series' }]
+	});
+}
 
 /** B2: headers in several rows were joined. */
 export function noteHeaders(ex: Examination, joined: { column: number; header: string }[]): void {
 	const { headerRows } = ex.mapping;
+	const where = ex.places.samples(headerRows);
 	if (headerRows.length < 2 || joined.length === 0) return;
 	ex.note({
 		rule: 'B2',
-		cells: joined.map((h) => address(headerRows[0], h.column)),
-		key: rowsText(headerRows),
-		found: `header in ${rowsText(headerRows)}`,
-		message: `The header spans ${rowsText(headerRows)}; its parts were joined, for example "${joined[0].header}".`
+		cells: joined.map((h) => ex.at(headerRows[0], h.column)),
+		key: where,
+		found: `header in ${where}`,
+		message: `The header spans ${where}; its parts were joined, for example "${joined[0].header}".`
 	});
 }
 
@@ -73,7 +96,7 @@ export function noteColours(ex: Examination, rows: number[]): void {
 			const style = ex.view.style(r, cell[0]);
 			if (style.coloured) coloured++;
 			if (style.struck) struck++;
-			if (style.coloured || style.struck) marked.push(address(r, cell[0]));
+			if (style.coloured || style.struck) marked.push(ex.at(r, cell[0]));
 		}
 	}
 	// A whole block in one colour is decoration.
@@ -103,20 +126,20 @@ export function noteFooters(ex: Examination, footerRows: number[]): void {
 		);
 		ex.note({
 			rule: 'B27',
-			cells: inside.map((r) => address(r, ex.mapping.block.firstColumn)),
+			cells: inside.map((r) => ex.at(r, ex.mapping.block.firstColumn)),
 			key: 'footers',
 			found: someOf(leads.filter(Boolean).map((t) => `"${t.slice(0, 40)}"`)),
-			message: `${rowsText(inside)} below the data (${someOf(
+			message: `${capital(ex.places.samples(inside))} ${ex.places.across ? 'at the right of' : 'below'} the data (${someOf(
 				leads.filter(Boolean).map((t) => `"${t.slice(0, 40)}"`),
 				3
-			)}) ${inside.length === 1 ? 'is' : 'are'} shown and not used.`.replace(/^r/, 'R')
+			)}) ${inside.length === 1 ? 'is' : 'are'} shown and not used.`
 		});
 	}
 	const errors = inside.flatMap((r) =>
 		ex.view
 			.cellsOfRow(r)
 			.filter((c) => hasFlag(c, CELL.error))
-			.map((c) => address(r, c[0]))
+			.map((c) => ex.at(r, c[0]))
 	);
 	if (errors.length > 0)
 		ex.note({
@@ -137,10 +160,10 @@ export function noteMergesAndDates(ex: Examination, rows: number[], timeColumn: 
 	if (filled.length > 0)
 		ex.note({
 			rule: 'B31',
-			cells: filled.map((m) => address(m[0], m[1])),
+			cells: filled.map((m) => ex.at(m[0], m[1])),
 			key: 'merged',
 			found: `${plural(filled.length, 'merged time cell')}`,
-			message: `${plural(filled.length, 'time cell')} merged over several rows (${someOf(filled.map((m) => rangeText({ firstRow: m[0], firstColumn: m[1], lastRow: m[2], lastColumn: m[3] })))}): the time holds for each of the rows.`
+			message: `${plural(filled.length, 'time cell')} merged over several ${ex.places.line}s (${someOf(filled.map((m) => ex.places.range({ firstRow: m[0], firstColumn: m[1], lastRow: m[2], lastColumn: m[3] })))}): the time holds for each of them.`
 		});
 	if (ex.workbook.dateSystem === 1904)
 		ex.note({

@@ -4,6 +4,7 @@ import type { Mapping, Suggestion, TableProposal } from '$lib/schemas/sheet';
 import { readCell } from './cells';
 import { address, type SheetView } from './grid';
 import { parseNumber, type Decimal } from './numbers';
+import { Places } from './orientation';
 import { median } from './statistics';
 import type { FoundTable } from './tables';
 import { readUnit } from './units';
@@ -12,6 +13,8 @@ type Suggested = Pick<TableProposal['suggested'], 'temperature' | 'initial'>;
 
 export function suggestConditions(
 	view: SheetView,
+	/** The sheet as received, where the lines above the table are. */
+	sheet: SheetView,
 	found: FoundTable,
 	mapping: Mapping,
 	species: SpeciesContent[],
@@ -19,11 +22,12 @@ export function suggestConditions(
 ): Suggested {
 	const temperature =
 		temperatureFrom(found.title, `"${found.title}"`) ??
-		temperatureAbove(view, found) ??
+		temperatureAbove(sheet, found) ??
 		temperatureFrom(found.sheet, `sheet name "${found.sheet}"`) ??
 		temperatureFromName(found.sheet) ??
 		temperatureFromLog(view, mapping);
-	const initial = chargeAbove(view, found, species, decimal) ?? chargeFromZeroRow(view, mapping);
+	const initial =
+		chargeAbove(sheet, found, species, decimal) ?? chargeFromZeroRow(view, mapping, new Places(found.across));
 	return { ...(temperature ? { temperature } : {}), ...(initial ? { initial } : {}) };
 }
 
@@ -61,7 +65,7 @@ function temperatureFromLog(view: SheetView, mapping: Mapping): Suggestion | nul
 	return {
 		value: Number(median(values).toPrecision(6)),
 		unit: column.unit,
-		source: 'middle of the temperature column'
+		source: 'middle of the temperature readings'
 	};
 }
 
@@ -103,7 +107,11 @@ function isNamed(text: string, s: SpeciesContent, atEnd: boolean): boolean {
 	});
 }
 
-function chargeFromZeroRow(view: SheetView, mapping: Mapping): Record<string, Suggestion> | null {
+function chargeFromZeroRow(
+	view: SheetView,
+	mapping: Mapping,
+	places: Places
+): Record<string, Suggestion> | null {
 	const time = mapping.columns.find((c) => c.role === 'time');
 	if (!time || mapping.layout !== 'wide') return null;
 	const row = mapping.block.firstRow;
@@ -121,7 +129,7 @@ function chargeFromZeroRow(view: SheetView, mapping: Mapping): Record<string, Su
 		if (!relative && !c.unit.includes('mol/L')) continue;
 		initial.push([
 			ids[0],
-			{ value: reading.value, unit: relative ? '%' : c.unit, source: address(row, c.column) }
+			{ value: reading.value, unit: relative ? '%' : c.unit, source: places.at(row, c.column) }
 		]);
 	}
 	// Traces at time zero are no charge.

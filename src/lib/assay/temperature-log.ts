@@ -1,6 +1,6 @@
 /** The temperature column as a log in °C, and the values far from its middle. */
-import { type Examination, figure } from './examination';
-import { address, columnLetter } from './grid';
+import type { Examination } from './examination';
+import { capital, figure } from './wording';
 import { median } from './statistics';
 import type { Point } from './timepoints';
 
@@ -14,14 +14,14 @@ export function temperatureLog(ex: Examination, points: Point[]): TemperatureLog
 	const column = ex.mapping.columns.find((c) => c.role === 'temperature');
 	if (!column) return { rows: [], open: false };
 	if (column.unit !== 'degC' && column.unit !== 'K') {
-		const letter = columnLetter(column.column);
+		const place = `temperature ${ex.places.series(column.column)}`;
 		const taken = ex.ask({
 			rule: 'B4',
 			level: 'stop',
-			cells: [address(ex.mapping.headerRows.at(-1) ?? ex.mapping.block.firstRow, column.column)],
-			found: `temperature column ${letter} without a unit`,
+			cells: [ex.at(ex.mapping.headerRows.at(-1) ?? ex.mapping.block.firstRow, column.column)],
+			found: `${place} without a unit`,
 			expected: '°C or K',
-			message: `Temperature column ${letter} has no unit. Choose one; we will not assume.`,
+			message: `${capital(place)} has no unit. Choose one; we will not assume.`,
 			options: [
 				{ key: 'degC', label: '°C' },
 				{ key: 'K', label: 'K' }
@@ -40,7 +40,7 @@ export function temperatureLog(ex: Examination, points: Point[]): TemperatureLog
 			{
 				time: p.time,
 				celsius: Number((reading.value + shift).toPrecision(12)),
-				cell: address(p.row, column.column)
+				cell: ex.at(p.row, column.column)
 			}
 		];
 	});

@@ -2,7 +2,7 @@
 import type { Block } from '$lib/schemas/sheet';
 import type { SheetView } from './grid';
 import { speaksOfTime } from './rows';
-import type { FoundTable } from './tables';
+import type { FoundBlock } from './blocks';
 import { readTime } from './times';
 import { readUnit, splitHeader } from './units';
 import { isClockWord, isTimeWord } from './words';
@@ -36,7 +36,7 @@ function timeRank(texts: string[]): number {
 	return unit ? 4 : 3;
 }
 
-export function timeColumnOf(view: SheetView, found: FoundTable): number {
+export function timeColumnOf(view: SheetView, found: FoundBlock): number {
 	const named = timeColumnByHeader(view, found.headerRows, found.block);
 	if (named > 0) return named;
 	// Names of samples that are times, "t=15 min" or "2 h".
@@ -49,7 +49,7 @@ export function timeColumnOf(view: SheetView, found: FoundTable): number {
 	return 0;
 }
 
-function namesTimes(view: SheetView, found: FoundTable, column: number): boolean {
+function namesTimes(view: SheetView, found: FoundBlock, column: number): boolean {
 	let times = 0;
 	let others = 0;
 	for (const r of view.filledRows(found.block.firstRow, found.block.lastRow)) {
@@ -61,7 +61,7 @@ function namesTimes(view: SheetView, found: FoundTable, column: number): boolean
 	return times >= 3 && times >= others * 4;
 }
 
-function increases(view: SheetView, found: FoundTable, column: number): boolean {
+function increases(view: SheetView, found: FoundBlock, column: number): boolean {
 	let before = -Infinity;
 	let count = 0;
 	for (const r of view.filledRows(found.block.firstRow, found.block.lastRow)) {

@@ -1,7 +1,7 @@
 /** B15: times of day, counted from a start that the person states, over midnight where that is confirmed. */
 import type { ColumnHeader } from './columns';
-import { type Examination, plural } from './examination';
-import { address } from './grid';
+import type { Examination } from './examination';
+import { plural } from './wording';
 import type { Sample } from './samples';
 import { clockText, daysToSeconds, type TimeReading } from './times';
 import { isClockWord } from './words';
@@ -22,7 +22,7 @@ export function isClock(
 	const days = times.map((i) => dayFraction(readings[i]));
 	const first = days[0];
 	if (first === 0 || days.some((d) => d >= 1) || first < 1 / 24) return false;
-	const cell = (i: number) => address(samples[i].time.row, samples[i].time.column);
+	const cell = (i: number) => ex.at(samples[i].time.row, samples[i].time.column);
 	const text = ex.shown(samples[times[0]].time.row, samples[times[0]].time.column);
 	const taken = ex.ask({
 		rule: 'B15',
@@ -47,7 +47,7 @@ function dayFraction(r: TimeReading): number {
 }
 
 export function clockSeconds(ex: Examination, samples: Sample[], readings: TimeReading[]): (number | null)[] {
-	const cells = samples.map((s) => address(s.time.row, s.time.column));
+	const cells = samples.map((s) => ex.at(s.time.row, s.time.column));
 	const ofDay = readings.map((r) => daysToSeconds(dayFraction(r)));
 	const start = askStart(ex, cells[0], clockText(ofDay[0]));
 	let day = 0;
@@ -72,7 +72,7 @@ function askStart(ex: Examination, cell: string, first: string): number | null {
 	const stated = /\b(?:start|begin|beginn|t0|d[ée]but)\D{0,12}(\d{1,2}:\d{2}(?::\d{2})?)/i;
 	const title = ex.view.sheet.rows
 		.filter((row) => row.r < ex.mapping.block.firstRow)
-		.flatMap((row) => row.c.map((c) => ({ at: address(row.r, c[0]), m: stated.exec(String(c[1] ?? '')) })))
+		.flatMap((row) => row.c.map((c) => ({ at: ex.at(row.r, c[0]), m: stated.exec(String(c[1] ?? '')) })))
 		.find(({ m }) => m);
 	const suggested = title?.m?.[1] ?? first;
 	const taken = ex.ask({

@@ -1,8 +1,8 @@
 /** B18: times increase; one that does not is a typing error, a row to leave out, or the first of a new run. */
 import type { Block, TimeUnit } from '$lib/schemas/sheet';
 import { secondsOf } from './elapsed-time';
-import { because, type Examination } from './examination';
-import { address } from './grid';
+import type { Examination } from './examination';
+import { because } from './wording';
 import type { Timed } from './samples';
 
 export function stopBackwards(
@@ -51,7 +51,7 @@ function askBackwards(
 ): 'corrected' | 'keep' | 'leave-out' | 'new-run' | 'open' {
 	const t = timed[i];
 	const { row, column } = t.sample.time;
-	const cell = address(row, column);
+	const cell = ex.at(row, column);
 	const shown = showTime(ex, t);
 	const next =
 		timed.slice(i + 1).find((n) => n.seconds !== null && n.sample.row !== t.sample.row)?.seconds ?? null;

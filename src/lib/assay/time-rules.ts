@@ -3,8 +3,8 @@ import type { Block, TimeUnit } from '$lib/schemas/sheet';
 import type { ColumnHeader } from './columns';
 import { withDates } from './date-and-time';
 import { elapsed, noteWrapped } from './elapsed-time';
-import { because, ENTER, type Examination } from './examination';
-import { address } from './grid';
+import type { Examination } from './examination';
+import { because, ENTER } from './wording';
 import { type Sample, timeColumn, type Timed } from './samples';
 import { stopBackwards } from './time-order';
 import { stopMixedKinds, timeUnit } from './time-unit';
@@ -56,7 +56,7 @@ function dropUnreadable(ex: Examination, samples: Sample[]): Sample[] {
 
 /** True when the cell has a time after the answer. */
 function askTimeCell(ex: Examination, s: Sample, reading: TimeReading): boolean {
-	const cell = address(s.time.row, s.time.column);
+	const cell = ex.at(s.time.row, s.time.column);
 	const shown = ex.shown(s.time.row, s.time.column);
 	const found = reading.kind === 'blank' ? 'no time' : `"${shown.slice(0, 60)}"`;
 	const taken = ex.ask({

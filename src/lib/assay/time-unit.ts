@@ -2,8 +2,8 @@
 import { TIME_UNITS, type TimeUnit } from '$lib/schemas/sheet';
 import { headerCell } from './channels';
 import type { ColumnHeader } from './columns';
-import { type Examination, plural, someOf } from './examination';
-import { address, columnLetter } from './grid';
+import type { Examination } from './examination';
+import { capital, plural, someOf } from './wording';
 import type { Sample } from './samples';
 import type { TimeReading } from './times';
 
@@ -28,7 +28,7 @@ export function stopMixedKinds(
 		if (ex.isCorrected(s.time.row, s.time.column)) return;
 		if (readings[i].kind === 'number' && (readings[i] as { value: number }).value === 0) return;
 		const cells = kinds.get(family(readings[i])) ?? [];
-		cells.push(address(s.time.row, s.time.column));
+		cells.push(ex.at(s.time.row, s.time.column));
 		kinds.set(family(readings[i]), cells);
 	});
 	// Plain numbers beside times with their unit are asked about by `timeUnit`.
@@ -42,7 +42,7 @@ export function stopMixedKinds(
 		key: 'kinds',
 		found: what,
 		expected: 'one kind of time in the column',
-		message: `Column ${columnLetter(column)} mixes ${what}. Correct the cells that differ, or leave their rows out.`
+		message: `${capital(ex.places.series(column))} mixes ${what}. Correct the cells that differ, or leave their ${ex.places.line}s out.`
 	});
 }
 
@@ -71,14 +71,14 @@ export function timeUnit(
 		rule: 'B4',
 		level: 'stop',
 		cells: [headerCell(ex, column)],
-		found: `time column ${columnLetter(column)}${header?.header ? `, "${header.header}",` : ''} without a unit`,
+		found: `time ${ex.places.series(column)}${header?.header ? `, "${header.header}",` : ''} without a unit`,
 		expected: 's, min, h or d',
-		message: `Time column ${columnLetter(column)} has no unit. Choose one; we will not assume.`,
+		message: `Time ${ex.places.series(column)} has no unit. Choose one; we will not assume.`,
 		options: TIME_UNITS.map((unit) => ({ key: unit, label: unit }))
 	});
 	if (!taken) return { unit: 'h', stated: false };
 	if (mapped) mapped.unit = taken.key;
-	ex.conversions.push(`Unit of time column ${columnLetter(column)}: ${taken.key}, as chosen.`);
+	ex.conversions.push(`Unit of time ${ex.places.series(column)}: ${taken.key}, as chosen.`);
 	return { unit: taken.key as TimeUnit, stated: true };
 }
 
@@ -92,7 +92,7 @@ function wordedUnit(
 ): UnitFound {
 	const units = new Set(worded.flatMap(({ r }) => r.units));
 	const target = stated ?? (units.has('h') ? 'h' : [...units][0]);
-	const cells = worded.map(({ s }) => address(s.time.row, s.time.column));
+	const cells = worded.map(({ s }) => ex.at(s.time.row, s.time.column));
 	const foreign = stated ? worded.some(({ r }) => r.units.some((u) => u !== stated)) : units.size > 1;
 	if (!stated && plain > 0) {
 		ex.ask({
@@ -102,7 +102,7 @@ function wordedUnit(
 			key: 'plain',
 			found: `${plural(plain, 'plain number')} beside times with their unit`,
 			expected: 'one unit for the column',
-			message: `Column ${columnLetter(column)} holds plain numbers and times such as "${worded[0].r.text}". Set the column's unit, or correct the cells that differ.`
+			message: `${capital(ex.places.series(column))} holds plain numbers and times such as "${worded[0].r.text}". Set the column's unit, or correct the cells that differ.`
 		});
 		return { unit: target, stated: false };
 	}
@@ -117,7 +117,7 @@ function wordedUnit(
 			expected: `times in ${target}`,
 			message: stated
 				? `"${example?.r.text}" stands in a column in ${stated}. Convert it to ${stated} by its own unit?`
-				: `Column ${columnLetter(column)} mixes time units (${[...units].join(', ')}). Convert each time by its own unit to ${target}?`,
+				: `${capital(ex.places.series(column))} mixes time units (${[...units].join(', ')}). Convert each time by its own unit to ${target}?`,
 			options: [{ key: 'convert', label: `Convert to ${target}` }]
 		});
 	}

@@ -2,8 +2,8 @@
 import type { AssayValue } from '$lib/schemas/run';
 import type { TimeUnit } from '$lib/schemas/sheet';
 import type { Channel } from './channels';
-import { type Examination, figure, plural, someOf } from './examination';
-import { address } from './grid';
+import type { Examination } from './examination';
+import { figure, plural, someOf } from './wording';
 import type { Sample, Timed } from './samples';
 import { secondsIn } from './times';
 import type { Values } from './value-rules';
@@ -20,11 +20,17 @@ export interface Point {
 	sample: Sample;
 }
 
-export function pointsOf(timed: Timed[], unit: TimeUnit, channels: Channel[], values: Values): Point[] {
+export function pointsOf(
+	ex: Examination,
+	timed: Timed[],
+	unit: TimeUnit,
+	channels: Channel[],
+	values: Values
+): Point[] {
 	return timed.map(({ sample, seconds, plain }) => {
 		const own = values.get(sample) ?? new Map<string, AssayValue>();
 		const cells = new Map<string, string>();
-		for (const [id, place] of sample.cells) cells.set(id, address(place.row, place.column));
+		for (const [id, place] of sample.cells) cells.set(id, ex.at(place.row, place.column));
 		return {
 			row: sample.row,
 			time: seconds === null ? null : (plain ?? secondsIn(seconds, unit)),
@@ -39,12 +45,20 @@ export function pointsOf(timed: Timed[], unit: TimeUnit, channels: Channel[], va
 
 /** Settles equal times: injections become one value each, samples stay apart. */
 export function settleReplicates(ex: Examination, points: Point[], unit: TimeUnit): Point[] {
-	const groups = new Map<number, Point[]>();
-	for (const p of points)
-		if (p.time !== null && p.sample.replicate === 0) groups.set(p.time, [...(groups.get(p.time) ?? []), p]);
+	// Replicate columns are equal times by themselves: rows are compared with rows.
+	const groups = new Map<string, Point[]>();
+	for (const p of points) {
+		const key = `${p.sample.replicate} ${p.time}`;
+		if (p.time !== null) groups.set(key, [...(groups.get(key) ?? []), p]);
+	}
 	const repeated = [...groups.values()].filter((g) => g.length > 1);
-	if (repeated.length === 0) return sorted(points);
-	const kind = ex.mapping.replicates ?? byIdentity(repeated) ?? askReplicates(ex, repeated, unit);
+	if (repeated.length === 0) {
+		const beside = new Set(points.map((p) => p.time)).size < points.length;
+		if (beside && points.every((p) => p.time !== null)) ex.mapping.replicates ??= 'samples';
+		return sorted(points);
+	}
+	const rows = repeated.filter((g) => g[0].sample.replicate === 0);
+	const kind = ex.mapping.replicates ?? byIdentity(rows) ?? askReplicates(ex, rows, unit);
 	if (kind) ex.mapping.replicates = kind;
 	if (kind !== 'injections') return sorted(points);
 	const merged = new Map<Point, Point>();
@@ -97,7 +111,7 @@ function askReplicates(
 	const taken = ex.ask({
 		rule: named ? 'B13' : 'B19',
 		level: 'ask',
-		cells: repeated.flatMap((g) => g.map((p) => address(p.sample.time.row, p.sample.time.column))),
+		cells: repeated.flatMap((g) => g.map((p) => ex.at(p.sample.time.row, p.sample.time.column))),
 		key: 'replicates',
 		found: `${plural(group.length, 'row')} at ${shown}: rows ${someOf(rows)}${more}`,
 		expected: 'injections of one sample, or separate samples',

@@ -1,6 +1,7 @@
 /** Cells that hold no number: dates (B24), errors (B25), formulas without a result (B26), numbers of the other convention (B6), other texts (B11). */
 import { type Channel, channelName } from './channels';
-import { type Examination, plural, someOf } from './examination';
+import type { Examination } from './examination';
+import { plural, someOf } from './wording';
 import { askSpots, cellsOf, letter, ofKind, type Spot } from './spots';
 
 export function stopUnusable(ex: Examination, channel: Channel, spots: Spot[]): void {

@@ -1,7 +1,8 @@
 /** What was done with values without asking, for the record: B7 numbers as text, B11 marks for missing, B26 formulas. */
 import { CELL } from '$lib/schemas/sheet';
 import type { Channel } from './channels';
-import { type Examination, figure, plural, someOf } from './examination';
+import type { Examination } from './examination';
+import { figure, plural, someOf } from './wording';
 import { hasFlag } from './grid';
 import { cellsOf, letter, ofKind, type Spot } from './spots';
 

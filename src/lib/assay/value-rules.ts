@@ -3,7 +3,6 @@ import type { AssayValue } from '$lib/schemas/run';
 import { askUnits, settlePercent } from './cell-units';
 import type { Channel } from './channels';
 import type { Examination } from './examination';
-import { address } from './grid';
 import { askAbove, askLimits, askNotDetected, askTrace } from './limit-rules';
 import type { StatedLimits } from './limits';
 import { settleZerosAndNegatives } from './low-values';
@@ -52,7 +51,7 @@ function spotsOf(ex: Examination, samples: Sample[], channel: Channel, values: V
 	return samples.flatMap((sample) => {
 		const place = sample.cells.get(channel.id);
 		if (!place) return [];
-		const cell = address(place.row, place.column);
+		const cell = ex.at(place.row, place.column);
 		const spot: Spot = {
 			sample,
 			row: place.row,

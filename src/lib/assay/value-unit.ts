@@ -2,6 +2,7 @@
 import { VALUE_UNITS, type ValueUnit } from '$lib/schemas/sheet';
 import type { ColumnHeader } from './columns';
 import type { Examination } from './examination';
+import { capital } from './wording';
 
 export const asUnit = (unit: string | null): ValueUnit | null =>
 	VALUE_UNITS.includes(unit as ValueUnit) ? (unit as ValueUnit) : null;
@@ -16,21 +17,21 @@ export function askUnit(
 ): void {
 	if (asUnit(c.unit)) return;
 	const percent = header?.unit?.of === 'percent' || isPercentColumn(ex, header?.column);
-	const letter = cell.replace(/\d+$/, '');
+	const place = header ? ex.places.series(header.column) : `the column of ${cell}`;
 	const taken = ex.ask({
 		rule: 'B4',
 		level: 'stop',
 		cells: [cell],
-		found: percent ? `column ${letter} in %` : `column ${letter} without a unit`,
+		found: percent ? `${place} in %` : `${place} without a unit`,
 		expected: percent ? 'what the % are of' : 'a unit',
 		message: percent
-			? `Column ${letter} is in %. Percent of what? We will not assume.`
-			: `Column ${letter} has no unit. Choose one; we will not assume.`,
+			? `${capital(place)} is in %. Percent of what? We will not assume.`
+			: `${capital(place)} has no unit. Choose one; we will not assume.`,
 		options: (percent ? PERCENT_BASES : VALUE_UNITS).map((unit) => ({ key: unit, label: unitLabel(unit) }))
 	});
 	if (!taken) return;
 	c.unit = taken.key;
-	ex.conversions.push(`Unit of column ${letter}: ${taken.key}, as chosen.`);
+	ex.conversions.push(`Unit of ${place}: ${taken.key}, as chosen.`);
 }
 
 const unitLabel = (unit: ValueUnit): string =>

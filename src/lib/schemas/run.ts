@@ -32,6 +32,8 @@ export const timepointSchema = z.strictObject({
 		.strictObject({
 			sheet: z.string().max(64),
 			row: z.int().positive(),
+			/** Where each sample is a column of the sheet. */
+			column: z.int().positive().optional(),
 			cells: z.record(z.string(), z.string().max(12)).optional()
 		})
 		.optional(),

@@ -183,6 +183,17 @@ export const peakMappingSchema = z.strictObject({
 });
 export type PeakMapping = z.infer<typeof peakMappingSchema>;
 
+/** Species in rows, times across the top: what each row of the block holds, and which columns head it. */
+export const acrossSchema = z.strictObject({
+	headerColumns: z.array(z.int().positive()).max(8),
+	/** Columns inside the block that are no samples. */
+	leftOutColumns: z.array(z.int().positive()).max(16_384).default([]),
+	rows: z
+		.array(columnMappingSchema.omit({ column: true }).extend({ row: z.int().min(1).max(1_048_576) }))
+		.max(400)
+});
+export type Across = z.infer<typeof acrossSchema>;
+
 /** Conditions of the run, asked of the person; the sheet may offer, it never decides. */
 export const conditionsSchema = z.strictObject({
 	temperature: quantity.nullable(),
@@ -205,7 +216,10 @@ export const mappingSchema = z.strictObject({
 	block: blockSchema,
 	headerRows: z.array(z.int().positive()).max(8),
 	layout: z.enum(['wide', 'long']),
+	/** Several columns marked as time are parts of one time, such as hours and minutes. */
 	columns: z.array(columnMappingSchema).max(400),
+	/** Where times run across: then `headerRows`, `columns` and `leftOutRows` are empty, and this counts in their place. */
+	across: acrossSchema.optional(),
 	peaks: z.array(peakMappingSchema).max(400).optional(),
 	/** Rows inside the block that are not data (blank, footers). */
 	leftOutRows: z.array(z.int().positive()).max(20_000).default([]),
@@ -216,6 +230,8 @@ export const mappingSchema = z.strictObject({
 	/** IANA zone of date-time stamps; null: none of them lies near a clock change, or not known. */
 	timeZone: z.string().max(64).nullable().optional(),
 	replicates: z.enum(['samples', 'injections']).nullable().optional(),
+	/** The same for several columns of one species: "A inj 1", "A inj 2". */
+	columnReplicates: z.enum(['samples', 'injections']).nullable().optional(),
 	conditions: conditionsSchema.optional()
 });
 export type Mapping = z.infer<typeof mappingSchema>;
@@ -232,7 +248,10 @@ export const savedMappingSchema = z.strictObject({
 		densityGPerL: z.number().positive().nullable().optional(),
 		internalStandard: quantity.nullable().optional(),
 		timeZone: z.string().max(64).nullable().optional(),
-		replicates: z.enum(['samples', 'injections']).nullable().optional()
+		replicates: z.enum(['samples', 'injections']).nullable().optional(),
+		columnReplicates: z.enum(['samples', 'injections']).nullable().optional(),
+		/** The series are rows, not columns. */
+		across: z.boolean().optional()
 	})
 });
 export type SavedMapping = z.infer<typeof savedMappingSchema>;
@@ -319,6 +338,12 @@ export const columnProposalSchema = z.object({
 });
 export type ColumnProposal = z.infer<typeof columnProposalSchema>;
 
+/** A series that is a row of the sheet. */
+export const rowProposalSchema = columnProposalSchema
+	.omit({ column: true, letter: true })
+	.extend({ row: z.int() });
+export type RowProposal = z.infer<typeof rowProposalSchema>;
+
 export const suggestionSchema = z.object({
 	value: z.number(),
 	unit: z.string(),
@@ -338,6 +363,8 @@ export const tableProposalSchema = z.object({
 	/** Rows shown greyed: footers and limits under the table, with why. */
 	footerRows: z.array(z.object({ row: z.int(), why: z.string() })),
 	columns: z.array(columnProposalSchema),
+	/** Where times run across: the series, which are rows; `columns` are then the plain columns of the sheet. */
+	rows: z.array(rowProposalSchema).optional(),
 	/** Long layout: the peak names found, with how many values each has. */
 	peaks: z.array(z.object({ peak: z.string(), values: z.int(), species: z.string().nullable() })).optional(),
 	mapping: mappingSchema,
