@@ -25,8 +25,8 @@ group('differences', () => {
 		const from = { a: { x: 1, y: 'same' }, list: [{ key: 'PS-04' }] };
 		const to = { a: { x: 2, y: 'same' }, list: [{ key: 'PS-04' }, { key: 'PS-05' }] };
 		expect(differences(from, to)).toEqual([
-			{ label: 'a.x', from: '1', to: '2' },
-			{ label: 'list.1.key', from: null, to: 'PS-05' }
+			{ label: 'a, x', from: '1', to: '2' },
+			{ label: 'list 2, key', from: null, to: 'PS-05' }
 		]);
 	});
 	it('show a value in words', () => {

@@ -33,7 +33,7 @@ export function shown(value: unknown): string | null {
 }
 
 const changesOf = (changes: { field: string; from?: unknown; to?: unknown }[]): Change[] =>
-	changes.map((c) => ({ label: c.field, from: shown(c.from), to: shown(c.to) }));
+	changes.map((c) => ({ label: spoken(c.field), from: shown(c.from), to: shown(c.to) }));
 
 /** Leaves of a nested value by dotted path, so that two of them can be compared field by field. */
 function leaves(value: unknown, path = ''): Map<string, unknown> {
@@ -44,11 +44,20 @@ function leaves(value: unknown, path = ''): Map<string, unknown> {
 	return all;
 }
 
+/** `safetyRules.0.contact` as a person says it: "safety rules 1, contact". */
+function spoken(path: string): string {
+	const words = path.replace(
+		/([a-z\d])([A-Z])/g,
+		(_, end: string, start: string) => `${end} ${start.toLowerCase()}`
+	);
+	return words.replace(/\.(\d+)/g, (_, index: string) => ` ${Number(index) + 1}`).replaceAll('.', ', ');
+}
+
 export function differences(from: unknown, to: unknown): Change[] {
 	const [before, after] = [leaves(from), leaves(to)];
 	return [...new Set([...before.keys(), ...after.keys()])]
 		.filter((path) => before.get(path) !== after.get(path))
-		.map((path) => ({ label: path, from: shown(before.get(path)), to: shown(after.get(path)) }));
+		.map((path) => ({ label: spoken(path), from: shown(before.get(path)), to: shown(after.get(path)) }));
 }
 
 const channelOf = (channel: string | null): string => (channel ? `, channel ${channel}` : '');
