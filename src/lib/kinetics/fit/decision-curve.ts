@@ -27,14 +27,20 @@ export interface GapAt {
 	valueGradient: Float64Array;
 }
 
+/** Values at some times, and their derivatives with respect to the estimates, by time. */
+export interface Curve {
+	values: Float64Array;
+	rows: Float64Array[];
+}
+
 export class CurveOfSpecies {
 	unit = '';
-	private readonly known: (id: string) => boolean;
+	protected readonly known: (id: string) => boolean;
 
 	constructor(
-		private readonly fitted: RestoredFit,
+		protected readonly fitted: RestoredFit,
 		report: FitReport,
-		private readonly run: RunContent,
+		protected readonly run: RunContent,
 		private readonly species: string,
 		private readonly condition: Condition
 	) {
@@ -42,7 +48,7 @@ export class CurveOfSpecies {
 	}
 
 	/** Values at the times, and derivatives by row. @throws RangeError where the curves cannot be computed */
-	private curve(x: Float64Array, times: number[]): { values: Float64Array; rows: Float64Array[] } {
+	protected curve(x: Float64Array, times: number[]): Curve {
 		const { problem, model, at } = probeModel(this.fitted.problem.request, this.run, times, this.known);
 		const channels = problem.runs[at].channels;
 		const place = channels.findIndex((c) => c.id === `species ${this.species}`);
@@ -73,9 +79,13 @@ export class CurveOfSpecies {
 		return times.map((_, k) => values[k + 1] - aim);
 	}
 
-	/** First time at which g changes its sign (for a maximum: from rising to falling); null where it does not. */
-	firstTime(x: Float64Array, horizon: number): number | null {
-		let [from, to] = [horizon * 1e-5, horizon];
+	/**
+	 * First time at which g changes its sign (for a maximum: from rising to falling); null where it does not.
+	 * @param after looked at from here on; from the start unless given
+	 */
+	firstTime(x: Float64Array, horizon: number, after = 0): number | null {
+		let [from, to] = [Math.max(horizon * 1e-5, after * (1 + 1e-6)), horizon];
+		if (!(to > from)) return null;
 		// Spread as powers at first, so that early events are not stepped over.
 		let times = Array.from({ length: 4 * GRID }, (_, k) => from * (to / from) ** (k / (4 * GRID - 1)));
 		for (let round = 0; round < ROUNDS; round++) {

@@ -1,7 +1,8 @@
 import { readFileSync } from 'node:fs';
 import { describe, expect, it } from 'vitest';
 import { fitRequest, type FitRequest } from '../../schemas/fit';
-import { decisionQuantities } from './decision';
+import { predict } from './bands';
+import { decisionQuantities, type DecisionQuestion } from './decision';
 import { fit } from './fit';
 import { maxima } from './maximum';
 
@@ -132,5 +133,95 @@ describe('the time to a conversion of a single decay', () => {
 		expect(() =>
 			decisionQuantities(fitted, request, 0, [{ kind: 'conversion', species: 'A', conversion: 99 }])
 		).toThrow('between 0 and 1');
+	});
+});
+
+describe('acceptance criteria in the clean sheet at 50 °C', () => {
+	const criterion = (
+		species: string,
+		relation: 'NMT' | 'NLT',
+		limit: number,
+		unit: 'mol/L' | '% of charge'
+	) => ({
+		kind: 'criterion' as const,
+		criterion: { species, relation, limit, unit }
+	});
+	const ask = (...questions: DecisionQuestion[]) =>
+		decisionQuantities(report, clean, 0, questions, { profiles: false });
+
+	it('A NMT 5 % of charge is met when 95 % are converted, and from then on', () => {
+		const [met, ...more] = ask(criterion('A', 'NMT', 5, '% of charge'));
+		const [same] = ask({ kind: 'conversion', species: 'A', conversion: 0.95 });
+		expect(met).toMatchObject({ quantity: 'time criterion is met', criterion: 'A NMT 5 % of charge' });
+		expect(met.value / same.value).toBeCloseTo(1, 6);
+		expect(met.standardError! / same.standardError!).toBeCloseTo(1, 4);
+		expect(more).toEqual([]);
+	});
+
+	it('B NLT 0.25 mol/L is met and lost again, at the two times where B is at that level', () => {
+		const [met, until] = ask(criterion('B', 'NLT', 0.25, 'mol/L'));
+		const [level] = ask({ kind: 'level', species: 'B', level: 0.25 });
+		expect(met.value / level.value).toBeCloseTo(1, 6);
+		expect(until.quantity).toBe('time criterion holds until');
+		expect(until.value).toBeGreaterThan(met.value);
+		const [then] = ask({ kind: 'composition', time: until.value }).filter((q) => q.species === 'B');
+		expect(then.value).toBeCloseTo(0.25, 6);
+	});
+
+	it('C NMT 3 % of charge holds from the start, until a time with a profile interval about it', () => {
+		const [until] = decisionQuantities(report, clean, 0, [criterion('C', 'NMT', 3, '% of charge')]);
+		expect(until.quantity).toBe('time criterion holds until');
+		expect(until.profileInterval![0]).toBeLessThan(until.value);
+		expect(until.profileInterval![1]).toBeGreaterThan(until.value);
+		until.profileInterval!.forEach((end, i) =>
+			expect(Math.abs(end! - until.interval![i])).toBeLessThan(0.15 * until.standardError!)
+		);
+	});
+
+	it('one that is not met within reach gives no time, one without meaning a refusal in words', () => {
+		expect(ask(criterion('A', 'NLT', 2, 'mol/L'))).toEqual([]);
+		expect(() =>
+			ask({
+				kind: 'criterion',
+				criterion: { species: 'C', relation: 'NLT', limit: 50, unit: '%', quantity: 'conversion' }
+			})
+		).toThrow(/C is not in the charge/);
+	});
+
+	it('the composition at 24 h is that of the curves, with the errors of their confidence band', () => {
+		const amounts = ask({ kind: 'composition', time: 24 });
+		const band = predict(report, clean, clean.runs[0], [24]).series.filter((s) => s.kind === 'species');
+		expect(amounts.map((q) => q.species)).toEqual(['A', 'B', 'C']);
+		amounts.forEach((amount, i) => {
+			expect(amount.value).toBeCloseTo(band[i].curve[0], 10);
+			if (amount.value > 1e-6) {
+				expect(amount.interval![0]).toBeCloseTo(band[i].confidence![0][0], 8);
+				expect(amount.interval![1]).toBeCloseTo(band[i].confidence![1][0], 8);
+			}
+		});
+		expect(amounts.reduce((sum, q) => sum + q.value, 0)).toBeCloseTo(0.5, 8);
+	});
+});
+
+describe('a limit in per cent of a charge that is fitted', () => {
+	it('moves with the charge: B NMT 10 % of charge counts as A at 90 %, without the error of the charge', () => {
+		const open = decay(true);
+		const fitted = fit(open);
+		const [until] = decisionQuantities(
+			fitted,
+			open,
+			0,
+			[{ kind: 'criterion', criterion: { species: 'B', relation: 'NMT', limit: 10, unit: '% of charge' } }],
+			{ profiles: false }
+		);
+		const [converted] = decisionQuantities(
+			fitted,
+			open,
+			0,
+			[{ kind: 'conversion', species: 'A', conversion: 0.1 }],
+			{ profiles: false }
+		);
+		expect(until.value / converted.value).toBeCloseTo(1, 5);
+		expect(until.standardError! / converted.standardError!).toBeCloseTo(1, 4);
 	});
 });
