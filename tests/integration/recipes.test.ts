@@ -272,6 +272,17 @@ describe('review and signature', () => {
 		]);
 	});
 
+	it('does not let a lead who validated a version verify it after a change of role', async () => {
+		const view = await validated();
+		const own = { where: { userId: lead.userId, groupId: group.id } };
+		await write((tx) => Membership.update({ role: 'qa_reviewer' }, { ...own, transaction: tx }));
+		const now = await actorOf(await User.findByPk(lead.userId, { rejectOnEmpty: true }));
+		expect((await readRecipe(now, view.recipe.id)).may.verify).toBe(false);
+		const refused = await refusal(verifyRecipe(now, seen(view)));
+		expect(refused.message).toMatch(/You signed this version “Validated”/);
+		await write((tx) => Membership.update({ role: 'group_lead' }, { ...own, transaction: tx }));
+	});
+
 	it('refuses to change a signature or take it away, in the database itself', async () => {
 		const view = await validated();
 		const { id } = view.shown.signatures[1];

@@ -66,7 +66,13 @@ async function confirmationOf(fit: Fit, runId: string | null): Promise<RecipeVie
 	}
 }
 
-function mayOf(actor: Actor, recipe: Recipe, version: RecipeVersion, newest: boolean): RecipeView['may'] {
+function mayOf(
+	actor: Actor,
+	recipe: Recipe,
+	version: RecipeVersion,
+	newest: boolean,
+	signed: boolean
+): RecipeView['may'] {
 	const allowed = (action: Parameters<typeof can>[2]) => can(actor, recipe.groupId, action);
 	const { state } = version;
 	const own = wrote(actor, version);
@@ -77,7 +83,7 @@ function mayOf(actor: Actor, recipe: Recipe, version: RecipeVersion, newest: boo
 		return: allowed('recipe.return') && mayMove(state, 'return'),
 		validate: reviews && !own,
 		notValidate: reviews && own ? 'You wrote this version, so another group lead has to validate it.' : null,
-		verify: allowed('recipe.verify') && mayBeVerified(state) && !own,
+		verify: allowed('recipe.verify') && mayBeVerified(state) && !own && !signed,
 		share: allowed('recipe.share') && state === 'validated',
 		withdraw: allowed('recipe.withdraw') && mayMove(state, 'withdraw'),
 		export: allowed('workbook.export'),
@@ -162,6 +168,12 @@ export async function readRecipe(actor: Actor, recipeId: string, number?: number
 		})),
 		holders,
 		confirmation,
-		may: mayOf(actor, recipe, version, version.number === newest)
+		may: mayOf(
+			actor,
+			recipe,
+			version,
+			version.number === newest,
+			shown.signatures.some((signature) => signature.userId === actor.userId)
+		)
 	};
 }

@@ -22,11 +22,17 @@ async function requireVerifiable(
 			`Version ${version.number} is ${version.state}; it is verified after a group lead validated it.`
 		);
 	requireSameVersion(recipe, version, input);
-	const already = await Signature.findOne({
-		where: { recipeVersionId: version.id, userId: actor.userId, meaning: 'Verified' },
+	const own = await Signature.findAll({
+		where: { recipeVersionId: version.id, userId: actor.userId },
+		attributes: ['meaning'],
 		transaction: tx
 	});
-	if (already) throw new AppError('conflict', 'You signed this version “Verified” already.');
+	const signed = own.map((signature) => signature.meaning);
+	if (signed.includes('Verified'))
+		throw new AppError('conflict', 'You signed this version “Verified” already.');
+	// A role that changed in between does not make one person two.
+	if (signed.length > 0)
+		throw notAllowed(`You signed this version “${signed[0]}”, so somebody else has to verify it.`);
 }
 
 /** QA signs "Verified": records, signatures and audit trail of exactly this version were checked. */
