@@ -1,6 +1,6 @@
 /** Reading access to a workbook as received: cells by address, what a person saw in them, what is hidden. */
 import { CELL } from '$lib/schemas/cell-flags';
-import type { CellStyle, GridCell, GridSheet, GridWorkbook } from '$lib/schemas/sheet';
+import type { CellStyle, GridCell, GridRow, GridSheet, GridWorkbook } from '$lib/schemas/sheet';
 import { formatNumber } from './number-format';
 
 /** "A" for 1, "XFD" for 16384. */
@@ -56,20 +56,32 @@ export function displayText(workbook: GridWorkbook, cell: GridCell | undefined):
 
 /** A sheet with quick access by row and column; merged areas answer with their first cell where asked. */
 export class SheetView {
-	private readonly rows = new Map<number, Map<number, GridCell>>();
+	private readonly rows = new Map<number, GridRow>();
+	/** Cells by column, of the rows that were asked for: a page draws some forty of twenty thousand. */
+	private readonly cells = new Map<number, Map<number, GridCell>>();
 	constructor(
 		readonly workbook: GridWorkbook,
 		readonly sheet: GridSheet
 	) {
-		for (const row of sheet.rows) this.rows.set(row.r, new Map(row.c.map((cell) => [cell[0], cell])));
+		for (const row of sheet.rows) this.rows.set(row.r, row);
+	}
+
+	private rowAt(row: number): Map<number, GridCell> | undefined {
+		const before = this.cells.get(row);
+		if (before) return before;
+		const found = this.rows.get(row);
+		if (!found) return undefined;
+		const cells = new Map(found.c.map((cell) => [cell[0], cell]));
+		this.cells.set(row, cells);
+		return cells;
 	}
 
 	cell(row: number, column: number): GridCell | undefined {
-		return this.rows.get(row)?.get(column);
+		return this.rowAt(row)?.get(column);
 	}
 
 	cellsOfRow(row: number): GridCell[] {
-		return [...(this.rows.get(row)?.values() ?? [])];
+		return [...(this.rowAt(row)?.values() ?? [])];
 	}
 
 	text(row: number, column: number): string {
