@@ -70,38 +70,6 @@ describe('dosing', () => {
 		expect(solution.at(7)[0]).toBeCloseTo(solution.amountsAt(7)[0] / 11.9, 14);
 	});
 
-	it('gives sensitivities that agree with extrapolated differences', () => {
-		const build = (k: number[]) =>
-			runDosing(
-				system(3, [
-					[0, 1, k[0]],
-					[1, 0, k[1]],
-					[1, 2, k[2]]
-				]),
-				plan({
-					startMol: [1, 0, 0],
-					feeds: [{ startS: 0.5, endS: 2, molPerS: [0.7, 0, 0], litresPerS: 0.1 }],
-					shots: [{ timeS: 2.5, mol: [0, 1, 0], litres: 0 }]
-				})
-			);
-		const k = [1.1, 0.3, 0.2];
-		const found = build(k).sensitivitiesAt(
-			3.3,
-			[0, 1, 2].map((step) => ({ kind: 'rate' as const, step, direction: 'forward' as const }))
-		);
-		for (let p = 0; p < 3; p++) {
-			const difference = (h: number) => {
-				const at = (sign: number) =>
-					build(k.map((v, i) => (i === p ? v * Math.exp(sign * h) : v))).amountsAt(3.3);
-				const [up, down] = [at(1), at(-1)];
-				return up.map((value, i) => (value - down[i]) / (2 * h));
-			};
-			const [coarse, fine] = [difference(0.02), difference(0.01)];
-			for (let i = 0; i < 3; i++)
-				expect(Math.abs(found[p * 3 + i] - (4 * fine[i] - coarse[i]) / 3)).toBeLessThan(1e-8);
-		}
-	});
-
 	it('names the entry that cannot be used', () => {
 		expect(() => runDosing(chain([1, 1]), plan({ startLitres: 0 }))).toThrow(/volume above 0/);
 		expect(() =>

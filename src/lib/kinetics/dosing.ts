@@ -13,10 +13,12 @@
  * | n | `amountsAt`, mol |
  * | f | `Feed.molPerS` |
  * | V | `volumeAt`, L |
+ *
+ * Derivatives by every entry of the plan: `dosing-sensitivity.ts`. Source: O. Levenspiel, Chemical Reaction Engineering, 3rd ed.
+ * (1999), ch. 4 and 5 (balances of semi-batch vessels); C. F. Van Loan, IEEE Trans. Automat. Control 23 (1978) 395.
  */
 import { withFeed } from './augmented';
 import { Propagator } from './propagator';
-import { sensitivities, type SensitivityParameter } from './sensitivity';
 import { track, type Track, type Trajectory } from './track';
 import type { LinearSystem } from './types';
 
@@ -44,7 +46,8 @@ export interface DosingPlan {
 	shots: readonly Shot[];
 }
 
-interface Piece {
+/** Between two events: constant feeds, one closed solution. */
+export interface DosingPiece {
 	startS: number;
 	/** The system with its source, for the feeds that run in this piece. */
 	system: LinearSystem;
@@ -60,7 +63,7 @@ export class DosingSolution implements Trajectory {
 	readonly n: number;
 	/** Times of shots, and of feeds that begin or end, s. */
 	readonly breaksS: number[];
-	private readonly pieces: Piece[] = [];
+	readonly pieces: DosingPiece[] = [];
 	private readonly scratch: Float64Array;
 
 	constructor(
@@ -151,37 +154,7 @@ export class DosingSolution implements Trajectory {
 		return track(this, { horizonS, breaksS: this.breaksS });
 	}
 
-	/**
-	 * ∂n/∂ln k of step-directions and ∂n/∂n(0) of species at one time, mol per unit: out[p·n + i].
-	 */
-	sensitivitiesAt(timeS: number, parameters: readonly SensitivityParameter[]): Float64Array {
-		const { n } = this;
-		const rates = parameters.filter((p) => p.kind === 'rate');
-		const state = parameters.map((parameter) => {
-			const s = new Float64Array(n + 1);
-			if (parameter.kind === 'charge') s[parameter.species] = 1;
-			return s;
-		});
-		const last = this.pieces.indexOf(this.pieceAt(timeS));
-		for (let k = 0; k <= last; k++) {
-			const piece = this.pieces[k];
-			const h = (k === last ? timeS : this.pieces[k + 1].startS) - piece.startS;
-			if (h <= 0) continue;
-			const { derivatives } = sensitivities(piece.system, piece.start, [h], rates);
-			let r = 0;
-			parameters.forEach((parameter, p) => {
-				piece.propagator.apply(h, state[p], state[p]);
-				if (parameter.kind !== 'rate') return;
-				for (let i = 0; i < n; i++) state[p][i] += derivatives[r * (n + 1) + i];
-				r++;
-			});
-		}
-		const out = new Float64Array(parameters.length * n);
-		state.forEach((s, p) => out.set(s.subarray(0, n), p * n));
-		return out;
-	}
-
-	private pieceAt(timeS: number): Piece {
+	private pieceAt(timeS: number): DosingPiece {
 		if (!(timeS >= 0)) throw new RangeError(`A time ≥ 0 s is expected; found ${timeS} s.`);
 		let found = this.pieces[0];
 		for (const piece of this.pieces) if (piece.startS <= timeS) found = piece;

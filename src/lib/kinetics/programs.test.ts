@@ -4,9 +4,7 @@ import { holdIntervalsOn } from './criteria-hold';
 import { integrate } from './dormand-prince';
 import { linearSystem, rateMatrix } from './linear-system';
 import { holdSegment, programFromLog, rampSegment, runProgram, type ProgramSegment } from './programs';
-import { programSensitivities } from './program-sensitivity';
 import { rateConstants } from './rate-laws';
-import type { FirstOrderParameter } from './rate-parameters';
 import { solve } from './solve';
 import { temperatureAt } from './program-segments';
 import type { Network } from './types';
@@ -177,55 +175,5 @@ describe('temperature programs', () => {
 	it('refuses an empty program and impossible temperatures', () => {
 		expect(() => runProgram(series, [], [1, 0, 0])).toThrow(/empty/);
 		expect(() => runProgram(series, [holdSegment(-5, 10)], [1, 0, 0])).toThrow(/above 0 K/);
-	});
-});
-
-describe('sensitivities under a program', () => {
-	const program = plant(0.5);
-	const times = [1, 2, 2.3, 4, 5.5].map((h) => h * HOUR);
-	const parameters: FirstOrderParameter[] = [
-		{ kind: 'ln rate', step: 0, direction: 'forward' },
-		{ kind: 'energy', step: 0, direction: 'forward' },
-		{ kind: 'ln equilibrium', step: 0 },
-		{ kind: 'enthalpy', step: 0 },
-		{ kind: 'energy', step: 1, direction: 'forward' },
-		{ kind: 'energy', step: 2, direction: 'forward' },
-		{ kind: 'charge', species: 0 }
-	];
-	const changed = (p: number, step: number): [Network, number[]] => {
-		const network = structuredClone(branched);
-		const charge = [1, 0.1, 0, 0];
-		const reverse = network.steps[0].reverse as { kEqRef: number; enthalpyJPerMol: number };
-		if (p === 0) network.steps[0].forward.kRefPerS *= Math.exp(step);
-		if (p === 1) network.steps[0].forward.energyJPerMol += step;
-		if (p === 2) reverse.kEqRef *= Math.exp(step);
-		if (p === 3) reverse.enthalpyJPerMol += step;
-		if (p === 4) network.steps[1].forward.energyJPerMol += step;
-		if (p === 5) network.steps[2].forward.energyJPerMol += step;
-		if (p === 6) charge[0] += step;
-		return [network, charge];
-	};
-
-	it('agree with extrapolated central differences', () => {
-		const solution = runProgram(branched, program, [1, 0.1, 0, 0], { tolerance: 1e-12 });
-		const found = programSensitivities(solution, times, parameters);
-		parameters.forEach((parameter, p) => {
-			const unit = parameter.kind === 'energy' || parameter.kind === 'enthalpy' ? 4000 : 0.04;
-			const difference = (h: number) => {
-				const [up, down] = [h, -h].map((step) => {
-					const [network, charge] = changed(p, step);
-					return runProgram(network, program, charge, { tolerance: 1e-12 }).curves(times);
-				});
-				return up.map((value, i) => (value - down[i]) / (2 * h));
-			};
-			const [coarse, fine] = [difference(unit), difference(unit / 2)];
-			times.forEach((_, k) => {
-				for (let i = 0; i < 4; i++) {
-					const expected = (4 * fine[k * 4 + i] - coarse[k * 4 + i]) / 3;
-					const value = found[(p * times.length + k) * 4 + i];
-					expect(Math.abs(value - expected) * unit).toBeLessThan(2e-7);
-				}
-			});
-		});
 	});
 });
