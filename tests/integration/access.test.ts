@@ -83,6 +83,19 @@ const entry = (expected: Expected, body?: () => unknown): Entry => ({
 const CALLS: Record<string, Entry> = {
 	'POST /api/v1/kinetics/solve': entry(ANYBODY, batch),
 	'POST /api/v1/kinetics/fit': entry(ANYBODY, () => ({ ...scheme(), runs: [] })),
+	'POST /api/v1/kinetics/sampling-plan': entry(ANYBODY, () => ({
+		...scheme(),
+		run: {
+			temperature: { value: 25, unit: 'degC' },
+			initial: {},
+			timeUnit: 'h',
+			channels: [{ id: 'A', weights: { A: 1 }, unit: 'mol/L' }]
+		},
+		error: { a: 0.01 },
+		samples: 2,
+		earliest: 0,
+		latest: 8
+	})),
 	'GET /api/v1/groups/[group]/studies': entry(READ),
 	'POST /api/v1/groups/[group]/studies': entry(WRITE, () => ({
 		name: 'Another study',
@@ -107,6 +120,7 @@ const CALLS: Record<string, Entry> = {
 	'GET /api/v1/fits/[fit]': entry(READ),
 	'DELETE /api/v1/fits/[fit]': { expected: WRITE, options: () => ({ method: 'DELETE' }) },
 	'GET /api/v1/fits/[fit]/events': entry(READ),
+	'POST /api/v1/fits/[fit]/questions': entry(READ, () => ({ kind: 'curves', run: 'r1', points: 2 })),
 	'GET /api/v1/fits/[fit]/windows': entry(READ),
 	'POST /api/v1/fits/[fit]/windows': entry(WRITE, windowInput),
 	'GET /api/v1/windows/[window]': entry(READ),

@@ -1,3 +1,4 @@
+import type { CriterionContent } from '../../../src/lib/schemas/criterion';
 import type { RunContent } from '../../../src/lib/schemas/run';
 import type { SchemeContent } from '../../../src/lib/schemas/scheme';
 import { write } from '../../../src/lib/server/database';
@@ -71,6 +72,7 @@ export interface WorkOverrides {
 	name?: string;
 	scheme?: SchemeContent;
 	runs?: RunContent[];
+	criteria?: CriterionContent[];
 }
 
 /** A study with a scheme and runs, made by the same use cases as the pages use. */
@@ -83,7 +85,7 @@ export async function makeWork(
 		groupId,
 		name: overrides.name ?? 'HX-14 ring closure',
 		decision: 'hold time at 50 °C',
-		criteria: []
+		criteria: overrides.criteria ?? []
 	});
 	const scheme = await createScheme(actor, {
 		studyId: study.id,

@@ -27,11 +27,13 @@ export {
 	type SeparatingSample
 } from './compare';
 export { samplingPlan, type SamplingOptions, type SamplingPlan, type ExpectedWidth } from './sampling-plan';
+export { hasLocalConstants } from './local-slots';
 export { planSamplesFor } from './plan-samples';
 export { jointRegion, type JointRegion } from './joint-region';
 export { bootstrap, leaveOneRunOut, withExcludedValues, type Bootstrap, type RunInfluence } from './refit';
 export { identifiability, type Identifiability } from './identifiability';
 export { maxima, type Maximum } from './maximum';
+export { criterionOutlook, REACH, type CriterionOutlook } from './decision-answer';
 export {
 	decisionQuantities,
 	type DecisionOptions,

@@ -1,5 +1,7 @@
 import type { z } from 'zod';
 import { fitRequest } from '$lib/schemas/fit';
+import { fitQuestion } from '$lib/schemas/fit-analysis';
+import { samplePlanRequest } from '$lib/schemas/fit-plan';
 import { fitStart } from '$lib/schemas/fit-start';
 import { createRecipeForm } from '$lib/schemas/recipe';
 import { confirmRunSchema, sheetWorkSchema } from '$lib/schemas/sheet-work';
@@ -64,6 +66,15 @@ const ENGINE: Operation[] = [
 		gives: 'the full report: parameters with standard errors and intervals, correlation, residuals, findings',
 		body: fitRequest,
 		scope: 'fit'
+	},
+	{
+		method: 'post',
+		path: '/kinetics/sampling-plan',
+		area: 'Engine',
+		summary: 'Plan the samples of a first run from guessed constants; nothing is kept',
+		gives: 'times, expected half-width of each interval, findings',
+		body: samplePlanRequest,
+		scope: 'read'
 	}
 ];
 
@@ -260,6 +271,16 @@ const FITS: Operation[] = [
 		summary: 'Call a fit off; a fit that has ended stays',
 		gives: 'id, status',
 		scope: 'fit'
+	},
+	{
+		method: 'post',
+		path: '/fits/{fit}/questions',
+		area: 'Fits and windows',
+		summary:
+			'A question on a fit, answered from its record: decision quantities, curves, profiles, influence, plans',
+		gives: 'answer; times and amounts to decide by come with standard error, t and profile interval',
+		body: fitQuestion,
+		scope: 'read'
 	},
 	{
 		method: 'get',

@@ -6,6 +6,7 @@ import { callEngine } from '../jobs/engine-calls';
 import type { Actor } from '../policy';
 import type { AnalysisTask, RecordedFit } from './analyse';
 import source from './analysis.worker.ts?nodeworker';
+import { criteriaOf } from '../studies/read-study';
 import { findFitJob } from './read-fit';
 
 /** Takes a task to a worker thread. */
@@ -30,10 +31,10 @@ export interface AskFitInput {
 
 /** Answers a question on a recorded fit. The record stays as it is; the answer can be had again at any time. */
 export async function askFit(actor: Actor, input: AskFitInput): Promise<FitAnswers[keyof FitAnswers]> {
-	const { request, report } = await usableFit(actor, input.fitId);
+	const { question, signal } = input;
+	const { request, report, record } = await usableFit(actor, input.fitId);
 	await limitEngineCalls(actor);
-	return analyseInThread(
-		{ kind: 'question', fit: { request, report }, question: input.question },
-		input.signal
-	);
+	const usual = question.kind === 'decisions' && !question.questions;
+	const criteria = usual ? await criteriaOf(record.studyId) : [];
+	return analyseInThread({ kind: 'question', fit: { request, report }, question, criteria }, signal);
 }

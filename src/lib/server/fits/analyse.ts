@@ -7,6 +7,7 @@ import {
 	confirmationRun,
 	jointRegion,
 	leaveOneRunOut,
+	planSamplesFor,
 	predict,
 	profileCurves,
 	samplingPlan,
@@ -14,8 +15,10 @@ import {
 	type ComparedScheme,
 	type Comparison,
 	type FitHooks,
+	type Prediction,
 	type SamplingPlan
 } from '$lib/kinetics/fit';
+import type { CriterionContent } from '$lib/schemas/criterion';
 import type { FitReport, FitRequest } from '$lib/schemas/fit';
 import type {
 	ConfirmedPrediction,
@@ -23,7 +26,10 @@ import type {
 	FitQuestion,
 	SamplingQuestion
 } from '$lib/schemas/fit-analysis';
+import type { SamplePlanRequest } from '$lib/schemas/fit-plan';
 import type { RunContent } from '$lib/schemas/run';
+import { decide } from './decide';
+import { usualQuestions } from './decision-questions';
 
 export interface RecordedFit {
 	request: FitRequest;
@@ -31,13 +37,20 @@ export interface RecordedFit {
 }
 
 export type AnalysisTask =
-	| { kind: 'question'; fit: RecordedFit; question: FitQuestion }
+	| { kind: 'question'; fit: RecordedFit; question: FitQuestion; criteria?: CriterionContent[] }
 	| { kind: 'confirmation'; fit: RecordedFit; run: RunContent; times: number[] }
-	| { kind: 'comparison'; schemes: ComparedScheme[] };
+	| { kind: 'comparison'; schemes: ComparedScheme[] }
+	| { kind: 'sampling'; request: SamplePlanRequest };
+
+/** Place of a run within the request. @throws RangeError where the fit has no such run */
+function placeOf(request: FitRequest, run: string): number {
+	const index = request.runs.findIndex((r, i) => (r.id ?? `r${i + 1}`) === run);
+	if (index < 0) throw new RangeError(`The fit has no run ${run}.`);
+	return index;
+}
 
 function plan({ request, report }: RecordedFit, question: SamplingQuestion): SamplingPlan {
-	const run = request.runs.find((r, i) => (r.id ?? `r${i + 1}`) === question.run);
-	if (!run) throw new RangeError(`The fit has no run ${question.run}.`);
+	const run = request.runs[placeOf(request, question.run)];
 	const { samples, earliest, latest, minimumGap, windows, channels } = question;
 	return samplingPlan(request, report, run, {
 		samples,
@@ -49,7 +62,31 @@ function plan({ request, report }: RecordedFit, question: SamplingQuestion): Sam
 	});
 }
 
-function answer(fit: RecordedFit, question: FitQuestion, hooks: FitHooks): FitAnswers[keyof FitAnswers] {
+function curves({ request, report }: RecordedFit, runId: string, points: number): Prediction {
+	const run = request.runs[placeOf(request, runId)];
+	const end = run.timepoints.reduce((last, p) => Math.max(last, p.time), 0) || 1;
+	const times = Array.from({ length: points }, (_, k) => (end * k) / (points - 1));
+	return predict(report, request, run, times, { only: run.channels.map((c) => c.id) });
+}
+
+function decisions(
+	fit: RecordedFit,
+	question: Extract<FitQuestion, { kind: 'decisions' }>,
+	criteria: CriterionContent[],
+	hooks: FitHooks
+): FitAnswers['decisions'] {
+	const index = placeOf(fit.request, question.run);
+	const { run, profiles } = question;
+	const questions = question.questions ?? usualQuestions(fit.request, index, criteria);
+	return decide(fit, { index, run, questions, profiles, usual: !question.questions }, hooks);
+}
+
+function answer(
+	fit: RecordedFit,
+	question: FitQuestion,
+	criteria: CriterionContent[],
+	hooks: FitHooks
+): FitAnswers[keyof FitAnswers] {
 	const { report, request } = fit;
 	const confidence = request.options.confidenceLevel;
 	switch (question.kind) {
@@ -70,6 +107,10 @@ function answer(fit: RecordedFit, question: FitQuestion, hooks: FitHooks): FitAn
 		}
 		case 'excluded':
 			return withExcludedValues(request, hooks);
+		case 'curves':
+			return curves(fit, question.run, question.points);
+		case 'decisions':
+			return decisions(fit, question, criteria, hooks);
 		case 'sampling':
 			return plan(fit, question);
 	}
@@ -77,7 +118,8 @@ function answer(fit: RecordedFit, question: FitQuestion, hooks: FitHooks): FitAn
 
 export function analyse(task: AnalysisTask, hooks: FitHooks = {}): unknown {
 	if (task.kind === 'comparison') return compareSchemes(task.schemes) satisfies Comparison;
-	if (task.kind === 'question') return answer(task.fit, task.question, hooks);
+	if (task.kind === 'sampling') return planSamplesFor(task.request) satisfies SamplingPlan;
+	if (task.kind === 'question') return answer(task.fit, task.question, task.criteria ?? [], hooks);
 	const { report, request } = task.fit;
 	const only = task.run.channels.map((c) => c.id);
 	return {

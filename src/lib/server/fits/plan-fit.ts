@@ -2,6 +2,7 @@ import { fitOptions, type FitFinding, type FitRequest } from '$lib/schemas/fit';
 import type { ParameterSettings } from '$lib/schemas/fit-form';
 import type { Quantity } from '$lib/schemas/quantity';
 import type { RunContent } from '$lib/schemas/run';
+import type { SchemeContent } from '$lib/schemas/scheme';
 import { checkNetwork } from '$lib/kinetics/checks';
 import { planIssues } from '$lib/kinetics/fit/checks';
 import { compileProblem } from '$lib/kinetics/fit/problem';
@@ -138,7 +139,7 @@ function availableParameters(slots: Slot[], request: FitRequest): PlannedParamet
 }
 
 /** What is wrong with the scheme itself, whatever the runs. */
-export function schemeIssues(request: FitRequest): FitFinding[] {
+export function schemeIssues(request: SchemeContent): FitFinding[] {
 	const { network } = toNetwork(request);
 	return checkNetwork(network).map(({ level, code, message }) => ({ level, code, message }));
 }
