@@ -63,7 +63,7 @@ function popComponent(stack: number[], onStack: Uint8Array, root: number): numbe
 function numbered(found: number[][], n: number): Components {
 	const blockOf = new Int32Array(n);
 	found.forEach((members, b) => members.forEach((i) => (blockOf[i] = b)));
-	return { blocks: found.map((members) => Int32Array.from(members)), blockOf };
+	return { blocks: found.map((members) => new Int32Array(members)), blockOf };
 }
 
 /** Components of a linear system's flows; a zero rate or coefficient does not connect. */

@@ -65,7 +65,7 @@ function seriesTo(
 	charge: ArrayLike<number>,
 	timeS: number
 ): Float64Array {
-	const series = new Float64Array((n + TERMS_PAST_REACH) * n);
+	const series = room((n + TERMS_PAST_REACH) * n);
 	series.set(charge);
 	for (let m = 1, at = n; at < series.length; m++, at += n) {
 		const h = timeS / m;
@@ -77,6 +77,14 @@ function seriesTo(
 		if (m >= n && !counts(series, at, n)) return series.subarray(0, at);
 	}
 	return series;
+}
+
+let spare = new Float64Array(0);
+
+/** Room for the series, kept from one call to the next. */
+function room(length: number): Float64Array {
+	if (spare.length < length) spare = new Float64Array(length);
+	return spare.subarray(0, length);
 }
 
 /** Whether some entry of the term at `at` is worth adding to the same entry of the terms before. */

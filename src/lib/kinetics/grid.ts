@@ -83,6 +83,10 @@ function factors(re: Float64Array, grid: Grid, table: Float64Array): void {
 	const near = Math.ceil(Math.sqrt(count));
 	for (let l = 0; l < width; l++) {
 		const rate = re[l];
+		if (rate === 0) {
+			for (let j = 0, at = l; j < count; j++, at += width) table[at] = 1;
+			continue;
+		}
 		for (let q = 0, at = l; q < near; q++, at += width) table[at] = Math.exp(rate * (q * stepS));
 		const end = width * count;
 		for (let j = near; j < count; j += near) {
@@ -144,6 +148,7 @@ function allTrusted(
 	for (let s = 0, at = 0; s < n; s++) {
 		let lowest = 0;
 		for (let l = 0; l < width; l++, at++) {
+			if (amplitudes[at] === 0) continue;
 			const term = amplitudes[at] * coarse[l];
 			lowest += term * fine[(term > 0 ? late : early) + l];
 		}

@@ -49,10 +49,9 @@ function checkedCharge(system: LinearSystem, charge: ArrayLike<number>): Float64
 	if (charge.length !== system.n)
 		throw new RangeError(`The charge has ${charge.length} values for ${system.n} species.`);
 	const own = new Float64Array(charge);
-	own.forEach((value, i) => {
-		if (!Number.isFinite(value))
+	for (let i = 0; i < own.length; i++)
+		if (!Number.isFinite(own[i]))
 			throw new RangeError(`The charge of species ${i + 1} is not a finite number.`);
-	});
 	return own;
 }
 

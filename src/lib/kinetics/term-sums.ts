@@ -5,7 +5,8 @@
  *
  * This is a product of a (times × modes) with a (modes × species) matrix, most of whose entries may be zero. It is taken in
  * passes of three species by up to three modes: twelve numbers stay in registers, and each factor F_jl is read once for
- * three species. Species with few terms go together, so that few zeros are multiplied.
+ * three species. Species with few terms go together, so that few zeros are multiplied; one or two that are left over and
+ * have a single mode at most (a reactant, its first product) ride along with the first pass.
  *
  * | symbol | name here |
  * | --- | --- |
@@ -14,19 +15,31 @@
  */
 import type { ClosedForm } from './closed-form';
 
+/** Terms of a pass: three amplitudes a species by mode, three constants, then amplitude and constant of the riders. */
+const TERMS = 16;
+const CONSTANTS = 9;
+const RIDERS = 12;
+
 interface Pass {
 	/** The first of three species and how far the others stand from it; 0 or the same again where there are fewer. */
 	s: number;
 	p: number;
 	q: number;
 	/** Three modes; the first again, with amplitudes of zero, where there are fewer. */
-	modes: Int32Array;
+	modes: number[];
 	/** Whether only the first mode counts. */
 	single: boolean;
 	/** Whether the sums are added to those of an earlier pass. */
 	adds: boolean;
-	/** Three amplitudes a species, by mode; then the constants of the three. */
 	terms: Float64Array;
+	riders: Riders | null;
+}
+
+/** Two species of one mode each, or one twice: how far they stand from the pass's first species, and their modes. */
+interface Riders {
+	u: number;
+	v: number;
+	modes: number[];
 }
 
 /** Where a pass reads and writes. */
@@ -40,10 +53,12 @@ interface Place {
 	rows: number;
 }
 
+/** Terms times E of the pass at hand; written and read within one call. */
+const scaled = new Float64Array(TERMS);
+
 /** The terms of one closed form, arranged for summing. */
 export class TermSums {
 	private readonly passes: Pass[];
-	private readonly scaled = new Float64Array(12);
 
 	constructor(private readonly form: ClosedForm) {
 		this.passes = passesOf(form);
@@ -57,33 +72,38 @@ export class TermSums {
 	write(fine: Float64Array, coarse: Float64Array, out: Float64Array, offset: number, rows: number): void {
 		const { n, width } = this.form;
 		const place = { fine, width, out, offset, n, rows };
-		const terms = this.scaled;
 		for (const pass of this.passes) {
-			scale(pass, coarse, terms);
-			if (pass.single) (pass.adds ? addOne : writeOne)(place, pass, terms);
-			else (pass.adds ? addThree : writeThree)(place, pass, terms);
+			scale(pass, coarse);
+			if (pass.riders) writeFive(place, pass, pass.riders, scaled);
+			else if (pass.single) (pass.adds ? addOne : writeOne)(place, pass, scaled);
+			else (pass.adds ? addThree : writeThree)(place, pass, scaled);
 		}
 	}
 }
 
-function scale({ modes, terms }: Pass, coarse: Float64Array, scaled: Float64Array): void {
+function scale({ modes, terms, riders }: Pass, coarse: Float64Array): void {
 	for (let k = 0; k < 3; k++) {
 		const factor = coarse[modes[k]];
-		for (let i = k; i < 9; i += 3) scaled[i] = terms[i] * factor;
-		scaled[9 + k] = terms[9 + k];
+		for (let i = k; i < CONSTANTS; i += 3) scaled[i] = terms[i] * factor;
+		scaled[CONSTANTS + k] = terms[CONSTANTS + k];
+	}
+	if (!riders) return;
+	for (let i = 0; i < 2; i++) {
+		scaled[RIDERS + 2 * i] = terms[RIDERS + 2 * i] * coarse[riders.modes[i]];
+		scaled[RIDERS + 2 * i + 1] = terms[RIDERS + 2 * i + 1];
 	}
 }
 
 function passesOf(form: ClosedForm): Pass[] {
 	const { n } = form;
-	const passes: Pass[] = [];
 	const order = byNumberOfTerms(form);
-	for (let from = 0, to = n % 3 || 3; from < n; from = to, to += 3) {
-		const species = [order[from], order[Math.min(from + 1, to - 1)], order[to - 1]];
-		const modes = modesOf(form, species);
-		passes.push(firstPass(form, species, modes));
-		for (let k = 3; k < modes.length; k += 3) passes.push(passOf(form, species, modes.slice(k, k + 3), true));
-	}
+	const odd = n % 3;
+	const left = order.slice(0, odd);
+	const ride = odd > 0 && n > 3 && left.every((s) => modesOf(form, [s]).length <= 1);
+	const passes: Pass[] = [];
+	if (odd > 0 && !ride) addTile(form, left, passes);
+	for (let from = odd; from < n; from += 3) addTile(form, order.slice(from, from + 3), passes);
+	if (ride) takeAlong(form, left, passes[0]);
 	return passes;
 }
 
@@ -109,35 +129,64 @@ function modesOf({ width, amplitudes, re }: ClosedForm, species: number[]): numb
 	return modes;
 }
 
-/** The pass that also writes the constants. */
-function firstPass(form: ClosedForm, species: number[], modes: number[]): Pass {
-	const { width, amplitudes, re } = form;
-	const pass = passOf(form, species, modes.slice(0, 3), false);
-	for (let l = 0; l < width; l++)
-		if (re[l] === 0) for (let i = 0; i < 3; i++) pass.terms[9 + i] += amplitudes[species[i] * width + l];
-	return pass;
+/** All passes of one to three species. */
+function addTile(form: ClosedForm, species: number[], passes: Pass[]): void {
+	const last = species.length - 1;
+	const three = [species[0], species[Math.min(1, last)], species[last]];
+	const modes = modesOf(form, species);
+	const first = passOf(form, three, modes.slice(0, 3), false);
+	three.forEach((s, i) => (first.terms[CONSTANTS + i] = constantOf(form, s)));
+	passes.push(first);
+	for (let k = 3; k < modes.length; k += 3) passes.push(passOf(form, three, modes.slice(k, k + 3), true));
+}
+
+function constantOf({ width, amplitudes, re }: ClosedForm, species: number): number {
+	let sum = 0;
+	for (let l = 0; l < width; l++) if (re[l] === 0) sum += amplitudes[species * width + l];
+	return sum;
 }
 
 function passOf({ width, amplitudes }: ClosedForm, species: number[], modes: number[], adds: boolean): Pass {
-	const [s, s1, s2] = species;
-	const terms = new Float64Array(12);
-	const filled = new Int32Array(3).fill(modes[0] ?? 0);
-	for (let k = 0; k < modes.length; k++) {
-		filled[k] = modes[k];
+	const terms = new Float64Array(TERMS);
+	const three = [modes[0] ?? 0, modes[1] ?? modes[0] ?? 0, modes[2] ?? modes[0] ?? 0];
+	for (let k = 0; k < modes.length; k++)
 		for (let i = 0; i < 3; i++) terms[3 * i + k] = amplitudes[species[i] * width + modes[k]];
-	}
-	return { s, p: s1 - s, q: s2 - s, modes: filled, single: modes.length < 2, adds, terms };
+	const [s, second, third] = species;
+	return {
+		s,
+		p: second - s,
+		q: third - s,
+		modes: three,
+		single: modes.length < 2,
+		adds,
+		terms,
+		riders: null
+	};
 }
 
-function writeOne({ fine, width, out, offset, n, rows }: Place, pass: Pass, t: Float64Array): void {
-	const { s, p, q } = pass;
+function takeAlong(form: ClosedForm, species: number[], pass: Pass): void {
+	const [first, second] = [species[0], species[species.length - 1]];
+	const modes = [first, second].map((s, i) => {
+		const mode = modesOf(form, [s])[0] ?? -1;
+		if (mode >= 0) pass.terms[RIDERS + 2 * i] = form.amplitudes[s * form.width + mode];
+		pass.terms[RIDERS + 2 * i + 1] = constantOf(form, s);
+		return Math.max(mode, 0);
+	});
+	pass.riders = { u: first - pass.s, v: second - pass.s, modes };
+}
+
+function writeOne(
+	{ fine, width, out, offset, n, rows }: Place,
+	{ s, p, q, modes }: Pass,
+	t: Float64Array
+): void {
 	const c = t[9],
 		c1 = t[10],
 		c2 = t[11];
 	const a = t[0],
 		b = t[3],
 		d = t[6];
-	for (let j = 0, at = pass.modes[0], to = offset + s; j < rows; j++, at += width, to += n) {
+	for (let j = 0, at = modes[0], to = offset + s; j < rows; j++, at += width, to += n) {
 		const f = fine[at];
 		out[to] = c + a * f;
 		out[to + p] = c1 + b * f;
@@ -145,27 +194,31 @@ function writeOne({ fine, width, out, offset, n, rows }: Place, pass: Pass, t: F
 	}
 }
 
-function addOne({ fine, width, out, offset, n, rows }: Place, pass: Pass, t: Float64Array): void {
-	const { s, p, q } = pass;
+/** A species that stands for itself again must not get its term twice: every sum is read before one is written. */
+function addOne(
+	{ fine, width, out, offset, n, rows }: Place,
+	{ s, p, q, modes }: Pass,
+	t: Float64Array
+): void {
 	const a = t[0],
 		b = t[3],
 		d = t[6];
-	for (let j = 0, at = pass.modes[0], to = offset + s; j < rows; j++, at += width, to += n) {
+	for (let j = 0, at = modes[0], to = offset + s; j < rows; j++, at += width, to += n) {
 		const f = fine[at];
-		const x = out[to] + a * f;
-		const y = out[to + p] + b * f;
-		const z = out[to + q] + d * f;
+		const x = out[to] + a * f,
+			y = out[to + p] + b * f,
+			z = out[to + q] + d * f;
 		out[to] = x;
 		out[to + p] = y;
 		out[to + q] = z;
 	}
 }
 
-function writeThree({ fine, width, out, offset, n, rows }: Place, pass: Pass, t: Float64Array): void {
-	const { s, p, q } = pass;
-	const l = pass.modes[0],
-		m = pass.modes[1],
-		o = pass.modes[2];
+function writeThree(
+	{ fine, width, out, offset, n, rows }: Place,
+	{ s, p, q, modes }: Pass,
+	t: Float64Array
+): void {
 	const c = t[9],
 		c1 = t[10],
 		c2 = t[11];
@@ -178,21 +231,29 @@ function writeThree({ fine, width, out, offset, n, rows }: Place, pass: Pass, t:
 	const d = t[6],
 		d1 = t[7],
 		d2 = t[8];
+	const l = modes[0],
+		m = modes[1],
+		o = modes[2];
 	for (let j = 0, at = 0, to = offset + s; j < rows; j++, at += width, to += n) {
-		const f = fine[at + l];
-		const g = fine[at + m];
-		const h = fine[at + o];
+		const f = fine[at + l],
+			g = fine[at + m],
+			h = fine[at + o];
 		out[to] = c + a * f + a1 * g + a2 * h;
 		out[to + p] = c1 + b * f + b1 * g + b2 * h;
 		out[to + q] = c2 + d * f + d1 * g + d2 * h;
 	}
 }
 
-function addThree({ fine, width, out, offset, n, rows }: Place, pass: Pass, t: Float64Array): void {
-	const { s, p, q } = pass;
-	const l = pass.modes[0],
-		m = pass.modes[1],
-		o = pass.modes[2];
+/** `writeThree` and the riders. */
+function writeFive(
+	{ fine, width, out, offset, n, rows }: Place,
+	{ s, p, q, modes }: Pass,
+	riders: Riders,
+	t: Float64Array
+): void {
+	const c = t[9],
+		c1 = t[10],
+		c2 = t[11];
 	const a = t[0],
 		a1 = t[1],
 		a2 = t[2];
@@ -202,13 +263,52 @@ function addThree({ fine, width, out, offset, n, rows }: Place, pass: Pass, t: F
 	const d = t[6],
 		d1 = t[7],
 		d2 = t[8];
+	const l = modes[0],
+		m = modes[1],
+		o = modes[2];
+	const { u, v } = riders;
+	const lu = riders.modes[0],
+		lv = riders.modes[1];
+	const e = t[12],
+		c3 = t[13],
+		i = t[14],
+		c4 = t[15];
 	for (let j = 0, at = 0, to = offset + s; j < rows; j++, at += width, to += n) {
-		const f = fine[at + l];
-		const g = fine[at + m];
-		const h = fine[at + o];
-		const x = out[to] + a * f + a1 * g + a2 * h;
-		const y = out[to + p] + b * f + b1 * g + b2 * h;
-		const z = out[to + q] + d * f + d1 * g + d2 * h;
+		const f = fine[at + l],
+			g = fine[at + m],
+			h = fine[at + o];
+		out[to + u] = c3 + e * fine[at + lu];
+		out[to + v] = c4 + i * fine[at + lv];
+		out[to] = c + a * f + a1 * g + a2 * h;
+		out[to + p] = c1 + b * f + b1 * g + b2 * h;
+		out[to + q] = c2 + d * f + d1 * g + d2 * h;
+	}
+}
+
+function addThree(
+	{ fine, width, out, offset, n, rows }: Place,
+	{ s, p, q, modes }: Pass,
+	t: Float64Array
+): void {
+	const a = t[0],
+		a1 = t[1],
+		a2 = t[2];
+	const b = t[3],
+		b1 = t[4],
+		b2 = t[5];
+	const d = t[6],
+		d1 = t[7],
+		d2 = t[8];
+	const l = modes[0],
+		m = modes[1],
+		o = modes[2];
+	for (let j = 0, at = 0, to = offset + s; j < rows; j++, at += width, to += n) {
+		const f = fine[at + l],
+			g = fine[at + m],
+			h = fine[at + o];
+		const x = out[to] + a * f + a1 * g + a2 * h,
+			y = out[to + p] + b * f + b1 * g + b2 * h,
+			z = out[to + q] + d * f + d1 * g + d2 * h;
 		out[to] = x;
 		out[to + p] = y;
 		out[to + q] = z;

@@ -59,23 +59,27 @@ export function judge(
 	for (const size of form.size) if (!(size <= top)) top = size;
 	const bound = top * ROUNDING;
 	const finite = space.usable && Number.isFinite(bound);
-	const base = { smallest: SMALLEST, exactAmplitudes };
 	const bounded = finite && bound <= TOLERANCE * total && !space.kinds.includes('general');
 	if (bounded && startsRight(system, charge, form))
 		return {
-			...base,
 			method: structure,
 			useClosedForm: true,
 			errorEstimate: Math.max(bound / total, 1e-15),
-			trusted: trustedSizes(form, exactAmplitudes)
+			trusted: trustedSizes(form, exactAmplitudes),
+			smallest: SMALLEST,
+			exactAmplitudes
 		};
 	const sums = growth(system, charge, total);
-	const rejected = { ...base, useClosedForm: false, trusted: new Float64Array(form.n) };
+	const rejected = {
+		useClosedForm: false,
+		trusted: new Float64Array(form.n),
+		smallest: SMALLEST,
+		exactAmplitudes
+	};
 	if (!finite) return { ...rejected, method: 'uniformisation', errorEstimate: PROPAGATOR_ERROR * sums };
 	const found = compare(form, charge, exact());
 	if (found.error <= TOLERANCE * total && found.own <= OWN_TOLERANCE)
 		return {
-			...base,
 			exactAmplitudes: false,
 			smallest: SMALLEST_COMPARED,
 			method: structure,
@@ -91,8 +95,8 @@ export function judge(
 /** Value and slope at t = 0 against the charge and the flows from it: what a wrong closed form would hardly meet by chance. */
 function startsRight(system: LinearSystem, charge: Float64Array, form: ClosedForm): boolean {
 	const { n, width } = form;
-	const phi = new Float64Array(2 * width);
-	const turn = phi.subarray(width);
+	const phi = new Float64Array(width);
+	const turn = new Float64Array(width);
 	basis(form, 0, phi);
 	basisSlope(form, phi, turn);
 	const flow = new Float64Array(n);
