@@ -41,13 +41,28 @@ export function findBlocks(view: SheetView): FoundBlock[] {
 	let used = 0;
 	for (let i = 0; i < looks.length && found.length < MOST_TABLES; i++) {
 		if (!isDataRow(looks[i]) || isNumberedHeader(looks[i], looks[i + 1])) continue;
-		const band = growBand(view, looks, i);
-		const headers = headersAbove(view, looks, i, used, band);
+		const start = upwards(looks, i, used);
+		const band = growBand(view, looks, start);
+		const headers = headersAbove(view, looks, start, used, band);
 		found.push(...sideBySide(view, looks, { ...band, ...headers, floor: used }));
 		used = band.end;
 		i = band.end - 1;
 	}
 	return found;
+}
+
+/** A row right above the first full one that holds numbers and no text is its first sample, with a cell left blank. */
+function upwards(looks: RowLook[], start: number, floor: number): number {
+	const { first, last } = looks[start];
+	let k = start;
+	while (
+		k > floor &&
+		looks[k - 1].r === looks[k].r - 1 &&
+		looks[k - 1].texts.length === 0 &&
+		looks[k - 1].numbers.some((c) => c >= first && c <= last)
+	)
+		k--;
+	return k;
 }
 
 export interface Band {

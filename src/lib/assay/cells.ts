@@ -1,6 +1,7 @@
 /** What one cell says where a value is expected, before any rule decides what to do about it. */
 import { CELL, type GridCell, type GridWorkbook } from '$lib/schemas/sheet';
 import { cellStyle, displayText, hasFlag } from './grid';
+import { readMark, type Mark } from './marks';
 import { hasOddSigns, numberText, parseNumber, type Decimal } from './numbers';
 import { readUnit, type UnitReading } from './units';
 import { valueWord } from './words';
@@ -17,6 +18,8 @@ export type CellReading =
 	| { kind: 'missing'; text: string }
 	/** A number that reads as two, in a file whose convention is not settled. */
 	| { kind: 'undecided'; text: string }
+	/** A reading with a mark that has to be asked about. */
+	| { kind: 'marked'; inner: CellReading; mark: Mark; text: string }
 	| { kind: 'date'; text: string }
 	| { kind: 'error'; text: string }
 	| { kind: 'uncomputed'; text: string }
@@ -66,13 +69,27 @@ export function readValueText(raw: string, decimal: Decimal | null): CellReading
 	if (word) return ofWord(word, text);
 	const limit = /^(<|≤|<=|＜|&lt;|>|≥|>=|＞)\s*(.+)$/.exec(text);
 	if (limit) return ofLimit(limit[1], limit[2], text, decimal);
-	if (/^(ca\.?|~|≈|approx\.?)\s*[\d.,]+$/i.test(text)) return { kind: 'text', text };
 	if (isDateText(text)) return { kind: 'date', text };
 	const unit = splitUnit(text, decimal);
 	if (unit) return unit;
 	if (/^#(DIV\/0!|REF!|N\/A|VALUE!|NAME\?|NUM!|NULL!|WERT!|BEZUG!|NV|ZAHL!)$/i.test(text))
 		return { kind: 'error', text };
-	return { kind: 'text', text };
+	return marked(text, decimal) ?? { kind: 'text', text };
+}
+
+function marked(text: string, decimal: Decimal | null): CellReading | null {
+	const mark = readMark(text);
+	if (!mark) return null;
+	const inner = readValueText(mark.core, decimal);
+	if (inner.kind === 'undecided') return { kind: 'undecided', text };
+	if (
+		inner.kind === 'number' ||
+		inner.kind === 'with unit' ||
+		inner.kind === 'below' ||
+		inner.kind === 'above'
+	)
+		return { kind: 'marked', inner, mark, text };
+	return null;
 }
 
 function asNumber(text: string, decimal: Decimal | null): CellReading | null {
@@ -100,9 +117,14 @@ function ofLimit(sign: string, rest: string, text: string, decimal: Decimal | nu
 	let limit: number;
 	if (number.kind === 'number') limit = number.value;
 	else if (number.kind === 'with unit' && number.unit.of !== 'time') return { ...number, text, kind: 'text' };
+	else if (number.kind === 'marked' && number.inner.kind === 'number')
+		return { ...number, inner: limitOf(kind, number.inner.value, text), text };
 	else return { kind: 'text', text };
-	return kind === 'below' ? { kind, limit, which: null, text } : { kind: 'above', limit, text };
+	return limitOf(kind, limit, text);
 }
+
+const limitOf = (kind: 'below' | 'above', limit: number, text: string): CellReading =>
+	kind === 'below' ? { kind, limit, which: null, text } : { kind: 'above', limit, text };
 
 function splitUnit(text: string, decimal: Decimal | null): CellReading | null {
 	const match = /^([+\-\u2212]?[\d.,'’ ]*\d)\s*([^\d\s.,].*)$/.exec(text);
@@ -125,6 +147,7 @@ export function isValueLike(reading: CellReading): boolean {
 		reading.kind === 'above' ||
 		reading.kind === 'not' ||
 		reading.kind === 'trace' ||
+		reading.kind === 'marked' ||
 		reading.kind === 'undecided'
 	);
 }
@@ -132,8 +155,8 @@ export function isValueLike(reading: CellReading): boolean {
 /** The texts of a file that vote on its decimal convention: the number in a cell without limit sign and unit. */
 export function numberPart(text: string): string {
 	if (/^[\d.,]+$/.test(text)) return text;
-	return text
-		.trim()
+	const plain = text.trim();
+	return (readMark(plain)?.core ?? plain)
 		.replace(/^(?:<=?|>=?|≤|≥)\s*/, '')
 		.replace(/^([+\-\u2212]?[\d.,'’\s\u00a0\u2009\u202f]*\d)\s*[^\d\s.,][^\d]*.*$/, '$1')
 		.replace(/\s*%$/, '');

@@ -34,7 +34,14 @@ function countFacts(view: SheetView, found: FoundTable, column: number): ColumnF
 		const cell = view.cell(r, column);
 		if (!cell) continue;
 		const { kind } = readCell(view.workbook, cell, null);
-		if (kind === 'number' || kind === 'undecided' || kind === 'with unit' || kind === 'date') facts.numbers++;
+		if (
+			kind === 'number' ||
+			kind === 'undecided' ||
+			kind === 'with unit' ||
+			kind === 'date' ||
+			kind === 'marked'
+		)
+			facts.numbers++;
 		else if (kind === 'text') {
 			facts.texts++;
 			if (distinct.size < 200) distinct.add(String(cell[1]));

@@ -56,6 +56,8 @@ export class Examination {
 	/** Columns that make up one time, largest unit first; empty where one column does. */
 	timeParts: TimePart[] = [];
 	private readonly overlay = new Map<string, string>();
+	/** Times read without the mark that they carry; no corrections. */
+	private readonly plainTimes = new Map<string, string>();
 
 	constructor(
 		readonly workbook: GridWorkbook,
@@ -110,7 +112,13 @@ export class Examination {
 
 	private timeCell(row: number, column: number): TimeReading {
 		const cell = this.view.mergedCell(row, column);
-		return readTime(this.workbook, cell, this.decimal, this.overlay.get(this.at(row, column)));
+		const at = this.at(row, column);
+		return readTime(this.workbook, cell, this.decimal, this.overlay.get(at) ?? this.plainTimes.get(at));
+	}
+
+	/** From here on the time in a cell reads as this text; the cell and the record keep its own. */
+	readTimeAs(cell: string, text: string): void {
+		this.plainTimes.set(cell, text);
 	}
 
 	isCorrected(row: number, column: number): boolean {

@@ -26,7 +26,12 @@ export function settleDoubles(
 		bySpecies.set(key, [...(bySpecies.get(key) ?? []), c]);
 	}
 	const several = [...bySpecies.values()].filter((same) => same.length > 1);
-	const numbered = several.filter((same) => areReplicates(same.map((c) => headers.get(c.column))));
+	const numbered = several.filter((same) =>
+		areReplicates(
+			same.map((c) => headers.get(c.column)),
+			ex.species
+		)
+	);
 	const kind = askReplicateColumns(ex, numbered);
 	for (const same of numbered) useNumbered(ex, same, kind, doubles);
 	for (const same of several) if (!numbered.includes(same)) stopDouble(ex, same, doubles);

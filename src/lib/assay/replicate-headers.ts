@@ -62,8 +62,8 @@ export function replicateSpecies(headers: ColumnHeader[], species: SpeciesConten
 }
 
 /** True when the headers of columns that are one species number them as its replicates; one of them may go without. */
-export function areReplicates(headers: (ColumnHeader | undefined)[]): boolean {
-	const marks = headers.map((h) => (h ? replicateMark(h) : null));
+export function areReplicates(headers: (ColumnHeader | undefined)[], species: SpeciesContent[]): boolean {
+	const marks = headers.map((h) => (h && !matchSpecies(h, species) ? replicateMark(h) : null));
 	const numbers = marks.map((m) => m?.number ?? '1');
 	return (
 		marks.filter((m) => m === null).length <= 1 &&

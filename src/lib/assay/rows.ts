@@ -91,10 +91,10 @@ export const isFooterRow = (look: RowLook): boolean =>
 	look.lead !== '' && (isFooterWord(look.lead) || isLimitWord(look.lead));
 export const isLimitRow = (look: RowLook): boolean => look.lead !== '' && isLimitWord(look.lead);
 
-/** Names of columns: several texts, more of them than values, with a time word or a unit among them. */
+/** Names of columns, a word for time among them; compounds may be called "1a". */
 export function isHeaderRow(look: RowLook): boolean {
-	if (look.texts.length < 2 || look.numbers.length > look.texts.length) return false;
-	return look.texts.some(({ text }) => speaksOfTime(text)) && look.numbers.length === 0;
+	if (look.numbers.length > 0 || look.texts.length + look.values.length < 2) return false;
+	return look.texts.some(({ text }) => speaksOfTime(text));
 }
 
 export function speaksOfTime(text: string): boolean {

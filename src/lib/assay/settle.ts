@@ -69,7 +69,7 @@ export function settle(input: SettleInput): Settlement {
 	stopWithoutColumns(ex, channels);
 	settleTimeParts(ex, used);
 	const samples = samplesOf(ex, used, channels);
-	const times = settleTimes(ex, samples, headers);
+	const times = settleTimes(ex, samples, headers, channels);
 	const limits = statedLimits(ex.view, viewOf(ex.workbook, ex.sheet) ?? ex.view, found, ex.decimal);
 	const values = settleValues(
 		ex,

@@ -81,8 +81,7 @@ function askBackwards(
 			{ key: 'keep', label: `Keep ${shown} as it stands` }
 		]
 	});
-	if (taken?.key === 'enter')
-		return enterTime(ex, t, cell, taken.text(), taken.reason, unit, shown, latestText);
+	if (taken?.key === 'enter') return enterTime(ex, t, taken.text(), taken.reason, unit, shown, latestText);
 	if (taken?.key === 'leave-out') {
 		ex.conversions.push(
 			`Row ${t.sample.row} left out: ${shown} comes after ${latestText}${because(taken.reason)}.`
@@ -101,18 +100,22 @@ function askBackwards(
 function enterTime(
 	ex: Examination,
 	t: Timed,
-	cell: string,
 	text: string,
 	reason: string | undefined,
 	unit: TimeUnit,
 	shown: string,
 	latestText: string
 ): 'corrected' | 'open' {
-	ex.correct(cell, text, reason ?? `Typing error: ${shown} comes after ${latestText}.`);
+	ex.correctTime(
+		t.sample.time.row,
+		t.sample.time.column,
+		text,
+		reason ?? `Typing error: ${shown} comes after ${latestText}.`
+	);
 	const reading = ex.time(t.sample.time.row, t.sample.time.column);
 	const seconds = secondsOf(reading, { unit, stated: true }, 'h:mm');
 	if (seconds === null) {
-		ex.reopen(`"${text}" is not a time.`);
+		ex.reopen(`"${text}" is not a time. Write for example 1.5, 1:30 or 90 min.`);
 		return 'open';
 	}
 	t.seconds = seconds;

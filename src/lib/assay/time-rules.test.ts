@@ -180,10 +180,10 @@ describe('times', () => {
 		expect(timesOf(answer(workbook, { B18: { key: 'leave-out' } }))).toEqual([0, 1, 2, 4, 5]);
 		expect(timesOf(answer(workbook, { B18: { key: 'new-run' } }))).toEqual([0, 1, 2]);
 		expect(answer(workbook, { B18: { key: 'enter', values: { value: 'soon' } } }).findings[0].problem).toBe(
-			'"soon" is not a time.'
+			'"soon" is not a time. Write for example 1.5, 1:30 or 90 min.'
 		);
 		const blank = times([0, 1, null, 3, 4, 5], 'Time (h)');
-		expect(findingsOf(blank, 'B18')[0].message).toBe('Row 4 has values but no time in A4.');
+		expect(findingsOf(blank, 'B31')[0].message).toContain('Row 4 has values but no time in A4.');
 	});
 
 	it('B37: the 1904 date system is honoured and noted', () => {

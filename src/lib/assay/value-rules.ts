@@ -6,6 +6,7 @@ import type { Examination } from './examination';
 import { askAbove, askLimits, askNotDetected, askTrace } from './limit-rules';
 import type { StatedLimits } from './limits';
 import { settleZerosAndNegatives } from './low-values';
+import { askMarked } from './marked-values';
 import type { Sample } from './samples';
 import type { Spot } from './spots';
 import { askTexts, stopUnusable } from './unusable-cells';
@@ -30,6 +31,7 @@ export function settleValues(
 		ex,
 		spots.flatMap((s) => s.spots)
 	);
+	askMarked(ex, spots);
 	for (const { channel, spots: own } of spots) {
 		stopUnusable(ex, channel, own);
 		askTexts(ex, channel, own);
