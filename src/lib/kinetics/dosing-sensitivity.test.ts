@@ -10,8 +10,7 @@ import {
 	derivative,
 	integrateComplex,
 	real,
-	stepped,
-	type ComplexLaw
+	stepped
 } from './test-complex';
 import { everyLaw } from './test-networks';
 

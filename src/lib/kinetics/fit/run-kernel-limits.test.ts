@@ -103,3 +103,35 @@ describe('a fast reversible step', () => {
 			}
 	});
 });
+
+describe('a fast step in a loop out of detailed balance', () => {
+	const loop = [one(0, 1), one(1, 0), one(1, 2), one(2, 1), one(2, 0), one(0, 2)];
+	const networks: [string, Direction[], (fast: number, ratio: number) => number[]][] = [
+		['with no way out', loop, (f, r) => [f, f / r, 0.4, 0.2, 0.7, 0.1]],
+		[
+			'with a slow way out',
+			[...loop, { from: 1, products: [] }],
+			(f, r) => [f, f / r, 0.4, 0.2, 0.7, 0.1, 0.05]
+		],
+		['that feeds a further step', [...loop, one(2, 3)], (f, r) => [f, f / r, 0.4, 0.2, 0.7, 0.1, 0.3]],
+		['fed by another species', [one(3, 0), ...loop], (f, r) => [0.6, f, f / r, 0.4, 0.2, 0.7, 0.1]],
+		['one way round, fast in one step', [one(0, 1), one(1, 2), one(2, 0)], (f, r) => [f, 0.4 / r, 0.3]],
+		[
+			'with two fast steps of different speed and a splitting way out',
+			[...loop, { from: 0, products: [{ to: 3, coefficient: 2 }] }],
+			(f, r) => [f, f / r, f / 100, f / 70, 0.7, 0.1, 0.2]
+		]
+	];
+	it.each(networks)(
+		'keeps curves and derivatives to 1e-13 of the charge %s, k t up to 3e9',
+		(_, directions, constants) => {
+			const n = 1 + Math.max(...directions.flatMap((d) => [d.from, ...d.products.map((p) => p.to)]));
+			for (const fast of [1, 1e3, 1e6, 1e9])
+				for (const ratio of [1, 30]) {
+					const k = constants(fast, ratio);
+					const by = directions.map((__, d) => d);
+					expect(worst(n, directions, k, [0.3, 3], by), `k ${fast}, K ${ratio}`).toBeLessThan(1e-13);
+				}
+		}
+	);
+});

@@ -6,7 +6,8 @@
  *     L_d = ∂E/∂ ln k_d: L ← A L + dA M term by term, then L ← E L + L E with each squaring
  *     c ← E c,   s_d ← E s_d + L_d c
  *
- * A has no negative entry, so the series of E has no cancellation, whatever the rates. Species stand in the order of flow, so that
+ * A has no negative entry, so the series of E has no cancellation, whatever the rates; after each squaring the diagonals are
+ * rebuilt from what has left (`step-balance.ts`), so that no rounding grows with q h. Species stand in the order of flow, so that
  * all matrices are block lower triangular; L_d has no entry above the block of its reactant nor to the right of it.
  *
  * | symbol | variable |
@@ -21,6 +22,7 @@
  */
 import type { Watch } from './cancelled';
 import { flowOrder, type Direction } from './spectral';
+import { StepBalance } from './step-balance';
 import { StepSeries } from './step-series';
 
 /** Largest q h of an interval that is taken on vectors. */
@@ -43,12 +45,13 @@ export class StepPropagator {
 	private readonly state: Float64Array;
 	private readonly outflow: Float64Array;
 	private readonly onVectors: StepSeries;
+	private readonly balance: StepBalance;
 	/** Species in the order of flow, where all matrices are block lower triangular. */
-	private readonly order: number[];
-	private readonly place: number[];
+	readonly order: number[];
+	readonly place: number[];
 	/** Where the block of each place begins and ends. */
-	private readonly begin: Int32Array;
-	private readonly end: Int32Array;
+	readonly begin: Int32Array;
+	readonly end: Int32Array;
 
 	constructor(
 		private readonly n: number,
@@ -83,6 +86,7 @@ export class StepPropagator {
 			});
 			first += group.length;
 		}
+		this.balance = new StepBalance(n, directions, rates, this);
 	}
 
 	/**
@@ -156,11 +160,14 @@ export class StepPropagator {
 		const squarings = Math.max(0, Math.ceil(Math.log2(2 * q * h || 1)));
 		const scaled = h / 2 ** squarings;
 		for (let i = 0; i < n * n; i++) a[i] *= scaled;
-		this.series(constants, scaled);
+		this.series(constants, q, scaled);
 		const shrink = Math.exp(-q * scaled);
 		for (let i = 0; i < e.length; i++) e[i] *= shrink;
 		for (let i = 0; i < l.length; i++) l[i] *= shrink;
+		this.balance.damp(shrink);
+		this.balance.rebuild(constants, this.outflow, this.order, scaled, e, l);
 		for (let s = 0; s < squarings; s++) {
+			this.balance.double(e, l);
 			for (let r = 0; r < rates.length; r++) {
 				// L_d has rows from its reactant's block on, and columns up to it.
 				const at = this.place[this.directions[rates[r]].from];
@@ -173,6 +180,7 @@ export class StepPropagator {
 			}
 			this.product(e, 0, e, 0, this.spare, 0, n);
 			e.set(this.spare);
+			this.balance.rebuild(constants, this.outflow, this.order, scaled * 2 ** (s + 1), e, l);
 		}
 		return true;
 	}
@@ -216,14 +224,16 @@ export class StepPropagator {
 		return q;
 	}
 
-	private series(constants: Float64Array, scaled: number): void {
+	private series(constants: Float64Array, q: number, scaled: number): void {
 		const { n, a, e, term, spare, l, lTerm, lSpare, rates, directions } = this;
 		e.fill(0);
 		term.fill(0);
 		for (let i = 0; i < n; i++) e[i * n + i] = term[i * n + i] = 1;
 		l.fill(0);
 		lTerm.fill(0);
+		this.balance.begin(constants);
 		for (let m = 1; m <= TERMS; m++) {
+			this.balance.addTerm(constants, q, scaled, m, term, lTerm);
 			for (let r = 0; r < rates.length; r++) {
 				const block = r * n * n;
 				const { from, products } = directions[rates[r]];
