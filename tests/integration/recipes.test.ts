@@ -1,6 +1,8 @@
+import { randomUUID } from 'node:crypto';
 import { beforeAll, describe, expect, it } from 'vitest';
 import {
 	AuditEvent,
+	Fit,
 	MailOutbox,
 	Membership,
 	RecipeVersion,
@@ -98,6 +100,27 @@ async function validated(): Promise<RecipeView> {
 }
 
 describe('the draft of a recipe', () => {
+	it('is refused on a fit whose constants are local to its runs', async () => {
+		const fit = (await Fit.findByPk(prepared.fitId))!;
+		const [first, ...rest] = fit.report.parameters;
+		const local = {
+			...first,
+			id: `r1.${first.id.replace('.kRef', '.k')}`,
+			local: { run: 'r1', of: first.id }
+		};
+		const other = await Fit.create({
+			...fit.get({ plain: true }),
+			id: randomUUID(),
+			number: 9000,
+			report: { ...fit.report, parameters: [local, ...rest] }
+		});
+		const asked = { studyId: prepared.studyId, fitId: other.id, title: 'HX-14' };
+		expect(await refusal(createRecipe(chemist, asked))).toMatchObject({
+			code: 'invalid',
+			message: expect.stringContaining('no basis for a recipe') as string
+		});
+	});
+
 	it('says what the fit and the study say, and leaves the rest blank', async () => {
 		const made = await createRecipe(chemist, {
 			studyId: prepared.studyId,

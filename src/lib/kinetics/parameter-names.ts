@@ -47,7 +47,22 @@ function ofStep(id: string, scheme: SchemeContent): ParameterName | null {
 			kind: 'equilibrium constant'
 		};
 	if (quantity === 'enthalpy') return { letter: 'ΔH', subscript: String(index + 1), of, kind: 'energy' };
-	return { letter: 'E', subscript, of, kind: 'energy' };
+	return quantity === 'activationEnergy' ? { letter: 'E', subscript, of, kind: 'energy' } : null;
+}
+
+/** A constant or response factor that one run has for itself: "k₁" of "A → B, run 2". */
+function ofRun(id: string, scheme: SchemeContent, runNames: Record<string, string>): ParameterName | null {
+	const constant = /^([^.]+)\.([^.]+\.(?:forward|reverse))\.([kK])$/.exec(id);
+	if (constant) {
+		const [, run, direction, letter] = constant;
+		const shared = ofStep(`${direction}.${letter === 'k' ? 'kRef' : 'equilibriumConstant'}`, scheme);
+		return shared && { ...shared, of: `${shared.of}, ${runNames[run] ?? run}` };
+	}
+	const factor = /^([^.]+)\.([^.]+)\.responseFactor$/.exec(id);
+	if (!factor) return null;
+	const [, run, channel] = factor;
+	const of = `response of ${channel}, ${runNames[run] ?? run}`;
+	return { letter: 'f', subscript: channel, of, kind: 'response factor' };
 }
 
 /** `runNames` maps the run's id inside the fit to what people call it. */
@@ -56,8 +71,8 @@ export function parameterName(
 	scheme: SchemeContent,
 	runNames: Record<string, string> = {}
 ): ParameterName {
-	const step = ofStep(id, scheme);
-	if (step) return step;
+	const found = ofStep(id, scheme) ?? ofRun(id, scheme, runNames);
+	if (found) return found;
 	const charge = /^(.+)\.initial\.(.+)$/.exec(id);
 	if (charge)
 		return {
@@ -109,6 +124,18 @@ export function inPlainWords(
 	const steps = scheme.steps.map((s) => escaped(s.id)).join('|');
 	const runs = Object.keys(runNames).map(escaped).join('|');
 	let text = message;
+	if (steps)
+		text = text.replace(
+			new RegExp(`\\b[A-Za-z][\\w-]*\\.(?:${steps})\\.(?:forward|reverse)\\.[kK]\\b`, 'g'),
+			(id) => {
+				const name = parameterName(id, scheme, runNames);
+				return name.kind === 'other' ? id : `${plainName(name)} (${name.of})`;
+			}
+		);
+	text = text.replace(/\b([A-Za-z][\w-]*)\.([A-Za-z][\w-]*)\.responseFactor\b/g, (id) => {
+		const name = parameterName(id, scheme, runNames);
+		return `${name.letter} of ${name.subscript} (${name.of})`;
+	});
 	if (steps)
 		text = text.replace(new RegExp(`\\b(?:${steps})\\.(?:forward|reverse)\\.\\w+`, 'g'), (id) => {
 			const name = parameterName(id, scheme, runNames);

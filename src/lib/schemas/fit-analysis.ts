@@ -1,5 +1,6 @@
 import { z } from 'zod';
 import type {
+	ArrheniusCheck,
 	Bootstrap,
 	Confirmation,
 	DecisionQuantity,
@@ -48,6 +49,8 @@ export interface AnsweredDecision {
 export const fitQuestion = z.discriminatedUnion('kind', [
 	/** How far the constants move without each run in turn. */
 	z.strictObject({ kind: z.literal('influence') }),
+	/** The constants of each run alone, beside k(T) of the fit. */
+	z.strictObject({ kind: z.literal('arrhenius') }),
 	/** τ over each constant, to draw. */
 	z.strictObject({ kind: z.literal('profiles') }),
 	/** Where two constants may lie together. */
@@ -94,6 +97,7 @@ export type SamplingQuestion = Extract<FitQuestion, { kind: 'sampling' }>;
 /** What is answered, by the kind of question. */
 export interface FitAnswers {
 	influence: RunInfluence[];
+	arrhenius: ArrheniusCheck;
 	profiles: ProfileCurve[];
 	region: JointRegion;
 	bootstrap: Pick<Bootstrap, 'intervals' | 'failed' | 'seed'> & { draws: number };

@@ -13,6 +13,7 @@ import { isFitted } from '../../schemas/quantity';
 import type { Network } from '../types';
 import { fromSi, isUnitOf, toSi, UnitError } from '../units';
 import { linearOf, type Linear } from './affine';
+import { localId } from './local-slots';
 import { isRelativeUnit, runId, type Slot } from './slots';
 
 export interface ChannelModel {
@@ -61,7 +62,7 @@ export function readChannels(
 				: unitFactor(channel.unit, network.species.find((s) => s.id === species)?.molarMassGPerMol, shareOf)
 		);
 		noteShares(channel.unit, run, index, shareOf, issues);
-		const lnResponse = responseOf(channel, slots, free);
+		const lnResponse = responseOf(channel, runId(run, index), slots, free);
 		return {
 			id: channel.id,
 			unit: channel.unit,
@@ -77,12 +78,15 @@ export function readChannels(
 
 function responseOf(
 	channel: FitRequest['runs'][number]['channels'][number],
+	run: string,
 	slots: Map<string, Slot>,
 	free: Slot[]
 ): Linear {
 	const given = channel.responseFactor;
 	if (!given) return { constant: 0, terms: [] };
-	const id = `${channel.id}.responseFactor`;
+	const shared = `${channel.id}.responseFactor`;
+	const own = localId(run, shared);
+	const id = slots.has(own) ? own : shared;
 	if (!isFitted(given) && slots.get(id)?.state !== 'tied') {
 		if (!(given.value > 0))
 			throw new RangeError(

@@ -72,7 +72,10 @@ function energyIssues(problem: KineticProblem): FitFinding[] {
 				parameters: ids
 			}
 		];
-	const held = problem.network.steps.filter((s) => !problem.slots.has(`${s.id}.forward.activationEnergy`));
+	const shared = (step: string) => problem.slots.has(`${step}.forward.kRef`);
+	const held = problem.network.steps.filter(
+		(s) => shared(s.id) && !problem.slots.has(`${s.id}.forward.activationEnergy`)
+	);
 	if (varies && held.length)
 		return [
 			{

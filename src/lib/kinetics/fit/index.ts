@@ -27,6 +27,7 @@ export {
 	type SeparatingSample
 } from './compare';
 export { samplingPlan, type SamplingOptions, type SamplingPlan, type ExpectedWidth } from './sampling-plan';
+export { arrheniusCheck, type ArrheniusCheck, type ConstantCheck, type LocalConstant } from './arrhenius';
 export { hasLocalConstants } from './local-slots';
 export { planSamplesFor } from './plan-samples';
 export { jointRegion, type JointRegion } from './joint-region';

@@ -5,6 +5,7 @@
 import type { FitFinding, FitRequest } from '../../schemas/fit';
 import { planIssues, structuralFindings } from './checks';
 import { identifiabilityFindings } from './identifiability';
+import { mayBeLocal } from './local-slots';
 import { compileProblem } from './problem';
 import { toReported, type Slot } from './slots';
 import { searchBox } from './starts';
@@ -97,6 +98,8 @@ function planned(
 		lower: finite(search?.lower),
 		upper: finite(search?.upper),
 		tiedTo: slot.tie ? { id: slot.tie.to, factor: slot.tie.factor } : null,
-		run: slot.run
+		run: slot.run,
+		...(slot.localOf ? { localOf: slot.localOf } : {}),
+		...(slot.localOf || (slot.run === null && mayBeLocal(slot)) ? { mayBeLocal: true } : {})
 	};
 }

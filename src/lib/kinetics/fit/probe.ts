@@ -5,7 +5,7 @@
 import type { FitRequest } from '../../schemas/fit';
 import { isFitted, type Fittable } from '../../schemas/quantity';
 import type { RunContent } from '../../schemas/run';
-import { isUnitOf } from '../units';
+import { isUnitOf, toSi } from '../units';
 import { KineticModel } from './model';
 import type { Point } from './points';
 import { compileProblem, type KineticProblem } from './problem';
@@ -35,6 +35,7 @@ export function probeModel(
 	known: (id: string) => boolean,
 	foreign = false
 ): Probe {
+	refuseLocal(request, run, foreign);
 	const filled = probeRun(request, run, known, foreign);
 	const problem = compileProbe(request, filled, times);
 	const at = problem.runs.findIndex((r) => r.id === filled.id);
@@ -42,6 +43,17 @@ export function probeModel(
 	for (const channel of problem.runs[at].channels)
 		if (request.species.some((s) => channel.id === speciesChannel(s.id))) channel.besideTotal = true;
 	return { problem, model: probed(problem, at, times), at };
+}
+
+/** Constants of a run's own say nothing of another run, nor of this one at another temperature. */
+function refuseLocal(request: FitRequest, run: RunContent, foreign: boolean): void {
+	if (!request.options.local?.length) return;
+	const own = foreign ? undefined : request.runs.find((r, i) => r === run || runId(r, i) === run.id);
+	const kelvin = (of: RunContent) => toSi(of.temperature, 'temperature');
+	if (own && Math.abs(kelvin(own) - kelvin(run)) < 1e-6) return;
+	throw new RangeError(
+		`This fit has parameters of its own in each run (${request.options.local.join(', ')}): they say nothing of another run or temperature. Predict with a fit whose constants are shared by all runs.`
+	);
 }
 
 /** Whether a channel sees this species alone, in absolute terms. */

@@ -6,6 +6,7 @@ import { isFitted, type Fittable, type Quantity } from '../../schemas/quantity';
 import { isEquilibrium, type RateLawContent, type StepContent } from '../../schemas/scheme';
 import { isUnitOf, UnitError, type UnitContext } from '../units';
 import { stop } from './finding';
+import { localise } from './local-slots';
 import { SlotOptions } from './slot-options';
 import { DIMENSIONS, LN_KINDS, readValue, reportUnit, type SlotKind } from './slot-units';
 import { runId, type Slot } from './slots';
@@ -20,6 +21,7 @@ export function readSlots(request: FitRequest): SlotReading {
 	const reader = new SlotReader();
 	for (const step of request.steps) reader.step(step);
 	request.runs.forEach((run, index) => reader.run(run, runId(run, index), request));
+	localise(request, reader.slots, reader.issues);
 	new SlotOptions(reader.slots, reader.issues).apply(request.options);
 	return { slots: reader.slots, issues: reader.issues };
 }
@@ -130,7 +132,8 @@ class SlotReader {
 			tie: null,
 			reported: where.reported,
 			run: where.run,
-			step: where.step
+			step: where.step,
+			localOf: null
 		});
 	}
 }

@@ -12,6 +12,7 @@ import { LeastSquaresWorkspace } from './least-squares';
 import { leastSquares } from './levenberg-marquardt';
 import { KineticModel } from './model';
 import { compileProblem } from './problem';
+import { readSlots } from './read-slots';
 import { fromReported, runId, toReported, type Slot } from './slots';
 import { restoreFit } from './restore';
 import { FitCancelled, searchMinima } from './search';
@@ -54,7 +55,8 @@ export function leaveOneRunOut(report: FitReport, request: FitRequest, hooks: Fi
 
 /** Options without those that name a parameter local to this run. */
 function without(request: FitRequest, run: string): FitRequest['options'] {
-	const local = (id: string) => id.startsWith(`${run}.initial.`) || id === `${run}.timeOffset`;
+	const { slots } = readSlots(request);
+	const local = (id: string) => slots.get(id)?.run === run;
 	const { options } = request;
 	return {
 		...options,

@@ -56,6 +56,7 @@ export function reportedParameters(
 				profileCi95: profile ? reportedProfile(slot, linear, profile) : null,
 				unit: slot.unit,
 				state: held && slot.state === 'fitted' ? 'at bound' : slot.state,
+				...(slot.localOf && slot.run ? { local: { run: slot.run, of: slot.localOf } } : {}),
 				...(slot.scale === 'ln' && free >= 0
 					? { logStandardError: Number.isFinite(innerError) ? innerError : null }
 					: {})

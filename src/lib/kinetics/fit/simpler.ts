@@ -25,6 +25,7 @@ export function withoutDirection(request: FitRequest, parameter: string): FitReq
 		steps,
 		options: {
 			...request.options,
+			...(request.options.local ? { local: request.options.local.filter((id) => !gone(id)) } : {}),
 			fixed: request.options.fixed.filter((id) => !gone(id)),
 			tied: request.options.tied.filter((t) => !gone(t.parameter) && !gone(t.to)),
 			bounds: Object.fromEntries(Object.entries(request.options.bounds).filter(([id]) => !gone(id)))

@@ -5,8 +5,11 @@ import type { FitFinding, FitRequest } from '../../schemas/fit';
 import type { Quantity } from '../../schemas/quantity';
 import { UnitError } from '../units';
 import { stop } from './finding';
+import { isLocalConstant } from './local-slots';
 import { readValue } from './slot-units';
 import type { Slot } from './slots';
+
+type Tie = FitRequest['options']['tied'][number];
 
 /** Applies options to slots; problems become issues. */
 export class SlotOptions {
@@ -17,9 +20,32 @@ export class SlotOptions {
 
 	apply(options: FitRequest['options']): void {
 		for (const id of options.fixed) this.fix(id);
-		for (const tie of options.tied) this.tie(tie);
+		for (const tie of options.tied) for (const each of this.eachRun(tie)) this.tie(each);
 		for (const id of this.slots.keys()) this.checkTieCycle(id);
 		for (const [id, bounds] of Object.entries(options.bounds)) this.bound(id, bounds);
+	}
+
+	/** A tie of two constants that are both local ties them in each run. */
+	private eachRun(tie: Tie): Tie[] {
+		const copies = (id: string) => [...this.slots.values()].filter((s) => s.localOf === id);
+		const followers = copies(tie.parameter);
+		const leaders = copies(tie.to);
+		const split = [tie.parameter, tie.to].filter((id) => copies(id).length > 0);
+		if (split.length === 0) return [tie];
+		if (split.length === 1) {
+			this.issues.push(
+				stop(
+					'tie-local',
+					`${tie.parameter} is tied to ${tie.to}, but only ${split[0]} has a value of its own in each run. Make both local, or both shared.`,
+					[tie.parameter, tie.to]
+				)
+			);
+			return [];
+		}
+		return followers.flatMap((follower) => {
+			const leader = leaders.find((s) => s.run === follower.run);
+			return leader ? [{ parameter: follower.id, to: leader.id, factor: tie.factor }] : [];
+		});
 	}
 
 	private known(id: string, where: string): Slot | null {
@@ -53,7 +79,7 @@ export class SlotOptions {
 		slot.reported = true;
 	}
 
-	private tie({ parameter, to, factor }: { parameter: string; to: string; factor: number }): void {
+	private tie({ parameter, to, factor }: Tie): void {
 		const slot = this.known(parameter, 'options.tied');
 		const target = this.known(to, 'options.tied');
 		if (!slot || !target) return;
@@ -73,6 +99,16 @@ export class SlotOptions {
 					parameter,
 					to
 				])
+			);
+			return;
+		}
+		if (isLocalConstant(parameter) !== isLocalConstant(to)) {
+			this.issues.push(
+				stop(
+					'tie-local',
+					`${parameter} cannot be tied to ${to}: one holds at the temperature of its run, the other at the reference temperature.`,
+					[parameter, to]
+				)
 			);
 			return;
 		}

@@ -7,7 +7,7 @@
  *
  * Ids: `<step>.forward.kRef`, `<step>.forward.activationEnergy`, `<step>.reverse.kRef`, `<step>.reverse.activationEnergy`,
  * `<step>.reverse.equilibriumConstant`, `<step>.reverse.enthalpy`, `<run>.initial.<species>`, `<run>.timeOffset`,
- * `<channel>.responseFactor`.
+ * `<channel>.responseFactor`; local to a run: `local-slots.ts`.
  */
 import type { FitRequest } from '../../schemas/fit';
 import { fromSi, toSi, type Dimension, type UnitContext } from '../units';
@@ -36,6 +36,8 @@ export interface Slot {
 	reported: boolean;
 	run: string | null;
 	step: string | null;
+	/** The shared id that it stands in for, where it is local to a run. */
+	localOf: string | null;
 }
 
 /** The id of a run: its own, or r1, r2, … by position. */

@@ -106,7 +106,8 @@ function responseRange(problem: KineticProblem, slot: Slot): Range {
 	let guess = slot.guessed ? Math.log(slot.value) : NaN;
 	for (const run of problem.runs)
 		run.channels.forEach((channel, c) => {
-			if (Number.isFinite(guess) || slot.id !== `${channel.id}.responseFactor`) return;
+			if (Number.isFinite(guess) || (slot.localOf ?? slot.id) !== `${channel.id}.responseFactor`) return;
+			if (slot.run !== null && slot.run !== run.id) return;
 			const largest = Math.max(...run.points.filter((p) => p.channel === c).map((p) => Math.abs(p.observed)));
 			const charge = run.charge.reduce((a, l) => a + Math.max(0, l.constant), 0) || 1;
 			guess = Math.log(largest / (0.6 * charge * Math.max(...channel.weights)));

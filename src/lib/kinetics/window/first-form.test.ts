@@ -133,6 +133,13 @@ describe('the window of the invented case A → B → C (40 °C, A NMT 1.0 %, C 
 		expect(maxima.map((m) => m.kind)).toEqual(['at start', 'interior', 'at end']);
 	});
 
+	it('refuses a fit whose constants are local to its runs: they are no k(T)', () => {
+		const given = input(window, at(40), [30, 50]);
+		const [first, second] = given.fit.parameters;
+		const local = { ...given.fit, parameters: [{ ...first, id: 'r1.s1.forward.k' }, second] };
+		expect(() => firstFormWindow({ ...given, fit: local })).toThrow(/shared by all runs/);
+	});
+
 	it('refuses a temperature outside the studied range, or marks it', () => {
 		expect(() => firstFormWindow(input(window, at(45), [30, 40]))).toThrow(WindowRefusal);
 		expect(() => firstFormWindow(input(window, at(45), [30, 40]))).toThrow(

@@ -6,6 +6,7 @@
  * be set quickly for each draw; tied parameters follow their leader in a fixed ratio.
  */
 import { isEquilibrium, type SchemeContent, type StepContent } from '../../schemas/scheme';
+import { hasLocalConstants } from '../fit/local-slots';
 import { toNetwork } from '../from-scheme';
 import type { Network, RateLaw, Step } from '../types';
 import { toSi, UnitError, type Dimension } from '../units';
@@ -43,6 +44,11 @@ export function fittedNetwork({ scheme, fit, tied = [] }: FirstFormInput): Fitte
 	const { network, issues } = toNetwork(scheme);
 	const stop = issues.find((issue) => issue.level === 'stop');
 	if (stop) throw new WindowRefusal('scheme not usable', stop.message);
+	if (hasLocalConstants(fit))
+		throw new WindowRefusal(
+			'fit not usable',
+			'This fit has rate constants of its own in each run, so it does not say how they change with temperature. Compute the window from a fit whose constants are shared by all runs.'
+		);
 	const all = new Map<string, NetworkParameter>();
 	for (const reported of fit.parameters) {
 		const parameter = readParameter(reported, scheme, fit);

@@ -2,6 +2,7 @@
  * The computations behind the questions on a recorded fit. Pure, so that they run in a worker thread and in a test alike.
  */
 import {
+	arrheniusCheck,
 	bootstrap,
 	compareSchemes,
 	confirmationRun,
@@ -92,6 +93,8 @@ function answer(
 	switch (question.kind) {
 		case 'influence':
 			return leaveOneRunOut(report, request, hooks);
+		case 'arrhenius':
+			return arrheniusCheck(report, request, hooks);
 		case 'profiles':
 			return profileCurves(report, request, confidence, hooks);
 		case 'region':

@@ -1,8 +1,9 @@
+import { hasLocalConstants } from '$lib/kinetics/fit/local-slots';
 import { createRecipeForm, type CreateRecipeForm } from '$lib/schemas/recipe';
 import { appendAudit } from '../audit/append';
 import { write } from '../database';
 import { Recipe, RecipeVersion, WindowResult } from '../database/models';
-import { notFound } from '../errors';
+import { AppError, notFound } from '../errors';
 import type { Actor } from '../policy';
 import { findStudy } from '../studies/find';
 import { criteriaOf } from '../studies/read-study';
@@ -24,6 +25,12 @@ export async function createRecipe(
 	const asked = createRecipeForm.parse(input);
 	return write(async (tx) => {
 		const facts = await fitFacts(study.id, asked.fitId, tx);
+		if (hasLocalConstants(facts.fit.report))
+			throw new AppError(
+				'invalid',
+				'This fit has rate constants of its own in each run: it checks the temperature dependence and is no basis for a recipe. Use a fit whose constants are shared by all runs.',
+				{ fields: [{ field: 'fitId', message: 'Choose a fit whose constants are shared by all runs.' }] }
+			);
 		const window = asked.windowId
 			? await WindowResult.findOne({ where: { id: asked.windowId, fitId: facts.fit.id }, transaction: tx })
 			: null;
