@@ -1,15 +1,9 @@
 import { readFileSync } from 'node:fs';
 import { describe, expect, it } from 'vitest';
-import {
-	bestResidence,
-	plugFlow,
-	segregatedFlow,
-	stirredTank,
-	tankSensitivities,
-	tanksInSeries
-} from './flow';
+import { bestResidence } from './best-residence';
+import { plugFlow, stirredTank, tanksInSeries } from './flow';
+import { segregatedFlow } from './residence-table';
 import { chain, system } from './test-systems';
-import type { SensitivityParameter } from './sensitivity';
 import type { LinearSystem } from './types';
 
 const series = chain([1.2, 0.15]);
@@ -99,48 +93,5 @@ describe('a residence-time distribution given as a table', () => {
 	it('names what is wrong with a table', () => {
 		expect(() => segregatedFlow(series, feed, { timesS: [0, 1, 1], density: [1, 1, 1] })).toThrow(/Row 3/);
 		expect(() => segregatedFlow(series, feed, { timesS: [0, 1], density: [0, 0] })).toThrow(/no area/);
-	});
-});
-
-describe('sensitivities of flow', () => {
-	const parameters: SensitivityParameter[] = [
-		...[0, 1, 2, 3, 4].map((step) => ({ kind: 'rate' as const, step, direction: 'forward' as const })),
-		{ kind: 'charge', species: 0 }
-	];
-	const start = [1, 0.2, 0, 0];
-	/** Central differences with Richardson extrapolation: error some 1e-10. */
-	const differences = (f: (k: number[], feed: number[]) => Float64Array, p: number): number[] => {
-		const at = (h: number) => {
-			const moved = (sign: number) => {
-				const k = constants.map((value, i) => (i === p ? value * Math.exp(sign * h) : value));
-				const c = start.map((value, i) => (p === 5 && i === 0 ? value + sign * h : value));
-				return f(k, c);
-			};
-			const [up, down] = [moved(1), moved(-1)];
-			return Array.from(up, (value, i) => (value - down[i]) / (2 * h));
-		};
-		const [coarse, fine] = [at(0.02), at(0.01)];
-		return fine.map((value, i) => (4 * value - coarse[i]) / 3);
-	};
-
-	it('of one and three tanks agree with extrapolated differences', () => {
-		for (const count of [1, 3]) {
-			const found = tankSensitivities(wide(constants), start, 1.7, count, parameters);
-			parameters.forEach((_, p) =>
-				differences((k, c) => tanksInSeries(wide(k), c, 1.7, count), p).forEach((expected, i) =>
-					expect(Math.abs(found[p * 4 + i] - expected)).toBeLessThan(1e-8)
-				)
-			);
-		}
-	});
-
-	it('of segregated flow agree with extrapolated differences', () => {
-		const table = { timesS: [0, 1, 2.5, 6], density: [0, 1, 0.4, 0] };
-		const found = segregatedFlow(wide(constants), start, table, parameters).sensitivities;
-		parameters.forEach((_, p) =>
-			differences((k, c) => segregatedFlow(wide(k), c, table).outlet, p).forEach((expected, i) =>
-				expect(Math.abs(found[p * 4 + i] - expected)).toBeLessThan(1e-8)
-			)
-		);
 	});
 });

@@ -3,16 +3,18 @@
  *
  *     forward_j = k_j ∫ c_reactant dt,   net_j = forward_j − reverse_j,   heat = Σ (−ΔH_j) net_j
  *
- * Gross flows through a fast equilibrium are many orders larger than the net one, which would then be lost in rounding. The
- * reversible steps are therefore settled by balances: where they form no loop, a species that touches only one unsettled step
- * gives its net from what else came and went, and so on (leaf by leaf). Only steps on a loop use the difference of gross flows.
+ * The net of reversible steps comes from balances, not from that difference (`net-turnover.ts`). Derivatives:
+ * `material-sensitivity.ts`.
  *
  * | symbol | name here |
  * | --- | --- |
  * | ∫c dt | `integral`, mol/L·s; until the end from the elimination of `final-composition.ts` |
  * | ΔH_j | `enthalpiesJPerMol[j]`, per mole of the step as written; null: not known |
+ *
+ * Source: the integral form of the balance of each species; O. Levenspiel, Chemical Reaction Engineering, 3rd ed. (1999), ch. 3.
  */
 import { finalComposition } from './final-composition';
+import { netTurnover } from './net-turnover';
 import { solve } from './solve';
 import type { LinearSystem, Network, Solution } from './types';
 
@@ -50,58 +52,20 @@ export function materialMap(
 		integral = solution.integral(timeS);
 		end = solution.at(timeS);
 	}
-	const index = new Map(network.species.map((species, i) => [species.id, i]));
 	const gross = network.steps.map(() => ({ forward: 0, reverse: 0 }));
-	for (const { step, direction, from, rate } of system.flows ?? [])
+	const reversible = network.steps.map(() => false);
+	for (const { step, direction, from, rate } of system.flows ?? []) {
 		gross[step][direction] = integral[from] === 0 ? 0 : rate * integral[from];
-	const net = gross.map(({ forward, reverse }) => (reverse === 0 ? forward : NaN));
-	const balance = Float64Array.from({ length: n }, (_, i) => end[i] - charge[i]);
-	network.steps.forEach((step, j) => {
-		if (!Number.isNaN(net[j])) settle(balance, step, index, net[j]);
-	});
-	settleLeaves(network, index, net, balance);
-	return network.steps.map((step, j) => {
-		const { forward, reverse } = gross[j];
-		const value = Number.isNaN(net[j]) && Number.isFinite(forward) ? forward - reverse : net[j];
-		return { stepId: step.id, forward, reverse, net: value, percentOfCharge: (100 * value) / total };
-	});
-}
-
-/** Takes a settled step out of the balances. */
-function settle(
-	balance: Float64Array,
-	step: Network['steps'][number],
-	index: Map<string, number>,
-	net: number
-): void {
-	balance[index.get(step.reactant)!] += net;
-	for (const { species, coefficient } of step.products) balance[index.get(species)!] -= coefficient * net;
-}
-
-function settleLeaves(
-	network: Network,
-	index: Map<string, number>,
-	net: number[],
-	balance: Float64Array
-): void {
-	const open = () => network.steps.map((_, j) => j).filter((j) => Number.isNaN(net[j]));
-	for (let left = open(); left.length > 0; left = open()) {
-		const touching = new Map<number, number[]>();
-		for (const j of left) {
-			const step = network.steps[j];
-			for (const id of [step.reactant, step.products[0].species]) {
-				const i = index.get(id)!;
-				touching.set(i, [...(touching.get(i) ?? []), j]);
-			}
-		}
-		const leaf = [...touching].find(([, steps]) => steps.length === 1);
-		if (!leaf) return;
-		const [i, [j]] = leaf;
-		const step = network.steps[j];
-		net[j] = index.get(step.reactant) === i ? -balance[i] : balance[i];
-		if (net[j] === 0) net[j] = 0;
-		settle(balance, step, index, net[j]);
+		if (direction === 'reverse' && gross[step].reverse !== 0) reversible[step] = true;
 	}
+	const change = Float64Array.from({ length: n }, (_, i) => end[i] - charge[i]);
+	const net = netTurnover(network, gross, reversible, change);
+	return network.steps.map((step, j) => ({
+		stepId: step.id,
+		...gross[j],
+		net: net[j],
+		percentOfCharge: (100 * net[j]) / total
+	}));
 }
 
 /** A figure that is null where an enthalpy that matters is not known. */
