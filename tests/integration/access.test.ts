@@ -150,6 +150,7 @@ const CALLS: Record<string, Entry> = {
 	'GET /studies/[study]/fit/[fit]/confirmation/[revision]': entry(READ),
 	'GET /studies/[study]/fit/compare/separate': entry(READ),
 	'GET /studies/[study]/fit/[fit]/place': entry(READ),
+	'GET /studies/[study]/data/sheets/[sheet]/reading': entry(READ),
 	'GET /studies/[study]/data/sheets/[sheet]/difference': {
 		expected: READ,
 		query: () => `?from=${ids.sheet}`
@@ -175,6 +176,7 @@ const PAGE_EXPECTED: Record<string, Expected> = {
 	'/studies/[study]/fit/[fit]/plan': READ,
 	'/studies/[study]/fit/by-hand': READ,
 	'/studies/[study]/fit/compare': READ,
+	'/studies/[study]/fit/samples': READ,
 	'/studies/[study]/window': READ,
 	'/studies/[study]/window/[window]': READ,
 	'/studies/[study]/recipe': READ,

@@ -1,8 +1,9 @@
 /** From a fit's report to what its charts show: one panel a run. */
-import { predict } from '$lib/kinetics/fit/bands';
+import type { Prediction } from '$lib/kinetics/fit';
 import type { FitReport, FitRequest, FitResidual } from '$lib/schemas/fit';
 import type { ChannelContent, RunContent } from '$lib/schemas/run';
 import type { SpeciesContent } from '$lib/schemas/scheme';
+import { toSi } from '$lib/kinetics/units';
 import { plain, unitText } from '$lib/client/numbers';
 import type { ChartPoint, ChartSeries } from '../charts/types';
 
@@ -53,10 +54,19 @@ export function lastTimeOf(run: RunContent): number {
 export const curveTimes = (end: number, count = CURVE_POINTS): number[] =>
 	Array.from({ length: count }, (_, i) => (end * i) / (count - 1));
 
-function panel(report: FitReport, request: FitRequest, run: RunContent, id: string, name: string): FitPanel {
+/** What belongs to one run of the request. */
+interface PanelRun {
+	run: RunContent;
+	id: string;
+	name: string;
+	/** Undefined while the curves are not there yet: points and residuals need none. */
+	curves: Prediction | undefined;
+}
+
+function panel(report: FitReport, request: FitRequest, { run, id, name, curves }: PanelRun): FitPanel {
 	const lastTime = lastTimeOf(run);
-	const times = curveTimes(lastTime > 0 ? lastTime : 1);
-	const predicted = predict(report, request, run, times).series.filter((s) => s.kind === 'channel');
+	const times = curves?.times ?? [];
+	const predicted = curves?.series.filter((s) => s.kind === 'channel') ?? [];
 	const series = run.channels.map((channel): ChartSeries => {
 		const band = predicted.find((b) => b.id === channel.id);
 		return {
@@ -95,10 +105,19 @@ function panel(report: FitReport, request: FitRequest, run: RunContent, id: stri
 export function fitPanels(
 	report: FitReport,
 	request: FitRequest,
-	runNames: Record<string, string>
+	runNames: Record<string, string>,
+	curvesOf: (run: string) => Prediction | undefined
 ): FitPanel[] {
 	return request.runs.map((run, i) => {
 		const id = run.id ?? `r${i + 1}`;
-		return panel(report, request, run, id, runNames[id] ?? id);
+		return panel(report, request, { run, id, name: runNames[id] ?? id, curves: curvesOf(id) });
 	});
+}
+
+/** Id of the run whose temperature is nearest to the reference temperature. */
+export function nearestRun({ runs, referenceTemperature }: FitRequest): string {
+	const gap = (run: RunContent) =>
+		Math.abs(toSi(run.temperature, 'temperature') - toSi(referenceTemperature, 'temperature'));
+	const nearest = runs.reduce((best, run, i) => (gap(run) < gap(runs[best]) ? i : best), 0);
+	return runs[nearest].id ?? `r${nearest + 1}`;
 }
