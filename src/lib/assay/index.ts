@@ -6,5 +6,6 @@ export { toSavedMapping } from './saved-mapping';
 export { address, columnLetter, columnNumber, displayText, parseAddress, rangeText, SheetView } from './grid';
 export { CHECKS, type Checks } from './examination';
 export { durationWords } from './plausibility';
+export { sentenceToConfirm } from './seen-in-lab';
 export { templateSheets, type TemplateSheet } from './template';
 export { diffWorkbooks, type CellChange, type WorkbookDifference } from './diff';

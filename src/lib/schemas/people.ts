@@ -138,6 +138,17 @@ export const thresholds = z.object({
 });
 export type Thresholds = z.infer<typeof thresholds>;
 
+/** The group's own limit; empty: as the site has it. A decimal comma is a decimal sign here too. */
+export const groupLimitsForm = z.object({
+	groupId: id,
+	version,
+	massBalancePercent: z.preprocess((v) => {
+		const text = typeof v === 'string' ? v.trim().replace(',', '.') : v;
+		return text === '' || text === undefined ? null : text;
+	}, percent('the gap').nullable()),
+	reason: reasonText.default('')
+});
+
 export const siteSettings = z.object({ safetyRules: z.array(safetyRule).max(50), thresholds });
 export type SiteSettings = z.infer<typeof siteSettings>;
 

@@ -60,7 +60,8 @@ const TABLE = {
 	'audit.read': { roles: ['qa_reviewer', 'group_lead'], scope: 'read' },
 	'audit.verify': { roles: ['qa_reviewer', 'group_lead'], scope: 'read' },
 	'members.read': { roles: everyone, scope: 'read' },
-	'members.invite': { roles: ['group_lead'], scope: null }
+	'members.invite': { roles: ['group_lead'], scope: null },
+	'group.limits': { roles: ['group_lead'], scope: null }
 } as const satisfies Record<string, Rule>;
 
 export type Action = keyof typeof TABLE;

@@ -7,6 +7,7 @@ import { AppError, notFound } from '../errors';
 import { can, requireCan, type Actor, type Role } from '../policy';
 import { openInvitations, type InvitationView } from './invite';
 import { checkReason } from './reason';
+import { readSiteSettings } from './site-settings';
 
 export interface MemberView {
 	userId: string;
@@ -21,10 +22,14 @@ export interface GroupView {
 	id: string;
 	name: string;
 	gxp: boolean;
+	/** Gap in the mass balance that is noted while sheets are read, ± % of the charge; null: as the site has it. */
+	massBalancePercent: number | null;
+	siteMassBalancePercent: number;
 	version: number;
 	members: MemberView[];
 	invitations: InvitationView[];
 	canManage: boolean;
+	canSetLimits: boolean;
 }
 
 async function membersOf(groupId: string): Promise<MemberView[]> {
@@ -47,14 +52,21 @@ async function membersOf(groupId: string): Promise<MemberView[]> {
 export async function readGroup(actor: Actor, groupId: string): Promise<GroupView> {
 	requireCan(actor, groupId, 'members.read', 'group');
 	const canManage = can(actor, groupId, 'members.invite');
-	const [group, members, invitations] = await Promise.all([
+	const [group, members, invitations, site] = await Promise.all([
 		Group.findByPk(groupId),
 		membersOf(groupId),
-		canManage ? openInvitations(groupId) : []
+		canManage ? openInvitations(groupId) : [],
+		readSiteSettings()
 	]);
 	if (!group) throw notFound('group');
-	const { id, name, gxp, version } = group;
-	return { id, name, gxp, version, members, invitations, canManage };
+	const { id, name, gxp, massBalancePercent, version } = group;
+	const { massBalancePercent: siteMassBalancePercent } = site.thresholds;
+	const limits = {
+		massBalancePercent,
+		siteMassBalancePercent,
+		canSetLimits: can(actor, groupId, 'group.limits')
+	};
+	return { id, name, gxp, version, members, invitations, canManage, ...limits };
 }
 
 /** A group always keeps one active lead: else nobody could sign for it or invite into it. */

@@ -1,12 +1,14 @@
 import type { RunContent } from '$lib/schemas/run';
 import { withLogChoice } from '$lib/schemas/temperature-log';
-import type { Conditions, GridWorkbook, Settlement, TableProposal } from '$lib/schemas/sheet';
+import type { SpeciesContent } from '$lib/schemas/scheme';
+import type { Conditions, GridWorkbook, Mapping, Settlement, TableProposal } from '$lib/schemas/sheet';
 import {
 	confirmRunSchema,
 	type ConfirmRun,
 	type ConfirmRunInput,
 	type TableWork
 } from '$lib/schemas/sheet-work';
+import { proposeBlock, sentenceToConfirm } from '$lib/assay';
 import { contentHash } from '../audit/canonical';
 import { write, type Tx } from '../database';
 import { Run, RunRevision, Sheet } from '../database/models';
@@ -83,8 +85,21 @@ function withSigned(actor: Actor, content: RunContent): RunContent {
 
 interface Settled {
 	work: TableWork;
+	/** As proposed; nothing for a table that a person drew. */
 	table: TableProposal | undefined;
 	settlement: Settlement;
+	/** What has to be confirmed as seen in the lab. */
+	sentence: string | null;
+}
+
+/** A time unit chosen by hand is confirmed in words, here as on the page: a run that is 60 times too fast must not come in by script. */
+function requireSeenInLab({ work, sentence }: Settled): void {
+	if (sentence === null || work.mapping.conditions?.seenInLab === sentence) return;
+	const message = `The time unit was chosen by hand. Confirm what it means as seen in the lab, word by word: "${sentence}"`;
+	throw new AppError('invalid', message, {
+		fields: [{ field: 'conditions.seenInLab', message }],
+		data: { sentence }
+	});
 }
 
 /** What was decided besides the cells: which temperature counts, and what was confirmed as seen in the lab. */
@@ -95,6 +110,17 @@ function withChoices(content: RunContent, conditions: Conditions | undefined): R
 	const line = `Time unit chosen by hand; confirmed as seen in the lab: ${seen}`;
 	return { ...chosen, conversions: [...(chosen.conversions ?? []), line.slice(0, 400)].slice(-500) };
 }
+
+/** A table that a person drew, as the reader would propose it. */
+const proposeDrawn = (workbook: GridWorkbook, species: SpeciesContent[], key: string, mapping: Mapping) =>
+	proposeBlock(
+		workbook,
+		species,
+		mapping.sheet,
+		mapping.block,
+		mapping.across ? null : mapping.headerRows,
+		key
+	);
 
 async function settleTable(actor: Actor, sheet: Sheet, input: ConfirmRun): Promise<Settled> {
 	const workbook = sheet.reading as GridWorkbook;
@@ -115,11 +141,10 @@ async function settleTable(actor: Actor, sheet: Sheet, input: ConfirmRun): Promi
 		only: [input.tableKey],
 		...surroundings
 	});
-	return {
-		work,
-		table: proposal.tables.find((t) => t.id === input.tableKey),
-		settlement: settlements[input.tableKey]
-	};
+	const table = proposal.tables.find((t) => t.id === input.tableKey);
+	const settlement = settlements[input.tableKey];
+	const asProposed = table ?? proposeDrawn(workbook, surroundings.species, input.tableKey, mapping);
+	return { work, table, settlement, sentence: sentenceToConfirm(asProposed, work.mapping, settlement) };
 }
 
 /** One table makes one run; a second reading of it is a revision of that run, with a reason. */
@@ -196,6 +221,7 @@ export async function confirmRun(actor: Actor, input: ConfirmInput): Promise<Con
 	const asked = confirmRunSchema.parse(rest);
 	const settled = await settleTable(actor, sheet, asked);
 	requireRun(settled.settlement);
+	requireSeenInLab(settled);
 	const work = await workAfter(sheet, asked, settled);
 	return write(async (tx) => {
 		const now = await findSheet(actor, input.sheetId, 'run.write', { tx });

@@ -1,12 +1,14 @@
 import type { SpeciesContent } from '$lib/schemas/scheme';
 import type { GridWorkbook, Proposal, SavedMapping, Settlement } from '$lib/schemas/sheet';
 import type { SheetWork, TableWork } from '$lib/schemas/sheet-work';
-import { propose, settle } from '$lib/assay';
+import { propose, settle, type Checks } from '$lib/assay';
 
 /** What the reader needs to know beside the sheet itself. */
 export interface Surroundings {
 	species: SpeciesContent[];
 	saved: SavedMapping[];
+	/** Limits of the group, or of the site where it has none of its own. */
+	checks: Partial<Checks>;
 }
 
 export interface ExamineTask extends Surroundings {
@@ -31,8 +33,8 @@ export function workOn(proposal: Proposal, work: SheetWork, key: string): TableW
 
 /** Proposal and settlement of a sheet; pure, in a request or in a worker alike. */
 export function examineHere(task: ExamineTask): Examined {
-	const { workbook, species, saved, work } = task;
-	const proposal = propose(workbook, species, { saved });
+	const { workbook, species, saved, checks, work } = task;
+	const proposal = propose(workbook, species, { saved, checks });
 	const keys = task.only ?? [...new Set([...proposal.tables.map((t) => t.id), ...Object.keys(work.tables)])];
 	const settlements: Examined['settlements'] = {};
 	for (const key of keys) {
@@ -43,7 +45,8 @@ export function examineHere(task: ExamineTask): Examined {
 				species,
 				mapping: own.mapping,
 				answers: own.answers,
-				corrections: own.corrections
+				corrections: own.corrections,
+				checks
 			});
 	}
 	return { proposal, settlements };

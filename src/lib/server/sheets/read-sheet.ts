@@ -1,3 +1,4 @@
+import type { Checks } from '$lib/assay';
 import type { SpeciesContent } from '$lib/schemas/scheme';
 import type { GridWorkbook, SavedMapping } from '$lib/schemas/sheet';
 import type { SheetWork } from '$lib/schemas/sheet-work';
@@ -26,7 +27,8 @@ export interface StudyRun {
 	sheetId: string | null;
 }
 
-export interface SheetView {
+/** All of a sheet but what was read from it. */
+export interface SheetRecord {
 	id: string;
 	studyId: string;
 	groupId: string;
@@ -37,13 +39,13 @@ export interface SheetView {
 	version: number;
 	uploadedBy: string;
 	createdAt: Date;
-	/** As received; a `GridWorkbook`. */
-	workbook: GridWorkbook;
 	/** What people have done with its tables so far. */
 	work: SheetWork;
 	open: number;
 	species: SpeciesContent[];
 	saved: SavedMapping[];
+	/** Limits by which the sheet is looked through, the same in the page and in the service. */
+	checks: Partial<Checks>;
 	/** Runs that rest on this sheet in their current revision. */
 	runs: SheetRun[];
 	/** All runs of the study: this sheet may be a changed file for one of them. */
@@ -53,6 +55,11 @@ export interface SheetView {
 	/** Number that the next run of the study will have. */
 	nextRunNumber: number;
 	canWrite: boolean;
+}
+
+export interface SheetView extends SheetRecord {
+	/** As received. */
+	workbook: GridWorkbook;
 }
 
 async function runsOf(sheetId: string): Promise<SheetRun[]> {
@@ -89,9 +96,7 @@ async function runsOfStudy(studyId: string): Promise<StudyRun[]> {
 	});
 }
 
-/** A sheet as received, with the work on it and all that is needed to settle it. */
-export async function readSheet(actor: Actor, sheetId: string): Promise<SheetView> {
-	const sheet = await findSheet(actor, sheetId, 'study.read', { with: ['reading'] });
+async function recordOf(actor: Actor, sheet: Sheet): Promise<SheetRecord> {
 	const [runs, studyRuns, person, surroundings, last] = await Promise.all([
 		runsOf(sheet.id),
 		runsOfStudy(sheet.studyId),
@@ -111,7 +116,6 @@ export async function readSheet(actor: Actor, sheetId: string): Promise<SheetVie
 		version,
 		uploadedBy: person?.name ?? 'somebody who has left',
 		createdAt,
-		workbook: sheet.reading as GridWorkbook,
 		work: workOf(sheet.work),
 		open: openQuestions(sheet.work),
 		...surroundings,
@@ -121,4 +125,15 @@ export async function readSheet(actor: Actor, sheetId: string): Promise<SheetVie
 		nextRunNumber: (last ?? 0) + 1,
 		canWrite: can(actor, groupId, 'sheet.upload')
 	};
+}
+
+/** The record of a sheet with the work on it and all that is needed to settle it, without the grid. */
+export async function readSheetRecord(actor: Actor, sheetId: string): Promise<SheetRecord> {
+	return recordOf(actor, await findSheet(actor, sheetId, 'study.read'));
+}
+
+/** The same with the sheet as received. */
+export async function readSheet(actor: Actor, sheetId: string): Promise<SheetView> {
+	const sheet = await findSheet(actor, sheetId, 'study.read', { with: ['reading'] });
+	return { ...(await recordOf(actor, sheet)), workbook: sheet.reading as GridWorkbook };
 }

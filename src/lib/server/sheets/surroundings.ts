@@ -1,6 +1,7 @@
 import type { SpeciesContent } from '$lib/schemas/scheme';
 import { savedMappingSchema, type SavedMapping } from '$lib/schemas/sheet';
 import { Mapping } from '../database/models';
+import { massBalancePercentOf } from '../people/group-limits';
 import { schemesOf } from '../studies/read-study';
 import type { Surroundings } from './examine-here';
 
@@ -26,6 +27,10 @@ export async function savedMappings(groupId: string): Promise<SavedMapping[]> {
 }
 
 export async function surroundingsOf(studyId: string, groupId: string): Promise<Surroundings> {
-	const [species, saved] = await Promise.all([speciesOf(studyId), savedMappings(groupId)]);
-	return { species, saved };
+	const [species, saved, gap] = await Promise.all([
+		speciesOf(studyId),
+		savedMappings(groupId),
+		massBalancePercentOf(groupId)
+	]);
+	return { species, saved, checks: { massBalanceLow: 100 - gap, massBalanceHigh: 100 + gap } };
 }

@@ -4,6 +4,7 @@ import { inviteForm, removeForm, roleForm } from '$lib/schemas/people';
 import { incomplete, posted, refused, rowAction, type FormMessage } from '$lib/server/forms';
 import { requireActor, requireGroup } from '$lib/server/hooks/actor';
 import { page } from '$lib/server/http';
+import { changeGroupLimits } from '$lib/server/people/group-limits';
 import { inviteMember, revokeInvitation } from '$lib/server/people/invite';
 import { changeRole, readGroup, removeMember } from '$lib/server/people/members';
 import type { Role } from '$lib/server/policy';
@@ -18,6 +19,13 @@ export const load = page(async (event: PageServerLoadEvent) => {
 		superValidate<InviteFields, FormMessage>(zod4(inviteForm))
 	]);
 	return { group, form, me: actor.userId };
+});
+
+/** As posted; the use case checks them. */
+const groupLimits = ({ version, massBalancePercent, reason }: Record<string, unknown>) => ({
+	version,
+	massBalancePercent,
+	reason: typeof reason === 'string' ? reason : ''
 });
 
 /** The fields of a member's row. */
@@ -57,6 +65,12 @@ export const actions = {
 		const work = async () => removeMember(actor, { ...removeForm.parse(fields), groupId });
 		const done = 'Taken out of the group. What they did and signed stays.';
 		return rowAction(userId, work, done, 'members');
+	}),
+
+	limits: page(async (event: RequestEvent) => {
+		const { actor, groupId, fields } = await rowOf(event);
+		const work = async () => changeGroupLimits(actor, { ...groupLimits(fields), groupId });
+		return rowAction('limits', work, 'The limit is kept; sheets are read by it from now on.');
 	}),
 
 	revoke: page(async (event: RequestEvent) => {

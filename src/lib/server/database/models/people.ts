@@ -42,6 +42,8 @@ export class Group extends Model<InferAttributes<Group>, InferCreationAttributes
 	declare id: CreationOptional<string>;
 	declare name: string;
 	declare gxp: CreationOptional<boolean>;
+	/** Gap in the mass balance that is noted, ± % of the charge; null: as the site has it. */
+	declare massBalancePercent: CreationOptional<number | null>;
 	declare version: CreationOptional<number>;
 	declare createdAt: CreationOptional<Date>;
 }
@@ -52,6 +54,7 @@ function initGroup(sequelize: Sequelize): void {
 			...identity(),
 			name: { type: DataTypes.STRING, allowNull: false },
 			gxp: { type: DataTypes.BOOLEAN, allowNull: false, defaultValue: false },
+			massBalancePercent: { type: DataTypes.DOUBLE, allowNull: true },
 			version: { type: DataTypes.INTEGER, allowNull: false, defaultValue: 1 },
 			createdAt: { type: DataTypes.DATE, allowNull: false, defaultValue: DataTypes.NOW }
 		},
