@@ -8,6 +8,7 @@ import { resetSettings } from '../../src/lib/server/settings';
 import { confirmRun } from '../../src/lib/server/sheets/confirm-run';
 import { downloadSheet } from '../../src/lib/server/sheets/download-sheet';
 import { listSheets } from '../../src/lib/server/sheets/list-sheets';
+import { readReading } from '../../src/lib/server/sheets/read-reading';
 import { readSheet } from '../../src/lib/server/sheets/read-sheet';
 import { receiveSheet } from '../../src/lib/server/sheets/receive-sheet';
 import { saveSheetWork } from '../../src/lib/server/sheets/save-sheet-work';
@@ -254,15 +255,19 @@ describe('work on a sheet', () => {
 		const studyId = await study();
 		const sheet = await receive(studyId, 'clean.csv', CLEAN);
 		const other = await makeActor(await makeGroup());
-		for (const attempt of [
+		const attempts = [
 			readSheet(other, sheet.id),
+			readReading(other, studyId, sheet.id),
 			downloadSheet(other, sheet.id),
 			saveSheetWork(other, { sheetId: sheet.id, version: 1, work: { tables: {} } }),
 			confirmRun(other, { sheetId: sheet.id, tableKey: 't1', conditions: CONDITIONS })
-		])
-			await expect(attempt).rejects.toMatchObject({ code: 'not-found' });
+		];
+		await Promise.all(attempts.map((one) => expect(one).rejects.toMatchObject({ code: 'not-found' })));
 		const qa = await makeActor(group, 'qa_reviewer');
-		expect((await readSheet(qa, sheet.id)).canWrite).toBe(false);
+		const seen = await readSheet(qa, sheet.id);
+		expect(seen.canWrite).toBe(false);
+		expect(JSON.parse(await readReading(qa, studyId, sheet.id))).toEqual(seen.workbook);
+		await expect(readReading(qa, await study(), sheet.id)).rejects.toMatchObject({ code: 'not-found' });
 		expect((await downloadSheet(qa, sheet.id)).bytes.length).toBe(CLEAN.length);
 		await expect(
 			confirmRun(qa, { sheetId: sheet.id, tableKey: 't1', conditions: CONDITIONS })

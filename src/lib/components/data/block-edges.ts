@@ -74,6 +74,9 @@ export const sameBlock = (a: Block, b: Block): boolean =>
 	a.firstColumn === b.firstColumn &&
 	a.lastColumn === b.lastColumn;
 
+export const contains = (b: Block, row: number, column: number): boolean =>
+	row >= b.firstRow && row <= b.lastRow && column >= b.firstColumn && column <= b.lastColumn;
+
 /** "rows 6 to 20, columns A to H". */
 export const blockWords = (block: Block): string =>
 	`rows ${block.firstRow} to ${block.lastRow}, columns ${columnLetter(block.firstColumn)} to ${columnLetter(block.lastColumn)}`;

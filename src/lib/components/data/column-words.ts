@@ -1,6 +1,7 @@
 import type { TimeForm } from '$lib/assay';
 import { unitText } from '$lib/client/numbers';
 import type { ColumnMapping, ColumnRole, Mapping } from '$lib/schemas/sheet';
+import { seriesOf } from './mapped-series';
 
 export const ROLE_WORDS: Record<ColumnRole, string> = {
 	time: 'elapsed time',
@@ -40,4 +41,7 @@ export function isIncomplete(column: ColumnMapping): boolean {
 }
 
 export const usedColumns = (mapping: Mapping): ColumnMapping[] =>
-	mapping.columns.filter((c) => c.role !== 'ignore');
+	seriesOf(mapping).filter((c) => c.role !== 'ignore');
+
+export const unusedColumns = (mapping: Mapping): ColumnMapping[] =>
+	seriesOf(mapping).filter((c) => c.role === 'ignore');

@@ -1,9 +1,11 @@
 /**
- * The desk on which a sheet is settled: what was read, what people decided, what is still open. The sheet itself never
- * changes; every decision is kept beside it, can be undone, and is saved by itself.
+ * The desk on which a sheet is settled: what people decided about each of its tables. The sheet itself never changes; every
+ * decision is kept beside it, can be undone, and is saved by itself. What the reader says to it is in `reading.svelte.ts`.
  */
-import { propose, settle } from '$lib/assay';
-import { Autosave, type SaveOutcome } from '$lib/client/autosave';
+import { untrack } from 'svelte';
+import { Autosave } from '$lib/client/autosave';
+import { startReader, type Reader } from '$lib/client/reader/reader';
+import type { DrawnPlace } from '$lib/client/reader/tasks';
 import { setSaveState } from '$lib/client/save-state.svelte';
 import { change, redo, startHistory, undo, type History } from '$lib/client/undo';
 import type { SpeciesContent } from '$lib/schemas/scheme';
@@ -14,22 +16,23 @@ import type {
 	ColumnMapping,
 	Conditions,
 	Finding,
-	GridWorkbook,
+	Mapping,
 	PeakMapping,
-	Proposal,
 	SavedMapping,
-	Settlement,
 	TableProposal
 } from '$lib/schemas/sheet';
 import type { SheetWork, TableWork } from '$lib/schemas/sheet-work';
-import { DrawnTables } from './drawn';
 import { litCells } from './lit';
+import { headerRowsOf, withAddedSeries, withBlock, withSeries } from './mapped-series';
+import { Reading } from './reading.svelte';
+import { sendWork, type WorkConflict } from './save-work';
 import { stamp } from './stamp';
+import { withAnswers } from './finding-answer';
 
 export interface DeskInput {
 	sheetId: string;
 	version: number;
-	workbook: GridWorkbook;
+	workbookJson: string;
 	work: SheetWork;
 	species: SpeciesContent[];
 	saved: SavedMapping[];
@@ -42,37 +45,63 @@ export interface DeskInput {
 	onsaved?: () => void;
 }
 
-interface Conflict {
-	version: number;
-	work: SheetWork;
-}
+const placeOf = (key: string, { sheet, block, ...mapping }: Mapping): DrawnPlace => ({
+	key,
+	sheet,
+	block,
+	headerRows: headerRowsOf({ sheet, block, ...mapping })
+});
 
 export class Desk {
-	readonly proposal: Proposal;
 	key = $state('');
-	conflict = $state.raw<Conflict | null>(null);
+	conflict = $state.raw<WorkConflict | null>(null);
+	readonly reading: Reading;
 	private history: History<SheetWork> = $state.raw(startHistory<SheetWork>({ tables: {} }));
-	private readonly drawn: DrawnTables;
-	private readonly autosave: Autosave<SheetWork, Conflict>;
+	private readonly autosave: Autosave<SheetWork, WorkConflict>;
 
-	constructor(private readonly input: DeskInput) {
-		this.proposal = propose(input.workbook, input.species, { saved: input.saved });
-		this.drawn = new DrawnTables(input.workbook, input.species, input.saved);
+	/** Within a component: what is decided is settled as long as that component lives. */
+	constructor(
+		private readonly input: DeskInput,
+		reader: Reader = startReader()
+	) {
+		const { workbookJson, species, saved, confirmed } = input;
 		this.history = startHistory(input.work);
-		this.key =
-			this.proposal.tables.find((t) => !input.confirmed.includes(t.id))?.id ?? this.keys[0] ?? '';
-		this.autosave = new Autosave<SheetWork, Conflict>({
+		this.reading = new Reading(reader, { workbookJson, species, saved }, ({ tables }) => {
+			this.key = tables.find((t) => !confirmed.includes(t.id))?.id ?? this.keys[0] ?? '';
+		});
+		this.autosave = new Autosave<SheetWork, WorkConflict>({
 			version: input.version,
-			save: (work, version) => this.send(work, version),
+			save: async (work, version) => {
+				const outcome = await sendWork(input.sheetId, work, version);
+				if (outcome.kind === 'saved') input.onsaved?.();
+				return outcome;
+			},
 			onstatus: setSaveState,
 			onconflict: (theirs) => (this.conflict = theirs)
 		});
+		$effect(() => this.keepUp());
 	}
 
+	/** Whatever was decided is looked through anew; tables that were drawn earlier get their proposal. */
+	private keepUp(): void {
+		const { own, key, keys, proposal } = this;
+		if (!proposal) return;
+		untrack(() => {
+			if (own) this.reading.settle(key, own);
+			for (const one of keys)
+				if (!proposal.tables.some((t) => t.id === one))
+					this.reading.drawOnce(placeOf(one, this.work.tables[one].mapping));
+		});
+	}
+
+	get proposal() {
+		return this.reading.proposal;
+	}
 	get work(): SheetWork {
 		return this.history.present;
 	}
 	get keys(): string[] {
+		if (!this.proposal) return [];
 		const found = this.proposal.tables.map((t) => t.id);
 		return [...found, ...Object.keys(this.work.tables).filter((key) => !found.includes(key))];
 	}
@@ -88,30 +117,21 @@ export class Desk {
 
 	/** The proposal of a table; one that a person drew is proposed from its own rows. */
 	tableOf(key: string): TableProposal | null {
-		const found = this.proposal.tables.find((t) => t.id === key);
-		if (found) return found;
-		const own = this.work.tables[key];
-		if (!own) return null;
-		const { sheet, block, headerRows } = own.mapping;
-		return this.drawn.propose({ key, sheet, block, headerRows });
+		return this.proposal?.tables.find((t) => t.id === key) ?? this.reading.drawnTable(key);
 	}
 
 	workOn(key: string): TableWork | null {
 		const own = this.work.tables[key];
 		if (own) return own;
-		const table = this.proposal.tables.find((t) => t.id === key);
+		const table = this.proposal?.tables.find((t) => t.id === key);
 		return table ? { mapping: table.mapping, answers: {}, corrections: [], name: '' } : null;
 	}
 
 	readonly table = $derived.by(() => this.tableOf(this.key));
 	readonly own = $derived.by(() => this.workOn(this.key));
-	readonly settlement = $derived.by((): Settlement | null => {
-		const { workbook, species } = this.input;
-		const { own } = this;
-		if (!own) return null;
-		const { mapping, answers, corrections } = own;
-		return settle({ workbook, species, mapping, answers, corrections });
-	});
+	readonly settlement = $derived.by(() => this.reading.settlementOf(this.key));
+	/** Findings as last settled, with the answers as they are given now. */
+	readonly findings = $derived.by(() => withAnswers(this.settlement?.findings ?? [], this.own?.answers ?? {}));
 	/** Level of the gravest finding that lights a cell of the present table, and whether it waits for an answer. */
 	readonly lit = $derived.by(() => litCells(this.settlement?.findings ?? []));
 
@@ -120,6 +140,12 @@ export class Desk {
 		if (!own || !this.input.canWrite) return;
 		const tables = { ...this.work.tables, [key]: { ...own, ...next } };
 		this.take(change(this.history, { tables }, mergeKey && `${key} ${mergeKey}`));
+	}
+
+	private map(next: (mapping: Mapping) => Mapping, mergeKey: string | null = null): void {
+		if (!this.own) return;
+		const mapping = next(this.own.mapping);
+		if (mapping !== this.own.mapping) this.change({ mapping }, mergeKey);
 	}
 
 	private take(history: History<SheetWork>): void {
@@ -141,46 +167,40 @@ export class Desk {
 		this.change({ answers: answer ? { ...others, [finding.id]: answer } : others }, `answer ${finding.id}`);
 	}
 
-	setColumn(column: number, next: Partial<ColumnMapping>): void {
-		if (!this.own) return;
-		const columns = this.own.mapping.columns.map((c) => (c.column === column ? { ...c, ...next } : c));
-		this.change({ mapping: { ...this.own.mapping, columns } }, `column ${column}`);
+	setSeries(place: number, next: Partial<ColumnMapping>): void {
+		this.map((mapping) => withSeries(mapping, place, next), `series ${place}`);
 	}
 
 	setPeak(peak: string, next: Partial<PeakMapping>): void {
-		if (!this.own) return;
-		const peaks = (this.own.mapping.peaks ?? []).map((p) => (p.peak === peak ? { ...p, ...next } : p));
-		this.change({ mapping: { ...this.own.mapping, peaks } }, `peak ${peak}`);
+		const peaks = (mapping: Mapping) =>
+			(mapping.peaks ?? []).map((p) => (p.peak === peak ? { ...p, ...next } : p));
+		this.map((mapping) => ({ ...mapping, peaks: peaks(mapping) }), `peak ${peak}`);
 	}
 
 	setConditions(next: Partial<Conditions>): void {
-		if (!this.own) return;
-		const before = this.own.mapping.conditions ?? { temperature: null, initial: {}, excess: {} };
-		this.change({ mapping: { ...this.own.mapping, conditions: { ...before, ...next } } }, 'conditions');
+		const before = this.own?.mapping.conditions ?? { temperature: null, initial: {}, excess: {} };
+		this.map((mapping) => ({ ...mapping, conditions: { ...before, ...next } }), 'conditions');
 	}
 
 	setName(name: string): void {
 		this.change({ name }, 'name');
 	}
 
-	/** Other rows count as the data; columns and answers stay. */
-	setRows(firstRow: number, lastRow: number): void {
+	/** Another block counts as the data, at once; series that are new to it follow as the reader proposes them. */
+	setBlock(block: Block): void {
+		const { key } = this;
+		this.map((mapping) => withBlock(mapping, block), 'block');
 		if (!this.own) return;
-		const { mapping } = this.own;
-		const headerRows = mapping.headerRows.filter((r) => r < firstRow);
-		this.change({ mapping: { ...mapping, headerRows, block: { ...mapping.block, firstRow, lastRow } } });
+		const place = placeOf(key, this.own.mapping);
+		void this.reading.propose({ ...place, key: 'edge' }).then((table) => {
+			// Meanwhile the block may have been moved on, or another table been taken up.
+			if (table && this.key === key && this.own?.mapping.block === place.block)
+				this.map((mapping) => withAddedSeries(mapping, table.mapping), 'block');
+		});
 	}
 
-	/** Another block counts as the data; columns that are new to it are proposed like any other. */
-	setBlock(block: Block): void {
-		if (!this.own) return;
-		const { mapping } = this.own;
-		const headerRows = mapping.headerRows.filter((r) => r < block.firstRow);
-		const kept = mapping.columns.filter((c) => c.column >= block.firstColumn && c.column <= block.lastColumn);
-		const proposed = this.drawn.columnsOf({ key: 'edge', sheet: mapping.sheet, block, headerRows });
-		const added = proposed.filter((c) => !kept.some((k) => k.column === c.column));
-		const columns = [...kept, ...added].sort((a, b) => a.column - b.column);
-		this.change({ mapping: { ...mapping, headerRows, block, columns } }, 'block');
+	setRows(firstRow: number, lastRow: number): void {
+		if (this.own) this.setBlock({ ...this.own.mapping.block, firstRow, lastRow });
 	}
 
 	correct(cell: string, original: string, corrected: string, reason: string): void {
@@ -196,17 +216,16 @@ export class Desk {
 	}
 
 	/** Rows that the person said belong to a run of their own, or rows marked by hand where none was found. */
-	addTable(sheet: string, block: Block): string | null {
-		if (!this.input.canWrite) return null;
+	async addTable(sheet: string, block: Block): Promise<void> {
+		if (!this.input.canWrite) return;
 		const near = Object.values(this.work.tables).find((t) => t.mapping.sheet === sheet);
-		const headerRows = (this.own?.mapping ?? near?.mapping)?.headerRows ?? null;
+		const like = (this.own ?? near)?.mapping;
 		const key = nextKey(this.keys);
-		const table = this.drawn.propose({ key, sheet, block, headerRows });
-		if (!table) return null;
+		const table = await this.reading.draw({ key, sheet, block, headerRows: like ? headerRowsOf(like) : null });
+		if (!table) return;
 		const own: TableWork = { mapping: table.mapping, answers: {}, corrections: [], name: '' };
 		this.take(change(this.history, { tables: { ...this.work.tables, [key]: own } }));
 		this.key = key;
-		return key;
 	}
 
 	/** Saves what waits; false when it could not be. */
@@ -229,22 +248,6 @@ export class Desk {
 		this.conflict = null;
 		this.history = change(this.history, work);
 		setSaveState('idle');
-	}
-
-	private async send(work: SheetWork, version: number): Promise<SaveOutcome<Conflict>> {
-		const response = await fetch(`/api/v1/sheets/${this.input.sheetId}`, {
-			method: 'PATCH',
-			headers: { 'content-type': 'application/json', 'if-match': `"${version}"` },
-			body: JSON.stringify({ work })
-		});
-		const body = (await response.json()) as { version: number; code?: string; detail?: string; data?: Conflict };
-		if (response.ok) {
-			this.input.onsaved?.();
-			return { kind: 'saved', version: body.version };
-		}
-		if (body.code === 'version-changed' && body.data) return { kind: 'conflict', theirs: body.data };
-		const again = response.status >= 500 || response.status === 429;
-		return { kind: 'failed', message: body.detail ?? 'the service refused it', again };
 	}
 }
 

@@ -1,5 +1,5 @@
 /** From a press on an option to the answer that it stands for. */
-import type { Answer, Finding, FindingOption } from '$lib/schemas/sheet';
+import type { Answer, Answers, Finding, FindingOption } from '$lib/schemas/sheet';
 
 export const LEVEL_WORDS = { stop: 'Stop', ask: 'Ask', note: 'Note' } as const;
 
@@ -49,4 +49,20 @@ export function countWords(findings: Finding[]): string {
 	const open = (level: Finding['level']) => findings.filter((f) => f.level === level && f.open).length;
 	const notes = findings.filter((f) => f.level === 'note').length;
 	return `${open('stop')} stop · ${open('ask')} ask · ${notes} note`;
+}
+
+const sameAnswer = (a: Answer | undefined, b: Answer | undefined): boolean =>
+	a === b || (a !== undefined && b !== undefined && JSON.stringify(a) === JSON.stringify(b));
+
+/**
+ * Findings with the answers as they are given now: a press is seen at once, also while the reader still works out what
+ * follows from it. A problem with an older answer says nothing about the new one.
+ */
+export function withAnswers(findings: Finding[], answers: Answers): Finding[] {
+	return findings.map((finding) => {
+		const answer = Object.hasOwn(answers, finding.id) ? answers[finding.id] : undefined;
+		if (sameAnswer(finding.answer, answer)) return finding;
+		const { answer: _before, problem: _older, ...rest } = finding;
+		return answer ? { ...rest, answer } : rest;
+	});
 }

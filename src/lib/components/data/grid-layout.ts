@@ -55,12 +55,26 @@ export function layoutOf(workbook: GridWorkbook, sheet: GridSheet): GridLayout {
 	return { rows, columns, widths, lefts, height: rows.length * ROW_PX };
 }
 
+/** Place of the first entry of an increasing list that is at least `n`; the length of the list where there is none. */
+export function placeOf(list: number[], n: number): number {
+	let [low, high] = [0, list.length];
+	while (low < high) {
+		const middle = (low + high) >> 1;
+		if (list[middle] < n) low = middle + 1;
+		else high = middle;
+	}
+	return low;
+}
+
 /** Places of the rows to be drawn, with a few beyond the edge. */
 export function rowsInSight(layout: GridLayout, scrollTop: number, height: number, spare = 8): [number, number] {
 	const first = Math.max(0, Math.floor(scrollTop / ROW_PX) - spare);
 	const last = Math.min(layout.rows.length, Math.ceil((scrollTop + height) / ROW_PX) + spare);
 	return [first, last];
 }
+
+/** As many lines as are ever drawn at once: a line that leaves on one side comes back on the other with another row. */
+export const linesDrawn = (height: number, spare = 8): number => Math.ceil(height / ROW_PX) + 2 * spare + 2;
 
 export interface Frame {
 	top: number;
@@ -71,18 +85,14 @@ export interface Frame {
 
 /** The outline of a block, in px from the first row's and the sheet's corner; null where none of it is drawn. */
 export function frameOf(layout: GridLayout, block: Block): Frame | null {
-	const inside = layout.rows.filter((r) => r >= block.firstRow && r <= block.lastRow);
-	const columns = layout.columns
-		.map((c, i) => ({ c, i }))
-		.filter(({ c }) => c >= block.firstColumn && c <= block.lastColumn);
-	const first = columns[0];
-	const last = columns.at(-1);
-	if (inside.length === 0 || !first || !last) return null;
-	const left = layout.lefts[first.i];
+	const { rows, columns, lefts } = layout;
+	const [top, bottom] = [placeOf(rows, block.firstRow), placeOf(rows, block.lastRow + 1)];
+	const [first, end] = [placeOf(columns, block.firstColumn), placeOf(columns, block.lastColumn + 1)];
+	if (bottom <= top || end <= first) return null;
 	return {
-		top: layout.rows.indexOf(inside[0]) * ROW_PX,
-		left,
-		width: layout.lefts[last.i + 1] - left,
-		height: inside.length * ROW_PX
+		top: top * ROW_PX,
+		left: lefts[first],
+		width: lefts[end] - lefts[first],
+		height: (bottom - top) * ROW_PX
 	};
 }

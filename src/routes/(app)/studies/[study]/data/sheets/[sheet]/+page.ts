@@ -1,0 +1,9 @@
+import { browser } from '$app/environment';
+import { readingOf } from '$lib/components/data/reading-text';
+import type { PageLoadEvent } from './$types';
+
+/** The grid comes beside the record, and only to the page: nobody waits for it before something is in sight. */
+export const load = ({ data, params }: PageLoadEvent) => ({
+	...data,
+	reading: browser ? { of: readingOf(params.study, params.sheet) } : null
+});
