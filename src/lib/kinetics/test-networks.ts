@@ -2,8 +2,8 @@
 import type { Network } from './types';
 
 /**
- * Every kind of law at once: A ⇌ B through its equilibrium with X in excess, B → 2 C, C → loss in Eyring's form, and A ⇌ D
- * with a reverse law of its own in Y.
+ * Every kind of law at once: A ⇌ B through its equilibrium with X in excess, B → 2 C, C → loss in Eyring's form, A ⇌ D
+ * with a reverse law of its own in Y, and D → loss.
  */
 export const everyLaw: Network = {
 	species: [...'ABCD'].map((id) => ({ id, name: id })),
@@ -56,6 +56,13 @@ export const everyLaw: Network = {
 				energyJPerMol: 120_000,
 				excess: [{ species: 'Y', order: 0.5 }]
 			}
+		},
+		{
+			id: 's5',
+			reactant: 'D',
+			products: [],
+			forward: { form: 'arrhenius', kRefPerS: 4e-5, energyJPerMol: 70_000, excess: [] },
+			reverse: null
 		}
 	]
 };
