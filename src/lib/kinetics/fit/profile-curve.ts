@@ -48,7 +48,7 @@ export function profileCurves(
 	if (uncertainty.s === null) return [];
 	const limit = studentQuantile(0.5 + confidence / 2, uncertainty.degreesOfFreedom);
 	const box = searchBox(problem);
-	const best = { x, ssr: report.weightedSsr } as ConstructorParameters<typeof Profiler>[0]['best'];
+	const best = { x, ssr: report.weightedSsr };
 	return problem.free.flatMap((slot, j): ProfileCurve[] => {
 		const error = uncertainty.errors[j];
 		if (!Number.isFinite(error) || error <= 0) return [];
@@ -68,7 +68,7 @@ export function profileCurves(
 			for (let k = 0; k < 4 * STEPS; k++) {
 				const next = at + sense * step;
 				if (next < box.lower[j] || next > box.upper[j] || Math.abs(next - x[j]) > FARTHEST * error) break;
-				const tau = profiler.tau(j, next, at);
+				const tau = profiler.lowestTau(j, next, at);
 				points.push({ value: natural(slot, next), tau: sense * tau });
 				if (tau > BEYOND * limit || profiler.better) break;
 				at = next;

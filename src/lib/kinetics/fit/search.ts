@@ -6,7 +6,7 @@
  */
 import { FitCancelled } from './cancelled';
 import type { KineticModel } from './model';
-import { LeastSquaresWorkspace, type LeastSquaresResult } from './least-squares';
+import { LeastSquaresWorkspace, type LeastSquaresOptions, type LeastSquaresResult } from './least-squares';
 import { leastSquares } from './levenberg-marquardt';
 import type { SearchBox } from './starts';
 
@@ -68,12 +68,7 @@ export function searchMinima(
 	found.sort((a, b) => a.result.ssr - b.result.ssr);
 	const minima: Minimum[] = [];
 	for (const candidate of found.slice(0, 12)) {
-		const fine = leastSquares(
-			model,
-			candidate.result.x,
-			{ ...common, maxEvaluations: 400, factor: 10, polish: 6 },
-			workspace
-		);
+		const fine = refined(model, candidate.result.x, common, workspace);
 		evaluations += fine.evaluations;
 		if (fine.status === 'cancelled') throw new FitCancelled();
 		const same = minima.find((m) => sameMinimum(model, m.result, fine, box));
@@ -85,6 +80,35 @@ export function searchMinima(
 	}
 	minima.sort((a, b) => a.result.ssr - b.result.ssr);
 	return { minima, startsRun: starts.length, startsConverged, evaluations };
+}
+
+/** Evaluations of one refinement, and how often it is taken up again where they run out. */
+const REFINING = 400;
+const TAKEN_UP = 3;
+/** Reduction within a whole refinement, relative, below which a flat valley counts as its own floor. */
+const FLAT = 1e-8;
+
+/**
+ * To the last digits. In a flat valley (a direction that the data hardly show) the trust region, whose scale remembers the
+ * steep ground it came over, creeps: it is taken up afresh there; and where that gains nothing any more, that is the minimum.
+ */
+function refined(
+	model: KineticModel,
+	start: ArrayLike<number>,
+	common: LeastSquaresOptions,
+	workspace: LeastSquaresWorkspace
+): LeastSquaresResult {
+	const options = { ...common, maxEvaluations: REFINING, factor: 10, polish: 6 };
+	let result = leastSquares(model, start, options, workspace);
+	let { evaluations } = result;
+	for (let k = 0; k < TAKEN_UP && result.status === 'evaluations'; k++) {
+		const before = result.ssr;
+		result = leastSquares(model, result.x, options, workspace);
+		evaluations += result.evaluations;
+		if (result.status === 'evaluations' && before - result.ssr <= FLAT * before)
+			result = { ...result, status: 'reduction', converged: true };
+	}
+	return { ...result, evaluations };
 }
 
 function gather(
