@@ -1,3 +1,4 @@
+import { columnLetter } from '$lib/assay/grid';
 import { unitText } from '$lib/client/numbers';
 import { isFitted, type Fittable, type Quantity } from '$lib/schemas/quantity';
 import type { AssayValue } from '$lib/schemas/run';
@@ -9,6 +10,10 @@ export function fittableText(f: Fittable): string {
 	if (!isFitted(f)) return quantityText(f);
 	return f.guess ? `to be fitted, from ${quantityText(f.guess)}` : 'to be fitted';
 }
+
+/** "row 9", or "column D" of a sheet whose times run across. */
+export const sourceWords = (source: { row: number; column?: number }): string =>
+	source.column ? `column ${columnLetter(source.column)}` : `row ${source.row}`;
 
 export function valueText(value: AssayValue | undefined): string {
 	if (value === null || value === undefined) return '–';

@@ -5,6 +5,10 @@ export interface Scale {
 	ticks: number[];
 }
 
+/** Lowest and highest; a list may be longer than a call can have arguments. */
+const extent = (values: number[]): [number, number] =>
+	values.reduce(([low, high], v) => [Math.min(low, v), Math.max(high, v)], [Infinity, -Infinity] as [number, number]);
+
 const tidy = (n: number): number => Number(n.toPrecision(10));
 
 function stepFor(span: number, most: number): number {
@@ -16,7 +20,7 @@ function stepFor(span: number, most: number): number {
 /** Round limits around the values, at least `least` apart, with about `most` steps between them. */
 export function niceScale(values: number[], least: number, most = 4): Scale {
 	const finite = values.filter((v) => Number.isFinite(v));
-	let [low, high] = finite.length ? [Math.min(...finite), Math.max(...finite)] : [0, 1];
+	let [low, high] = finite.length ? extent(finite) : [0, 1];
 	if (high - low < least) {
 		const middle = (low + high) / 2;
 		[low, high] = [middle - least / 2, middle + least / 2];
@@ -31,7 +35,7 @@ export function niceScale(values: number[], least: number, most = 4): Scale {
 /** A little more room at both ends, so that no point lies on the rim. */
 export function padded(values: number[]): number[] {
 	if (values.length === 0) return values;
-	const [low, high] = [Math.min(...values), Math.max(...values)];
+	const [low, high] = extent(values);
 	const room = 0.06 * (high - low);
 	return [low - room, high + room];
 }
