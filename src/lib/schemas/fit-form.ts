@@ -51,12 +51,16 @@ export const fitForm = z.object({
 	schemeId: z.uuid('Choose a scheme.'),
 	runIds: z.array(z.uuid()).min(1, 'Choose at least one run.').max(100),
 	energies: z.enum(['missing', 'all', 'scheme']).default('missing'),
+	reference: z.enum(['auto', 'scheme', 'centre']).default('auto'),
 	charges: checkbox,
 	timeZero: checkbox,
 	weighting: z.enum(['constant', 'proportional', 'combined', 'replicates']).default('constant'),
 	/** Parts a and b of the combined error model for each column. */
 	errors: fromJson(z.record(z.string(), errorParts).default({})),
 	parameters: fromJson(parameterSettings.default({})),
+	/** Shared ids that get a value of their own in each run. */
+	local: fromJson(z.array(z.string().max(120)).max(100).default([])),
+	criterion: z.enum(['least squares', 'determinant']).default('least squares'),
 	timeZeroRow: z.enum(['as charged', 'use', 'leave']).default('as charged'),
 	confidence: z.coerce
 		.number({ error: 'A percentage is expected here.' })
@@ -96,6 +100,9 @@ export function optionsOf(form: FitForm): FitOptions {
 	return fitOptions.parse({
 		weighting: { model, ...(model === 'combined' ? { perChannel: errors } : {}) },
 		...parameterOptions(form.parameters),
+		// Left out where nobody asked, so that equal requests stay equal.
+		...(form.local.length ? { local: form.local } : {}),
+		...(form.criterion === 'determinant' ? { criterion: form.criterion } : {}),
 		starts: form.starts,
 		seed: form.seed,
 		confidenceLevel: form.confidence / 100,
@@ -106,11 +113,14 @@ export function optionsOf(form: FitForm): FitOptions {
 const FIELDS = [
 	'schemeId',
 	'energies',
+	'reference',
 	'charges',
 	'timeZero',
 	'weighting',
 	'errors',
 	'parameters',
+	'local',
+	'criterion',
 	'timeZeroRow',
 	'confidence',
 	'starts',

@@ -48,13 +48,22 @@ describe('residual plots', () => {
 		]);
 		const { points, legend } = residualPlot(found, 'time', context);
 		expect(points.map((p) => p.large)).toEqual([false, true]);
-		expect(points[1]).toMatchObject({ x: 0.5, index: 4, href: '/r2/4' });
+		expect(points[1]).toMatchObject({ x: 0.5, index: 4, href: '/r2/5' });
 		expect(points[1].words).toBe('B, Run 2, 0.5 h: studentised residual −3.4');
 		expect(legend).toEqual([
 			{ label: 'A', index: 0 },
 			{ label: 'B', index: 4 }
 		]);
 		expect(largeRows(found).map((r) => r.index)).toEqual([4]);
+	});
+
+	it('lead to the row of the sheet that the page of the run shows', () => {
+		const [first, second] = context.request.runs;
+		const values = { A: 0.4, B: 0.1 };
+		const at = { time: 1, values, source: { sheet: 'Run 2', row: 17 } };
+		const request = { ...context.request, runs: [first, { ...second, timepoints: [at] }] };
+		const found = report([residual({ run: 'r2', studentised: 3.2 })]);
+		expect(residualPlot(found, 'time', { ...context, request }).points[0].href).toBe('/r2/17');
 	});
 
 	it('put runs in different time units on one axis', () => {

@@ -39,8 +39,14 @@ export interface ResidualPlotData {
 export interface DiagnosticContext {
 	request: FitRequest;
 	runNames: Record<string, string>;
-	/** Page of a run's row; null where there is none. */
+	/** Page of a run's row (as `sheetRow` names it); null where there is none. */
 	hrefOf: (run: string, row: number) => string | null;
+}
+
+/** The row of the sheet that a value came from, as the run's page shows it; counted from one where no sheet is behind it. */
+export function sheetRow(request: FitRequest, run: string, index: number): number {
+	const at = request.runs.findIndex((r, i) => (r.id ?? `r${i + 1}`) === run);
+	return request.runs[at]?.timepoints[index]?.source?.row ?? index + 1;
 }
 
 interface Row extends FitResidual {
@@ -118,7 +124,7 @@ export function residualPlot(
 			index: slots.get(r.channel) ?? 0,
 			large: Math.abs(r.studentised) > LARGE,
 			words: `${label(r.channel)}, ${runNames[r.run] ?? r.run}, ${plain(r.time)} ${r.timeUnit}: studentised residual ${significant(r.studentised, 2)}`,
-			href: hrefOf(r.run, r.index)
+			href: hrefOf(r.run, sheetRow(request, r.run, r.index))
 		})),
 		x: axisOf(how, rows, request),
 		categories:

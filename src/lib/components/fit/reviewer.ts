@@ -32,7 +32,9 @@ function lackOfFit(report: FitReport): ReviewerRow {
 		label: 'Lack of fit',
 		value: l
 			? `F ${l.f.toFixed(1)} against replicates (critical ${l.critical.toFixed(1)})`
-			: 'cannot be tested: no replicate samples',
+			: report.criterion === 'determinant'
+				? 'cannot be tested by the determinant criterion'
+				: 'cannot be tested: no replicate samples',
 		ask: 'Is the scheme off by more than the scatter between replicate samples?'
 	};
 }

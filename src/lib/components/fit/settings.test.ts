@@ -1,5 +1,15 @@
 import { describe, expect, it } from 'vitest';
-import { changed, forwardOf, problemOf, rowOf, tieTargets, without, type PlannedRow } from './settings';
+import {
+	changed,
+	forwardOf,
+	problemOf,
+	rowOf,
+	rowsOf,
+	settingsWithout,
+	tieTargets,
+	without,
+	type PlannedRow
+} from './settings';
 
 const planned = (over: Partial<PlannedRow> = {}): PlannedRow => ({
 	id: 's2.reverse.kRef',
@@ -34,6 +44,30 @@ describe('the parameter table', () => {
 			value: { value: 0.2, unit: '1/h' },
 			to: 's2.forward.kRef',
 			factor: 0.32
+		});
+	});
+
+	it('offers the choice "one for each run" once a constant, at its first row', () => {
+		const shared = planned({ id: 's1.forward.kRef', mayBeLocal: true });
+		expect(rowsOf([shared, planned()], {}).map((r) => r.scope)).toEqual(['s1.forward.kRef', null]);
+		const own = ['r1', 'r2'].map((run) =>
+			planned({ id: `${run}.s1.forward.k`, localOf: 's1.forward.kRef', mayBeLocal: true })
+		);
+		expect(rowsOf(own, {}).map((r) => r.scope)).toEqual(['s1.forward.kRef', null]);
+	});
+
+	it('drops what was said of a constant when its scope changes, but keeps a response factor opened', () => {
+		const rows = rowsOf([planned({ id: 'r1.s1.forward.k', localOf: 's1.forward.kRef' })], {});
+		const settings = {
+			's1.forward.kRef': { state: 'fixed' as const },
+			'r1.s1.forward.k': { state: 'fixed' as const },
+			'B.responseFactor': { state: 'fitted' as const, upper: { value: 9, unit: '1' } }
+		};
+		expect(settingsWithout(settings, rows, 's1.forward.kRef')).toEqual({
+			'B.responseFactor': settings['B.responseFactor']
+		});
+		expect(settingsWithout(settings, rows, 'B.responseFactor')['B.responseFactor']).toEqual({
+			state: 'fitted'
 		});
 	});
 

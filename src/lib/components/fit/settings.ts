@@ -10,6 +10,10 @@ export interface PlannedRow {
 	tiedTo: string | null;
 	factor: number | null;
 	unit: string;
+	/** The shared id that it stands in for, where each run has its own. */
+	localOf?: string | null;
+	/** Whether each run can have a value of its own. */
+	mayBeLocal?: boolean;
 }
 
 export interface ParameterRow {
@@ -24,6 +28,9 @@ export interface ParameterRow {
 	factor: number | null;
 	/** The person said something of it. */
 	own: boolean;
+	localOf: string | null;
+	/** Id under which it is chosen whether each run has its own; null where that is no choice, or stands at an earlier row. */
+	scope: string | null;
 }
 
 export function rowOf(planned: PlannedRow, settings: ParameterSettings): ParameterRow {
@@ -38,8 +45,43 @@ export function rowOf(planned: PlannedRow, settings: ParameterSettings): Paramet
 		upper: own?.upper?.value ?? null,
 		to: own?.to ?? planned.tiedTo,
 		factor: own?.factor ?? planned.factor,
-		own: own !== undefined
+		own: own !== undefined,
+		localOf: planned.localOf ?? null,
+		scope: planned.mayBeLocal ? (planned.localOf ?? planned.id) : null
 	};
+}
+
+/** Rows of the table; of constants that each run has for itself the first carries the choice for all. */
+export function rowsOf(planned: PlannedRow[], settings: ParameterSettings): ParameterRow[] {
+	const offered = new Set<string>();
+	return planned.map((p) => {
+		const row = rowOf(p, settings);
+		if (row.scope === null || !offered.has(row.scope)) {
+			if (row.scope) offered.add(row.scope);
+			return row;
+		}
+		return { ...row, scope: null };
+	});
+}
+
+/** What was said of a shared parameter no longer holds when each run has its own, and the other way round. */
+export function settingsWithout(
+	settings: ParameterSettings,
+	rows: readonly ParameterRow[],
+	shared: string
+): ParameterSettings {
+	const gone = new Set([shared, ...rows.filter((r) => r.localOf === shared).map((r) => r.id)]);
+	const opened = settings[shared]?.state === 'fitted' && /\.responseFactor$/.test(shared);
+	return Object.fromEntries(
+		Object.entries(settings).flatMap(([id, setting]) =>
+			!gone.has(id)
+				? [[id, setting]]
+				: // A response factor stays opened; only its bounds fall away.
+					id === shared && opened
+					? [[id, { state: 'fitted' as const, ...(setting.value ? { value: setting.value } : {}) }]]
+					: []
+		)
+	);
 }
 
 /** Settings after one change to a row; quantities carry the row's unit. */

@@ -71,4 +71,13 @@ describe('what changed since the fit before', () => {
 		]);
 		expect(changesSince(after, fit())).toContain('k₋₁ no longer held fixed');
 	});
+
+	it('names constants that each run has for itself, and another criterion', () => {
+		const after = fit({ request: request({ local: ['s1.forward.kRef'], criterion: 'determinant' }) });
+		expect(changesSince(fit(), after)).toEqual([
+			'k₁ of its own in each run',
+			'determinant criterion in place of least squares'
+		]);
+		expect(changesSince(after, fit())).toEqual(['k₁ one for all runs again', 'least squares again']);
+	});
 });

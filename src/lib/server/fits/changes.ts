@@ -74,6 +74,8 @@ function parameterChanges(before: ComparableFit, after: ComparableFit): string[]
 		[without(was.fixed, is.fixed), 'no longer held fixed'],
 		[without(tiedIs, tiedWas), 'tied'],
 		[without(tiedWas, tiedIs), 'no longer tied'],
+		[without(is.local ?? [], was.local ?? []), 'of its own in each run'],
+		[without(was.local ?? [], is.local ?? []), 'one for all runs again'],
 		[without(openIs, openWas), 'opened for fitting'],
 		[without(openWas, openIs), 'no longer fitted']
 	];
@@ -89,6 +91,11 @@ function optionChanges(before: ComparableFit, after: ComparableFit): string[] {
 		changes.push(`${is.weighting.model} error model in place of ${was.weighting.model}`);
 	else if (JSON.stringify(was.weighting) !== JSON.stringify(is.weighting))
 		changes.push('other parts of the error model');
+	const [ruleWas, ruleIs] = [was, is].map((o) => o.criterion ?? 'least squares');
+	if (ruleWas !== ruleIs)
+		changes.push(
+			ruleIs === 'determinant' ? 'determinant criterion in place of least squares' : 'least squares again'
+		);
 	if (was.useTimeZeroRow !== is.useTimeZeroRow)
 		changes.push(
 			is.useTimeZeroRow === undefined

@@ -5,6 +5,7 @@ import type { RunContent } from '$lib/schemas/run';
 import type { SchemeContent } from '$lib/schemas/scheme';
 import { checkNetwork } from '$lib/kinetics/checks';
 import { planIssues } from '$lib/kinetics/fit/checks';
+import { mayBeLocal } from '$lib/kinetics/fit/local-slots';
 import { compileProblem } from '$lib/kinetics/fit/problem';
 import { toReported, type Slot } from '$lib/kinetics/fit/slots';
 import { toNetwork } from '$lib/kinetics/from-scheme';
@@ -18,6 +19,7 @@ import { currentRevisions, type RunWithRevision } from '../runs/find';
 import { findScheme, findStudy } from '../studies/find';
 import { newestVersions } from '../studies/scheme-versions';
 import { unopened, withParameterSettings } from './parameter-settings';
+import type { ReferenceChoice } from './reference';
 import { buildRequest, type EnergiesChoice, type OpenedQuantities } from './request';
 
 export interface PlanFitInput {
@@ -28,6 +30,8 @@ export interface PlanFitInput {
 	options?: unknown;
 	/** Which activation energies are fitted when the runs differ in temperature; those missing, unless said otherwise. */
 	energies?: EnergiesChoice;
+	/** Reference temperature of a fit over several temperatures. */
+	reference?: ReferenceChoice;
 	/** Charges and time zero, fitted where asked for. */
 	opened?: OpenedQuantities;
 	/** Starting and fixed values of single parameters, and what is opened for fitting, by parameter id. */
@@ -44,6 +48,10 @@ export interface PlannedParameter {
 	/** Factor of the tie. */
 	factor: number | null;
 	unit: string;
+	/** The shared id that it stands in for, where it is local to a run. */
+	localOf: string | null;
+	/** Whether each run can have a value of its own. */
+	mayBeLocal: boolean;
 }
 
 export interface PlannedRun {
@@ -124,12 +132,21 @@ const planned = (slot: Slot): PlannedParameter => ({
 	start: Number.isFinite(slot.value) ? { value: toReported(slot, slot.value), unit: slot.unit } : null,
 	tiedTo: slot.tie?.to ?? null,
 	factor: slot.tie?.factor ?? null,
-	unit: slot.unit
+	unit: slot.unit,
+	localOf: slot.localOf,
+	mayBeLocal: slot.localOf !== null || (slot.run === null && mayBeLocal(slot))
 });
 
 function availableParameters(slots: Slot[], request: FitRequest): PlannedParameter[] {
 	const there = new Set(slots.map((slot) => slot.id));
-	const closed = { state: 'fixed' as const, start: null, tiedTo: null, factor: null };
+	const closed = {
+		state: 'fixed' as const,
+		start: null,
+		tiedTo: null,
+		factor: null,
+		localOf: null,
+		mayBeLocal: false
+	};
 	return [
 		...slots.filter((slot) => !isListed(slot)).map(planned),
 		...unopened(request)
@@ -185,7 +202,8 @@ export async function makePlan(actor: Actor, study: Study, input: PlanFitInput, 
 		chosen.map(({ run, revision }) => ({ number: run.number, content: revision.content })),
 		options,
 		input.energies,
-		input.opened
+		input.opened,
+		input.reference
 	);
 	const runs = chosen.map(plannedRun);
 	const request = withParameterSettings(built.request, input.settings ?? {});

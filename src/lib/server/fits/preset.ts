@@ -4,6 +4,7 @@ import type { FitForm, ParameterSetting, ParameterSettings } from '$lib/schemas/
 import { compileProblem } from '$lib/kinetics/fit/problem';
 import { toReported, type Slot } from '$lib/kinetics/fit/slots';
 import type { FitView } from './read-fit';
+import { centreOf, fitsAnEnergy, type ReferenceChoice } from './reference';
 
 export type FitPreset = Pick<
 	FitForm,
@@ -11,7 +12,10 @@ export type FitPreset = Pick<
 	| 'runIds'
 	| 'weighting'
 	| 'errors'
+	| 'reference'
 	| 'parameters'
+	| 'local'
+	| 'criterion'
 	| 'timeZeroRow'
 	| 'confidence'
 	| 'starts'
@@ -20,6 +24,10 @@ export type FitPreset = Pick<
 
 /** Opened by nobody unless somebody asked: has to be asked for again. */
 const OPENED = new Set<Slot['kind']>(['amount', 'offset', 'response', 'energy', 'enthalpy']);
+
+/** A response factor of each run is still opened under the id that all runs share. */
+const openedAs = (slot: Slot): string =>
+	slot.localOf !== null && slot.kind === 'response' ? slot.localOf : slot.id;
 
 function settingOf(slot: Slot, options: FitRequest['options']): ParameterSetting | null {
 	const value = Number.isFinite(slot.value)
@@ -39,9 +47,16 @@ export function settingsOf(request: FitRequest): ParameterSettings {
 	return Object.fromEntries(
 		[...slots.values()].flatMap((slot) => {
 			const setting = settingOf(slot, request.options);
-			return setting ? [[slot.id, setting]] : [];
+			return setting ? [[setting.state === 'fitted' ? openedAs(slot) : slot.id, setting]] : [];
 		})
 	);
+}
+
+/** Values that a person typed hold at the reference temperature of that fit: the next one keeps it. */
+function referenceOf(request: FitRequest): ReferenceChoice {
+	if (!fitsAnEnergy(request)) return 'auto';
+	const { value, unit } = request.referenceTemperature;
+	return unit === 'degC' && value === centreOf(request.runs) ? 'centre' : 'scheme';
 }
 
 export function presetOf(fit: Pick<FitView, 'request' | 'scheme' | 'runs'>): FitPreset {
@@ -54,9 +69,12 @@ export function presetOf(fit: Pick<FitView, 'request' | 'scheme' | 'runs'>): Fit
 		schemeId: fit.scheme.id,
 		runIds: fit.runs.map((r) => r.id),
 		energies: 'missing',
+		reference: referenceOf(fit.request),
 		weighting: model,
 		errors: { ...shared, ...perChannel },
 		parameters: settingsOf(fit.request),
+		local: options.local ?? [],
+		criterion: options.criterion ?? 'least squares',
 		timeZeroRow: useTimeZeroRow === undefined ? 'as charged' : useTimeZeroRow ? 'use' : 'leave',
 		confidence: Number((100 * options.confidenceLevel).toFixed(4)),
 		starts: options.starts,

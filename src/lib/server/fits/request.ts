@@ -9,6 +9,7 @@ import {
 	type StepContent
 } from '$lib/schemas/scheme';
 import { toSi } from '$lib/kinetics/units';
+import { atReference, type ReferenceChoice } from './reference';
 
 /** Which activation energies a fit is to find: those that the scheme leaves out, every one, or none. */
 export type EnergiesChoice = 'missing' | 'all' | 'scheme';
@@ -203,7 +204,8 @@ export function buildRequest(
 	runs: RequestRun[],
 	options: FitOptions,
 	energies: EnergiesChoice = 'missing',
-	opened: OpenedQuantities = {}
+	opened: OpenedQuantities = {},
+	reference: ReferenceChoice = 'auto'
 ): BuiltRequest {
 	const issues: FitFinding[] = [];
 	const known = new Set(scheme.species.map((s) => s.id));
@@ -214,7 +216,7 @@ export function buildRequest(
 	const { species, steps, referenceTemperature } =
 		at.highK - at.lowK <= SAME_TEMPERATURE_K
 			? atOneTemperature(scheme, at, issues)
-			: overTemperatures(scheme, at, energies, issues);
+			: atReference(overTemperatures(scheme, at, energies, issues), contents, reference, issues);
 	noteIdleLog(contents, steps, issues);
 	return { request: { species, steps, referenceTemperature, runs: contents, options }, issues };
 }

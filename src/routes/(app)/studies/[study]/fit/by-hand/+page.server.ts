@@ -27,6 +27,7 @@ export const load = page(async (event: PageServerLoadEvent) => {
 		schemeId,
 		runIds,
 		settings: preset?.parameters,
+		reference: preset?.reference,
 		options: begun?.request.options
 	});
 	const estimates = Object.fromEntries((begun?.report?.parameters ?? []).map((p) => [p.id, p.estimate]));
