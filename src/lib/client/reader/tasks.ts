@@ -106,7 +106,7 @@ export class Examiner {
 		this.workbook = JSON.parse(workbookJson) as GridWorkbook;
 		[this.species, this.saved] = [species, saved];
 		this.checks = { ...CHECKS, ...checks };
-		return propose(this.workbook, species, { saved });
+		return propose(this.workbook, species, { saved, checks });
 	}
 
 	private settle(decided: Decided): Settled {
@@ -116,6 +116,9 @@ export class Examiner {
 	}
 
 	private draw({ key, sheet, block, headerRows }: DrawnPlace): TableProposal | null {
-		return proposeBlock(this.book, this.species, sheet, block, headerRows, key, { saved: this.saved });
+		return proposeBlock(this.book, this.species, sheet, block, headerRows, key, {
+			saved: this.saved,
+			checks: this.checks
+		});
 	}
 }

@@ -5,7 +5,7 @@
 import { untrack } from 'svelte';
 import { Autosave } from '$lib/client/autosave';
 import { startReader, type Reader } from '$lib/client/reader/reader';
-import type { DrawnPlace } from '$lib/client/reader/tasks';
+import type { DrawnPlace, Opening } from '$lib/client/reader/tasks';
 import { setSaveState } from '$lib/client/save-state.svelte';
 import { change, redo, startHistory, undo, type History } from '$lib/client/undo';
 import type { SpeciesContent } from '$lib/schemas/scheme';
@@ -36,6 +36,8 @@ export interface DeskInput {
 	work: SheetWork;
 	species: SpeciesContent[];
 	saved: SavedMapping[];
+	/** Limits of the site or the group. */
+	checks: Opening['checks'];
 	/** Keys of the tables that are runs already. */
 	confirmed: string[];
 	canWrite: boolean;
@@ -64,9 +66,9 @@ export class Desk {
 		private readonly input: DeskInput,
 		reader: Reader = startReader()
 	) {
-		const { workbookJson, species, saved, confirmed } = input;
+		const { workbookJson, species, saved, checks, confirmed } = input;
 		this.history = startHistory(input.work);
-		this.reading = new Reading(reader, { workbookJson, species, saved }, ({ tables }) => {
+		this.reading = new Reading(reader, { workbookJson, species, saved, checks }, ({ tables }) => {
 			this.key = tables.find((t) => !confirmed.includes(t.id))?.id ?? this.keys[0] ?? '';
 		});
 		this.autosave = new Autosave<SheetWork, WorkConflict>({

@@ -4,6 +4,7 @@ import { exclusionSchema } from '$lib/schemas/run';
 import { AppError } from '$lib/server/errors';
 import { requireActor } from '$lib/server/hooks/actor';
 import { page } from '$lib/server/http';
+import { massBalancePercentOf } from '$lib/server/people/group-limits';
 import { chooseTemperature } from '$lib/server/runs/choose-temperature';
 import { excludePoint } from '$lib/server/runs/exclude-point';
 import { readRun } from '$lib/server/runs/read-run';
@@ -13,7 +14,7 @@ import type { PageServerLoadEvent, RequestEvent } from './$types';
 export const load = page(async (event: PageServerLoadEvent) => {
 	const run = await readRun(requireActor(event), event.params.run);
 	if (run.studyId !== event.params.study) error(404, 'There is no such run in this study.');
-	return { run };
+	return { run, balanceGap: await massBalancePercentOf(run.groupId) };
 });
 
 const place = z.object({
