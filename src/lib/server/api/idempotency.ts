@@ -1,5 +1,5 @@
 import { contentHash, sha256 } from '../audit/canonical';
-import { write } from '../database';
+import { withFirstWrite, write, type Tx } from '../database';
 import { IdempotencyKey } from '../database/models';
 import { AppError } from '../errors';
 import type { Actor } from '../policy';
@@ -21,6 +21,11 @@ function replay(found: IdempotencyKey, requestHash: string): Response {
 			'conflict',
 			'This Idempotency-Key was used for another request already. Send a new key with a new request.'
 		);
+	if (found.status === UNANSWERED)
+		throw new AppError(
+			'conflict',
+			'This request was carried out, but the service stopped before it could keep the answer. Look at what is there; send the request under a new key only if it is missing.'
+		);
 	const { body, location, etag } = found.body as { body: unknown; location?: string; etag?: string };
 	return Response.json(body, {
 		status: found.status,
@@ -33,19 +38,57 @@ function replay(found: IdempotencyKey, requestHash: string): Response {
 	});
 }
 
-async function remember(actor: Actor, key: string, requestHash: string, response: Response): Promise<void> {
-	if (response.status >= 300) return;
+/** The work is done, its answer is not kept yet: the service may stop between the two. */
+const UNANSWERED = 0;
+
+interface Keyed {
+	userId: string;
+	key: string;
+	requestHash: string;
+}
+
+/** Puts the key beside the first write of the work, so that a repeat after a crash cannot do it twice. */
+const reserve =
+	(keyed: Keyed) =>
+	async (tx: Tx): Promise<void> => {
+		await IdempotencyKey.create({ ...keyed, status: UNANSWERED, body: null }, { transaction: tx });
+	};
+
+async function keep(keyed: Keyed, response: Response): Promise<void> {
 	const body = {
 		body: (await response.clone().json()) as unknown,
 		location: response.headers.get('location') ?? undefined,
 		etag: response.headers.get('etag') ?? undefined
 	};
+	const { userId, key } = keyed;
+	const { status } = response;
+	await write(async (tx) => {
+		const [kept] = await IdempotencyKey.update({ status, body }, { where: { userId, key }, transaction: tx });
+		// Work that wrote nothing has left no key.
+		if (kept === 0) await IdempotencyKey.create({ ...keyed, status, body }, { transaction: tx });
+	});
+}
+
+/** What was refused may be sent again, corrected, under the same key. */
+async function release({ userId, key }: Keyed): Promise<void> {
 	await write((tx) =>
-		IdempotencyKey.create(
-			{ userId: actor.userId, key, requestHash, status: response.status, body },
-			{ transaction: tx }
-		)
+		IdempotencyKey.destroy({ where: { userId, key, status: UNANSWERED }, transaction: tx })
 	);
+}
+
+async function workOnce(keyed: Keyed, work: () => Promise<Response>): Promise<Response> {
+	const { userId, key, requestHash } = keyed;
+	const found = await IdempotencyKey.findOne({ where: { userId, key } });
+	if (found) return replay(found, requestHash);
+	let response: Response;
+	try {
+		response = await withFirstWrite(reserve(keyed), work);
+	} catch (caught) {
+		await release(keyed);
+		throw caught;
+	}
+	await (response.status < 300 ? keep(keyed, response) : release(keyed));
+	return response;
 }
 
 /**
@@ -66,13 +109,7 @@ export async function once(
 	const before = inWork.get(place) ?? Promise.resolve();
 	const mine = before
 		.catch(() => undefined)
-		.then(async () => {
-			const found = await IdempotencyKey.findOne({ where: { userId: actor.userId, key } });
-			if (found) return replay(found, requestHash);
-			const response = await work();
-			await remember(actor, key, requestHash, response);
-			return response;
-		});
+		.then(() => workOnce({ userId: actor.userId, key, requestHash }, work));
 	// Taken before anything is awaited, so that an equal request of the same moment finds it.
 	inWork.set(place, mine);
 	try {

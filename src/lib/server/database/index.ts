@@ -45,13 +45,35 @@ function prepareEveryConnection(sequelize: Sequelize): void {
 	};
 }
 
+/** What goes into the transaction of the first write within some work, for example a note that the work was done. */
+const beside = new AsyncLocalStorage<{ record: ((tx: Tx) => Promise<void>) | null }>();
+
+/** Runs the work; `record` is written in the same transaction as its first write, so that both are there or neither. */
+export function withFirstWrite<T>(record: (tx: Tx) => Promise<void>, work: () => Promise<T>): Promise<T> {
+	return beside.run({ record }, work);
+}
+
+/** The work of one write, and beside it what waits for the first one. */
+async function transact<T>(sequelize: Sequelize, work: (tx: Tx) => Promise<T>): Promise<T> {
+	const waiting = beside.getStore();
+	const record = waiting?.record;
+	if (!waiting || !record) return sequelize.transaction(work);
+	const result = await sequelize.transaction(async (tx) => {
+		const done = await work(tx);
+		await record(tx);
+		return done;
+	});
+	waiting.record = null;
+	return result;
+}
+
 /** One write at a time: SQLite has one writer, and waiting here leaves the thread pool to the readers. */
 function writeQueue(sequelize: Sequelize): Database['write'] {
 	const inside = new AsyncLocalStorage<true>();
 	let tail: Promise<unknown> = Promise.resolve();
 	return (work) => {
 		if (inside.getStore()) throw new Error('write() must not be nested: pass the transaction on instead.');
-		const run = () => inside.run(true, () => sequelize.transaction(work));
+		const run = () => inside.run(true, () => transact(sequelize, work));
 		const result = tail.then(run, run);
 		tail = result.catch(() => undefined);
 		return result;
