@@ -11,6 +11,9 @@
  * | w | `weights`, 1 everywhere for ordinary 1:1 steps |
  * | (−wᵀK_bb)_j / w_j | `exits[j]`: what leaves the component from species j, 1/s |
  *
+ * Where the coefficients alone settle it (no step-direction gives more weight than it takes, w carried along a spanning tree),
+ * no constant enters, so that constants may differ by any ratio. Otherwise w solves a linear system in the constants.
+ *
  * An irreducible −K_bb is an M-matrix exactly when such a w exists: A. Berman and R. J. Plemmons, Nonnegative Matrices in
  * the Mathematical Sciences, SIAM 1994, ch. 6.
  */
@@ -37,22 +40,80 @@ export function blockWeights(system: LinearSystem, parts: Components): BlockWeig
 		exits.set(outflow);
 		return { weights, exits, unit };
 	}
+	const byFlow = new Uint8Array(parts.blocks.length);
 	parts.blocks.forEach((block, b) => {
-		if (!unit[b]) solveWeights(system, parts, block, weights);
+		if (unit[b]) return;
+		if (treeWeights(system, parts, block, weights)) byFlow[b] = 1;
+		else solveWeights(system, parts, block, weights);
 	});
 	const internal = new Float64Array(n);
 	const leaving = leavingRates(system, parts);
 	for (const { from, to, rate, coefficient } of transfers)
 		if (parts.blockOf[from] === parts.blockOf[to])
 			internal[from] += (rate * coefficient * weights[to]) / weights[from];
+	const shortfall = shortfalls(system, parts, weights);
 	for (let j = 0; j < n; j++) {
-		if (unit[parts.blockOf[j]]) exits[j] = leaving[j];
+		const b = parts.blockOf[j];
+		if (unit[b]) exits[j] = leaving[j];
+		else if (byFlow[b]) exits[j] = leaving[j] + shortfall[j];
 		else {
 			const rest = outflow[j] - internal[j];
 			exits[j] = rest > EXIT_ROUNDING * outflow[j] ? rest : 0;
 		}
 	}
 	return { weights, exits, unit };
+}
+
+/** What a step-direction gives within its component, by key: total weight of its products over that of its reactant. */
+function kept({ transfers }: LinearSystem, parts: Components, weights: Float64Array): Map<number, number> {
+	const share = new Map<number, number>();
+	for (const t of transfers) {
+		if (parts.blockOf[t.from] !== parts.blockOf[t.to]) continue;
+		const key = flowKey(t);
+		share.set(key, (share.get(key) ?? 0) + (t.coefficient * weights[t.to]) / weights[t.from]);
+	}
+	return share;
+}
+
+/** Weight that leaves with step-directions that keep only a part of it within the component, 1/s of each species. */
+function shortfalls(system: LinearSystem, parts: Components, weights: Float64Array): Float64Array {
+	const out = new Float64Array(system.n);
+	const share = kept(system, parts, weights);
+	for (const flow of system.flows ?? []) {
+		const missing = 1 - (share.get(flowKey(flow)) ?? 1);
+		if (missing > EXIT_ROUNDING) out[flow.from] += flow.rate * missing;
+	}
+	return out;
+}
+
+/** Weights from the coefficients along a spanning tree; false where some step-direction gives more than it takes. */
+function treeWeights(
+	system: LinearSystem,
+	parts: Components,
+	block: Int32Array,
+	weights: Float64Array
+): boolean {
+	if (!system.flows) return false;
+	const own = parts.blockOf[block[0]];
+	const inside = system.transfers.filter((t) => parts.blockOf[t.from] === own && parts.blockOf[t.to] === own);
+	const found = new Map([[block[0], 1]]);
+	for (let grew = true; grew;) {
+		grew = false;
+		for (const { from, to, coefficient } of inside) {
+			const [a, b] = [found.get(from), found.get(to)];
+			if (a !== undefined && b === undefined) found.set(to, a / coefficient);
+			else if (a === undefined && b !== undefined) found.set(from, b * coefficient);
+			else continue;
+			grew = true;
+		}
+	}
+	const largest = Math.max(...found.values());
+	const trial = weights.slice();
+	found.forEach((weight, species) => (trial[species] = weight / largest));
+	const share = kept(system, parts, trial);
+	if (inside.some((t) => (share.get(flowKey(t)) ?? 0) > 1 + EXIT_ROUNDING)) return false;
+	weights.set(trial);
+	return true;
 }
 
 /** One number per step-direction. */

@@ -58,7 +58,8 @@ export function judge(
 	let top = 0;
 	for (const size of form.size) if (!(size <= top)) top = size;
 	const bound = top * ROUNDING;
-	const finite = space.usable && Number.isFinite(bound);
+	// A rate above zero is the rounding of a slow one beside fast ones in a general component: it would grow without limit.
+	const finite = space.usable && Number.isFinite(bound) && form.re.every((rate) => rate <= 0);
 	const bounded = finite && bound <= TOLERANCE * total && !space.kinds.includes('general');
 	if (bounded && startsRight(system, charge, form))
 		return {
@@ -77,7 +78,8 @@ export function judge(
 		exactAmplitudes
 	};
 	if (!finite) return { ...rejected, method: 'uniformisation', errorEstimate: PROPAGATOR_ERROR * sums };
-	const found = compare(form, charge, exact());
+	const late = space.kinds.includes('general') ? lateTimes(system) : [];
+	const found = compare(form, charge, exact(), late);
 	if (found.error <= TOLERANCE * total && found.own <= OWN_TOLERANCE)
 		return {
 			exactAmplitudes: false,
@@ -162,12 +164,12 @@ interface Comparison {
 	worstTimeS: number;
 }
 
-function compare(form: ClosedForm, charge: Float64Array, exact: Propagator): Comparison {
+function compare(form: ClosedForm, charge: Float64Array, exact: Propagator, late: number[]): Comparison {
 	const found: Comparison = { error: 0, own: 0, worstTimeS: 0 };
 	const phi = new Float64Array(form.width);
 	const truth = new Float64Array(form.n);
 	const own = ownSizes(form);
-	const times = checkTimes(form);
+	const times = [...checkTimes(form), ...late];
 	for (const timeS of times) {
 		basis(form, timeS, phi);
 		exact.apply(timeS, charge, truth);
@@ -183,6 +185,16 @@ function compare(form: ClosedForm, charge: Float64Array, exact: Propagator): Com
 		}
 	}
 	return found;
+}
+
+/**
+ * Times by which the slowest step has run, and long after: a slow mode of a general component may have been lost in rounding,
+ * and is then missing among the times of the modes themselves.
+ */
+function lateTimes({ transfers, flows }: LinearSystem): number[] {
+	let slowest = Infinity;
+	for (const { rate } of flows ?? transfers) if (rate > 0) slowest = Math.min(slowest, rate);
+	return [1, 1e3, 1e6, 1e9].map((factor) => factor / slowest).filter(Number.isFinite);
 }
 
 /** A tenth of, and once, each mode's time constant, and long after the slowest. */
