@@ -18,7 +18,7 @@ import { lnConstant, localProblem, startFrom, withEnergies } from './local-refit
 import { energyOf, hasLocalConstants } from './local-slots';
 import { KineticModel } from './model';
 import type { KineticProblem } from './problem';
-import { restoreFit } from './restore';
+import { requireLeastSquares, restoreFit } from './restore';
 import type { RunModel } from './run-model';
 import { searchMinima } from './search';
 import { fromReported, toReported, type Slot } from './slots';
@@ -71,8 +71,7 @@ export function arrheniusCheck(report: FitReport, request: FitRequest, hooks: Fi
 		throw new RangeError(
 			'The constants of this fit are local to each run already. Check a fit with shared ones.'
 		);
-	if (report.criterion === 'determinant')
-		throw new RangeError('This check rests on sums of squares. Ask it of a fit by least squares.');
+	requireLeastSquares(report, 'This check');
 	const { problem: shared, x } = restoreFit(report, request);
 	const ids = withEnergies(shared);
 	const temperatures = new Set(shared.runs.map((r) => r.temperatureK));

@@ -80,13 +80,14 @@ export function predictRestored(
 		.map((channel, c) => ({ channel, c }))
 		.filter(({ channel }) => !options.only || options.only.includes(channel.id.replace(/^species /, '')))
 		.map(({ channel, c }) =>
-			seriesOf(channel.id, c, { fitted, model, predictions, jacobian, run, confidence })
+			seriesOf(channel.id, c, { fitted, report, model, predictions, jacobian, run, confidence })
 		);
 	return { times, timeUnit: run.timeUnit, series, findings: rangeFindings(report, problem.runs[at], times) };
 }
 
 interface Pieces {
 	fitted: RestoredFit;
+	report: FitReport;
 	model: KineticModel;
 	predictions: Float64Array;
 	jacobian: Float64Array;
@@ -95,7 +96,7 @@ interface Pieces {
 }
 
 function seriesOf(id: string, c: number, pieces: Pieces): PredictedSeries {
-	const { fitted, model, predictions, jacobian, run, confidence } = pieces;
+	const { fitted, report, model, predictions, jacobian, run, confidence } = pieces;
 	const { active, spread, s, degreesOfFreedom } = fitted.uncertainty;
 	const isSpecies = id.startsWith('species ');
 	const name = isSpecies ? id.slice(8) : id;
@@ -116,12 +117,19 @@ function seriesOf(id: string, c: number, pieces: Pieces): PredictedSeries {
 		return [curve.map((y, k) => y - half[k]), curve.map((y, k) => y + half[k])];
 	};
 	const finite = variance.every(Number.isFinite);
-	const noise = (y: number) => (s * sigmaFor(fitted.problem, assay!, y)) ** 2;
+	const noise = (y: number) =>
+		responseVariance(report, assay!) ?? (s * sigmaFor(fitted.problem, assay!, y)) ** 2;
 	return {
 		...base,
 		confidence: finite ? band(() => 0) : null,
 		prediction: finite && assay !== undefined ? band(noise) : null
 	};
+}
+
+/** Variance of a new value where each response has its own (determinant criterion). */
+function responseVariance({ determinant }: FitReport, channel: string): number | null {
+	const at = determinant?.responses.indexOf(channel) ?? -1;
+	return at < 0 ? null : determinant!.residualCovariance[at][at];
 }
 
 function rangeFindings(report: FitReport, run: RunModel, times: number[]): FitFinding[] {

@@ -3,10 +3,12 @@
  */
 import type { FitFinding } from '../../schemas/fit';
 import type { KineticProblem } from './problem';
+import { responseIssues } from './response-rows';
 
 /** Issues of the data beside the parameters; level 'stop' where a fit would be meaningless. */
 export function planIssues(problem: KineticProblem): FitFinding[] {
-	return [...countIssues(problem), ...energyIssues(problem), ...unusedParameters(problem)];
+	const responses = problem.request.options.criterion === 'determinant' ? responseIssues(problem) : [];
+	return [...countIssues(problem), ...energyIssues(problem), ...unusedParameters(problem), ...responses];
 }
 
 function countIssues(problem: KineticProblem): FitFinding[] {

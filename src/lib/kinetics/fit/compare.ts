@@ -77,6 +77,10 @@ export function dataFingerprint(request: FitRequest): string {
  */
 export function compareSchemes(schemes: ComparedScheme[]): Comparison {
 	if (schemes.length < 2) throw new ComparisonError('Two or more schemes are needed for a comparison.');
+	if (schemes.some((s) => s.report.criterion === 'determinant'))
+		throw new ComparisonError(
+			'Schemes are compared by sums of squares; a fit by the determinant criterion has none of its own. Compare fits by least squares.'
+		);
 	enforceSameData(schemes);
 	const rows = schemes.map(row).sort((a, b) => (a.aicc ?? Infinity) - (b.aicc ?? Infinity));
 	const best = rows[0].aicc;

@@ -90,7 +90,12 @@ class Intervals {
 		const { s } = fitted.uncertainty;
 		const error = this.error(at.gapGradient, at.slope);
 		const profiled =
-			options.profiles !== false && error !== null && error > 0 && s !== null && s > 0
+			options.profiles !== false &&
+			report.criterion !== 'determinant' &&
+			error !== null &&
+			error > 0 &&
+			s !== null &&
+			s > 0
 				? new ConstrainedProfile(fitted, report.weightedSsr, s, curve, options.cancelled)
 				: null;
 		return {

@@ -9,6 +9,7 @@
 import type { FitFinding, FitReport, FitRequest } from '../../schemas/fit';
 import { watchOver } from './cancelled';
 import { structuralFindings, planIssues } from './checks';
+import { determinantReport } from './determinant-fit';
 import { identifiabilityFindings } from './identifiability';
 import type { LeastSquaresResult } from './least-squares';
 import { norm } from './linear-algebra';
@@ -64,7 +65,10 @@ export function fit(request: FitRequest, hooks: FitHooks = {}): FitReport {
 	const outcome = problem.free.length > 0 ? runSearch(model, box, request, hooks) : nothingToSearch(model);
 	outcome.minima = withoutPlateaus(outcome.minima, model.m);
 	if (outcome.minima.length === 0) throw new FitRequestError([noFiniteStart()]);
-	return report({ problem, model, box, outcome, early, hooks });
+	const context = { problem, model, box, outcome, early, hooks };
+	return request.options.criterion === 'determinant' && problem.free.length > 0
+		? determinantReport(context)
+		: report(context);
 }
 
 /**

@@ -14,7 +14,7 @@ import { fQuantile } from './distributions';
 import type { FitHooks } from './fit';
 import { LeastSquaresWorkspace } from './least-squares';
 import { leastSquares } from './levenberg-marquardt';
-import { restoreFit, type RestoredFit } from './restore';
+import { requireLeastSquares, restoreFit, type RestoredFit } from './restore';
 import { FitCancelled } from './search';
 import { toReported, type Slot } from './slots';
 import { searchBox, type SearchBox } from './starts';
@@ -41,6 +41,7 @@ export function jointRegion(
 	options: { confidence?: number; rays?: number } = {},
 	hooks: FitHooks = {}
 ): JointRegion {
+	requireLeastSquares(report, 'A joint region');
 	const fitted = restoreFit(report, request);
 	const pair = ids.map((id) => report.fittedIds.indexOf(id)) as [number, number];
 	const { covariance, degreesOfFreedom, errors } = fitted.uncertainty;

@@ -12,7 +12,7 @@ import type { FitReport, FitRequest } from '../../schemas/fit';
 import { studentQuantile } from './distributions';
 import type { FitHooks } from './fit';
 import { Profiler } from './profile';
-import { restoreFit } from './restore';
+import { requireLeastSquares, restoreFit } from './restore';
 import { toReported, type Slot } from './slots';
 import { searchBox } from './starts';
 
@@ -43,6 +43,7 @@ export function profileCurves(
 	confidence = 0.95,
 	hooks: FitHooks = {}
 ): ProfileCurve[] {
+	requireLeastSquares(report, 'The profile of a constant');
 	const fitted = restoreFit(report, request);
 	const { problem, model, uncertainty, x } = fitted;
 	if (uncertainty.s === null) return [];

@@ -14,7 +14,7 @@ import { KineticModel } from './model';
 import { compileProblem } from './problem';
 import { readSlots } from './read-slots';
 import { fromReported, runId, toReported, type Slot } from './slots';
-import { restoreFit } from './restore';
+import { requireLeastSquares, restoreFit } from './restore';
 import { FitCancelled, searchMinima } from './search';
 import { normalNumbers, uniformNumbers } from './sequence';
 import { searchBox } from './starts';
@@ -42,6 +42,7 @@ export interface RunInfluence {
 
 /** Fits again without each run in turn. A shift beyond two standard errors says that the result hangs on that run. */
 export function leaveOneRunOut(report: FitReport, request: FitRequest, hooks: FitHooks = {}): RunInfluence[] {
+	requireLeastSquares(report, 'Leaving out one run at a time');
 	if (request.runs.length < 2) return [];
 	const named = request.runs.map((run, i) => ({ ...run, id: runId(run, i) }));
 	return named.map((left, index) => {
@@ -116,6 +117,7 @@ export function bootstrap(
 	options: { draws?: number; seed?: number; confidence?: number } = {},
 	hooks: FitHooks = {}
 ): Bootstrap {
+	requireLeastSquares(report, 'Simulation of new data');
 	const { problem, model, x } = restoreFit(report, request);
 	const s = report.residualStandardError;
 	if (s === null) throw new RangeError('Without degrees of freedom there is no scatter to simulate from.');

@@ -10,6 +10,7 @@ import type { FitContext } from './fit';
 import type { LeastSquaresResult } from './least-squares';
 import { massBalance } from './mass-balance';
 import type { KineticProblem } from './problem';
+import type { ProfileInterval } from './profile';
 import { profiled } from './profiled';
 import { naturalOf, reportedParameters } from './reported-parameters';
 import type { SearchOutcome } from './search';
@@ -17,10 +18,28 @@ import { toReported } from './slots';
 import { aicc, bic, lackOfFit, lagOne, residualRows, residualSeries, runsTest } from './statistics';
 import { activeJacobian, type Uncertainty } from './uncertainty';
 
+/** What a fit by another criterion says otherwise. */
+export interface ReportChanges extends Partial<
+	Pick<FitReport, 'criterion' | 'determinant' | 'residualStandardError' | 'aicc' | 'bic' | 'lackOfFit'>
+> {
+	/** Distance of each alternative from the best, in units of AICc. */
+	deltas?: number[];
+}
+
 export function report(context: FitContext): FitReport {
+	const { u, profiles } = profiled(context);
+	return assembleReport(context, u, profiles);
+}
+
+/** Figures, residuals and findings of the best minimum, with its uncertainty. */
+export function assembleReport(
+	context: FitContext,
+	u: Uncertainty,
+	profiles: ProfileInterval[] | null,
+	{ deltas, ...changes }: ReportChanges = {}
+): FitReport {
 	const { problem, model, outcome, box } = context;
 	const { options } = problem.request;
-	const { u, profiles } = profiled(context);
 	const best = outcome.minima[0].result;
 	model.evaluate(best.x, new Float64Array(model.m), new Float64Array(model.m * model.p));
 	const m = problem.points.length;
@@ -46,8 +65,8 @@ export function report(context: FitContext): FitReport {
 		lackOfFit: lackOfFit(problem, best.ssr, n, options.confidenceLevel),
 		runsTest: runsTest(series),
 		lag1: lagOne(series),
-		alternatives: alternativesOf(problem, outcome),
-		residuals: residualRows(problem, model.predictions, leverage, u.s),
+		alternatives: alternativesOf(problem, outcome, deltas),
+		residuals: residualRows(problem, model.predictions, leverage, changes.determinant ? null : u.s),
 		singularValues: u.spread.singularValues,
 		massBalance: massBalance(problem, best.x, options.confidenceLevel),
 		findings: [],
@@ -57,7 +76,8 @@ export function report(context: FitContext): FitReport {
 		startsConverged: outcome.startsConverged,
 		engineVersion: ENGINE_VERSION,
 		seed: options.seed,
-		studied: studiedRange(problem, best.x)
+		studied: studiedRange(problem, best.x),
+		...changes
 	};
 	base.findings = collectFindings({
 		report: base,
@@ -88,17 +108,21 @@ function correlationOf(u: Uncertainty, p: number): number[][] {
 	return full;
 }
 
-function alternativesOf(problem: KineticProblem, outcome: SearchOutcome): FitReport['alternatives'] {
+function alternativesOf(
+	problem: KineticProblem,
+	outcome: SearchOutcome,
+	deltas?: number[]
+): FitReport['alternatives'] {
 	const best = outcome.minima[0].result.ssr;
 	const n = problem.counted;
-	return outcome.minima.slice(1).map(({ result, starts }) => ({
+	return outcome.minima.slice(1).map(({ result, starts }, k) => ({
 		parameters: Object.fromEntries(
 			problem.free.map((slot, j) => [slot.id, toReported(slot, naturalOf(slot, result.x[j]))])
 		),
 		weightedSsr: result.ssr,
 		starts,
 		// The same number of parameters on the same data: only the misfit differs.
-		deltaAicc: best > 0 ? n * Math.log(result.ssr / best) : Number.MAX_VALUE
+		deltaAicc: deltas ? deltas[k] : best > 0 ? n * Math.log(result.ssr / best) : Number.MAX_VALUE
 	}));
 }
 

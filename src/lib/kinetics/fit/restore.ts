@@ -5,7 +5,7 @@ import type { FitReport, FitRequest } from '../../schemas/fit';
 import { KineticModel } from './model';
 import { compileProblem, type KineticProblem } from './problem';
 import { fromReported, type Slot } from './slots';
-import { uncertainty, type Uncertainty } from './uncertainty';
+import { uncertainty, uncertaintyFromCovariance, type Uncertainty } from './uncertainty';
 
 export interface RestoredFit {
 	problem: KineticProblem;
@@ -47,10 +47,27 @@ export function restoreFit(report: FitReport, request: FitRequest): RestoredFit 
 	const activeBounds = problem.free.map((slot) =>
 		report.parameters.find((p) => p.id === slot.id)?.state === 'at bound' ? 1 : 0
 	);
-	return {
-		problem,
-		model,
-		x,
-		uncertainty: uncertainty(problem, { ssr: report.weightedSsr, jacobian, activeBounds })
-	};
+	return { problem, model, x, uncertainty: spreadOf(report, problem, jacobian, activeBounds) };
+}
+
+function spreadOf(
+	report: FitReport,
+	problem: KineticProblem,
+	jacobian: Float64Array,
+	activeBounds: number[]
+): Uncertainty {
+	if (report.criterion !== 'determinant')
+		return uncertainty(problem, { ssr: report.weightedSsr, jacobian, activeBounds });
+	const active = activeBounds.flatMap((b, j) => (b === 0 ? [j] : []));
+	const known = active.length > 0 && active.every((j) => report.covariance[j][j] > 0);
+	const covariance = known ? active.map((j) => active.map((k) => report.covariance[j][k])) : null;
+	return uncertaintyFromCovariance(covariance, active, problem.free.length, report.degreesOfFreedom);
+}
+
+/** @throws RangeError for a fit that did not minimise a sum of squares: `what` rests on one. */
+export function requireLeastSquares(report: FitReport, what: string): void {
+	if (report.criterion === 'determinant')
+		throw new RangeError(
+			`${what} rests on sums of squares and cannot be had of a fit by the determinant criterion. Ask it of a fit by least squares.`
+		);
 }

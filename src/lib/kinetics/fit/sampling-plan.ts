@@ -12,6 +12,7 @@
  */
 import type { FitFinding, FitReport, FitRequest } from '../../schemas/fit';
 import type { RunContent } from '../../schemas/run';
+import { requireLeastSquares } from './restore';
 import { Design } from './sampling-design';
 import { allowedTimes } from './sampling-grid';
 
@@ -64,6 +65,7 @@ export function samplingPlan(
 	run: RunContent,
 	options: SamplingOptions
 ): SamplingPlan {
+	if (report) requireLeastSquares(report, 'A sampling plan');
 	const grid = allowedTimes(options);
 	const design = new Design(request, report, run, options, grid);
 	const chosen = design.exchange(options.samples);

@@ -2,6 +2,7 @@
  * Covariance of the estimates at an optimum, without the parameters that a bound holds.
  */
 import { covarianceFromJacobian, type Spread } from './covariance';
+import { cholesky, invertPositiveDefinite } from './positive-definite';
 import type { KineticProblem } from './problem';
 
 export interface Uncertainty {
@@ -39,6 +40,38 @@ export function uncertainty(problem: KineticProblem, best: Optimum): Uncertainty
 		active.forEach((k, b) => (covariance[j][k] = spread.covariance[a][b] * (s === null ? 0 : s * s)));
 	});
 	return { spread, active, s, degreesOfFreedom, covariance, errors };
+}
+
+/**
+ * The same from a covariance that was found otherwise (s counts as one); without errors where it is null.
+ * @param covariance over the active parameters
+ */
+export function uncertaintyFromCovariance(
+	covariance: number[][] | null,
+	active: number[],
+	p: number,
+	degreesOfFreedom: number
+): Uncertainty {
+	const k = active.length;
+	const information = covariance && invertPositiveDefinite(covariance);
+	const factor = information && cholesky(information);
+	// Rows of Lᵀ stand in for a Jacobian: (L Lᵀ)⁻¹ is the covariance.
+	const rows = new Float64Array(k * k);
+	factor?.forEach((row, i) => row.forEach((v, j) => (rows[i * k + j] = v)));
+	const full = Array.from({ length: p }, () => new Array<number>(p).fill(0));
+	const errors = new Array<number>(p).fill(NaN);
+	active.forEach((j, a) => {
+		errors[j] = covariance ? Math.sqrt(covariance[a][a]) : NaN;
+		active.forEach((i, b) => (full[j][i] = covariance?.[a][b] ?? 0));
+	});
+	return {
+		spread: covarianceFromJacobian(rows, k, k),
+		active,
+		s: factor ? 1 : null,
+		degreesOfFreedom,
+		covariance: full,
+		errors
+	};
 }
 
 /** The columns of the active parameters. */
