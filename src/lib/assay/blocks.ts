@@ -25,8 +25,9 @@ export interface FoundBlock {
 	/** Rows "LOQ", "LOD" directly above or below the data. */
 	limitRows: number[];
 	footerRows: { row: number; why: string }[];
-	/** Rows inside the block without data. */
+	/** Rows inside the block without data, and those of them that hold means or spreads. */
 	leftOutRows: number[];
+	withinRows: number[];
 	title: string;
 	/** Texts above the table, nearest first, with their row; below it too where times run across. Rows of the sheet as received. */
 	above: TextLine[];
@@ -73,6 +74,8 @@ export interface Band {
 	first: number;
 	last: number;
 	leftOut: number[];
+	/** Means and spreads between the data rows. */
+	within: number[];
 	footers: { row: number; why: string }[];
 	limits: number[];
 }
@@ -88,12 +91,22 @@ function growBand(view: SheetView, looks: RowLook[], start: number): Band {
 		first: looks[start].first,
 		last: looks[start].last,
 		leftOut: [],
+		within: [],
 		footers: [],
 		limits: []
 	};
 	while (band.stop < looks.length) {
 		const look = looks[band.stop];
 		const gap = look.r - looks[band.stop - 1].r - 1;
+		const between = gap === 0 ? statisticsWithin(looks, band) : 0;
+		if (between > 0) {
+			for (const row of looks.slice(band.stop, band.stop + between)) {
+				band.leftOut.push(row.r);
+				band.within.push(row.r);
+			}
+			band.stop += between;
+			continue;
+		}
 		if (gap > GAP || (gap > 0 && !isDataRow(look)) || !continues(look, band.first, band.last)) break;
 		if (isNumberedHeader(look, looks[band.stop + 1])) break;
 		for (let r = look.r - gap; r < look.r; r++) band.leftOut.push(r);
@@ -106,6 +119,20 @@ function growBand(view: SheetView, looks: RowLook[], start: number): Band {
 	takeFooters(view, looks, band);
 	return band;
 }
+
+/** How many rows of means or spreads stand between the data rows here; none when no further data follow directly. */
+function statisticsWithin(looks: RowLook[], band: Band): number {
+	let n = 0;
+	while (looks[band.stop + n] && isFooterRow(looks[band.stop + n]) && !isLimitRow(looks[band.stop + n])) n++;
+	if (n === 0 || n > MOST_BETWEEN) return 0;
+	const after = looks[band.stop + n];
+	const rows = looks.slice(band.stop - 1, band.stop + n + 1);
+	const close = rows.every((look, i) => i === 0 || look.r === rows[i - 1].r + 1);
+	return close && after && isDataRow(after) && continues(after, band.first, band.last) ? n : 0;
+}
+
+/** Rows of means and spreads after each group of samples. */
+const MOST_BETWEEN = 4;
 
 /** Sums or means of the rows above, such as the totals row of a table that names none: left to the footers, and asked about. */
 function setTotalsApart(view: SheetView, looks: RowLook[], band: Band): void {

@@ -1,6 +1,7 @@
 /** The channels that are read: which columns or peaks, of which species, in which unit. */
 import type { ColumnMapping, PeakMapping, ValueUnit } from '$lib/schemas/sheet';
 import type { ColumnHeader } from './columns';
+import { askCommonUnits } from './common-unit';
 import type { Examination } from './examination';
 import { settleDoubles } from './quantity-rules';
 import type { ReplicateKind } from './replicate-columns';
@@ -51,17 +52,17 @@ function wideChannels(ex: Examination, headers: Map<number, ColumnHeader>): Chan
 	for (const c of columns) if (!hasSpecies(c.weights)) askSpecies(ex, c, headers.get(c.column)?.header ?? '');
 	const matched = columns.filter((c) => c.role === 'species' && hasSpecies(c.weights));
 	const replicates = settleDoubles(ex, matched, headers);
+	const used = matched.filter((c) => c.role === 'species' && !replicates.absorbed.has(c.column));
+	const open = askCommonUnits(ex, used, headers);
 	const ids = new Set<string>();
-	return matched
-		.filter((c) => c.role === 'species' && !replicates.absorbed.has(c.column))
-		.map((c) => {
-			askUnit(ex, c, headers.get(c.column), headerCell(ex, c.column));
-			return {
-				...channelOf(ex, c, c.column, uniqueId(c.weights ?? {}, ids)),
-				replicates: replicates.of.get(c.column)?.columns ?? [],
-				replicateKind: replicates.of.get(c.column)?.kind ?? 'samples'
-			};
-		});
+	return used.map((c) => {
+		if (!open.has(c.column)) askUnit(ex, c, headers.get(c.column), headerCell(ex, c.column));
+		return {
+			...channelOf(ex, c, c.column, uniqueId(c.weights ?? {}, ids)),
+			replicates: replicates.of.get(c.column)?.columns ?? [],
+			replicateKind: replicates.of.get(c.column)?.kind ?? 'samples'
+		};
+	});
 }
 
 function channelOf(ex: Examination, c: ColumnMapping, column: number, id: string): Channel {

@@ -28,7 +28,7 @@ export function factsOf(view: SheetView, found: FoundTable, column: number): Col
 }
 
 function countFacts(view: SheetView, found: FoundTable, column: number): ColumnFacts {
-	const facts = { numbers: 0, texts: 0, distinct: 0 };
+	const facts = { numbers: 0, texts: 0, dates: 0, distinct: 0 };
 	const distinct = new Set<string>();
 	for (const r of view.filledRows(found.block.firstRow, found.block.lastRow)) {
 		const cell = view.cell(r, column);
@@ -40,9 +40,10 @@ function countFacts(view: SheetView, found: FoundTable, column: number): ColumnF
 			kind === 'with unit' ||
 			kind === 'date' ||
 			kind === 'marked'
-		)
+		) {
 			facts.numbers++;
-		else if (kind === 'text') {
+			if (kind === 'date') facts.dates++;
+		} else if (kind === 'text') {
 			facts.texts++;
 			if (distinct.size < 200) distinct.add(String(cell[1]));
 		}

@@ -20,7 +20,12 @@ export interface ColumnHeader {
 
 /** Reads the headers of every column of a block. */
 export function readHeaders(view: SheetView, headerRows: number[], block: Block): ColumnHeader[] {
-	const rows = headerRows.map((r, i) => rowTexts(view, r, block, i < headerRows.length - 1));
+	const rows = headerRows.map((r, i) => {
+		const lower = headerRows.slice(i + 1);
+		return rowTexts(view, r, block, lower.length > 0, (c) =>
+			lower.some((below) => view.text(below, c) !== '')
+		);
+	});
 	const headers: ColumnHeader[] = [];
 	for (let c = block.firstColumn; c <= block.lastColumn; c++) headers.push(oneHeader(c, rows));
 	return headers;
@@ -32,7 +37,14 @@ interface HeaderText {
 }
 
 /** Texts of one header row; above the last row, merged texts and texts followed by blanks are carried to the right. */
-function rowTexts(view: SheetView, row: number, block: Block, upper: boolean): Map<number, HeaderText> {
+function rowTexts(
+	view: SheetView,
+	row: number,
+	block: Block,
+	upper: boolean,
+	/** A column that a lower header row names: a blank spacer column is not. */
+	named: (column: number) => boolean
+): Map<number, HeaderText> {
 	const texts = new Map<number, HeaderText>();
 	let carry = '';
 	for (let c = block.firstColumn; c <= block.lastColumn; c++) {
@@ -45,7 +57,7 @@ function rowTexts(view: SheetView, row: number, block: Block, upper: boolean): M
 			const text = view.text(merge[0], merge[1]);
 			if (text && merge[3] > merge[1]) texts.set(c, { text, carried: true });
 			carry = '';
-		} else if (carry) texts.set(c, { text: carry, carried: true });
+		} else if (carry && named(c)) texts.set(c, { text: carry, carried: true });
 	}
 	return texts;
 }
@@ -77,7 +89,7 @@ function oneHeader(column: number, rows: Map<number, HeaderText>[]): ColumnHeade
 		}
 		const split = splitHeader(text);
 		if (split.unit && !(split.unit.of === 'percent' && isShare(unit))) unit = split.unit;
-		if (split.bracket !== null) bracket = split.bracket;
+		if (split.name) bracket = split.bracket;
 		if (split.name && !(lone && i > 0)) parts.push(split.name);
 		if (carried && i < texts.length - 1) group = text;
 	});
@@ -95,8 +107,25 @@ const isShare = (unit: UnitReading | null) => unit?.of === 'value' && /%/.test(u
 /** The species that a header names: its id or name exactly or but for case, apart from words such as "conc." around it. */
 export function matchSpecies(header: ColumnHeader, species: SpeciesContent[]): string | null {
 	const last = header.parts.at(-1) ?? '';
-	return matchName(header.bracket ? `${last} (${header.bracket})` : last, species);
+	const whole = matchName(header.bracket ? `${last} (${header.bracket})` : last, species);
+	if (whole) return whole;
+	if (words.isSpreadHeader(last)) return null;
+	if (header.bracket && saysHow(header.bracket)) {
+		const bare = matchName(last, species);
+		if (bare) return bare;
+	}
+	// A line below the names may say how they were measured, or that they are means.
+	for (const part of header.parts.slice(0, -1).reverse()) {
+		const above = matchName(part, species);
+		if (above) return above;
+	}
+	return null;
 }
+
+/** "RRT 1.00", "254 nm", "mg/g": how something was measured, no other name for it. */
+const saysHow = (bracket: string): boolean =>
+	words.isRetention(bracket) ||
+	/\bnm\b|[/%·⁻^]|^(?:ppm|ppb|corr\.?|calc\.?|mean|avg\.?|n ?= ?\d+)$/i.test(bracket);
 
 /** The same for any text, such as the name of a peak. */
 export function matchName(text: string, species: SpeciesContent[]): string | null {
@@ -146,6 +175,8 @@ function bothNames(text: string, species: SpeciesContent[]): string | null {
 export interface ColumnFacts {
 	numbers: number;
 	texts: number;
+	/** Of the numbers, those in a date or time format. */
+	dates: number;
 	/** Distinct texts, up to 200. */
 	distinct: number;
 }
@@ -158,6 +189,7 @@ export function guessRole(header: ColumnHeader, facts: ColumnFacts, matched: str
 	const name = header.parts.join(' ').trim();
 	const last = header.parts.at(-1) ?? '';
 	if (matched) return 'species';
+	if (words.isSpreadHeader(last) || words.isSpreadHeader(header.header)) return 'ignore';
 	if (header.unit?.of === 'temperature' || words.isTemperatureWord(last)) return 'temperature';
 	if (words.isStandardWord(last)) return 'internal standard';
 	if (words.isSampleWord(last)) return 'sample';
@@ -165,8 +197,7 @@ export function guessRole(header: ColumnHeader, facts: ColumnFacts, matched: str
 	if (words.isCommentWord(last) || words.isCounterWord(last) || isRetentionColumn(last)) return 'ignore';
 	if (words.isTotalWord(last) || words.isClockWord(last)) return 'ignore';
 	if (header.unit?.of === 'time' || header.unit?.of === 'duration') return 'ignore';
-	if (facts.numbers === 0 && facts.texts > 0) return 'ignore';
-	if (facts.numbers === 0) return 'ignore';
+	if (facts.numbers === 0 || facts.dates === facts.numbers) return 'ignore';
 	return name === '' && header.unit === null ? 'ignore' : 'species';
 }
 

@@ -14,6 +14,7 @@ import { take, type Taken } from './answers';
 import { type CellReading, readCell } from './cells';
 import { displayText, parseAddress, SheetView } from './grid';
 import type { Decimal } from './numbers';
+import { timeInName } from './name-times';
 import { asColumns, Places } from './orientation';
 import { joinTime, type TimePart } from './time-parts';
 import { readTime, type TimeReading } from './times';
@@ -55,6 +56,8 @@ export class Examination {
 	decimal: Decimal | null;
 	/** Columns that make up one time, largest unit first; empty where one column does. */
 	timeParts: TimePart[] = [];
+	/** The time column holds names of samples, with the times in them. */
+	timesInNames = false;
 	private readonly overlay = new Map<string, string>();
 	/** Times read without the mark that they carry; no corrections. */
 	private readonly plainTimes = new Map<string, string>();
@@ -113,7 +116,10 @@ export class Examination {
 	private timeCell(row: number, column: number): TimeReading {
 		const cell = this.view.mergedCell(row, column);
 		const at = this.at(row, column);
-		return readTime(this.workbook, cell, this.decimal, this.overlay.get(at) ?? this.plainTimes.get(at));
+		const own = this.overlay.get(at) ?? this.plainTimes.get(at);
+		const reading = readTime(this.workbook, cell, this.decimal, own);
+		if (reading.kind !== 'text' || !this.timesInNames) return reading;
+		return timeInName(reading.text, this.decimal) ?? reading;
 	}
 
 	/** From here on the time in a cell reads as this text; the cell and the record keep its own. */

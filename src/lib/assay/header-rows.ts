@@ -45,6 +45,9 @@ export function headersAbove(
 		needMore = units || !coversData(look, looks[start]);
 		below = look.r;
 	}
+	// Limits may stand above the names as well.
+	for (let k = looks.findIndex((l) => l.r === headerRows[0]) - 1; k >= used && isLimitRow(looks[k]); k--)
+		if (looks[k].values.length > 0) limitRows.push(looks[k].r);
 	return { headerRows, limitRows };
 }
 

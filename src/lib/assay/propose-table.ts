@@ -68,7 +68,8 @@ export function proposeTable(
 	};
 	if (long) useLong(mapping, columns, long);
 	const names = headers.map((h) => h.header);
-	const saved = savedFor(options.saved ?? [], names, found.across);
+	// Runs that share their headers differ in their columns: a kept mapping is only one of them.
+	const saved = found.only ? undefined : savedFor(options.saved ?? [], names, found.across);
 	if (saved) mapping = withSaved(mapping, saved);
 	const { parameters, checks } = options;
 	const settled = settle({ workbook, species, mapping: asOnSheet(mapping), parameters, checks });
@@ -135,10 +136,11 @@ function columnsOf(
 	);
 	let temperature = false;
 	return headers.map((h) => {
-		const own = facts.get(h.column) ?? { numbers: 0, texts: 0, distinct: 0 };
+		const own = facts.get(h.column) ?? { numbers: 0, texts: 0, dates: 0, distinct: 0 };
 		const isTime = h.column === time || parts.has(h.column);
 		const matched = isTime ? null : (matchSpecies(h, species) ?? replicates.get(h.column) ?? null);
 		let role = isTime ? ('time' as const) : guessRole(h, own, matched);
+		if (!isTime && found.only && h.carried && !found.only.has(h.column)) role = 'ignore';
 		// One log is used; further temperatures (jacket, bath) stay on the sheet.
 		if (role === 'temperature' && temperature) role = 'ignore';
 		if (role === 'temperature') temperature = true;

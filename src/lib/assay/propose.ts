@@ -8,7 +8,9 @@ import { isTable } from './column-facts';
 import type { SheetView } from './grid';
 import { turnBlock } from './orientation';
 import { proposeTable, type ProposeOptions } from './propose-table';
+import { byRun } from './run-groups';
 import { MOST_COLUMNS } from './side-by-side';
+import { strayRows } from './stray-rows';
 import { blockOnSheet, type FoundTable, overlap, tablesOf, viewOf } from './tables';
 import { plural, someOf } from './wording';
 
@@ -20,10 +22,11 @@ export function propose(
 	options: ProposeOptions = {}
 ): Proposal {
 	const found = tablesOf(workbook).filter((t) => isTable(workbook, t));
-	const tables = found.map((t, i) => proposeTable(workbook, species, t, `t${i + 1}`, options));
+	const runs = found.flatMap((t) => byRun(workbook, species, t));
+	const tables = runs.map((t, i) => proposeTable(workbook, species, t, `t${i + 1}`, options));
 	return {
 		tables,
-		findings: workbookFindings(workbook, tables),
+		findings: [...workbookFindings(workbook, tables), ...strayRows(workbook, found)],
 		sheets: [
 			...workbook.sheets.map((s) => ({
 				name: s.name,
@@ -70,6 +73,7 @@ export function proposeBlock(
 		limitRows: near?.limitRows ?? [],
 		footerRows: [],
 		leftOutRows: [],
+		withinRows: [],
 		title: near?.title ?? sheet,
 		above: near?.above ?? []
 	};

@@ -66,6 +66,7 @@ function take(look: RowLook, workbook: GridWorkbook, cell: GridCell, reading: Ce
 /** Times and dates as text ("1:30", "90 min", "2026-12-01 09:40") count as numbers for the look of a row. */
 function isTimeText(cell: GridCell, text: string): boolean {
 	if (typeof cell[1] !== 'string' || text.length > 40 || !/\d/.test(text)) return false;
+	if (/^t\s*[=:_]?\s*0$/i.test(text)) return true;
 	const kind = readTimeText(text, '.').kind;
 	return kind === 'colon' || kind === 'worded' || kind === 'stamp' || kind === 'serial';
 }

@@ -26,7 +26,16 @@ import { asOnSheet, turnBlock } from './orientation';
 import { plausibility } from './plausibility';
 import { averageColumns } from './replicate-columns';
 import { samplesOf, timeColumn } from './samples';
-import { askBlock, dataRows, noteColours, noteFooters, noteHeaders, noteMergesAndDates } from './structure';
+import {
+	askBlock,
+	dataRows,
+	noteColours,
+	noteFooters,
+	noteHeaders,
+	noteMergesAndDates,
+	noteSpreads,
+	noteWithin
+} from './structure';
 import { headersOf, tableOf, viewOf, votesOf } from './tables';
 import { temperatureLog, type TemperatureLog } from './temperature-log';
 import { timeColumnByHeader } from './time-column';
@@ -86,6 +95,7 @@ export function settle(input: SettleInput): Settlement {
 	noteColours(ex, used);
 	noteMergesAndDates(ex, used, timeColumn(ex));
 	noteFooters(ex, found?.footerRows.map((f) => f.row) ?? []);
+	noteWithin(ex, found?.withinRows ?? []);
 	const log = temperatureLog(ex, points);
 	const balance = complete ? massBalance(ex, points, contents, times.unit) : null;
 	askConditions(ex);
@@ -113,20 +123,32 @@ function settleStructure(
 ): void {
 	const { mapping } = ex;
 	settleDecimal(ex, votesOf(ex.workbook, mapping));
+	const byHeader = timeColumnByHeader(ex.view, mapping.headerRows, mapping.block);
+	ex.timesInNames = byHeader !== timeColumn(ex);
 	const moved =
 		!found ||
 		found.block.firstRow !== mapping.block.firstRow ||
 		found.block.lastRow !== mapping.block.lastRow;
 	const doubtful = found?.footerRows.filter((f) => f.why === 'unsure').map((f) => f.row) ?? [];
 	askBlock(ex, {
-		blank: moved ? [] : found.leftOutRows,
+		blank: moved ? [] : found.leftOutRows.filter((r) => !found.withinRows.includes(r)),
 		doubtfulRows: moved ? [] : doubtful,
 		time: timeColumn(ex),
-		timeByHeader: moved || timeColumnByHeader(ex.view, mapping.headerRows, mapping.block) > 0,
+		timeByHeader: byHeader > 0 || (moved && !namesTimes(ex)),
 		headers: moved || mapping.headerRows.length > 0
 	});
 	const joined = [...headers.values()].filter((h) => h.group !== undefined);
 	noteHeaders(ex, joined);
+	noteSpreads(ex, headers);
+}
+
+/** The first name that is read as a time, of a column that is not headed as one. */
+function namesTimes(ex: Examination): boolean {
+	const column = timeColumn(ex);
+	return (
+		ex.timesInNames &&
+		dataRows(ex).some((r) => /[a-z]/i.test(ex.shown(r, column)) && ex.time(r, column).kind === 'worded')
+	);
 }
 
 /** A mapping without a time column, or without anything measured, is no run. */

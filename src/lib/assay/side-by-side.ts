@@ -74,7 +74,7 @@ function oneTable(
 		firstColumn: first,
 		lastColumn: Math.min(last, first + MOST_COLUMNS - 1)
 	};
-	const top = band.headerRows[0] ?? looks[band.start].r;
+	const top = Math.min(...band.headerRows, ...band.limitRows, looks[band.start].r);
 	const above = textsAbove(view, top, band.floor, parted ? { first, last } : null);
 	return {
 		block,
@@ -82,6 +82,7 @@ function oneTable(
 		limitRows: [...band.limitRows, ...band.limits],
 		footerRows: band.footers,
 		leftOutRows: band.leftOut.filter((r) => r > block.firstRow && r < block.lastRow),
+		withinRows: band.within,
 		title: titleOf(view, above),
 		above
 	};

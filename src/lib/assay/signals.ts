@@ -18,6 +18,8 @@ export function signalChannel(
 	if (standard) return standardChannel(ex, channel, standard.column, points, content);
 	if (channel.fitResponse) return fitted(ex, channel, content);
 	if (channel.responseFactor !== null) return divided(ex, channel, channel.responseFactor, content);
+	// While it is open which quantity counts, a signal may not be used at all.
+	if (ex.findings.some((f) => f.rule === 'B3' && f.open)) return null;
 	const taken = ex.ask({
 		rule: 'B4',
 		level: 'ask',

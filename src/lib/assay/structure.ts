@@ -1,7 +1,9 @@
 /** Rules about the table as a whole: B1, B2, B27, B30, B31, B37 and errors outside the block (B25). */
 import { CELL } from '$lib/schemas/sheet';
+import type { ColumnHeader } from './columns';
 import type { Examination } from './examination';
-import { capital, plural, someOf } from './wording';
+import { isSpreadHeader } from './words';
+import { capital, figure, plural, someOf } from './wording';
 import { hasFlag } from './grid';
 
 /** Rows of the block that hold data, in order. */
@@ -36,7 +38,7 @@ export function askBlock(ex: Examination, facts: BlockFacts): void {
 	if (facts.doubtfulRows.length > 0)
 		doubts.push(`${places.samples(facts.doubtfulRows)} ${places.across ? 'at the right' : 'below'} left out`);
 	if (!facts.headers) doubts.push(places.across ? 'no names at the left' : 'no header row above');
-	else if (!facts.timeByHeader) doubts.push(`no ${places.across ? 'row' : 'column'} whose header says time`);
+	else if (!facts.timeByHeader) doubts.push(withoutTime(ex, facts.time));
 	if (places.across) return askAcross(ex, facts.time, doubts);
 	if (doubts.length === 0) return;
 	ex.ask({
@@ -49,6 +51,20 @@ export function askBlock(ex: Examination, facts: BlockFacts): void {
 		message: `We read rows ${block.firstRow}–${block.lastRow} of "${ex.sheet}" as the data (${doubts.join('; ')}). Is that right?`,
 		options: [{ key: 'right', label: 'Yes, these rows' }]
 	});
+}
+
+/** "no column whose header says time", and what was taken for the times. */
+function withoutTime(ex: Examination, time: number): string {
+	const none = `no ${ex.places.across ? 'row' : 'column'} whose header says time`;
+	if (time === 0) return none;
+	const row = dataRows(ex).find((r) => ex.time(r, time).kind === 'worded' && ex.shown(r, time) !== '');
+	if (row === undefined) return `${none}; ${ex.places.series(time)} was taken`;
+	const reading = ex.time(row, time);
+	const minutes =
+		reading.kind === 'worded'
+			? `, "${ex.shown(row, time).slice(0, 40)}" as ${figure(reading.seconds / 60)} min`
+			: '';
+	return `${none}; times read from the names in ${ex.places.series(time)}${minutes}`;
 }
 
 /** B1 for times that run across: never read so without a word. */
@@ -81,6 +97,26 @@ export function noteHeaders(ex: Examination, joined: { column: number; header: s
 		key: where,
 		found: `header in ${where}`,
 		message: `The header spans ${where}; its parts were joined, for example "${joined[0].header}".`
+	});
+}
+
+/** Columns that hold the scatter of values: shown, and no weight of anything. */
+export function noteSpreads(ex: Examination, headers: Map<number, ColumnHeader>): void {
+	const own = ex.mapping.columns.filter((c) => {
+		const header = headers.get(c.column);
+		return (
+			c.role === 'ignore' && header !== undefined && isSpreadHeader(header.parts.at(-1) ?? header.header)
+		);
+	});
+	if (own.length === 0) return;
+	const where = capital(ex.places.manySeries(own.map((c) => c.column)));
+	ex.note({
+		rule: 'B27',
+		cells: own.map((c) => ex.at(ex.mapping.headerRows.at(-1) ?? ex.mapping.block.firstRow, c.column)),
+		key: 'spreads',
+		found: someOf(own.map((c) => `"${headers.get(c.column)?.header ?? ''}"`)),
+		expected: 'values',
+		message: `${where} ${own.length === 1 ? 'holds' : 'hold'} the scatter of values; shown, and not used as weights.`
 	});
 }
 
@@ -149,6 +185,31 @@ export function noteFooters(ex: Examination, footerRows: number[]): void {
 			found: `error values outside the data in ${someOf(errors)}`,
 			message: `${someOf(errors)} ${errors.length === 1 ? 'holds' : 'hold'} an error value outside the data; it is ignored.`
 		});
+}
+
+/** B27: means and spreads between the samples. */
+export function noteWithin(ex: Examination, rows: number[]): void {
+	const own = rows.filter((r) => ex.mapping.leftOutRows.includes(r));
+	if (own.length === 0) return;
+	const leads = [
+		...new Set(
+			own.map(
+				(r) =>
+					ex.view
+						.cellsOfRow(r)
+						.map((c) => ex.shown(r, c[0]))
+						.find(Boolean) ?? ''
+			)
+		)
+	];
+	ex.note({
+		rule: 'B27',
+		cells: own.map((r) => ex.at(r, ex.mapping.block.firstColumn)),
+		key: 'within',
+		found: someOf(leads.map((t) => `"${t.slice(0, 40)}"`)),
+		expected: 'samples',
+		message: `${capital(ex.places.samples(own))} between the samples (${someOf(leads.map((t) => `"${t.slice(0, 40)}"`))}) ${own.length === 1 ? 'is' : 'are'} shown and not used.`
+	});
 }
 
 /** B31 and B37. */

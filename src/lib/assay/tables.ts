@@ -13,6 +13,8 @@ export interface FoundTable extends FoundBlock {
 	sheet: string;
 	/** Times run across: the block and its rows count on the turned sheet. */
 	across: boolean;
+	/** Of several runs under labels of their own: the columns of this one. */
+	only?: Set<number>;
 }
 
 const known = new WeakMap<GridWorkbook, FoundTable[]>();

@@ -3,6 +3,7 @@ import type { Block } from '$lib/schemas/sheet';
 import type { SheetView } from './grid';
 import { speaksOfTime } from './rows';
 import type { FoundBlock } from './blocks';
+import { timeInName } from './name-times';
 import { readTime } from './times';
 import { readUnit, splitHeader } from './units';
 import { isClockWord, isTimeWord } from './words';
@@ -39,7 +40,7 @@ function timeRank(texts: string[]): number {
 export function timeColumnOf(view: SheetView, found: FoundBlock): number {
 	const named = timeColumnByHeader(view, found.headerRows, found.block);
 	if (named > 0) return named;
-	// Names of samples that are times, "t=15 min" or "2 h".
+	// Names of samples that are or hold times, "t=15 min" or "RS-112, 2 h".
 	for (let c = found.block.firstColumn; c <= found.block.lastColumn; c++)
 		if (namesTimes(view, found, c)) return c;
 	if (found.headerRows.length > 0) return 0;
@@ -55,7 +56,7 @@ function namesTimes(view: SheetView, found: FoundBlock, column: number): boolean
 	for (const r of view.filledRows(found.block.firstRow, found.block.lastRow)) {
 		const cell = view.cell(r, column);
 		if (typeof cell?.[1] !== 'string') continue;
-		if (readTime(view.workbook, cell, null).kind === 'worded') times++;
+		if (readTime(view.workbook, cell, null).kind === 'worded' || timeInName(cell[1], null)) times++;
 		else others++;
 	}
 	return times >= 3 && times >= others * 4;

@@ -2,7 +2,7 @@
 import type { Block, TimeUnit } from '$lib/schemas/sheet';
 import { secondsOf } from './elapsed-time';
 import type { Examination } from './examination';
-import { because } from './wording';
+import { because, capital } from './wording';
 import type { Timed } from './samples';
 
 export function stopBackwards(
@@ -10,6 +10,8 @@ export function stopBackwards(
 	timed: Timed[],
 	unit: TimeUnit
 ): { samples: Timed[]; rest: Block | null } {
+	const turned = askDescending(ex, timed);
+	if (turned) return { samples: turned, rest: null };
 	const kept: Timed[] = [];
 	let latest = -Infinity;
 	let latestText = '';
@@ -30,12 +32,40 @@ export function stopBackwards(
 		if (outcome === 'leave-out') continue;
 		if (outcome === 'new-run') rest = { ...ex.mapping.block, firstRow: t.sample.row };
 		else {
+			// The rows below are compared with this one, so that one slip is one question.
+			if (outcome !== 'corrected') [latest, latestText] = [t.seconds, showTime(ex, t)];
 			if (outcome === 'open') t.seconds = null;
 			kept.push(t);
 			if (outcome === 'corrected') latest = Math.max(latest, t.seconds ?? latest);
 		}
 	}
 	return { samples: kept, rest };
+}
+
+/** Times that fall from the first row to the last: one question in place of a Stop each. Null when they do not, or are to be asked row by row. */
+function askDescending(ex: Examination, timed: Timed[]): Timed[] | null {
+	const seconds = timed.flatMap((t) => (t.seconds === null ? [] : [t.seconds]));
+	if (seconds.length !== timed.length || new Set(seconds).size < 3) return null;
+	if (!seconds.every((s, i) => i === 0 || s <= seconds[i - 1])) return null;
+	const cells = timed.map((t) => ex.at(t.sample.time.row, t.sample.time.column));
+	const [first, last] = [showTime(ex, timed[0]), showTime(ex, timed[timed.length - 1])];
+	const taken = ex.ask({
+		rule: 'B18',
+		level: 'ask',
+		cells: [cells[0], cells[cells.length - 1]],
+		key: 'descending',
+		found: `times that fall from ${first} to ${last}`,
+		expected: 'times that increase',
+		message: `The times run backwards, from ${first} to ${last}. Is the last ${ex.places.line} the first sample?`,
+		options: [
+			{ key: 'reverse', label: `Yes: read from the last ${ex.places.line}` },
+			{ key: 'single', label: 'No: ask about each time' }
+		]
+	});
+	if (taken?.key === 'single') return null;
+	if (taken)
+		ex.conversions.push(`Times that fall from ${first} to ${last} read from the last ${ex.places.line}.`);
+	return [...timed].reverse();
 }
 
 const showTime = (ex: Examination, t: Timed): string =>
@@ -62,7 +92,7 @@ function askBackwards(
 		cells: [cell],
 		found: `${shown} after ${latestText}`,
 		expected: 'times that increase',
-		message: `${cell} ${shown} comes after ${latestText}. Typing error${guess ? ` (${guess}?)` : ''} or a new run?`,
+		message: `${cell} ${shown} comes after ${latestText}.${changeOf(ex, timed, i)} Typing error${guess ? ` (${guess}?)` : ''} or a new run?`,
 		options: [
 			{
 				key: 'enter',
@@ -95,6 +125,21 @@ function askBackwards(
 	if (taken?.key === 'new-run')
 		ex.conversions.push(`A new run begins in row ${t.sample.row}; this run ends above it.`);
 	return (taken?.key as 'keep' | 'new-run' | undefined) ?? 'open';
+}
+
+/** " Column A changes from R1 to R2 here.": a column that names the runs speaks for a new one. */
+function changeOf(ex: Examination, timed: Timed[], i: number): string {
+	const row = timed[i].sample.row;
+	const before = timed.slice(0, i).map((t) => t.sample.row);
+	for (const { column, role } of ex.mapping.columns) {
+		if (role !== 'ignore' && role !== 'sample') continue;
+		const texts = new Set(before.map((r) => ex.shown(r, column)));
+		const [old] = texts;
+		const now = ex.shown(row, column);
+		if (texts.size === 1 && old && now && now !== old && before.length > 1)
+			return ` ${capital(ex.places.series(column))} changes from "${old.slice(0, 40)}" to "${now.slice(0, 40)}" here.`;
+	}
+	return '';
 }
 
 function enterTime(

@@ -61,7 +61,8 @@ export function timeUnit(
 ): UnitFound {
 	const mapped = ex.mapping.columns.find((c) => c.role === 'time');
 	const stated = TIME_UNITS.includes(mapped?.unit as TimeUnit) ? (mapped?.unit as TimeUnit) : null;
-	const plain = samples.filter((_, i) => readings[i].kind === 'number');
+	// A bare 0 is zero in every unit.
+	const plain = readings.filter((r) => r.kind === 'number' && r.value !== 0);
 	const worded = readings.flatMap((r, i) => (r.kind === 'worded' ? [{ r, s: samples[i] }] : []));
 	const serial = readings.some((r) => r.kind === 'serial' || r.kind === 'colon' || r.kind === 'stamp');
 	if (worded.length > 0) return wordedUnit(ex, worded, stated, plain.length, column);

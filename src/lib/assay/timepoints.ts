@@ -47,8 +47,11 @@ export function pointsOf(
 export function settleReplicates(ex: Examination, points: Point[], unit: TimeUnit): Point[] {
 	// Replicate columns are equal times by themselves: rows are compared with rows.
 	const groups = new Map<string, Point[]>();
+	let part = 0;
 	for (const p of points) {
-		const key = `${p.sample.replicate} ${p.time}`;
+		// A row whose time is open may begin another run: what lies on its two sides is not compared.
+		if (p.time === null) part++;
+		const key = `${part} ${p.sample.replicate} ${p.time}`;
 		if (p.time !== null) groups.set(key, [...(groups.get(key) ?? []), p]);
 	}
 	const repeated = [...groups.values()].filter((g) => g.length > 1);

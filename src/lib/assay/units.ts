@@ -12,7 +12,7 @@ export type UnitReading =
 
 const VALUES: [RegExp, ValueUnit][] = [
 	[/^(mol\/l|mol\/dm\^?3|kmol\/m\^?3|mol l\^?-1|mol dm\^?-3|mol per l(it(er|re))?|molar)$/i, 'mol/L'],
-	[/^(mmol\/l|mol\/m\^?3|mmol l\^?-1|mmol\/dm\^?3)$/i, 'mmol/L'],
+	[/^(umol\/ml|nmol\/ul|mmol\/l|mol\/m\^?3|mmol l\^?-1|mmol\/dm\^?3)$/i, 'mmol/L'],
 	[/^(umol\/l|mmol\/m\^?3|umol l\^?-1)$/i, 'umol/L'],
 	[/^(g\/l|kg\/m\^?3|g l\^?-1|g\/dm\^?3)$/i, 'g/L'],
 	[/^(mg\/ml|mg ml\^?-1)$/i, 'mg/mL'],
@@ -106,7 +106,7 @@ export function splitHeader(text: string): HeaderParts {
 	const plain = text.replace(/[\s\u00a0]+/g, ' ').trim();
 	const whole = readUnit(plain.replace(/^[([]|[)\]]$/g, ''));
 	if (whole && /^[([].*[)\]]$/.test(plain)) return { name: '', unit: whole, bracket: null };
-	const bracketed = /^(.*?)[\s]*[([]([^()[\]]*(?:\([^()]*\)[^()[\]]*)?)[)\]]\s*$/.exec(plain);
+	const bracketed = /^(.*?)[\s/,;:]*[([]([^()[\]]*(?:\([^()]*\)[^()[\]]*)?)[)\]]\s*$/.exec(plain);
 	if (bracketed) {
 		const unit = readUnit(bracketed[2]) ?? lastWordUnit(bracketed[2]) ?? celsius(bracketed[1], bracketed[2]);
 		if (unit) return { name: bracketed[1].trim(), unit, bracket: null };

@@ -7,7 +7,16 @@ import { capital } from './wording';
 export const asUnit = (unit: string | null): ValueUnit | null =>
 	VALUE_UNITS.includes(unit as ValueUnit) ? (unit as ValueUnit) : null;
 
-const PERCENT_BASES: ValueUnit[] = ['area %', '% of charge', 'mol %', '% w/w'];
+export const PERCENT_BASES: ValueUnit[] = ['area %', '% of charge', 'mol %', '% w/w'];
+
+export const isPercent = (ex: Examination, header: ColumnHeader | undefined): boolean =>
+	header?.unit?.of === 'percent' || isPercentColumn(ex, header?.column);
+
+/** What stands in brackets where a unit is expected and is none that is known here, such as "mg/g". */
+export const unknownUnit = (header: ColumnHeader | undefined): string | null =>
+	header?.unit === null && header.bracket !== null && /[/·⁻^]|^(?:ppm|ppb)$/i.test(header.bracket)
+		? header.bracket
+		: null;
 
 export function askUnit(
 	ex: Examination,
@@ -16,7 +25,8 @@ export function askUnit(
 	cell: string
 ): void {
 	if (asUnit(c.unit)) return;
-	const percent = header?.unit?.of === 'percent' || isPercentColumn(ex, header?.column);
+	const percent = isPercent(ex, header);
+	const unknown = unknownUnit(header);
 	const place = header ? ex.places.series(header.column) : `the column of ${cell}`;
 	const taken = ex.ask({
 		rule: 'B4',
@@ -26,7 +36,9 @@ export function askUnit(
 		expected: percent ? 'what the % are of' : 'a unit',
 		message: percent
 			? `${capital(place)} is in %. Percent of what? We will not assume.`
-			: `${capital(place)} has no unit. Choose one; we will not assume.`,
+			: unknown
+				? `${capital(place)} is headed "${unknown}", which is no unit that is read here. Choose the one that the values are in; we will not assume.`
+				: `${capital(place)} has no unit. Choose one; we will not assume.`,
 		options: (percent ? PERCENT_BASES : VALUE_UNITS).map((unit) => ({ key: unit, label: unitLabel(unit) }))
 	});
 	if (!taken) return;
@@ -34,7 +46,7 @@ export function askUnit(
 	ex.conversions.push(`Unit of ${place}: ${taken.key}, as chosen.`);
 }
 
-const unitLabel = (unit: ValueUnit): string =>
+export const unitLabel = (unit: ValueUnit): string =>
 	unit === 'area' ? 'area (a signal, arbitrary units)' : unit === 'umol/L' ? 'µmol/L' : unit;
 
 function isPercentColumn(ex: Examination, column: number | undefined): boolean {

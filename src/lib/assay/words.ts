@@ -14,7 +14,7 @@ const TEMPERATURE =
 	/^(t|ti|tr|tint|t ?int(ern(al)?)?\.?|t ?r|it|temp\.?|temperature|temperatur|temp[ée]rature|temperatura|innentemp(eratur|\.)?|internal temp(erature|\.)?|pot temp(erature)?|reactor temp(erature)?|batch temp(erature)?|jacket|tj|t ?jacket|bath( temp(erature)?)?|bad(temp(eratur)?)?)$/i;
 const SAMPLE =
 	/^((sample|probe|proben|[ée]chantillon|muestra|campione|vial|lims|ipc)([ _.-]?(id|name|no\.?|nr\.?|number|nummer|code|#))?|probennummer|proben-?nr\.?|sample-?id)$/i;
-const COUNTER = /^(no\.?|nr\.?|#|n°|entry|line|row|index|lfd\.? ?nr\.?|pos\.?|seq\.?|id)$/i;
+const COUNTER = /^(n|count|anzahl|no\.?|nr\.?|#|n°|entry|line|row|index|lfd\.? ?nr\.?|pos\.?|seq\.?|id)$/i;
 const INJECTION =
 	/^(inj\.?|injection|einspritzung|injektion|replicate|rep\.?|repeat|wdh\.?|wiederholung|inj\.? ?(no\.?|nr\.?|#))$/i;
 const COMMENT =
@@ -111,9 +111,19 @@ const FOOTER = begins(
 	'quelle',
 	'slope',
 	'intercept',
-	'r2',
-	'r²'
+	'r²',
+	'r\\^2'
 );
+/** Means and spreads of other rows, by their name alone. */
+const STATISTIC =
+	/^(means?|average|avg\.?|mittel(wert)?|mw|moyenne|media|promedio|x̄|median|s\.?d\.?|std\.? ?dev\.?|stdev|st\.? ?dev\.?|standard deviation|stabw\.?|standardabweichung|[ée]cart[- ]type|%? ?rsd ?%?|rel\.? ?sd|cv ?%?|vk ?%?|variance|varianz)\.?(?: ?[(\[].*[)\]])?$/i;
+export const isStatisticName = (text: string): boolean => STATISTIC.test(text.trim());
+
+/** What stands for the scatter of values in a header: "A SD", "B %RSD", "±". */
+const SPREAD =
+	/(?:^|[\s_(])(?:s\.?d\.?|std\.? ?dev\.?|stdev|st\.? ?dev\.?|stabw\.?|standardabweichung|standard (?:deviation|error)|s\.?e\.?m?\.?|%? ?rsd ?%?|rel\.? ?sd|cv ?%?|vk ?%?|±|\+\/-|range|spannweite|error)\)?$/i;
+export const isSpreadHeader = (text: string): boolean => SPREAD.test(text.trim());
+
 export const isFooterWord = (text: string): boolean => FOOTER.test(text.trim());
 
 const LIMIT = begins(
@@ -224,4 +234,4 @@ export function valueWord(text: string): ValueWord | null {
 
 /** Words around a species' name in a header that do not name it. */
 export const QUANTITY_WORDS =
-	/\b(conc(entration|\.)?|konz(entration|\.)?|area|areas|fl[äa]che|aire|[áa]rea|amount|assay|content|gehalt|peak|signal|found|measured|result|lc|hplc|uplc|gc|uv)\b/gi;
+	/\b(conc(entration|\.)?|konz(entration|\.)?|area|areas|fl[äa]che|aire|[áa]rea|amount|assay|content|gehalt|peak|signal|found|measured|result|lc|hplc|uplc|gc|uv|mean|avg|average|mittelwert|mittel|moyenne|promedio)\b/gi;

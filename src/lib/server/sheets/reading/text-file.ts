@@ -25,8 +25,10 @@ export function gridOfText(
 			'not-a-sheet',
 			'This is a web page or XML saved under another name. Open it in your spreadsheet program, save it as .xlsx and upload that.'
 		);
-	const { body, declared } = separatorLine(text);
-	const delimiter = declared ?? separatorOf(body);
+	const { body: received, declared } = separatorLine(text);
+	const aligned = declared === null ? alignedBySpaces(received) : null;
+	const body = aligned ?? received;
+	const delimiter = declared ?? (aligned === null ? separatorOf(body) : '\t');
 	const rows: GridRow[] = [];
 	let lastColumn = 0;
 	let count = 0;
@@ -69,7 +71,7 @@ export function gridOfText(
 		fileName,
 		kind,
 		dateSystem: 1900,
-		delimiter,
+		delimiter: aligned === null ? delimiter : 'spaces',
 		styles: [{ format: 'General', kind: 'general' }],
 		sheets: [sheet]
 	};
@@ -112,6 +114,19 @@ export function separatorOf(text: string): string {
 		}
 	}
 	return best;
+}
+
+/** Columns aligned by two or more spaces, with a tab in their place; null where another separator parts the lines, or nothing does. */
+function alignedBySpaces(text: string): string | null {
+	const lines = text
+		.slice(0, 200_000)
+		.split(/\r\n|\n|\r/)
+		.slice(0, 200)
+		.filter((line) => line.trim() !== '');
+	if (lines.length < 3 || ['\t', ';', ',', '|'].some((s) => evenness(lines, s) >= 0.5)) return null;
+	const parted = lines.filter((line) => /\S {2,}\S/.test(line)).length;
+	if (parted < lines.length * 0.6) return null;
+	return text.replace(/^ +| +$/gm, '').replace(/ {2,}/g, '\t');
 }
 
 /** Share of lines that have the commonest number of columns, 0 when that is one. */

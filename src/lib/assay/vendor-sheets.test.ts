@@ -1,0 +1,370 @@
+/** Sheets as instruments, offices and contract laboratories send them (all invented): what is proposed, and what is asked before anything counts. */
+import { describe, expect, it } from 'vitest';
+import {
+	answer,
+	book,
+	conditions,
+	csv,
+	first,
+	species,
+	timesOf,
+	valuesOf
+} from '../server/sheets/reading/test-tables';
+import type { TestCell } from '../server/sheets/reading/test-workbook';
+import type { GridWorkbook } from '../schemas/sheet';
+import { propose, settle } from './index';
+
+const T = [0, 1, 2, 4, 8];
+const A = [0.5, 0.4, 0.3, 0.2, 0.1];
+const B = [0, 0.1, 0.2, 0.3, 0.4];
+const roles = (workbook: GridWorkbook) => first(workbook).columns.map((c) => [c.role, c.unit, c.species]);
+const open = (workbook: GridWorkbook) => {
+	const mapping = { ...first(workbook).mapping, conditions };
+	return settle({ workbook, species, mapping }).findings.flatMap((f) =>
+		f.open ? [`${f.rule} ${f.cells[0]}`] : []
+	);
+};
+const notes = (workbook: GridWorkbook) =>
+	first(workbook).findings.flatMap((f) => (f.level === 'note' ? [f.message] : []));
+
+describe('lists of a chromatography system', () => {
+	const list = csv(
+		'Sequenzbericht;;;;;\nMethode;HX14_rev3;;;;\nErstellt;12.11.2026 14:03;;;;\n;;;;;\n' +
+			'Probenname;Inj.-Nr.;Peakname;Ret.-Zeit [min];Fläche [mAU*s];Fläche-%\n' +
+			[0, 30, 60, 120, 240]
+				.flatMap((t, i) => [
+					`RS-112_t=${t} min;1;HX-14;7,31;${10 - i}.234,5;${95 - 15 * i},5`,
+					`RS-112_t=${t} min;1;HX-14b;9,02;${1 + i}.039,1;${4 + 15 * i},5`
+				])
+				.join('\n')
+	);
+
+	it('with the time inside the sample name are read by it, and that is asked with an example', () => {
+		const table = first(list);
+		expect([table.mapping.layout, table.mapping.decimal, table.peaks?.map((p) => p.species)]).toEqual([
+			'long',
+			',',
+			['A', 'B']
+		]);
+		expect(table.findings.find((f) => f.rule === 'B1')?.message).toContain(
+			'times read from the names in column A, "RS-112_t=0 min" as 0 min'
+		);
+		const settled = answer(list, { B1: { key: 'right' }, B22: { key: 'uncorrected' } });
+		expect(timesOf(settled)).toEqual([0, 30, 60, 120, 240]);
+		expect(settled.run?.timeUnit).toBe('min');
+		expect(valuesOf(settled)).toEqual([95.5, 80.5, 65.5, 50.5, 35.5]);
+	});
+
+	it('with names such as "IPC T0", "IPC 30 min", "IPC 2h" and one without a time ask for that one', () => {
+		const rows: TestCell[][] = [
+			['Sample', 'A (area %)', 'B (area %)'],
+			['IPC T0', 99, 1],
+			['IPC 30 min', 80, 20],
+			['IPC 1 h', 62, 38],
+			['IPC 2h', 40, 60],
+			['IPC 4h', 15, 85],
+			['EOR', 2, 98]
+		];
+		expect(open(book(rows))).toEqual(['B18 A7', 'B17 A2', 'B1 A2', 'B22 B1']);
+		const settled = answer(book(rows), {
+			B1: { key: 'right' },
+			B17: { key: 'convert' },
+			B18: { key: 'leave-out' },
+			B22: { key: 'uncorrected' }
+		});
+		expect(timesOf(settled)).toEqual([0, 0.5, 1, 2, 4]);
+	});
+
+	it('names of samples are no times where a column is headed as time', () => {
+		const rows = T.map((t, i): TestCell[] => [`QX 2 h no. ${i}, 5 min`, t, A[i]]);
+		expect(timesOf(answer(book([['Sample', 'Time (h)', 'A (mol/L)'], ...rows]), {}))).toEqual(T);
+	});
+
+	it('peaks by relative retention time: the named one is matched, the others are asked', () => {
+		const workbook = book([
+			['Sample ID', 'Time', 'RRT 0.87', 'HX-14 (RRT 1.00)', 'RRT 1.21', 'Total'],
+			[null, 'h', 'area %', 'area %', 'area %', 'area %'],
+			...T.map((t, i): TestCell[] => [`S${i}`, t, i, 99 - i * 2, 1 + i, 100])
+		]);
+		expect(roles(workbook).map(([role, , id]) => [role, id])).toEqual([
+			['sample', null],
+			['time', null],
+			['species', null],
+			['species', 'A'],
+			['species', null],
+			['ignore', null]
+		]);
+		expect(open(workbook)).toEqual(['B32 C2', 'B32 E2']);
+	});
+});
+
+describe('means and spreads', () => {
+	it('columns of means are read, columns of their scatter are shown and no weights', () => {
+		for (const spread of ['A SD', 'A stdev [mol/L]', 'A %RSD', '±', 'A ± ']) {
+			const workbook = book([
+				['Time (h)', 'A mean (mol/L)', spread, 'n'],
+				...T.map((t, i): TestCell[] => [t, A[i], 0.01, 3])
+			]);
+			expect(roles(workbook).map(([role, , id]) => [role, id])).toEqual([
+				['time', null],
+				['species', 'A'],
+				['ignore', null],
+				['ignore', null]
+			]);
+			expect(notes(workbook)).toEqual([
+				'Column C holds the scatter of values; shown, and not used as weights.'
+			]);
+			expect(valuesOf(answer(workbook, {}))).toEqual(A);
+		}
+	});
+
+	it('rows of means between the samples are left out, and the samples below them are not lost', () => {
+		const workbook = book([
+			['Time (h)', 'Sample', 'Inj', 'A (mol/L)'],
+			...T.flatMap((t, i): TestCell[][] => [
+				[t, `S${i}`, 1, A[i]],
+				[t, `S${i}`, 2, A[i] + 0.02],
+				['Mean', null, null, A[i] + 0.01],
+				['RSD %', null, null, 1.2]
+			])
+		]);
+		expect(first(workbook).range).toBe('A2:D19');
+		expect(notes(workbook).join('\n')).toContain(
+			'Rows 4, 5, 8, 9, 12, 13, 16, 17 between the samples ("Mean", "RSD %") are shown and not used.'
+		);
+		expect(valuesOf(answer(workbook, {}))?.map((v) => Number(v).toFixed(2))).toEqual([
+			'0.51',
+			'0.41',
+			'0.31',
+			'0.21',
+			'0.11'
+		]);
+	});
+
+	it('rows called "Mean" in the sample column carry a time and are asked about', () => {
+		const workbook = book([
+			['Time (h)', 'Sample', 'A (mol/L)'],
+			...T.flatMap((t, i): TestCell[][] => [
+				[t, `S${i}-1`, A[i]],
+				[t, `S${i}-2`, A[i]],
+				[t, 'Mean', A[i]]
+			])
+		]);
+		expect(open(workbook)).toEqual(['B27 B4']);
+		expect(timesOf(answer(workbook, { B27: { key: 'leave-out' } }))).toHaveLength(10);
+	});
+
+	it('samples called R1, R2 are not taken for a coefficient of determination', () => {
+		const rows = T.map((t, i): TestCell[] => [`R${i + 1}`, t, A[i]]);
+		expect(timesOf(answer(book([['Sample', 'Time (h)', 'A (mol/L)'], ...rows]), {}))).toEqual(T);
+	});
+});
+
+describe('several runs on a sheet', () => {
+	it('under labels of their own with one time column are two runs, each with its temperature', () => {
+		const workbook = book(
+			[
+				[null, 'Run 1 (40 °C)', null, 'Run 2 (60 °C)', null],
+				['Time (h)', 'A (mol/L)', 'B (mol/L)', 'A (mol/L)', 'B (mol/L)'],
+				...T.map((t, i): TestCell[] => [t, A[i], B[i], A[i] / 2, B[i] / 2])
+			],
+			{ merges: ['B1:C1', 'D1:E1'] }
+		);
+		const { tables } = propose(workbook, species);
+		expect(tables.map((t) => [t.title, t.suggested.temperature?.value])).toEqual([
+			['Run 1 (40 °C)', 40],
+			['Run 2 (60 °C)', 60]
+		]);
+		const values = tables.map(({ mapping }) =>
+			settle({ workbook, species, mapping: { ...mapping, conditions } }).run?.timepoints.map(
+				(p) => p.values.A
+			)
+		);
+		expect(values).toEqual([A, A.map((a) => a / 2)]);
+	});
+
+	it('side by side, of different length, below a label each', () => {
+		const workbook = book(
+			[
+				['Run 1 - 40 °C', null, null, 'Run 2 - 60 °C', null],
+				['Time (h)', 'A (mol/L)', null, 'Time (h)', 'A (mol/L)'],
+				...T.map((t, i): TestCell[] => [t, A[i], null, ...(i < 4 ? [t / 2, A[i]] : [null, null])])
+			],
+			{ merges: ['A1:B1', 'D1:E1'] }
+		);
+		expect(
+			propose(workbook, species).tables.map((t) => [t.range, t.title, t.suggested.temperature?.value])
+		).toEqual([
+			['A3:B7', 'Run 1 - 40 °C', 40],
+			['D3:E6', 'Run 2 - 60 °C', 60]
+		]);
+	});
+
+	it('one below the other in one table: one question where the run changes, and the rest becomes a table', () => {
+		const rows = ['R1', 'R2'].flatMap((run) => T.map((t, i): TestCell[] => [run, t, A[i]]));
+		const workbook = book([['Run', 'Time (h)', 'A (mol/L)'], ...rows]);
+		expect(open(workbook)).toEqual(['B18 B7']);
+		expect(first(workbook).findings[0].message).toBe(
+			'B7 0 comes after 8. Column A changes from "R1" to "R2" here. Typing error or a new run?'
+		);
+		const { rest, run } = answer(workbook, { B18: { key: 'new-run' } });
+		expect([run?.timepoints.length, rest?.firstRow]).toEqual([5, 7]);
+	});
+
+	it('rows of numbers that belong to no table are pointed out', () => {
+		const rows = T.map((t, i): TestCell[] => [t, A[i]]);
+		const workbook = book([['Time (h)', 'A (mol/L)'], ...rows, [], [], [], [], [9, 0.08], [10, 0.07]]);
+		expect(propose(workbook, species).findings.map((f) => [f.level, f.rule, f.message])).toEqual([
+			[
+				'note',
+				'B28',
+				'Rows 11–12 of "Data" hold numbers and belong to no table; not used. Mark them by hand if they belong to the data.'
+			]
+		]);
+	});
+});
+
+describe('times', () => {
+	it('that fall from the first row to the last are one question', () => {
+		const rows = T.map((t, i): TestCell[] => [t, A[i]]).reverse();
+		const workbook = book([['Time (h)', 'A (mol/L)'], ...rows]);
+		expect(open(workbook)).toEqual(['B18 A2']);
+		const settled = answer(workbook, { B18: { key: 'reverse' } });
+		expect([timesOf(settled), valuesOf(settled)]).toEqual([T, A]);
+		expect(settled.conversions).toContain('Times that fall from 8 to 0 read from the last row.');
+	});
+
+	it('with one slip are one question, whatever follows', () => {
+		const rows = [0, 1, 20, 3, 4, 5].map((t, i): TestCell[] => [t, 0.5 - i / 20]);
+		expect(open(book([['Time (h)', 'A (mol/L)'], ...rows]))).toEqual(['B18 A5']);
+	});
+
+	it('written T0, 30min, 1h, overnight', () => {
+		const workbook = book([
+			['Time', 'A (mol/L)'],
+			['T0', 0.5],
+			['30min', 0.4],
+			['1h', 0.3],
+			['2h', 0.2],
+			['overnight', 0.02]
+		]);
+		expect(open(workbook)).toEqual(['B18 A6', 'B17 A3']);
+		expect(
+			timesOf(answer(workbook, { B17: { key: 'convert' }, B18: { key: 'enter', values: { value: '16 h' } } }))
+		).toEqual([0, 0.5, 1, 2, 16]);
+	});
+});
+
+describe('headers and layout', () => {
+	it('a limit row above the names, units below them, comments at the right, initials below', () => {
+		const workbook = book([
+			['LOQ', null, 0.002, 0.003, null],
+			['Probe', 'Zeit', 'HX-14', 'HX-14b', 'Bemerkung'],
+			[null, 'h', 'mol/L', 'mol/L', null],
+			...T.map((t, i): TestCell[] => [
+				`P${i}`,
+				t,
+				A[i],
+				i === 0 ? '<LOQ' : B[i],
+				i === 3 ? 'leicht trüb' : null
+			]),
+			['geprüft: MO, 12.11.2026']
+		]);
+		const [f] = first(workbook).findings.filter((f) => f.rule === 'B8');
+		expect(f.options[0].needsValue).toMatchObject([{ suggested: 0.003, source: 'D1' }]);
+		expect(first(workbook).title).toBe('Data');
+	});
+
+	it('blank spacer columns between the series are none of them', () => {
+		const workbook = book([
+			['Zeit', null, 'HX-14', null, 'HX-14b'],
+			['h', null, 'mol/L', null, 'mol/L'],
+			[],
+			...T.map((t, i): TestCell[] => [t, null, A[i], null, B[i]])
+		]);
+		expect(open(workbook)).toEqual([]);
+		expect(valuesOf(answer(workbook, {}), 'B')).toEqual(B);
+	});
+
+	it('a line on the method below the names does not hide them', () => {
+		const workbook = book([
+			['Time (h)', 'A (mol/L)', 'B (mol/L)'],
+			['(from end of addition)', 'HPLC-UV 254 nm', 'HPLC-UV 254 nm'],
+			...T.map((t, i): TestCell[] => [t, A[i], B[i]])
+		]);
+		expect(roles(workbook)).toEqual([
+			['time', 'h', null],
+			['species', 'mol/L', 'A'],
+			['species', 'mol/L', 'B']
+		]);
+	});
+
+	it('names and units in the ways of writing met most', () => {
+		const workbook = book([
+			['t/min', 'c(A) / (mol/L)', '[B]/M', 'C in mmol/l', 'A\n(mmol·L⁻¹)', 'B [µmol/mL]'],
+			...T.map((t, i): TestCell[] => [t, A[i], B[i], 1, 1, 1])
+		]);
+		expect(roles(workbook)).toEqual([
+			['time', 'min', null],
+			['species', 'mol/L', 'A'],
+			['species', 'mol/L', 'B'],
+			['species', 'mmol/L', 'C'],
+			['species', 'mmol/L', 'A'],
+			['species', 'mmol/L', 'B']
+		]);
+	});
+
+	it('B4: a unit that is not known is quoted; columns alike are asked about together, or each where they differ', () => {
+		const unknown = book([['Time (h)', 'C (mg/g)'], ...T.map((t): TestCell[] => [t, 1 + t])]);
+		expect(first(unknown).findings[0].message).toBe(
+			'Column B is headed "mg/g", which is no unit that is read here. Choose the one that the values are in; we will not assume.'
+		);
+		const percent = (v: number): TestCell => ({ v, format: '0.0%' });
+		const alike = book([
+			['Time (h)', 'HX-14', 'HX-14b'],
+			...T.map((t, i): TestCell[] => [t, percent(A[i] * 2), percent(B[i] * 2)])
+		]);
+		expect(first(alike).findings.map((f) => [f.level, f.cells.join(), f.message])).toEqual([
+			['stop', 'B1,C1', 'Columns B–C are in %. Percent of what? We will not assume.']
+		]);
+		expect(valuesOf(answer(alike, { B4: { key: '% of charge' } }))?.[1]).toBe(80);
+		const each = settle({
+			workbook: alike,
+			species,
+			mapping: { ...first(alike).mapping, conditions },
+			answers: { 'B4:Data!units-percent': { key: 'each' } }
+		});
+		expect(each.findings.filter((f) => f.open).map((f) => f.cells.join())).toEqual(['B1', 'C1']);
+	});
+
+	it('B3: while it is open which quantity counts, the response of the other is not asked', () => {
+		const workbook = book([
+			['t (min)', 'A conc. [mM]', 'A area [mAU*s]'],
+			...T.map((t, i): TestCell[] => [t, A[i] * 1000, A[i] * 1e4])
+		]);
+		expect(open(workbook)).toEqual(['B3 B1']);
+		expect(valuesOf(answer(workbook, { B3: { key: 'use:mmol/L' } }))).toEqual(A);
+	});
+
+	it('dates of sampling beside the elapsed time are no series', () => {
+		const workbook = book([
+			['#', 'Sampled at', 'elapsed h', 'A mM', 'initials'],
+			...T.map((t, i): TestCell[] => [
+				i + 1,
+				{ v: 46_000.4 + t / 24, format: 'dd.mm.yyyy hh:mm' },
+				t,
+				A[i] * 1000,
+				'MO'
+			])
+		]);
+		expect(open(workbook)).toEqual([]);
+		expect(timesOf(answer(workbook, {}))).toEqual(T);
+	});
+
+	it('text whose columns are parted by spaces is read as well', () => {
+		const rows = T.map((t, i) => `${t}      ${A[i]}     ${B[i]}`);
+		const workbook = csv(`time/h   A(mol/L)   B(mol/L)\n${rows.join('\n')}\n`);
+		expect(workbook.delimiter).toBe('spaces');
+		expect(valuesOf(answer(workbook, {}), 'B')).toEqual(B);
+	});
+});
