@@ -4,25 +4,13 @@ import { expect, test, type Locator, type Page } from '@playwright/test';
 import XlsxPopulate from 'xlsx-populate';
 import { REVERSIBLE, studyWith } from './drawn';
 import { PEOPLE, signIn, watchConsole } from './support';
+import { cell, counts, giveConditions, MESSY, points } from './sheets';
 import { constantOf, startFit, upload } from './story';
 
-const MESSY = 'tests/fixtures/s02_messy.xlsx';
-
 const finding = (page: Page, rule: string): Locator => page.locator(`[data-finding^="${rule}:50°C!"]`);
-const counts = (page: Page) =>
-	page.locator('section', { hasText: 'To settle before' }).locator('header .small').first();
-const cell = (page: Page, address: string) => page.locator(`[role="gridcell"][id$="-${address}"]`);
 
 async function press(page: Page, rule: string, answer: string | RegExp): Promise<void> {
 	await finding(page, rule).getByRole('button', { name: answer }).click();
-}
-
-/** Charge and temperature by the fields; what they become is at the left of the same page. */
-async function giveConditions(page: Page): Promise<void> {
-	await page.getByRole('textbox', { name: 'Temperature', exact: true }).fill('50');
-	const charges = page.getByRole('group', { name: 'Charge at time zero' });
-	await charges.getByRole('textbox', { name: /^A\b/ }).fill('0.5');
-	await charges.getByLabel(/^Unit of A\b/).selectOption('mol/L');
 }
 
 test('a messy workbook: every question with its cell, corrections with their reason, the constants of the story', async ({
@@ -75,8 +63,7 @@ test('a messy workbook: every question with its cell, corrections with their rea
 	await make.click();
 	await expect(page).toHaveURL(/\/data\/runs\//);
 	await expect(page.getByText('50°C A14: “0:03” read as “3:00”')).toBeAttached();
-	const points = page.getByRole('region', { name: 'Points of the run' });
-	await expect(points.getByRole('row')).toHaveCount(15);
+	await expect(points(page).getByRole('row')).toHaveCount(15);
 
 	await page.goto(`/studies/${study}/fit`);
 	await startFit(page);
@@ -195,40 +182,6 @@ test('pasted cells are read; the same file again is named; what is downloaded is
 	await upload(page, study, MESSY);
 	await expect(page.getByText(/already read as/i).first()).toBeVisible();
 	expect(page.url()).toBe(first);
-});
-
-test('a point is left out with a reason and used again with another; both stay in sight', async ({
-	page
-}) => {
-	await signIn(page, PEOPLE.chemist);
-	const study = await studyWith(page, 'Points left out', REVERSIBLE);
-	await upload(page, study, 'tests/fixtures/s01_clean_50C.csv');
-	await giveConditions(page);
-	await page.getByRole('button', { name: /^Make run/ }).click();
-	await expect(page).toHaveURL(/\/data\/runs\//);
-	await page.waitForLoadState('networkidle');
-	const points = page.getByRole('region', { name: 'Points of the run' });
-	await points.getByRole('button', { name: /^A at 2 h/ }).click();
-	const dialog = page.getByRole('dialog');
-	await expect(dialog.getByRole('button', { name: 'Leave it out' })).toBeDisabled();
-	await dialog.getByLabel('Kind of reason').selectOption('sampling error');
-	await dialog.getByLabel('Reason', { exact: true }).fill('.');
-	await dialog.getByRole('button', { name: 'Leave it out' }).click();
-	await expect(dialog.getByRole('alert').or(dialog.locator('.notice.refusal'))).toBeVisible();
-	await dialog.getByLabel('Reason', { exact: true }).fill('The vial was not closed.');
-	await dialog.getByRole('button', { name: 'Leave it out' }).click();
-	await expect(dialog).toBeHidden();
-	const out = points.getByRole('button', { name: /^A at 2 h.*left out: The vial was not closed/ });
-	await expect(out).toBeVisible();
-	await expect(page.getByText(/revision 2/i).first()).toBeVisible();
-
-	await out.click();
-	await dialog.getByLabel('Reason', { exact: true }).fill('The second vial of the sample agrees.');
-	await dialog.getByRole('button', { name: 'Use it again' }).click();
-	await expect(dialog).toBeHidden();
-	await expect(out).toHaveCount(0);
-	await expect(page.getByText(/revision 3/i).first()).toBeVisible();
-	await expect(page.getByText(/The vial was not closed/).first()).toBeVisible();
 });
 
 test('the template workbook of the scheme comes filled with its columns and reads back without a question', async ({

@@ -1,14 +1,21 @@
 import { describe, expect, it } from 'vitest';
 import { MOST_WHOLE, rowAnchor, rowOfHash, rowWindow } from './point-rows';
 
+const source = (row: number, column?: number) => ({ source: { sheet: 'run', row, ...(column ? { column } : {}) } });
+const rows = [source(6), source(7), source(9)];
+
 describe('the address of a row of a run', () => {
-	it('counts the rows from one, and comes back to the same row', () => {
-		expect(rowAnchor(13)).toBe('row-14');
-		expect(rowOfHash('#row-14', 14)).toBe(13);
+	it('is its row in the sheet, and comes back to the same point', () => {
+		expect(rowAnchor(rows[2], 2)).toBe('row-9');
+		expect(rowOfHash('#row-9', rows)).toBe(2);
+	});
+	it('is its column where times run across, and its place where no sheet is behind it', () => {
+		expect([rowAnchor(source(3, 4), 0), rowOfHash('#row-5', [source(3, 4), source(3, 5)])]).toEqual(['row-4', 1]);
+		expect([rowAnchor({}, 13), rowOfHash('#row-2', [{}, {}])]).toEqual(['row-14', 1]);
 	});
 	it('that is none of the run means nothing', () => {
-		for (const hash of ['', '#row-0', '#row-15', '#row-x', '#points', '#row-99999999'])
-			expect(rowOfHash(hash, 14)).toBeNull();
+		for (const hash of ['', '#row-0', '#row-8', '#row-x', '#points', '#row-99999999'])
+			expect(rowOfHash(hash, rows)).toBeNull();
 	});
 });
 

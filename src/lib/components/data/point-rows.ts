@@ -1,13 +1,24 @@
 /** Rows of a run's table: their addresses, and which of many are drawn. */
 
-/** Where a page elsewhere links to: the row's place among the points of the run, from 1. */
-export const rowAnchor = (index: number): string => `row-${index + 1}`;
+import type { RunContent } from '$lib/schemas/run';
 
-/** The row that an address means; null where it means none of them. */
-export function rowOfHash(hash: string, rows: number): number | null {
+type Timepoint = Pick<RunContent['timepoints'][0], 'source'>;
+
+/**
+ * The number by which a row is known everywhere: its row in the sheet (its column, where times run across), or its place among
+ * the points, from 1, where no sheet is behind it.
+ */
+export const rowNumber = ({ source }: Timepoint, index: number): number =>
+	source ? (source.column ?? source.row) : index + 1;
+
+/** Where a page elsewhere links to. */
+export const rowAnchor = (point: Timepoint, index: number): string => `row-${rowNumber(point, index)}`;
+
+/** Place of the row that an address means; null where it means none of them. */
+export function rowOfHash(hash: string, rows: readonly Timepoint[]): number | null {
 	const found = /^#row-(\d{1,7})$/.exec(hash);
-	const index = found ? Number(found[1]) - 1 : -1;
-	return index >= 0 && index < rows ? index : null;
+	const index = found ? rows.findIndex((point, i) => rowNumber(point, i) === Number(found[1])) : -1;
+	return index < 0 ? null : index;
 }
 
 /** So many rows are drawn whole, and can be searched and printed; of more, those in sight. */
