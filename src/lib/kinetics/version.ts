@@ -1,2 +1,2 @@
 /** Stored with every result; raised whenever a change could alter a digit of one. */
-export const ENGINE_VERSION = '1.0.0';
+export const ENGINE_VERSION = '1.1.0';

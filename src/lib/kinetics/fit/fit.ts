@@ -115,8 +115,9 @@ function runSearch(model: KineticModel, box: SearchBox, request: FitRequest, hoo
 function nothingToSearch(model: KineticModel): SearchOutcome {
 	const residuals = new Float64Array(model.m);
 	const x = new Float64Array(0);
+	const searched = { startsRun: 1, evaluations: 1, elimination: { linear: [], note: null }, inFull: 0 };
 	if (!model.evaluate(x, residuals, new Float64Array(0)))
-		return { minima: [], startsRun: 1, startsConverged: 0, evaluations: 1 };
+		return { ...searched, minima: [], startsConverged: 0 };
 	const result: LeastSquaresResult = {
 		status: 'gradient',
 		converged: true,
@@ -129,7 +130,7 @@ function nothingToSearch(model: KineticModel): SearchOutcome {
 		optimality: 0,
 		activeBounds: new Int8Array(0)
 	};
-	return { minima: [{ result, starts: 1, firstStart: 0 }], startsRun: 1, startsConverged: 1, evaluations: 1 };
+	return { ...searched, minima: [{ result, starts: 1, firstStart: 0 }], startsConverged: 1 };
 }
 
 /** Everything that a finished search hands on to its report. */

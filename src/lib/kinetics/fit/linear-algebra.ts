@@ -45,7 +45,7 @@ function swapColumns(a: Float64Array, m: number, first: number, second: number):
 }
 
 /** Applies I − v vᵀ/v₀ (v in column k of `a`, from row k) to `target` from `offset + k`. */
-function reflect(a: Float64Array, m: number, k: number, target: Float64Array, offset: number): void {
+export function reflect(a: Float64Array, m: number, k: number, target: Float64Array, offset: number): void {
 	const column = k * m;
 	const head = a[column + k];
 	if (head === 0) return;

@@ -4,6 +4,7 @@
  */
 import type { FitFinding, FitRequest } from '../../schemas/fit';
 import { planIssues, structuralFindings } from './checks';
+import { eliminationOf } from './elimination';
 import { identifiabilityFindings } from './identifiability';
 import { mayBeLocal } from './local-slots';
 import { compileProblem } from './problem';
@@ -78,6 +79,7 @@ export function plan(request: FitRequest): FitPlan {
 		pointsUsed: problem.counted,
 		pointsCensored: problem.censored,
 		degreesOfFreedom: problem.counted - problem.free.length,
+		eliminated: eliminationOf(problem, box).linear.map((j) => problem.free[j].id),
 		issues: all
 	};
 }

@@ -76,6 +76,7 @@ export function assembleReport(
 		startsConverged: outcome.startsConverged,
 		engineVersion: ENGINE_VERSION,
 		seed: options.seed,
+		...eliminated(problem, outcome),
 		studied: studiedRange(problem, best.x),
 		...changes
 	};
@@ -124,6 +125,19 @@ function alternativesOf(
 		// The same number of parameters on the same data: only the misfit differs.
 		deltaAicc: deltas ? deltas[k] : best > 0 ? n * Math.log(result.ssr / best) : Number.MAX_VALUE
 	}));
+}
+
+function eliminated(
+	problem: KineticProblem,
+	{ elimination, inFull, startsRun }: SearchOutcome
+): Pick<FitReport, 'eliminated' | 'eliminationNote'> {
+	const ids = elimination.linear.map((j) => problem.free[j].id);
+	const full =
+		inFull > 0
+			? `${inFull} of ${startsRun} starts were searched with all parameters, because an eliminated one would have left its bounds or the projected search did not settle.`
+			: null;
+	const note = [elimination.note, full].filter((s) => s !== null).join(' ');
+	return { eliminated: inFull < startsRun ? ids : [], ...(note ? { eliminationNote: note } : {}) };
 }
 
 function studiedRange(problem: KineticProblem, x: ArrayLike<number>): FitReport['studied'] {

@@ -1,13 +1,15 @@
 /**
- * Many starts, few answers: runs Levenberg–Marquardt from every starting point, gathers the distinct minima and polishes them.
+ * Many starts, few answers: descends from every starting point (`rough-search.ts`), gathers the distinct minima and polishes them.
  *
  * Two end points are the same minimum when their parameters agree, or when the misfit between them (at the midpoint) is no
  * larger than at both: then they lie in one flat valley. Everything is in a fixed order, so the same seed gives the same bits.
  */
 import { FitCancelled } from './cancelled';
+import type { Elimination } from './elimination';
 import type { KineticModel } from './model';
 import { LeastSquaresWorkspace, type LeastSquaresOptions, type LeastSquaresResult } from './least-squares';
 import { leastSquares } from './levenberg-marquardt';
+import { RoughSearch } from './rough-search';
 import type { SearchBox } from './starts';
 
 export { FitCancelled };
@@ -26,6 +28,9 @@ export interface SearchOutcome {
 	startsRun: number;
 	startsConverged: number;
 	evaluations: number;
+	/** Parameters that were found by linear least squares on the way, and how many descents had to do without that. */
+	elimination: Elimination;
+	inFull: number;
 }
 
 export interface SearchHooks {
@@ -51,13 +56,9 @@ export function searchMinima(
 	let evaluations = 0;
 	let best = Infinity;
 	const common = { lower: box.lower, upper: box.upper, cancelled };
+	const descent = new RoughSearch(model, box, workspace, cancelled);
 	starts.forEach((start, k) => {
-		const rough = leastSquares(
-			model,
-			start,
-			{ ...common, ftol: 1e-6, xtol: 1e-4, maxEvaluations: 120, factor: 10 },
-			workspace
-		);
+		const rough = descent.from(start);
 		evaluations += rough.evaluations;
 		if (rough.status === 'cancelled') throw new FitCancelled();
 		if (rough.converged) startsConverged++;
@@ -79,7 +80,8 @@ export function searchMinima(
 		}
 	}
 	minima.sort((a, b) => a.result.ssr - b.result.ssr);
-	return { minima, startsRun: starts.length, startsConverged, evaluations };
+	const { elimination, inFull } = descent;
+	return { minima, startsRun: starts.length, startsConverged, evaluations, elimination, inFull };
 }
 
 /** Evaluations of one refinement, and how often it is taken up again where they run out. */
