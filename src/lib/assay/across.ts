@@ -35,7 +35,8 @@ function timesAcross(view: SheetView, cells: GridCell[]): number | null {
 	const filled = cells.filter((c) => c[1] !== null);
 	if (filled.length <= FEWEST) return null;
 	const lead = filled.findIndex((c) => typeof c[1] === 'string');
-	if (lead < 0 || lead > 1) return null;
+	// Rows of a text file are all texts: those that begin with a number are samples.
+	if (lead < 0 || lead > 1 || !/\p{L}/u.test(String(filled[lead][1]))) return null;
 	const rest = filled.slice(lead + 1);
 	const kinds = rest.map((c) => readTime(view.workbook, c, null).kind);
 	const times = kinds.filter((k) => k !== 'text' && k !== 'error' && k !== 'blank').length;

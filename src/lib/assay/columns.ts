@@ -195,7 +195,8 @@ export function guessRole(header: ColumnHeader, facts: ColumnFacts, matched: str
 	if (words.isSampleWord(last)) return 'sample';
 	if (words.isInjectionWord(last)) return 'injection';
 	if (words.isCommentWord(last) || words.isCounterWord(last) || isRetentionColumn(last)) return 'ignore';
-	if (words.isTotalWord(last) || words.isClockWord(last)) return 'ignore';
+	// One column is the time; others that speak of it (numbers of time points, times of day) stay on the sheet.
+	if (words.isTotalWord(last) || words.isClockWord(last) || words.isTimeWord(last)) return 'ignore';
 	if (header.unit?.of === 'time' || header.unit?.of === 'duration') return 'ignore';
 	if (facts.numbers === 0 || facts.dates === facts.numbers) return 'ignore';
 	return name === '' && header.unit === null ? 'ignore' : 'species';

@@ -30,7 +30,7 @@ export function askCommonUnits(
 				: `${capital(places)} have no unit. Choose one; we will not assume.`,
 			options: [
 				...(percent ? PERCENT_BASES : VALUE_UNITS).map((unit) => ({
-					key: unit as string,
+					key: unit,
 					label: unitLabel(unit)
 				})),
 				{ key: 'each', label: 'They differ: ask for each' }

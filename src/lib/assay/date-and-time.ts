@@ -51,13 +51,34 @@ function dayPart(r: TimeReading): number | null {
 	return (r.parts[0] * 3600 + r.parts[1] * 60 + (r.parts[2] ?? 0)) / 86_400;
 }
 
+/** "Day": 1, 2, 3 beside the times of day. */
+function isDayColumn(ex: Examination, column: number): boolean {
+	const header = ex.mapping.headerRows
+		.map((r) => ex.shown(r, column))
+		.join(' ')
+		.trim();
+	return /^(day|tag|jour|d[ií]a|giorno|dag)s?$/i.test(header);
+}
+
+/** A day by its number, on a calendar without clock changes of its own: 2 January 1900 and on. */
+const dayNumber = (n: number): Stamp => ({
+	kind: 'stamp',
+	days: 2 + n,
+	utcOffsetMin: 0,
+	orders: 'sure',
+	text: `day ${n}`
+});
+
 /** Whole dates of each sample's row; a date written once holds for the rows below it. Null when the column holds anything else. */
 function datesOf(ex: Examination, samples: Sample[], column: number): Stamp[] | null {
 	const dates: Stamp[] = [];
+	const counted = isDayColumn(ex, column);
 	for (const s of samples) {
 		const reading = ex.time(s.time.row, column);
 		const before = dates.at(-1);
 		if (reading.kind === 'stamp' && Number.isInteger(reading.days)) dates.push(reading);
+		else if (reading.kind === 'number' && counted && Number.isInteger(reading.value))
+			dates.push(dayNumber(reading.value));
 		else if (reading.kind === 'blank' && before) dates.push(before);
 		else return null;
 	}

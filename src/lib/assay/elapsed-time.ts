@@ -21,7 +21,12 @@ export function elapsed(
 	if (clock === null) return readings.map(() => null);
 	if (clock) return clockSeconds(ex, samples, readings);
 	const colon = colonForm(ex, samples, readings, header);
-	return readings.map((r) => secondsOf(r, unit, colon));
+	const share = durationShare(ex, samples, readings, header);
+	return readings.map((r) => {
+		const seconds = secondsOf(r, unit, colon);
+		if (r.kind !== 'serial' || seconds === null) return seconds;
+		return share === null ? null : seconds / share;
+	});
 }
 
 export function secondsOf(r: TimeReading, unit: UnitFound, colon: 'h:mm' | 'mm:ss' | null): number | null {
@@ -32,6 +37,42 @@ export function secondsOf(r: TimeReading, unit: UnitFound, colon: 'h:mm' | 'mm:s
 	if (r.parts.length === 3) return r.parts[0] * 3600 + r.parts[1] * 60 + r.parts[2];
 	if (colon === null) return null;
 	return colon === 'h:mm' ? r.parts[0] * 3600 + r.parts[1] * 60 : r.parts[0] * 60 + r.parts[1];
+}
+
+/** Durations below a header in min or s: 1:30 typed for 1 min 30 s is stored as 1 h 30 min. Divisor of the stored time; null while it is asked. */
+function durationShare(
+	ex: Examination,
+	samples: Sample[],
+	readings: TimeReading[],
+	header: ColumnHeader | undefined
+): number | null {
+	const own = readings.flatMap((r, i) =>
+		r.kind === 'serial' && r.days > 0 && !ex.isCorrected(samples[i].time.row, samples[i].time.column)
+			? [i]
+			: []
+	);
+	const unit = header?.unit?.of === 'time' ? header.unit.unit : null;
+	if (own.length === 0 || (unit !== 'min' && unit !== 's')) return 1;
+	const example = readings[own[0]] as TimeReading & { kind: 'serial' };
+	const cell = ex.at(samples[own[0]].time.row, samples[own[0]].time.column);
+	const minutes = secondsIn(daysToSeconds(example.days), 'min');
+	const taken = ex.ask({
+		rule: 'B17',
+		level: 'ask',
+		cells: own.map((i) => ex.at(samples[i].time.row, samples[i].time.column)),
+		key: 'durations',
+		found: `durations such as ${example.text} below a header in ${unit}`,
+		expected: `plain numbers in ${unit}, or your word on what the durations are`,
+		message: `${cell} is stored as ${clockText(minutes * 60)} (${figure(minutes)} min), and its header says ${unit}. Hours and minutes as stored, or minutes and seconds (${figure(minutes / 60)} min)?`,
+		options: [
+			{ key: 'h:mm', label: `Hours and minutes, as stored: ${figure(minutes)} min` },
+			{ key: 'mm:ss', label: `Minutes and seconds: ${figure(minutes / 60)} min` }
+		]
+	});
+	if (!taken) return null;
+	if (taken.key === 'mm:ss')
+		ex.conversions.push(`Durations such as ${example.text} in ${cell} read as minutes and seconds.`);
+	return taken.key === 'mm:ss' ? 60 : 1;
 }
 
 /** "1:30" as text: hours and minutes, or minutes and seconds? The header tells, or the person. Typed corrections follow. */

@@ -19,6 +19,7 @@ import { convertValues } from './conversions';
 import { noteCopies } from './copies';
 import { settleDecimal } from './decimal-rule';
 import { type Checks, CHECKS, Examination } from './examination';
+import { noteHeaders, noteSpreads, noteUnnamed } from './header-notes';
 import { askHidden } from './hidden';
 import { statedLimits } from './limits';
 import { massBalance } from './mass-balance';
@@ -26,16 +27,7 @@ import { asOnSheet, turnBlock } from './orientation';
 import { plausibility } from './plausibility';
 import { averageColumns } from './replicate-columns';
 import { samplesOf, timeColumn } from './samples';
-import {
-	askBlock,
-	dataRows,
-	noteColours,
-	noteFooters,
-	noteHeaders,
-	noteMergesAndDates,
-	noteSpreads,
-	noteWithin
-} from './structure';
+import { askBlock, dataRows, noteColours, noteFooters, noteMergesAndDates, noteWithin } from './structure';
 import { headersOf, tableOf, viewOf, votesOf } from './tables';
 import { temperatureLog, type TemperatureLog } from './temperature-log';
 import { timeColumnByHeader } from './time-column';
@@ -140,6 +132,7 @@ function settleStructure(
 	const joined = [...headers.values()].filter((h) => h.group !== undefined);
 	noteHeaders(ex, joined);
 	noteSpreads(ex, headers);
+	noteUnnamed(ex, headers, dataRows(ex).slice(0, 500));
 }
 
 /** The first name that is read as a time, of a column that is not headed as one. */

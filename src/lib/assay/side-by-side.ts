@@ -20,7 +20,9 @@ export function sideBySide(view: SheetView, looks: RowLook[], band: Wide): Found
 	const cuts = [band.first];
 	for (let i = 1; i < starts.length; i++) {
 		const between = filled.filter((c) => c > starts[i - 1] && c < starts[i]);
-		if (between.length > 0) cuts.push(cutBefore(starts[i], filled, starts[i - 1]));
+		// Sample names between "Time point" and "Time (min)" do not make two tables.
+		if (between.some((c) => rows.some((look) => look.values.includes(c))))
+			cuts.push(cutBefore(starts[i], filled, starts[i - 1]));
 	}
 	return cuts.map((first, i) => {
 		const last = i + 1 < cuts.length ? cuts[i + 1] - 1 : band.last;

@@ -1,8 +1,6 @@
 /** Rules about the table as a whole: B1, B2, B27, B30, B31, B37 and errors outside the block (B25). */
 import { CELL } from '$lib/schemas/sheet';
-import type { ColumnHeader } from './columns';
 import type { Examination } from './examination';
-import { isSpreadHeader } from './words';
 import { capital, figure, plural, someOf } from './wording';
 import { hasFlag } from './grid';
 
@@ -83,40 +81,6 @@ function askAcross(ex: Examination, time: number, doubts: string[]): void {
 		expected: 'one row a sample, or your word that each row is a series',
 		message: `Times run across row ${time || block.firstColumn} of "${ex.sheet}"${also}. Read each row of ${ex.places.range(block)} as a species and each column as a sample?`,
 		options: [{ key: 'right', label: 'Yes, each row is a series' }]
-	});
-}
-
-/** B2: headers in several rows were joined. */
-export function noteHeaders(ex: Examination, joined: { column: number; header: string }[]): void {
-	const { headerRows } = ex.mapping;
-	const where = ex.places.samples(headerRows);
-	if (headerRows.length < 2 || joined.length === 0) return;
-	ex.note({
-		rule: 'B2',
-		cells: joined.map((h) => ex.at(headerRows[0], h.column)),
-		key: where,
-		found: `header in ${where}`,
-		message: `The header spans ${where}; its parts were joined, for example "${joined[0].header}".`
-	});
-}
-
-/** Columns that hold the scatter of values: shown, and no weight of anything. */
-export function noteSpreads(ex: Examination, headers: Map<number, ColumnHeader>): void {
-	const own = ex.mapping.columns.filter((c) => {
-		const header = headers.get(c.column);
-		return (
-			c.role === 'ignore' && header !== undefined && isSpreadHeader(header.parts.at(-1) ?? header.header)
-		);
-	});
-	if (own.length === 0) return;
-	const where = capital(ex.places.manySeries(own.map((c) => c.column)));
-	ex.note({
-		rule: 'B27',
-		cells: own.map((c) => ex.at(ex.mapping.headerRows.at(-1) ?? ex.mapping.block.firstRow, c.column)),
-		key: 'spreads',
-		found: someOf(own.map((c) => `"${headers.get(c.column)?.header ?? ''}"`)),
-		expected: 'values',
-		message: `${where} ${own.length === 1 ? 'holds' : 'hold'} the scatter of values; shown, and not used as weights.`
 	});
 }
 

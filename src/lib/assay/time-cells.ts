@@ -32,8 +32,10 @@ function dropEmpty(ex: Examination, samples: Sample[], channels: Channel[]): Sam
 	if (channels.length === 0 || ex.mapping.layout === 'long') return samples;
 	const places = (s: Sample) => [...s.cells.values()];
 	const empty = new Set(samples.filter((s) => timeOf(ex, s).kind === 'blank').map((s) => s.row));
+	if (empty.size === 0) return samples;
 	for (const s of samples)
-		if (places(s).some((p) => ex.value(p.row, p.column).kind !== 'blank')) empty.delete(s.row);
+		if (empty.has(s.row) && places(s).some((p) => ex.value(p.row, p.column).kind !== 'blank'))
+			empty.delete(s.row);
 	if (empty.size === 0) return samples;
 	const rows = [...empty];
 	ex.note({

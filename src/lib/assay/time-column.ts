@@ -30,6 +30,8 @@ function timeRank(texts: string[]): number {
 		texts.some((text) => !bare(text) && !speaksOfTime(text))
 	)
 		return 0;
+	// "Day | Time": the number of the day is no elapsed time where a time of day stands beside it.
+	if (/^(day|tag|jour|d[ií]a|giorno|dag)s?$/i.test(texts.join(' ').trim())) return 1;
 	if (isClockWord(names)) return isTimeWord(names) || /uhr|clock|heure|hora/i.test(names) ? 2 : 1;
 	const unit = texts.some((text) =>
 		['time', 'duration'].includes((splitHeader(text).unit ?? bare(text))?.of ?? '')

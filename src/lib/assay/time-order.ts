@@ -2,14 +2,15 @@
 import type { Block, TimeUnit } from '$lib/schemas/sheet';
 import { secondsOf } from './elapsed-time';
 import type { Examination } from './examination';
-import { because, capital } from './wording';
+import { because, capital, someOf } from './wording';
 import type { Timed } from './samples';
 
 export function stopBackwards(
 	ex: Examination,
-	timed: Timed[],
+	all: Timed[],
 	unit: TimeUnit
 ): { samples: Timed[]; rest: Block | null } {
+	const timed = askBeforeZero(ex, all);
 	const turned = askDescending(ex, timed);
 	if (turned) return { samples: turned, rest: null };
 	const kept: Timed[] = [];
@@ -40,6 +41,34 @@ export function stopBackwards(
 		}
 	}
 	return { samples: kept, rest };
+}
+
+/** Samples taken before time zero, such as −5 min: the kinetics begin at zero, so they are asked about. */
+function askBeforeZero(ex: Examination, timed: Timed[]): Timed[] {
+	const early = timed.filter((t) => t.seconds !== null && t.seconds < 0);
+	if (early.length === 0) return timed;
+	const cells = [...new Set(early.map((t) => ex.at(t.sample.time.row, t.sample.time.column)))];
+	const one = cells.length === 1;
+	const taken = ex.ask({
+		rule: 'B18',
+		level: 'ask',
+		cells,
+		key: 'before-zero',
+		found: `${showTime(ex, early[0])}, before time zero`,
+		expected: 'times from zero upward',
+		message: `${someOf(cells)} ${one ? 'lies' : 'lie'} before time zero (${showTime(ex, early[0])}). A sample from before the reaction is left out; keep ${one ? 'it' : 'them'} only if the reaction had begun.`,
+		options: [
+			{ key: 'leave-out', label: `Leave ${one ? 'it' : 'them'} out: taken before the reaction` },
+			{ key: 'keep', label: 'Keep: the reaction had begun' }
+		]
+	});
+	if (taken?.key === 'keep') {
+		ex.conversions.push(`${someOf(cells, 8)}: kept before time zero${because(taken.reason)}.`);
+		return timed;
+	}
+	if (taken)
+		ex.conversions.push(`${someOf(cells, 8)}: left out, taken before time zero${because(taken.reason)}.`);
+	return timed.filter((t) => !early.includes(t));
 }
 
 /** Times that fall from the first row to the last: one question in place of a Stop each. Null when they do not, or are to be asked row by row. */

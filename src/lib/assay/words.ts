@@ -116,7 +116,7 @@ const FOOTER = begins(
 );
 /** Means and spreads of other rows, by their name alone. */
 const STATISTIC =
-	/^(means?|average|avg\.?|mittel(wert)?|mw|moyenne|media|promedio|x̄|median|s\.?d\.?|std\.? ?dev\.?|stdev|st\.? ?dev\.?|standard deviation|stabw\.?|standardabweichung|[ée]cart[- ]type|%? ?rsd ?%?|rel\.? ?sd|cv ?%?|vk ?%?|variance|varianz)\.?(?: ?[(\[].*[)\]])?$/i;
+	/^(means?|average|avg\.?|mittel(wert)?|mw|moyenne|media|promedio|x̄|median|s\.?d\.?|std\.? ?dev\.?|stdev|st\.? ?dev\.?|standard deviation|stabw\.?|standardabweichung|[ée]cart[- ]type|%? ?rsd ?%?|rel\.? ?sd|cv ?%?|vk ?%?|variance|varianz)\.?(?: ?[([].*[)\]])?$/i;
 export const isStatisticName = (text: string): boolean => STATISTIC.test(text.trim());
 
 /** What stands for the scatter of values in a header: "A SD", "B %RSD", "±". */

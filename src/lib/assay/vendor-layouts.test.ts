@@ -1,4 +1,4 @@
-/** Sheets as instruments, offices and contract laboratories send them (all invented): what is proposed, and what is asked before anything counts. */
+/** Sheets as instruments, offices and contract laboratories send them (all invented): several runs on a sheet, headers and layout. */
 import { describe, expect, it } from 'vitest';
 import {
 	answer,
@@ -26,139 +26,6 @@ const open = (workbook: GridWorkbook) => {
 };
 const notes = (workbook: GridWorkbook) =>
 	first(workbook).findings.flatMap((f) => (f.level === 'note' ? [f.message] : []));
-
-describe('lists of a chromatography system', () => {
-	const list = csv(
-		'Sequenzbericht;;;;;\nMethode;HX14_rev3;;;;\nErstellt;12.11.2026 14:03;;;;\n;;;;;\n' +
-			'Probenname;Inj.-Nr.;Peakname;Ret.-Zeit [min];Fläche [mAU*s];Fläche-%\n' +
-			[0, 30, 60, 120, 240]
-				.flatMap((t, i) => [
-					`RS-112_t=${t} min;1;HX-14;7,31;${10 - i}.234,5;${95 - 15 * i},5`,
-					`RS-112_t=${t} min;1;HX-14b;9,02;${1 + i}.039,1;${4 + 15 * i},5`
-				])
-				.join('\n')
-	);
-
-	it('with the time inside the sample name are read by it, and that is asked with an example', () => {
-		const table = first(list);
-		expect([table.mapping.layout, table.mapping.decimal, table.peaks?.map((p) => p.species)]).toEqual([
-			'long',
-			',',
-			['A', 'B']
-		]);
-		expect(table.findings.find((f) => f.rule === 'B1')?.message).toContain(
-			'times read from the names in column A, "RS-112_t=0 min" as 0 min'
-		);
-		const settled = answer(list, { B1: { key: 'right' }, B22: { key: 'uncorrected' } });
-		expect(timesOf(settled)).toEqual([0, 30, 60, 120, 240]);
-		expect(settled.run?.timeUnit).toBe('min');
-		expect(valuesOf(settled)).toEqual([95.5, 80.5, 65.5, 50.5, 35.5]);
-	});
-
-	it('with names such as "IPC T0", "IPC 30 min", "IPC 2h" and one without a time ask for that one', () => {
-		const rows: TestCell[][] = [
-			['Sample', 'A (area %)', 'B (area %)'],
-			['IPC T0', 99, 1],
-			['IPC 30 min', 80, 20],
-			['IPC 1 h', 62, 38],
-			['IPC 2h', 40, 60],
-			['IPC 4h', 15, 85],
-			['EOR', 2, 98]
-		];
-		expect(open(book(rows))).toEqual(['B18 A7', 'B17 A2', 'B1 A2', 'B22 B1']);
-		const settled = answer(book(rows), {
-			B1: { key: 'right' },
-			B17: { key: 'convert' },
-			B18: { key: 'leave-out' },
-			B22: { key: 'uncorrected' }
-		});
-		expect(timesOf(settled)).toEqual([0, 0.5, 1, 2, 4]);
-	});
-
-	it('names of samples are no times where a column is headed as time', () => {
-		const rows = T.map((t, i): TestCell[] => [`QX 2 h no. ${i}, 5 min`, t, A[i]]);
-		expect(timesOf(answer(book([['Sample', 'Time (h)', 'A (mol/L)'], ...rows]), {}))).toEqual(T);
-	});
-
-	it('peaks by relative retention time: the named one is matched, the others are asked', () => {
-		const workbook = book([
-			['Sample ID', 'Time', 'RRT 0.87', 'HX-14 (RRT 1.00)', 'RRT 1.21', 'Total'],
-			[null, 'h', 'area %', 'area %', 'area %', 'area %'],
-			...T.map((t, i): TestCell[] => [`S${i}`, t, i, 99 - i * 2, 1 + i, 100])
-		]);
-		expect(roles(workbook).map(([role, , id]) => [role, id])).toEqual([
-			['sample', null],
-			['time', null],
-			['species', null],
-			['species', 'A'],
-			['species', null],
-			['ignore', null]
-		]);
-		expect(open(workbook)).toEqual(['B32 C2', 'B32 E2']);
-	});
-});
-
-describe('means and spreads', () => {
-	it('columns of means are read, columns of their scatter are shown and no weights', () => {
-		for (const spread of ['A SD', 'A stdev [mol/L]', 'A %RSD', '±', 'A ± ']) {
-			const workbook = book([
-				['Time (h)', 'A mean (mol/L)', spread, 'n'],
-				...T.map((t, i): TestCell[] => [t, A[i], 0.01, 3])
-			]);
-			expect(roles(workbook).map(([role, , id]) => [role, id])).toEqual([
-				['time', null],
-				['species', 'A'],
-				['ignore', null],
-				['ignore', null]
-			]);
-			expect(notes(workbook)).toEqual([
-				'Column C holds the scatter of values; shown, and not used as weights.'
-			]);
-			expect(valuesOf(answer(workbook, {}))).toEqual(A);
-		}
-	});
-
-	it('rows of means between the samples are left out, and the samples below them are not lost', () => {
-		const workbook = book([
-			['Time (h)', 'Sample', 'Inj', 'A (mol/L)'],
-			...T.flatMap((t, i): TestCell[][] => [
-				[t, `S${i}`, 1, A[i]],
-				[t, `S${i}`, 2, A[i] + 0.02],
-				['Mean', null, null, A[i] + 0.01],
-				['RSD %', null, null, 1.2]
-			])
-		]);
-		expect(first(workbook).range).toBe('A2:D19');
-		expect(notes(workbook).join('\n')).toContain(
-			'Rows 4, 5, 8, 9, 12, 13, 16, 17 between the samples ("Mean", "RSD %") are shown and not used.'
-		);
-		expect(valuesOf(answer(workbook, {}))?.map((v) => Number(v).toFixed(2))).toEqual([
-			'0.51',
-			'0.41',
-			'0.31',
-			'0.21',
-			'0.11'
-		]);
-	});
-
-	it('rows called "Mean" in the sample column carry a time and are asked about', () => {
-		const workbook = book([
-			['Time (h)', 'Sample', 'A (mol/L)'],
-			...T.flatMap((t, i): TestCell[][] => [
-				[t, `S${i}-1`, A[i]],
-				[t, `S${i}-2`, A[i]],
-				[t, 'Mean', A[i]]
-			])
-		]);
-		expect(open(workbook)).toEqual(['B27 B4']);
-		expect(timesOf(answer(workbook, { B27: { key: 'leave-out' } }))).toHaveLength(10);
-	});
-
-	it('samples called R1, R2 are not taken for a coefficient of determination', () => {
-		const rows = T.map((t, i): TestCell[] => [`R${i + 1}`, t, A[i]]);
-		expect(timesOf(answer(book([['Sample', 'Time (h)', 'A (mol/L)'], ...rows]), {}))).toEqual(T);
-	});
-});
 
 describe('several runs on a sheet', () => {
 	it('under labels of their own with one time column are two runs, each with its temperature', () => {
@@ -221,37 +88,6 @@ describe('several runs on a sheet', () => {
 				'Rows 11–12 of "Data" hold numbers and belong to no table; not used. Mark them by hand if they belong to the data.'
 			]
 		]);
-	});
-});
-
-describe('times', () => {
-	it('that fall from the first row to the last are one question', () => {
-		const rows = T.map((t, i): TestCell[] => [t, A[i]]).reverse();
-		const workbook = book([['Time (h)', 'A (mol/L)'], ...rows]);
-		expect(open(workbook)).toEqual(['B18 A2']);
-		const settled = answer(workbook, { B18: { key: 'reverse' } });
-		expect([timesOf(settled), valuesOf(settled)]).toEqual([T, A]);
-		expect(settled.conversions).toContain('Times that fall from 8 to 0 read from the last row.');
-	});
-
-	it('with one slip are one question, whatever follows', () => {
-		const rows = [0, 1, 20, 3, 4, 5].map((t, i): TestCell[] => [t, 0.5 - i / 20]);
-		expect(open(book([['Time (h)', 'A (mol/L)'], ...rows]))).toEqual(['B18 A5']);
-	});
-
-	it('written T0, 30min, 1h, overnight', () => {
-		const workbook = book([
-			['Time', 'A (mol/L)'],
-			['T0', 0.5],
-			['30min', 0.4],
-			['1h', 0.3],
-			['2h', 0.2],
-			['overnight', 0.02]
-		]);
-		expect(open(workbook)).toEqual(['B18 A6', 'B17 A3']);
-		expect(
-			timesOf(answer(workbook, { B17: { key: 'convert' }, B18: { key: 'enter', values: { value: '16 h' } } }))
-		).toEqual([0, 0.5, 1, 2, 16]);
 	});
 });
 
@@ -366,5 +202,18 @@ describe('headers and layout', () => {
 		const workbook = csv(`time/h   A(mol/L)   B(mol/L)\n${rows.join('\n')}\n`);
 		expect(workbook.delimiter).toBe('spaces');
 		expect(valuesOf(answer(workbook, {}), 'B')).toEqual(B);
+	});
+
+	it('B32: a column of numbers without a name is noted, not passed over in silence', () => {
+		const workbook = book([['Time (h)', 'A (mol/L)', null], ...T.map((t, i): TestCell[] => [t, A[i], B[i]])]);
+		expect(notes(workbook)).toEqual([
+			'Column C holds numbers and has no header; shown and not used. Say what it is if it belongs to the data.'
+		]);
+	});
+
+	it('B6: decimal commas in a file parted by commas stop, because no number can be told', () => {
+		const workbook = csv('Time (h),A (mol/L)\n0,0,5\n1,0,4\n2,0,3\n4,0,2\n');
+		expect(first(workbook).findings[0]).toMatchObject({ level: 'stop', rule: 'B6', open: true });
+		expect(first(workbook).findings[0].message).toContain('commas seem to part both columns and decimals');
 	});
 });
