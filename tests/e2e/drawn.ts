@@ -38,9 +38,8 @@ export const ONE_WAY = contentOf([
 	{ from: 'B', to: 'C', k: 0.2 }
 ]);
 
-/** A new study whose scheme is there already; the page is left away from the station, which would save its own. */
-export async function studyWith(page: Page, name: string, content: unknown): Promise<string> {
-	const study = await newStudy(page, name, 'hold time at 50 °C');
+/** Puts this content into the study's first scheme, as its next version. The page is left away from the station, which would save its own. */
+export async function putScheme(page: Page, study: string, content: unknown): Promise<void> {
 	await page.goto(`/studies/${study}/data`, { waitUntil: 'networkidle' });
 	const answer = await page.evaluate(
 		async ({ study, content }) => {
@@ -58,6 +57,12 @@ export async function studyWith(page: Page, name: string, content: unknown): Pro
 		{ study, content }
 	);
 	expect(answer).toBe('');
+}
+
+/** A new study whose scheme is there already. */
+export async function studyWith(page: Page, name: string, content: unknown): Promise<string> {
+	const study = await newStudy(page, name, 'hold time at 50 °C');
+	await putScheme(page, study, content);
 	return study;
 }
 

@@ -77,7 +77,7 @@ describe('a row of the table', () => {
 
 	it('gives no limit below zero', () => {
 		expect(rangeWords({ ...value, value: 0.0004, standardError: 0.0012, interval: [-0.002, 0.0028] })).toBe(
-			'0.0000 to 0.0028'
+			'0 to 0.0028'
 		);
 	});
 });

@@ -65,7 +65,7 @@ export function shownInterval(q: DecisionQuantity): {
 
 /** No time and no amount lies below zero. */
 const end = (x: number | null, error: number | null): string =>
-	x === null ? 'open' : roundToError(Math.max(0, x), error);
+	x === null ? 'open' : x <= 0 ? '0' : roundToError(x, error);
 
 export function rangeWords(q: DecisionQuantity): string {
 	const { ends } = shownInterval(q);

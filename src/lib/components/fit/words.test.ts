@@ -1,7 +1,7 @@
 import { describe, expect, it } from 'vitest';
 import type { FitReport } from '$lib/schemas/fit';
 import type { SchemeContent } from '$lib/schemas/scheme';
-import { headline, inPlainWords, parameterName, plainName, stepWords } from './words';
+import { fittedNames, headline, inPlainWords, localRun, parameterName, plainName, stepWords } from './words';
 
 const scheme: SchemeContent = {
 	species: [
@@ -93,5 +93,21 @@ describe('the headline of a fit', () => {
 	it('counts what is determined', () => {
 		const r = report({ parameters: [fitted('s1.forward.kRef'), fitted('x.forward.kRef')] });
 		expect(headline(r, scheme)).toBe('Both fitted constants are determined by these data.');
+	});
+});
+
+describe('names of constants that each run has for itself', () => {
+	const parameters = [
+		{ id: 'r1.s1.forward.k', local: { run: 'r1', of: 's1.forward.kRef' } },
+		{ id: 'r2.s1.forward.k', local: { run: 'r2', of: 's1.forward.kRef' } },
+		{ id: 's2.forward.kRef' }
+	] as FitReport['parameters'];
+	const two = { ...scheme, steps: [scheme.steps[0], { ...scheme.steps[0], id: 's2' }] };
+
+	it('stand once in a sentence and by run in a table', () => {
+		const report = { parameters, fittedIds: parameters.map((p) => p.id) };
+		expect(fittedNames(report, two)).toEqual(['k₁ of each run', 'k₂']);
+		expect(localRun(report, 'r2.s1.forward.k', { r2: 'Run 2' })).toBe('Run 2');
+		expect(localRun(report, 's2.forward.kRef')).toBeNull();
 	});
 });

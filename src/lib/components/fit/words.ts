@@ -44,3 +44,26 @@ export function headline(
 	if (fitted.length === 2) return 'Both fitted constants are determined by these data.';
 	return `All ${numberWord(fitted.length)} fitted constants are determined by these data.`;
 }
+
+/** Name of the run to which a parameter is local, where several share one symbol; null for what all runs share. */
+export function localRun(
+	report: Pick<FitReport, 'parameters'>,
+	id: string,
+	runNames: Record<string, string> = {}
+): string | null {
+	const run = report.parameters.find((p) => p.id === id)?.local?.run;
+	return run === undefined ? null : (runNames[run] ?? run);
+}
+
+/** What was fitted, each symbol once: "k₁ of each run, k₂ and E₂". */
+export function fittedNames(
+	report: Pick<FitReport, 'parameters' | 'fittedIds'>,
+	scheme: SchemeContent,
+	runNames: Record<string, string> = {}
+): string[] {
+	const names = report.fittedIds.map((id) => {
+		const name = plainName(parameterName(id, scheme, runNames));
+		return localRun(report, id) === null ? name : `${name} of each run`;
+	});
+	return [...new Set(names)];
+}
