@@ -4,7 +4,7 @@
  * It follows the minimum from the last value held, moved along the covariance. That alone can stay in a local minimum (slow
  * and fast steps exchanged), or where a constant has run so far down or up that ln k has no effect and so no gradient. `others`
  * therefore gives further places to begin: the last point and the estimate with every such parameter brought back into the span
- * that the data can show, then points of the seeded low-discrepancy sequence of the search itself.
+ * that the data can show, both with two steps exchanged, then points of the seeded low-discrepancy sequence of the search itself.
  *
  * | symbol | variable |
  * | ------ | -------- |
@@ -50,6 +50,7 @@ export class HeldFit {
 	private readonly lower: Float64Array;
 	private readonly upper: Float64Array;
 	private readonly sequence: Float64Array[];
+	private readonly exchanges: [number, number][][];
 
 	constructor(private readonly input: HeldFitInput) {
 		const { model, box, best } = input;
@@ -58,6 +59,7 @@ export class HeldFit {
 		this.upper = new Float64Array(model.p);
 		this.last = best.x.slice();
 		this.sequence = startingPoints(box, OTHER_STARTS + 1, SEED).slice(1);
+		this.exchanges = exchangesOf(model.problem.free.map((slot) => slot.id));
 	}
 
 	/**
@@ -122,13 +124,24 @@ export class HeldFit {
 	}
 
 	private others(): Float64Array[] {
-		return [this.inSight(this.last), this.inSight(this.input.best.x), ...this.sequence.map((x) => x.slice())];
+		const near = [this.inSight(this.last), this.inSight(this.input.best.x)];
+		return [...near, ...near.flatMap((x) => this.exchanged(x)), ...this.sequence.map((x) => x.slice())];
 	}
 
 	/** Every parameter brought back into the span that the data can show. */
 	private inSight(x: Float64Array): Float64Array {
 		const { from, to } = this.input.box;
 		return x.map((v, k) => Math.min(Math.max(v, from[k]), to[k]));
+	}
+
+	/** The point with the constants and energies of two steps exchanged, for every two steps. */
+	private exchanged(x: Float64Array): Float64Array[] {
+		const { exchanges } = this;
+		return exchanges.map((pairs) => {
+			const y = x.slice();
+			for (const [a, b] of pairs) [y[a], y[b]] = [x[b], x[a]];
+			return y;
+		});
 	}
 
 	/** Null where the model cannot be computed at the start. */
@@ -162,6 +175,22 @@ export class HeldFit {
 		if (result.status === 'cancelled') throw new FitCancelled();
 		return result;
 	}
+}
+
+/** Places of the like parameters of every two forward steps: constants with constants, energies with energies. */
+function exchangesOf(ids: string[]): [number, number][][] {
+	const place = new Map(ids.map((id, k) => [id, k]));
+	const steps = ids
+		.filter((id) => id.endsWith('.forward.kRef'))
+		.map((id) => id.slice(0, -'.forward.kRef'.length));
+	return steps.flatMap((a, i) =>
+		steps.slice(i + 1).map((b) =>
+			['forward.kRef', 'forward.activationEnergy'].flatMap((quantity): [number, number][] => {
+				const [first, second] = [place.get(`${a}.${quantity}`), place.get(`${b}.${quantity}`)];
+				return first === undefined || second === undefined ? [] : [[first, second]];
+			})
+		)
+	);
 }
 
 /** The same points for the same problem, always. */
