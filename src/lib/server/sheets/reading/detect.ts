@@ -1,5 +1,5 @@
 /** What the bytes are, judged by themselves and never by the file's name. */
-import { SheetRefusal } from './refusal';
+import { notSheet, SheetRefusal } from './refusal';
 
 const startsWith = (bytes: Uint8Array, ...head: number[]) => head.every((byte, i) => bytes[i] === byte);
 
@@ -21,7 +21,7 @@ export function detect(bytes: Uint8Array): 'zip' | 'text' {
 	if (bytes.length === 0)
 		throw new SheetRefusal(
 			'empty',
-			'The file is empty. Save the sheet again in your spreadsheet program and upload it.'
+			'The file is empty (0 bytes); a workbook or a text table is expected. Save the sheet again in your spreadsheet program and upload it.'
 		);
 	if (startsWith(bytes, 0x50, 0x4b, 0x03, 0x04)) return 'zip';
 	if (startsWith(bytes, 0xd0, 0xcf, 0x11, 0xe0)) throw compoundFile(bytes);
@@ -31,23 +31,17 @@ export function detect(bytes: Uint8Array): 'zip' | 'text' {
 	return 'text';
 }
 
-const notSheet = (what: string) =>
-	new SheetRefusal(
-		'not-a-sheet',
-		`This is ${what}. A workbook (.xlsx) or a text table (.csv, .tsv, .txt) is expected.`
-	);
-
 /** The old container holds either an encrypted workbook or a workbook of the old format. */
 function compoundFile(bytes: Uint8Array): SheetRefusal {
 	const text = new TextDecoder('utf-16le').decode(bytes.subarray(0, Math.min(bytes.length, 2_000_000) & ~1));
 	if (text.includes('EncryptedPackage') || text.includes('EncryptionInfo'))
 		return new SheetRefusal(
 			'encrypted',
-			'The workbook is protected by a password. Remove the password in your spreadsheet program and upload it again.'
+			'The workbook is protected by a password, so that its cells cannot be read. Remove the password in your spreadsheet program and upload it again.'
 		);
 	return new SheetRefusal(
 		'old-format',
-		'This is a workbook of the old format (.xls). Save it as .xlsx and upload that.'
+		'This is a workbook of the old format (.xls); .xlsx, .csv, .tsv or .txt is expected. Save it as .xlsx and upload that.'
 	);
 }
 

@@ -4,7 +4,7 @@
  */
 import { Worker } from 'node:worker_threads';
 import type { GridWorkbook } from '$lib/schemas/sheet';
-import { LIMITS, type ReadingLimits } from './limits';
+import { LIMITS, megabytes, type ReadingLimits } from './limits';
 import { SheetRefusal } from './refusal';
 import { gridOfText } from './text-file';
 import source from './read.worker.ts?nodeworker';
@@ -45,7 +45,7 @@ export async function readWorkbookJson(
 	if (bytes.length > limits.fileBytes)
 		throw new SheetRefusal(
 			'too-large',
-			`The file is larger than ${Math.round(limits.fileBytes / 1_048_576)} MB. Keep only the sheet with the assay values.`
+			`The file has ${megabytes(bytes.length)}; at most ${megabytes(limits.fileBytes)} are read. Keep only the sheet with the assay values and upload that.`
 		);
 	await turn();
 	try {
@@ -56,11 +56,17 @@ export async function readWorkbookJson(
 	}
 }
 
+/** Characters of a pasted text. */
+const PASTED = 2_000_000;
+
 /** Text pasted from the clipboard of a spreadsheet program, by the same rules as a text file. @throws SheetRefusal */
 export function readPaste(text: string, options: Partial<ReadingLimits> = {}): GridWorkbook {
 	const limits = { ...LIMITS, ...options };
-	if (text.length > 2_000_000)
-		throw new SheetRefusal('too-large', 'The pasted text is too long. Save it as a file and upload that.');
+	if (text.length > PASTED)
+		throw new SheetRefusal(
+			'too-large',
+			`The pasted text has ${text.length.toLocaleString('en')} characters; at most ${PASTED.toLocaleString('en')} are read. Paste the rows with assay values alone, or save them as a file and upload that.`
+		);
 	return gridOfText(text.replace(/^\ufeff/, ''), 'Pasted table', limits, 'paste');
 }
 
@@ -97,7 +103,7 @@ function inWorker(task: ReadingTask): Promise<string> {
 			() =>
 				refuse(
 					'timeout',
-					'Reading the file took too long and was stopped. Keep only the sheet with the assay values.'
+					`Reading the file took longer than ${Math.round(task.limits.timeoutMs / 1000)} s and was stopped. Keep only the sheet with the assay values and upload that.`
 				),
 			task.limits.timeoutMs
 		);

@@ -1,6 +1,6 @@
 /** The parts of an .xlsx package (ECMA-376-2): what kind of file it is, and where its parts lie. */
 import type { ReadingLimits } from './limits';
-import { damaged, SheetRefusal } from './refusal';
+import { damaged, notSheet, SheetRefusal } from './refusal';
 import { XmlReader, type XmlEvents } from './xml';
 import { readDirectory, unfold, UnfoldBudget, type ZipMember } from './zip';
 
@@ -72,17 +72,17 @@ function refuseOtherKinds(names: string[]): void {
 	if (has(/(^|\/)vbaProject\.bin$/i) || has(/^xl\/macrosheets\//i))
 		throw new SheetRefusal(
 			'macro-enabled',
-			'The workbook contains macros. Macros are never run here and such files are not read. Save it as .xlsx (without macros) and upload that.'
+			'The workbook contains macros; a workbook without them is expected, and macros are never run here. Save it as .xlsx and upload that.'
 		);
 	if (has(/^xl\/externalLinks\//i))
 		throw new SheetRefusal(
 			'external-links',
-			'The workbook takes values from other files, so its numbers cannot be traced. Break the links (paste as values) in your spreadsheet program and upload it again.'
+			'The workbook takes values from other files; numbers that stand in the file itself are expected, so that they can be traced. Break the links (paste as values) in your spreadsheet program and upload it again.'
 		);
 	if (has(/^xl\/workbook\.bin$/i))
 		throw new SheetRefusal(
 			'other-format',
-			'This is a binary workbook (.xlsb). Save it as .xlsx and upload that.'
+			'This is a binary workbook (.xlsb); .xlsx, .csv, .tsv or .txt is expected. Save it as .xlsx and upload that.'
 		);
 	if (has(/^xl\/workbook\.xml$/i) || names.includes('[Content_Types].xml')) {
 		if (has(/^(word|ppt|visio)\//i)) throw notSheet('a text document or a presentation');
@@ -91,16 +91,10 @@ function refuseOtherKinds(names: string[]): void {
 	if (names.includes('mimetype') || names.includes('content.xml'))
 		throw new SheetRefusal(
 			'other-format',
-			'This is an OpenDocument file. Save it as .xlsx or .csv and upload that.'
+			'This is an OpenDocument file; .xlsx, .csv, .tsv or .txt is expected. Save it as .xlsx or .csv and upload that.'
 		);
 	throw notSheet('a zip archive without a workbook');
 }
-
-const notSheet = (what: string) =>
-	new SheetRefusal(
-		'not-a-sheet',
-		`This is ${what}. A workbook (.xlsx) or a text table (.csv, .tsv, .txt) is expected.`
-	);
 
 /** Refuses macro-enabled content types and finds the workbook part. */
 export function workbookPart(pack: Package): string {
@@ -110,7 +104,7 @@ export function workbookPart(pack: Package): string {
 			if (/macroEnabled/i.test(type))
 				throw new SheetRefusal(
 					'macro-enabled',
-					'The workbook is macro-enabled (.xlsm). Save it as .xlsx (without macros) and upload that.'
+					'The workbook is macro-enabled (.xlsm); a workbook without macros is expected, and macros are never run here. Save it as .xlsx and upload that.'
 				);
 		}
 	});

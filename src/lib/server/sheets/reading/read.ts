@@ -27,7 +27,7 @@ export function readBytes(bytes: Uint8Array, fileName: string, limits: ReadingLi
 	if (bytes.length > limits.fileBytes)
 		throw new SheetRefusal(
 			'too-large',
-			`The file has ${megabytes(bytes.length)}; at most ${megabytes(limits.fileBytes)} are read. Keep only the sheet with the assay values.`
+			`The file has ${megabytes(bytes.length)}; at most ${megabytes(limits.fileBytes)} are read. Keep only the sheet with the assay values and upload that.`
 		);
 	const name = plainFileName(fileName);
 	try {

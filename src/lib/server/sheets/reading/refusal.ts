@@ -29,6 +29,13 @@ export class SheetRefusal extends Error {
 	}
 }
 
+/** Something else than a sheet. */
+export const notSheet = (what: string): SheetRefusal =>
+	new SheetRefusal(
+		'not-a-sheet',
+		`This is ${what}. A workbook (.xlsx) or a text table (.csv, .tsv, .txt) is expected. Save the sheet as one of these and upload that.`
+	);
+
 export const damaged = (what: string): SheetRefusal =>
 	new SheetRefusal(
 		'damaged',

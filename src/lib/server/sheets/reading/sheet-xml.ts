@@ -1,5 +1,5 @@
 /** One worksheet part as a stream: cells with a value, and the facts about rows and columns that the reader needs. */
-import { columnNumber } from '$lib/assay/grid';
+import { address, columnNumber } from '$lib/assay/grid';
 import { calendarToSerial } from '$lib/assay/number-format';
 import { CELL } from '$lib/schemas/cell-flags';
 import type { CellValue, GridCell, GridSheet } from '$lib/schemas/sheet';
@@ -171,7 +171,7 @@ class SheetReader {
 	private openCell(a: Readonly<Record<string, string>>): void {
 		this.column = a.r === undefined ? this.column + 1 : columnOf(a.r);
 		if (this.column < 1 || this.column > 16_384)
-			throw damaged(`a cell of sheet "${this.source.name}" lies outside the sheet`);
+			throw damaged(`a cell in row ${this.row} of sheet "${this.source.name}" lies outside the sheet`);
 		this.type = a.t ?? 'n';
 		this.format = Number(a.s ?? 0) || 0;
 		this.formula = false;
@@ -221,15 +221,20 @@ class SheetReader {
 		if (this.value === '') return null;
 		const at = Number(this.value);
 		if (!Number.isInteger(at) || at < 0 || at >= strings.length)
-			throw damaged(`a cell of sheet "${this.source.name}" names a text that is not there`);
+			throw damaged(`${this.here()} names a text that is not there`);
 		return strings[at];
 	}
 
 	private number(): number {
 		const value = Number(this.value);
 		if (!Number.isFinite(value) || this.value.trim() === '')
-			throw damaged(`a number of sheet "${this.source.name}" cannot be read`);
+			throw damaged(`${this.here()} holds "${this.value.slice(0, 40)}" where a number is stored`);
 		return value;
+	}
+
+	/** "cell B7 of sheet "Run 1"". */
+	private here(): string {
+		return `cell ${address(this.row, this.column)} of sheet "${this.source.name}"`;
 	}
 
 	private merge(ref: string): void {
@@ -238,7 +243,7 @@ class SheetReader {
 		if (this.sheet.merges.length >= this.context.limits.merges)
 			throw new SheetRefusal(
 				'too-many-cells',
-				`Sheet "${this.source.name}" has too many merged areas. Unmerge them and upload it again.`
+				`Sheet "${this.source.name}" has more than ${this.context.limits.merges.toLocaleString('en')} merged areas. Unmerge those beside the data and upload it again.`
 			);
 		this.sheet.merges.push([
 			Number(match[2]),

@@ -42,10 +42,13 @@ export function gridOfText(
 		if (count > limits.cells || characters > limits.textCharacters || r > 1_048_576)
 			throw new SheetRefusal(
 				'too-many-cells',
-				`The file holds more than is read at once (${limits.cells.toLocaleString('en')} cells). Keep only the rows with assay values.`
+				`The file holds more than is read at once (${limits.cells.toLocaleString('en')} cells). Keep only the rows with assay values and upload that.`
 			);
 		if (data.length > MOST_COLUMNS)
-			throw new SheetRefusal('too-many-cells', 'The file has more columns than a sheet can have (16 384).');
+			throw new SheetRefusal(
+				'too-many-cells',
+				`Line ${r} has more than 16 384 columns, the most that a sheet can have. Save the file with another separator, or keep only the columns with assay values, and upload that.`
+			);
 		if (cells.length === 0) return;
 		rows.push({ r, c: cells });
 		lastColumn = Math.max(lastColumn, cells[cells.length - 1][0]);
@@ -53,7 +56,7 @@ export function gridOfText(
 	if (rows.length === 0)
 		throw new SheetRefusal(
 			'empty',
-			'The file holds no cells. Save the sheet again in your spreadsheet program and upload it.'
+			'The file holds no cells; a header row and rows of values are expected. Save the sheet again in your spreadsheet program and upload it.'
 		);
 	const name = sheetName(fileName);
 	const sheet = {

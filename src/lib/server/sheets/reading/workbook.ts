@@ -59,7 +59,7 @@ function readList(
 			if (sheets.length >= limits.sheets)
 				throw new SheetRefusal(
 					'too-large',
-					`The workbook has more than ${limits.sheets} sheets. Keep only those with assay values.`
+					`The workbook has more than ${limits.sheets} sheets, which are the most that are read. Keep only those with assay values and upload that.`
 				);
 			const state = a.state === 'veryHidden' ? 'very hidden' : a.state === 'hidden' ? 'hidden' : 'visible';
 			const relation = a['r:id'] ?? Object.entries(a).find(([key]) => key.endsWith(':id'))?.[1] ?? '';
@@ -98,7 +98,7 @@ function readStrings(pack: Package, part: string | undefined, limits: ReadingLim
 				if (characters > limits.textCharacters || strings.length >= limits.cells)
 					throw new SheetRefusal(
 						'too-many-cells',
-						'The workbook holds more text than is read at once. Keep only the sheet with the assay values.'
+						`The workbook holds more text than is read at once (${limits.textCharacters.toLocaleString('en')} characters). Keep only the sheet with the assay values and upload that.`
 					);
 				strings.push(ownText(text.slice(0, CELL_TEXT)));
 			}

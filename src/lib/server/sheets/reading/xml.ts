@@ -149,7 +149,7 @@ export class XmlReader {
 		if (++this.elements > this.mostElements)
 			throw new SheetRefusal(
 				'too-large',
-				`The part "${this.part}" holds more than is read at once. Keep only the sheet with the assay values.`
+				`The part "${this.part}" holds more than is read at once (${this.mostElements.toLocaleString('en')} elements). Keep only the sheet with the assay values and upload that.`
 			);
 		const name = localName(tag.name);
 		this.events.open?.(name, tag.attributes);

@@ -36,7 +36,10 @@ export function readDirectory(bytes: Uint8Array, limits: ReadingLimits): Map<str
 	const view = new DataView(bytes.buffer, bytes.byteOffset, bytes.byteLength);
 	const { count, offset } = findDirectory(view);
 	if (count > limits.members)
-		throw new SheetRefusal('too-large', `The file holds ${count} parts; at most ${limits.members} are read.`);
+		throw new SheetRefusal(
+			'too-large',
+			`The file holds ${count} parts; at most ${limits.members} are read. Keep only the sheet with the assay values and upload that.`
+		);
 	const members = new Map<string, ZipMember>();
 	let at = offset;
 	for (let i = 0; i < count; i++) {
@@ -60,7 +63,7 @@ export function readDirectory(bytes: Uint8Array, limits: ReadingLimits): Map<str
 const encryptedZip = () =>
 	new SheetRefusal(
 		'encrypted',
-		'The file is encrypted. Remove the password in your spreadsheet program and upload it again.'
+		'The file is encrypted, so that its cells cannot be read. Remove the password in your spreadsheet program and upload it again.'
 	);
 
 function findDirectory(view: DataView): Directory {
