@@ -67,6 +67,8 @@ const CLOSE = 3e-5;
 const BETTER = 1e-6;
 /** Limits within this share of what the standard error foretells need no further starting points. */
 const FORETOLD = 0.15;
+/** Half interval, as a share of the span that the data can show, up to which a parameter counts as determined. */
+const WELL_KNOWN = 0.1;
 /** τ must fall this much below t, relative, to go on outwards: less is the same branch. */
 const LOWER = 1e-4;
 /** How often a limit may turn out not to be one. */
@@ -197,9 +199,12 @@ export class Profiler {
 
 	/** Whether the limit may belong to a branch that is not the lowest. */
 	private doubtful(j: number, limit: number): boolean {
-		const { best, uncertainty } = this.input;
-		const foretold = Math.abs(limit - best.x[j]) / (this.t * uncertainty.errors[j]);
+		const { best, box, uncertainty } = this.input;
+		const { errors } = uncertainty;
+		const foretold = Math.abs(limit - best.x[j]) / (this.t * errors[j]);
 		if (!(Math.abs(foretold - 1) <= FORETOLD)) return true;
+		// One that the data hardly determine can take any limit along to another branch.
+		if (errors.some((e, k) => !(this.t * e <= WELL_KNOWN * Math.abs(box.to[k] - box.from[k])))) return true;
 		return this.held.outOfSight(best.x) || this.held.outOfSight(this.held.last);
 	}
 
