@@ -11,8 +11,12 @@
  * | symbol | name here |
  * | --- | --- |
  * | amplitude of t^m e^{re t}{cos, sin} | `Mode.amplitudes` |
- * | seconds in the time unit | `TIME_UNITS_S` |
+ * | seconds in the time unit | `unitS` |
+ *
+ * Terms and their sum: `formula-terms.ts`; notations: `formula-styles.ts`. Source: the closed form of `solve.ts`.
  */
+import { escapeLatex, latexStyle, sheetStyle, textStyle } from './formula-styles';
+import { allTerms, visibleTerms, written } from './formula-terms';
 import type { Mode, Solution } from './types';
 import { fromSi } from './units';
 
@@ -46,16 +50,6 @@ export interface SpeciesFormula {
 const USELESS = 1e-6;
 /** Difference above which a shown formula carries a note. */
 const NOTED = 1e-11;
-
-/** One mode as it acts on one species, time in the chosen unit. */
-interface Term {
-	re: number;
-	im: number;
-	/** Coefficients of t^m (real modes), or of t^m cos and t^m sin in turn (complex pairs). */
-	coefficients: number[];
-	/** Largest contribution over t ≥ 0. */
-	peak: number;
-}
 
 /** Formulas of every species of a solution, in species order. */
 export function formulas(solution: Solution, options: FormulaOptions): SpeciesFormula[] {
@@ -127,158 +121,4 @@ function evaluate(modes: readonly Mode[], s: number, timeS: number): number {
 		});
 	}
 	return sum;
-}
-
-function allTerms(modes: readonly Mode[], species: number, unitS: number): Term[] {
-	const terms = modes.map((mode) => termOf(mode, species, unitS)).filter((term) => term.peak > 0);
-	return terms.sort((a, b) => b.re - a.re);
-}
-
-function visibleTerms(modes: readonly Mode[], species: number, unitS: number, digits: number): Term[] {
-	const terms = allTerms(modes, species, unitS);
-	const limit = terms.reduce((top, term) => Math.max(top, term.peak), 0) * 10 ** -(digits + 1);
-	return terms
-		.filter((term) => term.peak > limit)
-		.map((term) => ({ ...term, coefficients: withoutSmall(term, limit) }));
-}
-
-function termOf(mode: Mode, species: number, unitS: number): Term {
-	const pair = mode.im > 0;
-	const coefficients = mode.amplitudes.map((values, m) => values[species] * unitS ** (pair ? m >> 1 : m));
-	const re = mode.re * unitS;
-	const term = { re, im: mode.im * unitS, coefficients, peak: 0 };
-	term.peak = coefficients.reduce((sum, c, m) => sum + peakOf(c, pair ? m >> 1 : m, re), 0);
-	return term;
-}
-
-/** Largest |c t^m e^{re t}| over t ≥ 0; of a term that grows without limit, its slope. */
-function peakOf(coefficient: number, power: number, re: number): number {
-	if (power === 0 || re === 0) return Math.abs(coefficient);
-	return Math.abs(coefficient) * (power / (Math.E * Math.abs(re))) ** power;
-}
-
-function withoutSmall(term: Term, limit: number): number[] {
-	const pair = term.im > 0;
-	const kept = term.coefficients.map((c, m) => (peakOf(c, pair ? m >> 1 : m, term.re) > limit ? c : 0));
-	while (kept.length > 1 && kept[kept.length - 1] === 0) kept.pop();
-	return kept;
-}
-
-/** How the pieces of a formula are written in one notation. */
-interface Style {
-	minus: string;
-	number: (value: number) => string;
-	/** c · t^m, sign left out. */
-	power: (coefficient: string, m: number) => string;
-	exponential: (rate: string) => string;
-	wave: (name: 'cos' | 'sin', angularRate: string) => string;
-	times: string;
-	open: string;
-	close: string;
-}
-
-function written(terms: Term[], style: Style): string {
-	if (terms.length === 0) return '0';
-	return terms.map((term, i) => signed(termText(term, style), i === 0, style)).join('');
-}
-
-interface Signed {
-	negative: boolean;
-	body: string;
-}
-
-function signed({ negative, body }: Signed, first: boolean, style: Style): string {
-	if (first) return negative ? style.minus + body : body;
-	return ` ${negative ? style.minus : '+'} ${body}`;
-}
-
-function termText(term: Term, style: Style): Signed {
-	const pieces = term.im > 0 ? wavePieces(term, style) : powerPieces(term, style);
-	const factor = term.re === 0 ? '' : style.exponential(style.number(Math.abs(term.re)));
-	if (pieces.length === 1) {
-		const [{ negative, body }] = pieces;
-		const bare = body === style.number(1) && factor !== '';
-		return { negative, body: factor ? (bare ? factor : body + style.times + factor) : body };
-	}
-	const sum = pieces.map((piece, i) => signed(piece, i === 0, style)).join('');
-	if (!factor) return { negative: false, body: sum };
-	return { negative: false, body: style.open + sum + style.close + style.times + factor };
-}
-
-function powerPieces(term: Term, style: Style): Signed[] {
-	return term.coefficients.flatMap((c, m) =>
-		c === 0 ? [] : [{ negative: c < 0, body: style.power(style.number(Math.abs(c)), m) }]
-	);
-}
-
-function wavePieces(term: Term, style: Style): Signed[] {
-	const rate = style.number(term.im);
-	return term.coefficients.flatMap((c, l) => {
-		if (c === 0) return [];
-		const amplitude = style.power(style.number(Math.abs(c)), l >> 1);
-		return [
-			{ negative: c < 0, body: amplitude + style.times + style.wave(l % 2 === 0 ? 'cos' : 'sin', rate) }
-		];
-	});
-}
-
-const SUPERSCRIPT = ['', '', '²', '³', '⁴', '⁵', '⁶', '⁷', '⁸', '⁹'];
-
-function textStyle(digits: number): Style {
-	return {
-		minus: '\u2212',
-		number: (value) => shortNumber(value, digits),
-		power: (c, m) => (m === 0 ? c : `${c} t${m < 10 ? SUPERSCRIPT[m] : `^${m}`}`),
-		exponential: (rate) => `e^(\u2212${rate} t)`,
-		wave: (name, rate) => `${name}(${rate} t)`,
-		times: ' ',
-		open: '(',
-		close: ')'
-	};
-}
-
-function latexStyle(digits: number): Style {
-	const number = (value: number) => {
-		const [mantissa, exponent] = shortNumber(value, digits).split('e');
-		return exponent === undefined ? mantissa : `${mantissa} \\times 10^{${Number(exponent)}}`;
-	};
-	return {
-		minus: '-',
-		number,
-		power: (c, m) => (m === 0 ? c : `${c}\\,t${m > 1 ? `^{${m}}` : ''}`),
-		exponential: (rate) => `e^{-${rate}\\,t}`,
-		wave: (name, rate) => `\\${name}\\left(${rate}\\,t\\right)`,
-		times: '\\,',
-		open: '\\left(',
-		close: '\\right)'
-	};
-}
-
-function sheetStyle(cell: string): Style {
-	return {
-		minus: '-',
-		number: sheetNumber,
-		power: (c, m) => (m === 0 ? c : `${c}*${cell}${m > 1 ? `^${m}` : ''}`),
-		exponential: (rate) => `EXP(-${rate}*${cell})`,
-		wave: (name, rate) => `${name.toUpperCase()}(${rate}*${cell})`,
-		times: '*',
-		open: '(',
-		close: ')'
-	};
-}
-
-function shortNumber(value: number, digits: number): string {
-	if (value === 0) return '0';
-	const size = Math.floor(Math.log10(value));
-	if (size >= -4 && size < Math.max(digits, 6)) return String(Number(value.toPrecision(digits)));
-	const [mantissa, exponent] = value.toExponential(digits - 1).split('e');
-	return `${Number(mantissa)}e${Number(exponent)}`;
-}
-
-function sheetNumber(value: number): string {
-	return String(value).toUpperCase().replace('E+', 'E');
-}
-
-function escapeLatex(symbol: string): string {
-	return symbol.replace(/([_#%&{}$])/g, '\\$1');
 }
