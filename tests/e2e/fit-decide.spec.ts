@@ -29,7 +29,7 @@ test('quantities to decide by come with intervals, from the criteria of the stud
 	const row = (name: RegExp) => table.getByRole('row', { name });
 	// A decays with k₁ 0.794 1/h: 5 % are left after ln 20/k₁ = 3.77 h.
 	await expect(row(/A NMT 5 % of charge: first met at/)).toContainText(
-		/3\.7\d* h.*3\.\d+ to 3\.\d+.*profile/
+		/3\.7\d*\s?h\s+3\.\d+ to 3\.\d+\s+profile/
 	);
 	await expect(row(/C NMT 20 % of charge: holds until/)).toContainText(/profile likelihood/);
 	await expect(row(/^B at 24 h/)).toContainText(/linear \(delta method\)/);
@@ -37,7 +37,7 @@ test('quantities to decide by come with intervals, from the criteria of the stud
 	await page.getByLabel('Add', { exact: true }).selectOption('conversion');
 	await page.getByRole('textbox', { name: 'Converted' }).fill('90');
 	await page.getByRole('button', { name: 'Add the quantity' }).click();
-	await expect(row(/90 % conversion of A at/)).toContainText(/2\.9\d* h/);
+	await expect(row(/90 % conversion of A at/)).toContainText(/2\.(89|9)\d*\s?h/);
 	await page.getByRole('button', { name: 'Remove 90 % conversion of A at' }).click();
 	await expect(row(/90 % conversion/)).toHaveCount(0);
 	await expectAccessible(page, 'a result with quantities to decide by');
@@ -91,7 +91,7 @@ test('a constant of its own for each run is chosen before the fit and shown afte
 	await expect(constants).toContainText('A → B, Run 1');
 	await expect(constants).toContainText('A → B, Run 2');
 	await expect(
-		page.getByText(/windows and recipes need a fit with constants that all runs share/)
+		page.getByText('windows and recipes need a fit with constants that all runs share')
 	).toBeVisible();
 	await expect(page.getByRole('link', { name: 'Make a recipe' })).toHaveCount(0);
 	expect(errors).toEqual([]);

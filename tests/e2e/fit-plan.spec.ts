@@ -74,7 +74,7 @@ test('rival schemes: compared on the same values, with the sample that separates
 	const next = page.locator('section, article, div').filter({
 		has: page.getByRole('heading', { name: 'The next sample that separates the two best' })
 	});
-	await expect(next.last()).toContainText(/[ABC] at [\d.]+ h under the conditions of Run 1 \(50 °C\)/);
+	await expect(next.last()).toContainText(/[ABC] at [\d.]+ h under the conditions of Run 1\s+\(50 °C\)/);
 	await expect(next.last()).toContainText(/times its standard error/);
 	await expect(page.getByRole('heading', { name: 'Curves and residuals' })).toBeVisible();
 	expect(errors).toEqual([]);

@@ -6,6 +6,7 @@
 import { normalQuantile } from '$lib/kinetics/fit/distributions';
 import type { FitReport, FitRequest, FitResidual } from '$lib/schemas/fit';
 import { plain, significant, unitText } from '$lib/client/numbers';
+import { rowNumber } from '../data/point-rows';
 import { channelSlot } from './panels';
 
 /** Beyond this a studentised residual is marked. */
@@ -46,7 +47,8 @@ export interface DiagnosticContext {
 /** The row of the sheet that a value came from, as the run's page shows it; counted from one where no sheet is behind it. */
 export function sheetRow(request: FitRequest, run: string, index: number): number {
 	const at = request.runs.findIndex((r, i) => (r.id ?? `r${i + 1}`) === run);
-	return request.runs[at]?.timepoints[index]?.source?.row ?? index + 1;
+	const point = request.runs[at]?.timepoints[index];
+	return point ? rowNumber(point, index) : index + 1;
 }
 
 interface Row extends FitResidual {
