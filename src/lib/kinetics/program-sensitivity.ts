@@ -22,9 +22,10 @@
  * extrapolation of symmetric one-step methods, E. Hairer, S. P. Nørsett and G. Wanner, Solving Ordinary Differential
  * Equations I, 2nd ed. (1993), II.8 and II.9.
  */
+import { MagnusStepper, type Stage } from './magnus-step';
 import { innerParameters } from './parameter-sensitivity';
 import type { ProgramSegment } from './program-segments';
-import { MagnusStepper, type ProgramSolution, type Stage } from './programs';
+import type { ProgramSolution } from './programs';
 import { Propagator } from './propagator';
 import { chainWeights, type FirstOrderParameter, type RateParameter } from './rate-parameters';
 import { sensitivities } from './sensitivity';

@@ -8,9 +8,14 @@
  * Steps: balancing by powers of two; complex QR iteration with Wilkinson's shift on the Hessenberg form, rotations gathered.
  * Numbers are kept as pairs of row-major arrays (real and imaginary parts).
  *
+ * | symbol | name here |
+ * | --- | --- |
+ * | D, U, T | `SchurForm.scale`, `.u`, `.t` |
+ *
  * Sources: B. N. Parlett and C. Reinsch, Numer. Math. 13 (1969) 293 (balancing); G. H. Golub and C. F. Van Loan, Matrix
  * Computations, 4th ed., 2013, ch. 7 (Hessenberg reduction, shifted QR).
  */
+import { rotateColumns, rotateRows, rotationFor, type Rotation } from './plane-rotations';
 
 export interface ComplexMatrix {
 	m: number;
@@ -192,66 +197,5 @@ function qrStep(
 	for (let k = start; k <= end; k++) {
 		re[k * m + k] += shiftRe;
 		im[k * m + k] += shiftIm;
-	}
-}
-
-/** [c, s; −s̄, c] with c real. */
-interface Rotation {
-	c: number;
-	sRe: number;
-	sIm: number;
-}
-
-function rotationFor({ m, re, im }: ComplexMatrix, k: number): Rotation {
-	const a = k * m + k;
-	const b = (k + 1) * m + k;
-	const sizeA = Math.hypot(re[a], im[a]);
-	const size = Math.hypot(sizeA, re[b], im[b]);
-	if (size === 0) return { c: 1, sRe: 0, sIm: 0 };
-	if (sizeA === 0) return { c: 0, sRe: re[b] / size, sIm: -im[b] / size };
-	const phaseRe = re[a] / sizeA;
-	const phaseIm = im[a] / sizeA;
-	return {
-		c: sizeA / size,
-		sRe: (phaseRe * re[b] + phaseIm * im[b]) / size,
-		sIm: (phaseIm * re[b] - phaseRe * im[b]) / size
-	};
-}
-
-function rotateRows(
-	{ m, re, im }: ComplexMatrix,
-	k: number,
-	{ c, sRe, sIm }: Rotation,
-	from: number,
-	to: number
-): void {
-	for (let j = from; j < to; j++) {
-		const a = k * m + j;
-		const b = a + m;
-		const aRe = re[a];
-		const aIm = im[a];
-		re[a] = c * aRe + sRe * re[b] - sIm * im[b];
-		im[a] = c * aIm + sRe * im[b] + sIm * re[b];
-		re[b] = c * re[b] - sRe * aRe - sIm * aIm;
-		im[b] = c * im[b] - sRe * aIm + sIm * aRe;
-	}
-}
-
-/** Multiplies from the right by the conjugate transpose of the rotation, on the first `rows` rows. */
-function rotateColumns(
-	{ m, re, im }: ComplexMatrix,
-	k: number,
-	{ c, sRe, sIm }: Rotation,
-	rows: number
-): void {
-	for (let i = 0; i < rows; i++) {
-		const a = i * m + k;
-		const b = a + 1;
-		const aRe = re[a];
-		const aIm = im[a];
-		re[a] = c * aRe + sRe * re[b] + sIm * im[b];
-		im[a] = c * aIm + sRe * im[b] - sIm * re[b];
-		re[b] = c * re[b] - sRe * aRe + sIm * aIm;
-		im[b] = c * im[b] - sRe * aIm - sIm * aRe;
 	}
 }

@@ -21,7 +21,8 @@
  * Sources: J. P. Boyd, SIAM J. Numer. Anal. 40 (2002) 1666 (roots through Chebyshev interpolants and subdivision);
  * Z. Battles and L. N. Trefethen, SIAM J. Sci. Comput. 25 (2004) 1743; error bound: Trefethen (2013), theorem 8.2.
  */
-import { clenshaw, coefficients as interpolate, DEGREE, NODES, SIZE } from './chebyshev';
+import { coefficients as interpolate, DEGREE, NODES, SIZE } from './chebyshev';
+import type { Track } from './track-value';
 import type { Solution } from './types';
 
 /** Anything that has concentrations at a time. */
@@ -46,20 +47,8 @@ export interface TrackOptions {
 	breaksS?: readonly number[];
 }
 
-export interface Track {
-	readonly n: number;
-	readonly pieces: number;
-	/** pieces + 1 times, from 0 on, s. */
-	readonly edges: Float64Array;
-	readonly coefficients: Float64Array;
-	readonly scales: Float64Array;
-	/** Exact value at t = 0. */
-	readonly start: Float64Array;
-	/** Where the curve ends: the horizon, or the time from which it is `beyond`. */
-	readonly endS: number;
-	/** Value from `endS` on; null where the horizon ends the curve. */
-	readonly beyond: Float64Array | null;
-}
+export type { Track } from './track-value';
+export { formAt } from './track-value';
 
 /** Relative size of the last three coefficients at which a piece counts as resolved; the error is then about 1e-16. */
 const RESOLVED = 6e-15;
@@ -247,28 +236,4 @@ class TrackBuilder {
 		}
 		return true;
 	}
-}
-
-/** Σ w_i c_i(t) + constant from a track. */
-export function formAt(track: Track, weights: ArrayLike<number>, constant: number, timeS: number): number {
-	const { n, edges, pieces, beyond } = track;
-	let sum = constant;
-	if (timeS === 0) {
-		for (let i = 0; i < n; i++) sum += weights[i] * track.start[i];
-		return sum;
-	}
-	if (pieces === 0 || (timeS >= track.endS && beyond)) {
-		for (let i = 0; i < n; i++) sum += weights[i] * (beyond ? beyond[i] : NaN);
-		return sum;
-	}
-	let p = 0;
-	for (let high = pieces - 1; p < high;) {
-		const mid = (p + high + 1) >> 1;
-		if (edges[mid] <= timeS) p = mid;
-		else high = mid - 1;
-	}
-	const x = Math.max(-1, Math.min(1, (2 * timeS - edges[p] - edges[p + 1]) / (edges[p + 1] - edges[p])));
-	for (let i = 0; i < n; i++)
-		if (weights[i] !== 0) sum += weights[i] * clenshaw(track.coefficients, x, (p * n + i) * SIZE);
-	return sum;
 }
