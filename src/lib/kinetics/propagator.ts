@@ -7,11 +7,10 @@
  * leaves the species, so that no rounding is ever multiplied by ‖K‖t.
  *
  *     e^{Kh} = e^{−qh} Σ_m ((K + qI) h)^m / m!            (uniformisation, h = h₀ a power of two with q h₀ ≤ 1)
- *     P_{m+1} = P_m²,   x_{m+1} = x_m + x_m P_m          (x: what has left the component by then)
- *     P_jj  = 1 − x_j − Σ_{i≠j} P_ij                     when that sum is ≤ ½, else the column is divided by its total
+ *     P_m = e^{K h₀ 2^m}                                  (squares, diagonals rebuilt: `propagator-powers.ts`)
  *     c(t) = Π P_m^{bit m of t/h₀} e^{Kr} c₀,   0 ≤ r < h₀
  *
- * A single-species component has P_jj = e^{−k h} itself. Rounding then acts as a relative change of a few ε in each rate
+ * Rounding then acts as a relative change of a few ε in each rate
  * constant per squaring, to which e^{Kt} is insensitive. About 60 squarings cover rate ratios of 1e12 and times from 1e-3 of
  * the fastest to 1e3 of the slowest time constant; they are made once, when first needed.
  *
@@ -19,7 +18,7 @@
  * | --- | --- |
  * | q | `shift`, the largest outflow, 1/s |
  * | h₀ | `baseStepS` |
- * | P_m, x_m | `levels[m].p` (row-major), `levels[m].x` |
+ * | P_m | `powers.level(m).p`, row-major |
  *
  * Sources: A. Jensen, Skand. Aktuarietidskr. 36 (1953) 87 (uniformisation); J. Xue and Q. Ye, Entrywise relative perturbation
  * bounds for exponentials of essentially non-negative matrices, Numer. Math. 110 (2008) 393, and Math. Comp. 82 (2013) 1577;
@@ -27,12 +26,8 @@
  */
 import { blockWeights, type BlockWeights } from './block-weights';
 import { components, type Components } from './components';
+import { PropagatorPowers, type FlowTable } from './propagator-powers';
 import type { LinearSystem } from './types';
-
-interface Level {
-	p: Float64Array;
-	x: Float64Array;
-}
 
 /** q·t up to which the series alone is used, so that early times need no powers. */
 const SHORT = 8;
@@ -40,19 +35,17 @@ const SHORT = 8;
 /** Products in a row on a grid of times. */
 const RESTART = 16;
 
-export class Propagator {
+export class Propagator implements FlowTable {
 	readonly n: number;
 	readonly shift: number;
 	readonly baseStepS: number;
 	readonly parts: Components;
-	private readonly levels: Level[] = [];
-	private readonly weights: Float64Array;
-	private readonly exits: Float64Array;
-	private readonly from: Int32Array;
-	private readonly to: Int32Array;
-	private readonly rate: Float64Array;
-	private readonly stay: Float64Array;
-	private readonly outflow: Float64Array;
+	readonly from: Int32Array;
+	readonly to: Int32Array;
+	readonly rate: Float64Array;
+	readonly stay: Float64Array;
+	readonly outflow: Float64Array;
+	private readonly powers: PropagatorPowers;
 	private readonly term: Float64Array;
 	private readonly nextTerm: Float64Array;
 
@@ -60,9 +53,7 @@ export class Propagator {
 	constructor(system: LinearSystem, parts: Components = components(system), balance?: BlockWeights) {
 		this.n = system.n;
 		this.parts = parts;
-		const { weights, exits } = balance ?? blockWeights(system, parts);
-		this.weights = weights;
-		this.exits = exits;
+		this.powers = new PropagatorPowers(this, balance ?? blockWeights(system, parts));
 		this.outflow = system.outflow;
 		const { transfers } = system;
 		this.from = new Int32Array(transfers.length);
@@ -94,7 +85,7 @@ export class Propagator {
 	): Float64Array {
 		for (let i = 0; i < this.n; i++) out[i] = charge[i];
 		let left = timeS;
-		if (this.levels.length === 0 && timeS * this.shift <= SHORT) {
+		if (this.powers.count === 0 && timeS * this.shift <= SHORT) {
 			if (timeS > 0) this.uniformise(timeS, out);
 			return out;
 		}
@@ -103,7 +94,7 @@ export class Propagator {
 			const step = this.baseStepS * Math.pow(2, level);
 			if (left < step) continue;
 			left -= step;
-			this.multiply(this.level(level).p, out);
+			this.multiply(this.powers.level(level).p, out);
 		}
 		if (left > 0) this.uniformise(left, out);
 		return out;
@@ -145,7 +136,7 @@ export class Propagator {
 
 	/** e^{Kh} for h = baseStepS · 2^level, row-major n × n; the engine's own memory, not to be written to. */
 	power(level: number): Float64Array {
-		return this.level(level).p;
+		return this.powers.level(level).p;
 	}
 
 	private multiply(p: Float64Array, vector: Float64Array): void {
@@ -176,93 +167,5 @@ export class Propagator {
 		}
 		const damping = Math.exp(-this.shift * stepS);
 		for (let i = 0; i < n; i++) vector[i] *= damping;
-	}
-
-	private level(index: number): Level {
-		if (this.levels.length === 0) this.levels.push(this.firstLevel());
-		while (this.levels.length <= index)
-			this.levels.push(this.squared(this.levels[this.levels.length - 1], this.levels.length));
-		return this.levels[index];
-	}
-
-	private firstLevel(): Level {
-		const { n, shift, baseStepS } = this;
-		const p = new Float64Array(n * n);
-		const x = new Float64Array(n);
-		let term = new Float64Array(n * n);
-		let next = new Float64Array(n * n);
-		const xTerm = new Float64Array(n);
-		for (let i = 0; i < n; i++) p[i * n + i] = term[i * n + i] = 1;
-		for (let m = 1; m < n + 24; m++) {
-			this.seriesTerm(baseStepS / m, term, next, xTerm);
-			[term, next] = [next, term];
-			for (let k = 0; k < n * n; k++) p[k] += term[k];
-			for (let j = 0; j < n; j++) x[j] += xTerm[j];
-		}
-		const damping = Math.exp(-shift * baseStepS);
-		for (let k = 0; k < n * n; k++) p[k] *= damping;
-		for (let j = 0; j < n; j++) x[j] *= damping;
-		this.renormalise(p, x, 0);
-		return { p, x };
-	}
-
-	/** next = (K + qI) h · term, and the same for the row of what has left each component. */
-	private seriesTerm(h: number, term: Float64Array, next: Float64Array, xTerm: Float64Array): void {
-		const { n, from, to, rate, stay, exits, weights, parts } = this;
-		for (let j = 0; j < n; j++) {
-			let sum = this.shift * xTerm[j];
-			for (const i of parts.blocks[parts.blockOf[j]])
-				sum += (exits[i] * weights[i] * term[i * n + j]) / weights[j];
-			xTerm[j] = sum * h;
-		}
-		for (let i = 0; i < n; i++) for (let j = 0; j < n; j++) next[i * n + j] = stay[i] * h * term[i * n + j];
-		for (let e = 0; e < rate.length; e++) {
-			const source = from[e] * n;
-			const target = to[e] * n;
-			const factor = rate[e] * h;
-			for (let j = 0; j < n; j++) next[target + j] += factor * term[source + j];
-		}
-	}
-
-	private squared({ p, x }: Level, index: number): Level {
-		const { n, parts, weights } = this;
-		const q = new Float64Array(n * n);
-		for (let i = 0; i < n; i++)
-			for (let k = 0; k < n; k++) {
-				const factor = p[i * n + k];
-				if (factor === 0) continue;
-				for (let j = 0, at = i * n, other = k * n; j < n; j++, at++, other++) q[at] += factor * p[other];
-			}
-		const y = new Float64Array(n);
-		for (let j = 0; j < n; j++) {
-			let sum = x[j];
-			for (const i of parts.blocks[parts.blockOf[j]]) sum += (x[i] * weights[i] * p[i * n + j]) / weights[j];
-			y[j] = sum;
-		}
-		this.renormalise(q, y, index);
-		return { p: q, x: y };
-	}
-
-	private renormalise(p: Float64Array, x: Float64Array, index: number): void {
-		const { n, parts, weights, outflow } = this;
-		const stepS = this.baseStepS * Math.pow(2, index);
-		for (const block of parts.blocks) {
-			if (block.length === 1) {
-				const j = block[0];
-				p[j * n + j] = Math.exp(-outflow[j] * stepS);
-				x[j] = -Math.expm1(-outflow[j] * stepS);
-				continue;
-			}
-			for (const j of block) {
-				let others = x[j];
-				for (const i of block) if (i !== j) others += (p[i * n + j] * weights[i]) / weights[j];
-				if (others <= 0.5) p[j * n + j] = 1 - others;
-				else {
-					const total = others + p[j * n + j];
-					x[j] /= total;
-					for (const i of block) p[i * n + j] /= total;
-				}
-			}
-		}
 	}
 }
