@@ -88,6 +88,7 @@ test('a corrected cell shows both values, who and why; the file keeps its own', 
 	await expect(points(page).getByRole('button', { name: /^A at 1 h: 0\.353/ })).toBeVisible();
 	await expect(page.getByText('Digits changed places in the notebook.')).toBeVisible();
 	await page.goBack();
+	await expect(counts(page)).toHaveText(/stop/);
 	await cell(page, 'B4').click();
 	await cell(page, 'B4').click();
 	await dialog.getByRole('button', { name: 'Take the correction back' }).click();
