@@ -86,7 +86,7 @@ function walk(
 ): Float64Array[] {
 	const { n, pieces, system } = solution;
 	const plain = new Propagator(system);
-	const states = parameters.map((parameter) => {
+	const states = parameters.map((parameter): Float64Array => {
 		const s = new Float64Array(n);
 		if (parameter.kind === 'charge') s[parameter.species] = 1;
 		return s;

@@ -14,7 +14,8 @@ import {
 	real,
 	stepped,
 	type Complex,
-	type ComplexLaw
+	type ComplexLaw,
+	type ComplexPiece
 } from './test-complex';
 import { everyLaw } from './test-networks';
 import { system } from './test-systems';
@@ -134,7 +135,7 @@ describe('derivatives of a table of residence times, by complex steps', () => {
 		if (parameter.kind === 'time') times[parameter.row] = stepped(times[parameter.row]);
 		if (parameter.kind === 'ln residence') times = times.map((t) => t.times(stepped(real(0)).exp()));
 		const zero = real(0);
-		const pieces = times.map((t, m) => ({
+		const pieces = times.map((t, m): ComplexPiece => ({
 			durationS: m === 0 ? t : t.minus(times[m - 1]),
 			fromK: at,
 			toK: at,
