@@ -61,6 +61,7 @@ describe('a table with the times across the top', () => {
 			['B1', 'A4,F7'],
 			['B8', 'E5'],
 			['B9', 'D6'],
+			['B11', 'B6'],
 			['A7', 'F7']
 		]);
 	});

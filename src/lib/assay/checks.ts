@@ -82,6 +82,7 @@ export function checkCount(
 			cells,
 			key: 'few',
 			found: plural(times, 'time'),
+			expected: 'at least 5 times',
 			message: `Only ${plural(times, 'time')}: the constants will have wide intervals, and lack of fit can hardly be seen.`
 		});
 }

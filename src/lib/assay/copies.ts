@@ -19,6 +19,7 @@ export function noteCopies(ex: Examination, points: Point[], channels: Channel[]
 				cells,
 				key: `same-${c.id}`,
 				found: `${plural(own.length, 'identical value')}`,
+				expected: 'values that change with time',
 				message: `All values of ${channelName(c)} are ${figure(own[0])}. A copied column?`
 			});
 		else if (run.length > 15 && run.value !== 0)
@@ -27,6 +28,7 @@ export function noteCopies(ex: Examination, points: Point[], channels: Channel[]
 				cells,
 				key: `run-${c.id}`,
 				found: `${run.length} times ${figure(run.value)}`,
+				expected: 'values that change with time',
 				message: `${channelName(c)} repeats ${figure(run.value)} ${run.length} times in a row. Copied cells?`
 			});
 		for (let j = i + 1; j < channels.length; j++)
@@ -41,6 +43,7 @@ export function noteCopies(ex: Examination, points: Point[], channels: Channel[]
 					cells: [...cells, ex.at(ex.mapping.block.firstRow, channels[j].column)],
 					key: `pair-${c.id}-${channels[j].id}`,
 					found: 'two identical columns',
+					expected: 'columns of their own',
 					message: `${channelName(c)} and ${channelName(channels[j])} hold the same values throughout. A copied column?`
 				});
 	});

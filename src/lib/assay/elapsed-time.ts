@@ -135,6 +135,7 @@ export function noteWrapped(ex: Examination, samples: Sample[], readings: TimeRe
 		cells: wrapped.map((w) => w.cell),
 		key: first.cell,
 		found: `shown as ${first.shown}, stored as ${first.stored}`,
+		expected: 'a format that shows more than 24 h, such as [h]:mm',
 		message: `${first.cell} is shown as ${first.shown}, stored as ${first.stored}; ${first.hours} h is used.${also}`
 	});
 }

@@ -14,6 +14,7 @@ export function noteHeaders(ex: Examination, joined: { column: number; header: s
 		cells: joined.map((h) => ex.at(headerRows[0], h.column)),
 		key: where,
 		found: `header in ${where}`,
+		expected: 'one header row, or several that say more together',
 		message: `The header spans ${where}; its parts were joined, for example "${joined[0].header}".`
 	});
 }

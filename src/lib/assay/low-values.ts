@@ -2,9 +2,15 @@
 import type { Channel } from './channels';
 import type { Examination } from './examination';
 import { figure, plural, someOf } from './wording';
+import { type StatedLimits, suggestLimit } from './limits';
 import { askSpots, cellsOf, letter, ofKind, type Spot } from './spots';
 
-export function settleZerosAndNegatives(ex: Examination, channel: Channel, spots: Spot[]): void {
+export function settleZerosAndNegatives(
+	ex: Examination,
+	channel: Channel,
+	spots: Spot[],
+	limits: StatedLimits
+): void {
 	const numbers = ofKind(spots, 'number');
 	const low = numbers.filter(
 		(s) => s.reading.value < 0 && (channel.loq === null || s.reading.value < -channel.loq)
@@ -35,27 +41,31 @@ export function settleZerosAndNegatives(ex: Examination, channel: Channel, spots
 	offerCensoring(
 		ex,
 		channel,
-		numbers.filter((s) => s.reading.kind === 'number' && s.reading.value === 0)
+		numbers.filter((s) => s.reading.kind === 'number' && s.reading.value === 0),
+		limits
 	);
 }
 
-/** B11: a typed 0 stays 0; where the LOQ is known, "below LOQ" is offered. */
-function offerCensoring(ex: Examination, channel: Channel, zeros: Spot[]): void {
-	if (zeros.length === 0 || channel.loq === null) return;
+/** B11: a typed 0 stays 0; where the LOQ is known or stated on the sheet, "below LOQ" is offered. */
+function offerCensoring(ex: Examination, channel: Channel, zeros: Spot[], limits: StatedLimits): void {
+	const stated = suggestLimit(limits, channel, 'loq');
+	const loq = channel.loq ?? stated?.value;
+	if (zeros.length === 0 || loq === undefined) return;
+	const where = channel.loq === null && stated ? `, by ${stated.source}` : '';
 	const taken = ex.note({
 		rule: 'B11',
 		cells: cellsOf(zeros),
 		key: `${letter(channel, zeros)}-zero`,
 		found: plural(zeros.length, 'typed 0'),
-		message: `${someOf(cellsOf(zeros))}: a typed 0 stays 0. The LOQ of ${channel.label} is ${figure(channel.loq)}; "below LOQ" may be what is meant.`,
+		expected: 'a measured zero, or a limit',
+		message: `${someOf(cellsOf(zeros))}: a typed 0 stays 0. The LOQ of ${channel.label} is ${figure(loq)}${where}; "below LOQ" may be what is meant.`,
 		options: [
 			{ key: 'keep', label: 'Keep 0' },
-			{ key: 'censor', label: `Take as below ${figure(channel.loq)}` }
+			{ key: 'censor', label: `Take as below ${figure(loq)}` }
 		]
 	});
 	if (taken?.key !== 'censor') return;
-	for (const s of zeros) s.set({ below: channel.loq });
-	ex.conversions.push(
-		`${someOf(cellsOf(zeros), 8)}: typed 0 taken as below the LOQ of ${figure(channel.loq)}.`
-	);
+	channel.loq = loq;
+	for (const s of zeros) s.set({ below: loq });
+	ex.conversions.push(`${someOf(cellsOf(zeros), 8)}: typed 0 taken as below the LOQ of ${figure(loq)}.`);
 }

@@ -107,6 +107,7 @@ function noteBalance(ex: Examination, balance: MassBalance, span: number): void 
 			cells: outside.map(cell),
 			key: 'rows',
 			found: someOf(outside.map((r) => `row ${r.row}: ${r.percent.toFixed(1)} %`)),
+			expected: `${low} to ${high} % of the charge`,
 			message: `The mass balance lies outside ${low}–${high} % of the charge in ${plural(outside.length, 'row')} (${someOf(outside.map((r) => `row ${r.row}: ${r.percent.toFixed(1)} %`))}).`
 		});
 	const slope = balance.slope;
@@ -116,6 +117,7 @@ function noteBalance(ex: Examination, balance: MassBalance, span: number): void 
 			cells: [cell(balance.rows[0])],
 			key: 'trend',
 			found: `${signed(slope.value)} ${slope.unit}`,
+			expected: 'no trend beyond the scatter',
 			message: `${balance.message} ${slope.value < 0 ? 'A species that is not seen, or a loss, would look like this.' : 'Evaporation of solvent would look like this.'}`
 		});
 }

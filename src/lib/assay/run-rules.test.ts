@@ -13,7 +13,7 @@ import {
 	summary
 } from '../server/sheets/reading/test-tables';
 import { type TestCell } from '../server/sheets/reading/test-workbook';
-import { settle } from './index';
+import { propose, settle } from './index';
 
 describe('replicates and the run as a whole', () => {
 	const twice = (extra: TestCell[] = [], head: TestCell[] = []) => [
@@ -128,5 +128,30 @@ describe('replicates and the run as a whole', () => {
 			row: 5,
 			cells: { A: 'E5', B: 'E6', C: 'E7' }
 		});
+	});
+
+	it('B35: a value that is repeated more than fifteen times in a row is noted', () => {
+		const rows = Array.from({ length: 24 }, (_, i): TestCell[] => [i, i < 18 ? 0.123 : 0.1 - i / 1000]);
+		const [f] = findingsOf(book([['Time (h)', 'A (mol/L)'], ...rows]), 'B35');
+		expect([f.level, f.message]).toEqual([
+			'note',
+			'A (column B) repeats 0.123 18 times in a row. Copied cells?'
+		]);
+		const fewer = rows.map((row, i): TestCell[] => [row[0], i < 15 ? 0.123 : 0.1 - i / 1000]);
+		expect(findingsOf(book([['Time (h)', 'A (mol/L)'], ...fewer]), 'B35')).toEqual([]);
+	});
+
+	it('B36: the limits are those that are given', () => {
+		const ab = species.slice(0, 2);
+		const workbook = book([HEAD, ...ROWS.map(([t, a, b]) => [t, a, Number(b) * 0.8])]);
+		const mapping = { ...first(workbook, ab).mapping, conditions };
+		const rowsNoted = (checks: { massBalanceLow: number; massBalanceHigh: number }) =>
+			settle({ workbook, species: ab, mapping, checks }).findings.find((f) => f.id === 'B36:Data!rows')
+				?.count ?? 0;
+		expect(rowsNoted({ massBalanceLow: 95, massBalanceHigh: 105 })).toBe(4);
+		expect(rowsNoted({ massBalanceLow: 85, massBalanceHigh: 115 })).toBe(2);
+		expect(rowsNoted({ massBalanceLow: 80, massBalanceHigh: 120 })).toBe(0);
+		const noted = propose(workbook, ab, { checks: { massBalanceLow: 80, massBalanceHigh: 120 } }).tables[0];
+		expect(noted.findings.map((f) => f.id)).toEqual(['B36:Data!trend']);
 	});
 });

@@ -71,12 +71,14 @@ export function settle(input: SettleInput): Settlement {
 	settleTimeParts(ex, used);
 	const samples = samplesOf(ex, used, channels);
 	const times = settleTimes(ex, samples, headers, channels);
+	const marked = noteColours(ex, used);
 	const limits = statedLimits(ex.view, viewOf(ex.workbook, ex.sheet) ?? ex.view, found, ex.decimal);
 	const values = settleValues(
 		ex,
 		times.samples.map((t) => t.sample),
 		channels,
-		limits
+		limits,
+		marked
 	);
 	const read = averageColumns(ex, pointsOf(ex, times.samples, times.unit, channels, values), channels);
 	const points = settleReplicates(ex, read, times.unit);
@@ -84,7 +86,6 @@ export function settle(input: SettleInput): Settlement {
 	askCharge(ex, points, channels);
 	checkCount(ex, points, channels, input.parameters ?? null);
 	noteCopies(ex, points, channels);
-	noteColours(ex, used);
 	noteMergesAndDates(ex, used, timeColumn(ex));
 	noteFooters(ex, found?.footerRows.map((f) => f.row) ?? []);
 	noteWithin(ex, found?.withinRows ?? []);

@@ -84,8 +84,8 @@ function askAcross(ex: Examination, time: number, doubts: string[]): void {
 	});
 }
 
-/** B30: colours and strike-through are seen, not interpreted. */
-export function noteColours(ex: Examination, rows: number[]): void {
+/** B30: colours and strike-through are seen, not interpreted; the person may leave the marked values out. Gives their cells then. */
+export function noteColours(ex: Examination, rows: number[]): Set<string> {
 	const marked: string[] = [];
 	let coloured = 0;
 	let struck = 0;
@@ -100,17 +100,23 @@ export function noteColours(ex: Examination, rows: number[]): void {
 		}
 	}
 	// A whole block in one colour is decoration.
-	if (marked.length === 0 || (struck === 0 && coloured > rows.length * used.size * 0.6)) return;
+	if (marked.length === 0 || (struck === 0 && coloured > rows.length * used.size * 0.6)) return new Set();
 	const what = [coloured ? `${coloured} coloured` : '', struck ? `${struck} struck through` : '']
 		.filter(Boolean)
 		.join(', ');
-	ex.note({
+	const taken = ex.note({
 		rule: 'B30',
 		cells: marked,
 		key: 'colours',
 		found: what,
-		message: `${plural(marked.length, 'cell')} in the data ${marked.length === 1 ? 'is' : 'are'} marked (${what}): ${someOf(marked)}. Colours are not imported. Exclude any?`
+		message: `${plural(marked.length, 'cell')} in the data ${marked.length === 1 ? 'is' : 'are'} marked (${what}): ${someOf(marked)}. Colours are not imported. Exclude any?`,
+		expected: 'values without a mark, or your word on what the marks mean',
+		options: [
+			{ key: 'keep', label: 'Use them like the others' },
+			{ key: 'missing', label: 'Leave the marked values as missing' }
+		]
 	});
+	return new Set(taken?.key === 'missing' ? marked : []);
 }
 
 /** B27 and B25: what lies below the table is shown and left out. */
@@ -129,6 +135,7 @@ export function noteFooters(ex: Examination, footerRows: number[]): void {
 			cells: inside.map((r) => ex.at(r, ex.mapping.block.firstColumn)),
 			key: 'footers',
 			found: someOf(leads.filter(Boolean).map((t) => `"${t.slice(0, 40)}"`)),
+			expected: 'rows of samples',
 			message: `${capital(ex.places.samples(inside))} ${ex.places.across ? 'at the right of' : 'below'} the data (${someOf(
 				leads.filter(Boolean).map((t) => `"${t.slice(0, 40)}"`),
 				3
@@ -147,6 +154,7 @@ export function noteFooters(ex: Examination, footerRows: number[]): void {
 			cells: errors,
 			key: 'outside',
 			found: `error values outside the data in ${someOf(errors)}`,
+			expected: 'no error values',
 			message: `${someOf(errors)} ${errors.length === 1 ? 'holds' : 'hold'} an error value outside the data; it is ignored.`
 		});
 }
@@ -188,6 +196,7 @@ export function noteMergesAndDates(ex: Examination, rows: number[], timeColumn: 
 			cells: filled.map((m) => ex.at(m[0], m[1])),
 			key: 'merged',
 			found: `${plural(filled.length, 'merged time cell')}`,
+			expected: 'a time for each sample',
 			message: `${plural(filled.length, 'time cell')} merged over several ${ex.places.line}s (${someOf(filled.map((m) => ex.places.range({ firstRow: m[0], firstColumn: m[1], lastRow: m[2], lastColumn: m[3] })))}): the time holds for each of them.`
 		});
 	if (ex.workbook.dateSystem === 1904)
@@ -196,6 +205,7 @@ export function noteMergesAndDates(ex: Examination, rows: number[], timeColumn: 
 			cells: [],
 			key: '1904',
 			found: 'date system 1904',
+			expected: 'days counted from 1900, as most workbooks do',
 			message: 'The workbook counts days from 1904. Dates and times were read accordingly.'
 		});
 }

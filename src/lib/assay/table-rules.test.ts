@@ -3,6 +3,7 @@ import { describe, expect, it } from 'vitest';
 import { readBytes } from '../server/sheets/reading/read';
 import {
 	species,
+	conditions,
 	HEAD,
 	ROWS,
 	changed,
@@ -14,7 +15,7 @@ import {
 	summary
 } from '../server/sheets/reading/test-tables';
 import { workbookBytes } from '../server/sheets/reading/test-workbook';
-import { propose, proposeBlock } from './index';
+import { propose, proposeBlock, settle } from './index';
 
 it('the plain sheet has no finding, so that every other one is due to its change', () => {
 	expect(first(book(changed({}))).findings).toEqual([]);
@@ -193,5 +194,41 @@ describe('the table', () => {
 			'mmol/L',
 			'area'
 		]);
+	});
+
+	it('B1 and B32: a mapping without times, or without anything measured, stops and says what to choose', () => {
+		const workbook = book(changed({}));
+		const { mapping } = first(workbook);
+		const only = (role: 'time' | 'species') => ({
+			...mapping,
+			columns: mapping.columns.map((c) =>
+				c.role === role ? c : { ...c, role: 'ignore' as const, weights: undefined }
+			)
+		});
+		const stops = (role: 'time' | 'species') =>
+			settle({ workbook, species, mapping: only(role) })
+				.findings.filter((f) => f.level === 'stop')
+				.map((f) => [f.id, f.message]);
+		expect(stops('species')[0]).toEqual([
+			'B1:Data!time',
+			'No column is marked as time. Choose the one that holds the sampling times.'
+		]);
+		expect(stops('time')).toEqual([
+			['B32:Data!none', 'No column is read as a species. Choose at least one.']
+		]);
+	});
+
+	it('B30: marked values can be left as missing in place', () => {
+		const workbook = book(changed({ '1,1': { v: 0.4, fill: true }, '2,2': { v: 0.2, strike: true } }));
+		const [f] = findingsOf(workbook, 'B30');
+		const mapping = { ...first(workbook).mapping, conditions };
+		const { run } = settle({ workbook, species, mapping, answers: { [f.id]: { key: 'missing' } } });
+		expect(run?.timepoints.slice(1, 3).map((p) => p.values)).toEqual([
+			{ A: null, B: 0.1 },
+			{ A: 0.3, B: null }
+		]);
+		expect(run?.conversions?.join()).toContain(
+			'B3, C4 left as missing: coloured or struck through on the sheet'
+		);
 	});
 });

@@ -218,4 +218,15 @@ describe('times', () => {
 		const retention = book([['RT (min)', 'Time (h)', 'A (mol/L)'], ...ROWS.map(([t, a]) => [7.5, t, a])]);
 		expect(first(retention).mapping.columns.map((c) => c.role)).toEqual(['ignore', 'time', 'species']);
 	});
+
+	it('B17: rows with another kind of time can be left out; plain numbers beside worded times get their unit', () => {
+		const kinds = times([{ v: 0.5 / 24, format: '[h]:mm' }, 1, 2, 3, 4], 'Time (h)');
+		expect(timesOf(answer(kinds, { B17: { key: 'leave-out' } }))).toEqual([1, 2, 3, 4]);
+		const bare = times([0, '30 min', 1, 2, 4]);
+		expect(findingsOf(bare, 'B17')[0].message).toBe(
+			'Column A holds plain numbers and times such as "30 min". What are the plain numbers in? We will not assume.'
+		);
+		const settled = answer(bare, { B17: { key: 'h' } });
+		expect([timesOf(settled), settled.run?.timeUnit]).toEqual([[0, 0.5, 1, 2, 4], 'h']);
+	});
 });

@@ -9,6 +9,7 @@ import { type Sample, timeColumn, type Timed } from './samples';
 import { settleTimeCells } from './time-cells';
 import { stopBackwards } from './time-order';
 import { stopMixedKinds, timeUnit } from './time-unit';
+import type { TimeReading } from './times';
 
 export interface Times {
 	unit: TimeUnit;
@@ -28,8 +29,19 @@ export function settleTimes(
 	const kept = settleTimeCells(ex, samples, channels);
 	const written = kept.map((s) => ex.time(s.time.row, s.time.column));
 	const dated = withDates(ex, kept, written);
-	const readings = dated ?? written;
-	stopMixedKinds(ex, kept, readings, column);
+	const out = stopMixedKinds(ex, kept, dated ?? written, column);
+	const within = <T>(all: T[]) => all.filter((_, i) => !out.has(i));
+	return unitAndTimes(ex, within(kept), within(dated ?? written), header, dated !== null);
+}
+
+function unitAndTimes(
+	ex: Examination,
+	kept: Sample[],
+	readings: TimeReading[],
+	header: ColumnHeader | undefined,
+	dated: boolean
+): Times {
+	const column = timeColumn(ex);
 	const unit = timeUnit(ex, kept, readings, header, column);
 	const seconds = dated ? elapsed(ex, kept, readings, header, unit) : kept.map(() => null);
 	const timed: Timed[] = kept.map((sample, i) => {

@@ -3,7 +3,7 @@ import { TIME_UNITS, type TimeUnit } from '$lib/schemas/sheet';
 import { headerCell } from './channels';
 import type { ColumnHeader } from './columns';
 import type { Examination } from './examination';
-import { capital, plural, someOf } from './wording';
+import { because, capital, plural, someOf } from './wording';
 import type { Sample } from './samples';
 import type { TimeReading } from './times';
 
@@ -16,34 +16,44 @@ const family = (r: TimeReading): string =>
 				? 'times with their unit'
 				: 'plain numbers';
 
-/** B17: a column holds one kind of time; corrections are typed and may differ. */
+/** B17: a column holds one kind of time; corrections are typed and may differ. Gives the places of the rows that are left out. */
 export function stopMixedKinds(
 	ex: Examination,
 	samples: Sample[],
 	readings: TimeReading[],
 	column: number
-): void {
-	const kinds = new Map<string, string[]>();
+): Set<number> {
+	const kinds = new Map<string, { cells: string[]; at: number[] }>();
 	samples.forEach((s, i) => {
 		if (ex.isCorrected(s.time.row, s.time.column)) return;
 		if (readings[i].kind === 'number' && (readings[i] as { value: number }).value === 0) return;
-		const cells = kinds.get(family(readings[i])) ?? [];
-		cells.push(ex.at(s.time.row, s.time.column));
-		kinds.set(family(readings[i]), cells);
+		const own = kinds.get(family(readings[i])) ?? { cells: [], at: [] };
+		own.cells.push(ex.at(s.time.row, s.time.column));
+		own.at.push(i);
+		kinds.set(family(readings[i]), own);
 	});
 	// Plain numbers beside times with their unit are asked about by `timeUnit`.
 	const mixed = [...kinds].filter(([kind]) => kind !== 'times with their unit');
-	if (mixed.length < 2) return;
-	const what = mixed.map(([kind, cells]) => `${kind} (${someOf(cells, 2)})`).join(' and ');
-	ex.ask({
+	if (mixed.length < 2) return new Set();
+	const what = mixed.map(([kind, { cells }]) => `${kind} (${someOf(cells, 2)})`).join(' and ');
+	const [[kind, rare]] = mixed.sort((a, b) => a[1].at.length - b[1].at.length);
+	const taken = ex.ask({
 		rule: 'B17',
 		level: 'stop',
-		cells: mixed.sort((a, b) => a[1].length - b[1].length)[0][1],
+		cells: rare.cells,
 		key: 'kinds',
 		found: what,
 		expected: 'one kind of time in the column',
-		message: `${capital(ex.places.series(column))} mixes ${what}. Correct the cells that differ, or leave their ${ex.places.line}s out.`
+		message: `${capital(ex.places.series(column))} mixes ${what}. Correct the cells that differ, or leave their ${ex.places.line}s out.`,
+		options: [
+			{ key: 'leave-out', label: `Leave the ${ex.places.line}s with ${kind} out (${someOf(rare.cells)})` }
+		]
 	});
+	if (!taken) return new Set();
+	ex.conversions.push(
+		`${someOf(rare.cells, 8)}: left out, ${kind} among other times${because(taken.reason)}.`
+	);
+	return new Set(rare.at);
 }
 
 export interface UnitFound {
@@ -96,16 +106,23 @@ function wordedUnit(
 	const cells = worded.map(({ s }) => ex.at(s.time.row, s.time.column));
 	const foreign = stated ? worded.some(({ r }) => r.units.some((u) => u !== stated)) : units.size > 1;
 	if (!stated && plain > 0) {
-		ex.ask({
+		const taken = ex.ask({
 			rule: 'B17',
 			level: 'stop',
 			cells,
 			key: 'plain',
 			found: `${plural(plain, 'plain number')} beside times with their unit`,
 			expected: 'one unit for the column',
-			message: `${capital(ex.places.series(column))} holds plain numbers and times such as "${worded[0].r.text}". Set the column's unit, or correct the cells that differ.`
+			message: `${capital(ex.places.series(column))} holds plain numbers and times such as "${worded[0].r.text}". What are the plain numbers in? We will not assume.`,
+			options: TIME_UNITS.map((unit) => ({ key: unit, label: `Plain numbers are in ${unit}` }))
 		});
-		return { unit: target, stated: false };
+		if (!taken) return { unit: target, stated: false };
+		const mapped = ex.mapping.columns.find((c) => c.role === 'time');
+		if (mapped) mapped.unit = taken.key;
+		ex.conversions.push(
+			`Plain numbers of ${ex.places.series(column)} read in ${taken.key}, as chosen; the others by their own unit.`
+		);
+		return { unit: taken.key as TimeUnit, stated: true };
 	}
 	if (foreign) {
 		const example = stated ? worded.find(({ r }) => r.units.some((u) => u !== stated)) : worded[0];

@@ -1,8 +1,10 @@
 /** Units and quantities (B4, B5, B21 to B23): nothing is assumed, each conversion is put in words. */
 import { describe, expect, it } from 'vitest';
+import type { Answers } from '../schemas/sheet';
 import {
 	species,
 	conditions,
+	HEAD,
 	ROWS,
 	changed,
 	book,
@@ -12,6 +14,7 @@ import {
 	valuesOf,
 	summary
 } from '../server/sheets/reading/test-tables';
+import type { TestCell } from '../server/sheets/reading/test-workbook';
 import { settle } from './index';
 
 describe('units', () => {
@@ -104,5 +107,50 @@ describe('units', () => {
 		const counted = answer(standard, { B4: { key: 'standard', values: { standard: 0.1, factor: 0.2 } } });
 		expect(valuesOf(counted)).toEqual([0.5, 0.4, 0.3, 0.2, 0.1, 0.05]);
 		expect(counted.conversions.join()).toContain('signal over that of the internal standard');
+	});
+
+	it('B4: a temperature column without a unit stops; kelvin is brought to °C', () => {
+		const workbook = book([[...HEAD, 'T internal'], ...ROWS.map((row): TestCell[] => [...row, 323.15])]);
+		expect(summary(findingsOf(workbook, 'B4')[0])).toEqual(['stop', 'D1']);
+		expect(answer(workbook, { B4: { key: 'K' } }).run?.temperatureLog?.[0]).toEqual({ time: 0, celsius: 50 });
+		expect(answer(workbook, { B4: { key: 'degC' } }).run?.temperatureLog?.[0].celsius).toBe(323.15);
+	});
+
+	it('B4: % w/w asks for the density, a sum of species of unlike mass for the one that was used', () => {
+		const weight = book([
+			['Time (h)', 'A (% w/w)'],
+			...ROWS.map(([t, a]): TestCell[] => [t, Number(a) * 20])
+		]);
+		const heavy = [
+			{ ...species[0], molarMassGPerMol: 200 },
+			{ ...species[1], molarMassGPerMol: 100 }
+		];
+		const mapping = { ...first(weight).mapping, conditions };
+		const { findings } = settle({ workbook: weight, species: heavy, mapping });
+		expect(findings.map((f) => f.id)).toEqual(['B4:Data!density']);
+		const run = (answers: Answers) => settle({ workbook: weight, species: heavy, mapping, answers }).run;
+		expect(run({ 'B4:Data!density': { key: 'density', values: { value: 0 } } })).toBeNull();
+		expect(
+			run({ 'B4:Data!density': { key: 'density', values: { value: 1000 } } })?.timepoints[0].values.A
+		).toBe(0.5);
+		const sum = {
+			...mapping,
+			columns: mapping.columns.map((c) => (c.column === 2 ? { ...c, weights: { A: 1, B: 1 } } : c))
+		};
+		const asked = settle({ workbook: weight, species: heavy, mapping: sum }).findings;
+		expect(asked[0].message).toContain('its species differ in molar mass. Which one was used?');
+	});
+
+	it('B4: a signal takes a response factor that is given, never one of zero', () => {
+		const workbook = book([
+			['Time (h)', 'A (area)'],
+			...ROWS.map(([t, a]): TestCell[] => [t, Number(a) * 1000])
+		]);
+		expect(valuesOf(answer(workbook, { B4: { key: 'given', values: { value: 1000 } } }))).toEqual([
+			0.5, 0.4, 0.3, 0.2, 0.1, 0.05
+		]);
+		expect(answer(workbook, { B4: { key: 'given', values: { value: 0 } } }).findings[0].problem).toBe(
+			'The response factor must be greater than zero.'
+		);
 	});
 });

@@ -16,6 +16,7 @@ export function noteMissing(ex: Examination, channel: Channel, spots: Spot[]): v
 		cells: cellsOf(marked),
 		key: `${letter(channel, marked)}-missing`,
 		found: someOf(texts),
+		expected: 'a number, a limit, or nothing',
 		message: `${someOf(texts)} in ${someOf(cellsOf(marked))}: taken as missing, never as zero.`
 	});
 }
@@ -32,6 +33,7 @@ export function noteTextNumbers(ex: Examination, spots: Spot[]): void {
 		cells: cellsOf(texts),
 		key: 'text-numbers',
 		found: plural(texts.length, 'number written as text', 'numbers written as text'),
+		expected: 'numbers stored as numbers',
 		message: `${plural(texts.length, 'number is', 'numbers are')} stored as text or with unusual signs (${someOf(cellsOf(texts))}); ${texts.length === 1 ? 'it was' : 'they were'} read as numbers, for example "${ex.shown(example.row, example.column).slice(0, 30)}" as ${figure(example.reading.value)}.`
 	});
 }
@@ -47,6 +49,7 @@ export function noteFormulas(ex: Examination, spots: Spot[]): void {
 		cells: cellsOf(formulas),
 		key: 'formulas',
 		found: plural(formulas.length, 'formula', 'formulas'),
+		expected: 'values, or formulas with their stored results',
 		message: `${plural(formulas.length, 'cell is a formula', 'cells are formulas')} (${someOf(cellsOf(formulas))}); the result stored in the file was used.`
 	});
 }

@@ -12,6 +12,7 @@ import {
 	valuesOf,
 	summary
 } from '../server/sheets/reading/test-tables';
+import type { TestCell } from '../server/sheets/reading/test-workbook';
 import { settle } from './index';
 
 describe('numbers', () => {
@@ -166,5 +167,38 @@ describe('numbers', () => {
 	it('B39: text that looks like a formula is text, and asked about like any other', () => {
 		const workbook = book(changed({ '1,1': '=1+1', '2,1': '@SUM(A1)' }));
 		expect(findingsOf(workbook, 'B11').map((f) => f.found)).toEqual(['"=1+1"', '"@SUM(A1)"']);
+	});
+
+	it('B11: a typed 0 beside a LOQ that the sheet states is offered as below it, with its place', () => {
+		const workbook = book([...changed({}), ['LOQ 2.0 mmol/L']]);
+		const [f] = findingsOf(workbook, 'B11');
+		expect([f.level, f.cells.join(), f.message]).toEqual([
+			'note',
+			'C2',
+			'C2: a typed 0 stays 0. The LOQ of B is 0.002, by A8; "below LOQ" may be what is meant.'
+		]);
+		expect(valuesOf(answer(workbook, {}), 'B')?.[0]).toBe(0);
+		const mapping = { ...first(workbook).mapping, conditions };
+		const { run } = settle({ workbook, species, mapping, answers: { [f.id]: { key: 'censor' } } });
+		expect(run?.timepoints[0].values.B).toEqual({ below: 0.002 });
+	});
+
+	it('B11: texts of more than fifty wordings are asked about together', () => {
+		const rows = Array.from({ length: 60 }, (_, i): TestCell[] => [
+			i,
+			`remark ${String.fromCharCode(97 + (i % 26))}${'x'.repeat(i)}`,
+			0.1
+		]);
+		const workbook = book([
+			['Time (h)', 'A (mol/L)', 'B (mol/L)'],
+			[0, 0.5, 0],
+			...rows.map((r, i) => [i + 1, r[1], r[2]])
+		]);
+		const asked = findingsOf(workbook, 'B11');
+		expect([asked.length, asked[50].count, asked[50].message]).toEqual([
+			51,
+			10,
+			'10 further cells of A (column B) hold text that is no number. Leave them as missing?'
+		]);
 	});
 });

@@ -8,7 +8,7 @@ import type { StatedLimits } from './limits';
 import { settleZerosAndNegatives } from './low-values';
 import { askMarked } from './marked-values';
 import type { Sample } from './samples';
-import type { Spot } from './spots';
+import { leaveMissing, type Spot } from './spots';
 import { askTexts, stopUnusable } from './unusable-cells';
 import { noteFormulas, noteMissing, noteTextNumbers } from './value-notes';
 
@@ -19,7 +19,9 @@ export function settleValues(
 	ex: Examination,
 	samples: Sample[],
 	channels: Channel[],
-	limits: StatedLimits
+	limits: StatedLimits,
+	/** Cells left as missing because the sheet marks them. */
+	leftOut: Set<string>
 ): Values {
 	const values: Values = new Map(samples.map((s) => [s, new Map<string, AssayValue>()]));
 	const spots = channels.map((channel) => ({ channel, spots: spotsOf(ex, samples, channel, values) }));
@@ -30,6 +32,11 @@ export function settleValues(
 	noteTextNumbers(
 		ex,
 		spots.flatMap((s) => s.spots)
+	);
+	leaveMarked(
+		ex,
+		spots.flatMap((s) => s.spots),
+		leftOut
 	);
 	askMarked(ex, spots);
 	for (const { channel, spots: own } of spots) {
@@ -43,10 +50,15 @@ export function settleValues(
 	askNotDetected(ex, spots, limits);
 	for (const { channel, spots: own } of spots) {
 		askTrace(ex, channel, own, limits);
-		settleZerosAndNegatives(ex, channel, own);
+		settleZerosAndNegatives(ex, channel, own, limits);
 		noteMissing(ex, channel, own);
 	}
 	return values;
+}
+
+function leaveMarked(ex: Examination, spots: Spot[], leftOut: Set<string>): void {
+	const own = spots.filter((s) => leftOut.has(s.cell));
+	if (own.length > 0) leaveMissing(ex, own, 'coloured or struck through on the sheet');
 }
 
 function spotsOf(ex: Examination, samples: Sample[], channel: Channel, values: Values): Spot[] {
