@@ -1,6 +1,6 @@
 import { afterEach, beforeAll, describe, expect, it } from 'vitest';
 import { write } from '../../src/lib/server/database';
-import { Job, JobEvent, type Group } from '../../src/lib/server/database/models';
+import { Job, JobEvent, JobInput, type Group } from '../../src/lib/server/database/models';
 import { registerKind } from '../../src/lib/server/jobs/kinds';
 import { cancelJob, enqueue, startQueue, stopQueue, wake } from '../../src/lib/server/jobs/queue';
 import { closeStreams, eventStream } from '../../src/lib/server/jobs/stream';
@@ -9,7 +9,7 @@ import { aheadOf } from '../../src/lib/server/jobs/waiting';
 import type { Actor } from '../../src/lib/server/policy';
 import { makeActor, makeGroup, openTestDatabase } from './support';
 
-openTestDatabase();
+const test = openTestDatabase();
 
 /** A worker that counts in steps, looks at its stop flag or not, and ends in the way it is told to. */
 const WORKER = `
@@ -98,6 +98,16 @@ describe('the job queue', () => {
 		expect(seen).toContain('progress');
 		expect(seen.at(-1)).toBe('done');
 		expect(recorded).toContain(`done ${id} true`);
+	});
+
+	it('keeps what it computes apart from its state, which is written anew at every progress', async () => {
+		const id = await add({ ms: 5, answer: 'large' });
+		const { sequelize } = test.database();
+		const [columns] = await sequelize.query('PRAGMA table_info(jobs)');
+		expect((columns as { name: string }[]).map((c) => c.name)).not.toContain('input');
+		expect((await JobInput.findByPk(id))?.input).toEqual({ ms: 5, answer: 'large' });
+		await startQueue();
+		await until(id, 'done');
 	});
 
 	it('keeps what waits in order and runs no more at a time than there are threads', async () => {

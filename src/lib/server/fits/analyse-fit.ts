@@ -15,7 +15,7 @@ export const analyseInThread = <R>(task: AnalysisTask, signal?: AbortSignal): Pr
 
 /** The stored result that questions are asked of; a fit without one has no answers. */
 export async function usableFit(actor: Actor, fitId: string): Promise<RecordedFit & { record: Fit }> {
-	const job = await findFitJob(actor, fitId, 'study.read');
+	const job = await findFitJob(actor, fitId, 'study.read', { withoutInput: true });
 	const record = await Fit.findByPk(job.id);
 	if (!record || record.report.status === 'failed')
 		throw new AppError('wrong-state', 'This fit has no result that could be looked into.');

@@ -2,6 +2,7 @@ import { Op } from 'sequelize';
 import type { FitReport } from '$lib/schemas/fit';
 import type { JobProgress, JobStatus } from '$lib/schemas/job';
 import { Fit, Job, Run, User } from '../database/models';
+import { withInputs } from '../jobs/inputs';
 import { isId } from '../ids';
 import type { Actor } from '../policy';
 import { findStudy } from '../studies/find';
@@ -80,6 +81,7 @@ export async function listFits(
 		order: [['id', 'DESC']],
 		limit: Math.min(Math.max(options.limit ?? LIMIT, 1), LIMIT)
 	});
+	await withInputs(jobs);
 	const [fits, runs, people] = await Promise.all([
 		Fit.findAll({
 			where: { id: jobs.map((j) => j.id) },

@@ -4,6 +4,7 @@ import type { FitReport, FitRequest } from '$lib/schemas/fit';
 import type { JobProgress, JobStatus } from '$lib/schemas/job';
 import { Fit, FitRun, Job, Run, RunRevision, Scheme, SchemeVersion, User } from '../database/models';
 import { notFound } from '../errors';
+import { withInput } from '../jobs/inputs';
 import { aheadOf } from '../jobs/waiting';
 import { isId } from '../ids';
 import { can, requireCan, type Action, type Actor } from '../policy';
@@ -70,14 +71,11 @@ export async function findFitJob(
 	options: { withoutInput?: boolean } = {}
 ): Promise<Job> {
 	if (!isId(fitId)) throw notFound('fit');
-	const job = await Job.findOne({
-		where: { id: fitId, kind: 'fit', groupId: groupsInSight(actor) },
-		// The input of a large fit takes longer to read than all the rest.
-		...(options.withoutInput ? { attributes: { exclude: ['input'] } } : {})
-	});
+	const job = await Job.findOne({ where: { id: fitId, kind: 'fit', groupId: groupsInSight(actor) } });
 	if (!job) throw notFound('fit');
 	requireCan(actor, job.groupId, action, 'fit');
-	return job;
+	// The input of a large fit takes longer to read than all the rest.
+	return options.withoutInput ? job : withInput(job);
 }
 
 async function runsOf(job: Job, input: FitJobInput): Promise<FitRunView[]> {
@@ -112,10 +110,12 @@ async function schemeOf(input: FitJobInput): Promise<FitView['scheme']> {
 }
 
 async function previousOf(job: Job, engineVersion: string | null): Promise<FitView['previous']> {
-	const before = await Job.findOne({
-		where: { studyId: job.studyId, kind: 'fit', id: { [Op.lt]: job.id } },
-		order: [['id', 'DESC']]
-	});
+	const before = await withInput(
+		await Job.findOne({
+			where: { studyId: job.studyId, kind: 'fit', id: { [Op.lt]: job.id } },
+			order: [['id', 'DESC']]
+		})
+	);
 	if (!before) return null;
 	const fit = await Fit.findByPk(before.id, { attributes: ['number', 'engineVersion'] });
 	const was = before.input as FitJobInput;

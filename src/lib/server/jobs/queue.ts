@@ -1,11 +1,12 @@
 import { Op } from 'sequelize';
 import { write, type Tx } from '../database';
-import { Job, newId } from '../database/models';
+import { Job, JobInput, newId } from '../database/models';
 import { log } from '../log';
 import type { Actor } from '../policy';
 import { settings } from '../settings';
 import { end, failAfterAll, requeue } from './endings';
 import { addEvent, tellListeners } from './events';
+import { withInput } from './inputs';
 import { kindOf } from './kinds';
 import { progressWriter } from './progress';
 import { startThread, ThreadRefused, type Thread } from './thread';
@@ -43,6 +44,7 @@ export interface NewJob {
 /** Adds a job in the transaction of what asked for it; call `wake()` after the commit. */
 export async function enqueue(tx: Tx, job: NewJob): Promise<Job> {
 	const row = await Job.create({ id: newId(), status: 'queued', ...job }, { transaction: tx });
+	await JobInput.create({ jobId: row.id, input: job.input }, { transaction: tx });
 	await addEvent(tx, row.id, 'queued', { status: 'queued' });
 	return row;
 }
@@ -78,7 +80,7 @@ async function claimNext(): Promise<Job | null> {
 		if (count !== 1) return null;
 		await Job.increment('attempts', { where: { id }, transaction: tx });
 		const event = await addEvent(tx, id, 'running', { status: 'running' });
-		return { event, job: await Job.findByPk(id, { transaction: tx }) };
+		return { event, job: await withInput(await Job.findByPk(id, { transaction: tx }), tx) };
 	});
 	if (!claimed?.job) return claimNext();
 	tellListeners(id, claimed.event);
@@ -183,9 +185,6 @@ export function closeQueue(): void {
 	accepting = false;
 }
 
-/** What the end of a job needs of it: all but its input, which can be large. */
-const WITHOUT_INPUT = { exclude: ['input'] };
-
 /**
  * Calls a job off: one that waits ends at once, one that runs is stopped, and its end is on record when this returns, whether
  * its thread has noticed or not. False when it had ended before.
@@ -202,7 +201,7 @@ export async function cancelJob(jobId: string, actor: Actor): Promise<boolean> {
 			{ where: { id: jobId, status: 'queued' }, transaction: tx }
 		);
 		if (waiting !== 1) return { asked: true, event: null };
-		const job = await Job.findByPk(jobId, { attributes: WITHOUT_INPUT, transaction: tx });
+		const job = await Job.findByPk(jobId, { transaction: tx });
 		await kindOf(job!.kind).cancelled(tx, job!, actor);
 		return { asked: true, event: await addEvent(tx, jobId, 'cancelled', { status: 'cancelled' }) };
 	});

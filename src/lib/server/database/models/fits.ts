@@ -16,6 +16,7 @@ export class Job extends Model<InferAttributes<Job>, InferCreationAttributes<Job
 	declare groupId: string;
 	declare studyId: CreationOptional<string | null>;
 	declare status: JobStatus;
+	/** What it computes: kept in `job_inputs`, put here by `withInput`. */
 	declare input: unknown;
 	declare inputHash: string;
 	declare progress: CreationOptional<object | null>;
@@ -37,7 +38,7 @@ function initJob(sequelize: Sequelize): void {
 			groupId: { type: DataTypes.UUID, allowNull: false },
 			studyId: { type: DataTypes.UUID, allowNull: true },
 			status: { type: DataTypes.STRING, allowNull: false },
-			input: { type: DataTypes.JSON, allowNull: false },
+			input: { type: DataTypes.VIRTUAL },
 			inputHash: { type: DataTypes.STRING, allowNull: false },
 			progress: { type: DataTypes.JSON, allowNull: true },
 			error: { type: DataTypes.TEXT, allowNull: true },
@@ -50,6 +51,21 @@ function initJob(sequelize: Sequelize): void {
 			createdAt: { type: DataTypes.DATE, allowNull: false, defaultValue: DataTypes.NOW }
 		},
 		options(sequelize, 'jobs')
+	);
+}
+
+export class JobInput extends Model<InferAttributes<JobInput>, InferCreationAttributes<JobInput>> {
+	declare jobId: string;
+	declare input: unknown;
+}
+
+function initJobInput(sequelize: Sequelize): void {
+	JobInput.init(
+		{
+			jobId: { type: DataTypes.UUID, primaryKey: true },
+			input: { type: DataTypes.JSON, allowNull: false }
+		},
+		options(sequelize, 'job_inputs')
 	);
 }
 
@@ -178,6 +194,7 @@ function initWindowResult(sequelize: Sequelize): void {
 
 export function initFits(sequelize: Sequelize): void {
 	initJob(sequelize);
+	initJobInput(sequelize);
 	initJobEvent(sequelize);
 	initFit(sequelize);
 	initFitRun(sequelize);
