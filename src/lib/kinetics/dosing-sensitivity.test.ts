@@ -4,14 +4,7 @@ import { runDosing, type DosingPlan } from './dosing';
 import { dosingSensitivities, type DosingParameter } from './dosing-sensitivity';
 import { linearSystem } from './linear-system';
 import { rateConstants } from './rate-laws';
-import {
-	Complex,
-	complexScheme,
-	derivative,
-	integrateComplex,
-	real,
-	stepped
-} from './test-complex';
+import { Complex, complexScheme, derivative, integrateComplex, real, stepped } from './test-complex';
 import { everyLaw } from './test-networks';
 
 const excess = { X: 0.8, Y: 2.5 };

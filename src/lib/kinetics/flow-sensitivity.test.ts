@@ -139,7 +139,7 @@ describe('derivatives of a table of residence times, by complex steps', () => {
 			durationS: m === 0 ? t : t.minus(times[m - 1]),
 			fromK: at,
 			toK: at,
-			density: (m === 0 ? [zero, zero] : [density[m - 1], density[m]])
+			density: m === 0 ? [zero, zero] : [density[m - 1], density[m]]
 		}));
 		let area = zero;
 		for (let m = 1; m < times.length; m++)
