@@ -61,7 +61,7 @@ describe('a cell of the sheet', () => {
 	it('stands back outside the block and in columns that are not used', () => {
 		expect(classes({}, 5, 1)).toEqual(['cell', 'aside']);
 		expect(classes({}, 2, 3)).toEqual(['cell', 'unused']);
-		expect(classes({ block: { ...mapping.block, lastRow: 5 } }, 5, 1)).toEqual(['cell']);
+		expect(classes({ block: { ...mapping.block, lastRow: 5 } }, 5, 1)).toEqual(['cell', 'right']);
 	});
 	it('reads as corrected, and says what the sheet holds', () => {
 		const looks = new CellLooks(look);

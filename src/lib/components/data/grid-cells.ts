@@ -17,7 +17,7 @@ export interface Look {
 	active: string | null;
 }
 
-const VALUES = ['species', 'value', 'temperature'];
+const VALUES = ['time', 'species', 'value', 'temperature'];
 
 export class CellLooks {
 	private readonly series: Map<number, ColumnMapping>;

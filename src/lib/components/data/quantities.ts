@@ -21,6 +21,24 @@ export function valueText(value: AssayValue | undefined): string {
 	return 'below' in value ? `< ${value.below}` : `> ${value.above}`;
 }
 
+const decimalsOf = (text: string): number => /\.(\d+)$/.exec(text)?.[1].length ?? 0;
+
+/** Most decimals among the values of a column, with which `alignedText` puts their decimal signs under each other. */
+export const mostDecimals = (values: Iterable<AssayValue | undefined>): number => {
+	let most = 0;
+	for (const value of values) most = Math.max(most, decimalsOf(valueText(value)));
+	return most;
+};
+
+/** A value at the right of its column with room for the decimals that it lacks: digits and sign as wide as printed ones. */
+export function alignedText(value: AssayValue | undefined, decimals: number): string {
+	const text = valueText(value);
+	const own = decimalsOf(text);
+	// A figure space is as wide as a digit in tabular figures, a punctuation space as the point.
+	const point = own === 0 && decimals > 0 ? '\u2008' : '';
+	return text + point + '\u2007'.repeat(Math.max(0, decimals - own));
+}
+
 /** What a revision changed, for a person: quantities and lists in words, never raw records. */
 export function changeText(value: unknown): string {
 	if (value === null || value === undefined) return 'nothing';
