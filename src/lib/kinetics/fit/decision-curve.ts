@@ -14,6 +14,8 @@ export type Condition =
 const DELTA = 1e-4;
 const GRID = 81;
 const ROUNDS = 8;
+/** Differences this small beside the values are rounding: no time is read from them. */
+const ROUNDING = 1e-13;
 
 export interface GapAt {
 	/** g(t, θ) */
@@ -64,7 +66,7 @@ export class CurveOfSpecies {
 		return { values: out.slice(first, first + times.length), rows };
 	}
 
-	/** g at ascending times. */
+	/** g at ascending times; zero where it is no more than rounding of the values that it is made of. */
 	private gaps(x: Float64Array, times: number[]): number[] {
 		const { condition } = this;
 		if (condition.kind === 'slope') {
@@ -72,11 +74,13 @@ export class CurveOfSpecies {
 				x,
 				times.flatMap((t) => [t * (1 - DELTA), t * (1 + DELTA)])
 			);
-			return times.map((_, k) => values[2 * k + 1] - values[2 * k]);
+			const noise = ROUNDING * largest(values);
+			return times.map((_, k) => clear(values[2 * k + 1] - values[2 * k], noise));
 		}
 		const { values } = this.curve(x, [0, ...times]);
 		const aim = condition.kind === 'share' ? condition.share * values[0] : condition.level;
-		return times.map((_, k) => values[k + 1] - aim);
+		const noise = ROUNDING * Math.max(largest(values), Math.abs(aim));
+		return times.map((_, k) => clear(values[k + 1] - aim, noise));
 	}
 
 	/**
@@ -90,19 +94,33 @@ export class CurveOfSpecies {
 		let times = Array.from({ length: 4 * GRID }, (_, k) => from * (to / from) ** (k / (4 * GRID - 1)));
 		for (let round = 0; round < ROUNDS; round++) {
 			const gaps = this.gaps(x, times);
-			const k = gaps.findIndex((g, i) => i > 0 && this.crossed(gaps[i - 1], g));
-			if (k < 0) return null;
-			[from, to] = [times[k - 1], times[k]];
-			const straight = from + ((to - from) * gaps[k - 1]) / (gaps[k - 1] - gaps[k]);
+			const pair = this.crossing(gaps);
+			if (!pair) return null;
+			const [k, l] = pair;
+			[from, to] = [times[k], times[l]];
+			const straight = from + ((to - from) * gaps[k]) / (gaps[k] - gaps[l]);
 			if (to - from <= 1e-7 * to) return straight;
 			times = Array.from({ length: GRID }, (_, i) => from + ((to - from) * i) / (GRID - 1));
 		}
 		return 0.5 * (from + to);
 	}
 
-	private crossed(before: number, after: number): boolean {
-		if (this.condition.kind === 'slope') return before > 0 && after <= 0;
-		return (before > 0 && after <= 0) || (before < 0 && after >= 0);
+	/**
+	 * The first two places between which g changes its sign, with nothing but zeros between them. A curve that comes to rest at
+	 * the value asked for, or on a plateau, changes no sign: its zeros go on to the end.
+	 */
+	private crossing(gaps: number[]): [number, number] | null {
+		let before = -1;
+		for (let i = 0; i < gaps.length; i++) {
+			if (gaps[i] === 0) continue;
+			if (before >= 0 && this.turns(gaps[before], gaps[i])) return [before, i];
+			before = i;
+		}
+		return null;
+	}
+
+	private turns(before: number, after: number): boolean {
+		return this.condition.kind === 'slope' ? before > 0 && after < 0 : before > 0 !== after > 0;
 	}
 
 	/** g, its derivatives and the value at one time. */
@@ -129,3 +147,6 @@ export class CurveOfSpecies {
 		};
 	}
 }
+
+const largest = (values: Float64Array): number => values.reduce((top, v) => Math.max(top, Math.abs(v)), 0);
+const clear = (gap: number, noise: number): number => (Math.abs(gap) <= noise ? 0 : gap);

@@ -16,6 +16,7 @@ export class ConstrainedProfile {
 	private readonly box: SearchBox;
 	private readonly workspace: LeastSquaresWorkspace;
 	private last: Float64Array;
+	private weight = 0;
 
 	constructor(
 		private readonly fitted: RestoredFit,
@@ -34,6 +35,10 @@ export class ConstrainedProfile {
 	 * @returns both ends; null for one that is not reached
 	 */
 	interval(time: number, error: number, t: number, horizon: number): [number | null, number | null] {
+		// σ of g itself; the same at every time, for far out ∂g/∂t may vanish while the condition still means something.
+		const spread = Math.abs(this.curve.at(this.fitted.x, time).slope) * error;
+		if (!(spread > 0)) return [null, null];
+		this.weight = (FIRMNESS * this.s) / spread;
 		return [this.side(time, error, t, 0, -1), this.side(time, error, t, horizon, 1)];
 	}
 
@@ -46,7 +51,7 @@ export class ConstrainedProfile {
 			// Towards zero in proportion: no time of a condition is negative.
 			const reach = sense > 0 ? inside + step : Math.max(inside - step, 0.5 * inside);
 			if (sense > 0 ? reach > bound : reach < 1e-6 * time) return null;
-			const tau = this.tau(reach, error);
+			const tau = this.tau(reach);
 			if (tau >= t) return this.root(inside, tauInside, reach, tau, error, t);
 			step = Math.min(
 				4 * step,
@@ -63,7 +68,7 @@ export class ConstrainedProfile {
 		let [fa, fb] = [tauA - t, tauB - t];
 		for (let k = 0; k < STEPS && Math.abs(b - a) > 1e-6 * error; k++) {
 			const next = Number.isFinite(fb) ? b - (fb * (b - a)) / (fb - fa) : 0.5 * (a + b);
-			const f = this.tau(next, error) - t;
+			const f = this.tau(next) - t;
 			if (Math.abs(f) < 1e-6 * t) return next;
 			if (f > 0 === fb > 0) fa *= 0.5;
 			else [a, fa] = [b, fb];
@@ -73,11 +78,8 @@ export class ConstrainedProfile {
 	}
 
 	/** τ with the condition held at this time. */
-	private tau(time: number, error: number): number {
+	private tau(time: number): number {
 		const { model } = this.fitted;
-		const slope = Math.abs(this.curve.at(this.last, time).slope);
-		if (!(slope > 0)) return Infinity;
-		const weight = (FIRMNESS * this.s) / (slope * error);
 		const options = {
 			lower: this.box.lower,
 			upper: this.box.upper,
@@ -86,7 +88,7 @@ export class ConstrainedProfile {
 			maxEvaluations: 200,
 			factor: 10
 		};
-		const result = leastSquares(this.problem(time, weight), this.last, options, this.workspace);
+		const result = leastSquares(this.problem(time), this.last, options, this.workspace);
 		if (result.status === 'cancelled') throw new FitCancelled();
 		if (!Number.isFinite(result.ssr)) return Infinity;
 		this.last = result.x;
@@ -95,8 +97,9 @@ export class ConstrainedProfile {
 	}
 
 	/** The fit's own residuals and the condition as one more. */
-	private problem(time: number, weight: number): LeastSquaresProblem {
+	private problem(time: number): LeastSquaresProblem {
 		const { model } = this.fitted;
+		const { weight } = this;
 		const { m, p } = model;
 		const residuals = new Float64Array(m);
 		const jacobian = new Float64Array(m * p);
