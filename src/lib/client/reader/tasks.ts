@@ -3,6 +3,7 @@
  * service settles everything once more by itself before a run is made.
  */
 import { CHECKS, propose, proposeBlock, settle, timeForm, type Checks, type TimeForm } from '$lib/assay';
+import { settledAsProposed } from '$lib/assay/as-proposed';
 import type { SpeciesContent } from '$lib/schemas/scheme';
 import type {
 	Answers,
@@ -87,6 +88,7 @@ export class Examiner {
 	private species: SpeciesContent[] = [];
 	private saved: SavedMapping[] = [];
 	private checks: Checks = CHECKS;
+	private proposed: Mapping[] = [];
 
 	perform<N extends TaskName>(name: N, task: Tasks[N]['takes']): Tasks[N]['gives'] {
 		const performers: { [K in TaskName]: (task: Tasks[K]['takes']) => Tasks[K]['gives'] } = {
@@ -106,13 +108,24 @@ export class Examiner {
 		this.workbook = JSON.parse(workbookJson) as GridWorkbook;
 		[this.species, this.saved] = [species, saved];
 		this.checks = { ...CHECKS, ...checks };
-		return propose(this.workbook, species, { saved, checks });
+		const proposal = propose(this.workbook, species, { saved, checks });
+		this.proposed = proposal.tables.map((t) => t.mapping);
+		return proposal;
 	}
 
 	private settle(decided: Decided): Settled {
 		const { species, checks } = this;
-		const settlement = settle({ workbook: this.book, species, checks, ...decided });
+		const settlement =
+			this.asProposed(decided) ?? settle({ workbook: this.book, species, checks, ...decided });
 		return shownOf(settlement, timeForm(this.book, settlement.mapping));
+	}
+
+	/** A table that nobody touched yet was settled when it was proposed; its mapping comes back as a copy. */
+	private asProposed({ mapping, answers, corrections }: Decided): Settlement | null {
+		if (Object.keys(answers).length > 0 || corrections.length > 0) return null;
+		const text = JSON.stringify(mapping);
+		const own = this.proposed.find((m) => m.table === mapping.table && JSON.stringify(m) === text);
+		return own ? settledAsProposed(own) : null;
 	}
 
 	private draw({ key, sheet, block, headerRows }: DrawnPlace): TableProposal | null {

@@ -1,6 +1,7 @@
 import type { SpeciesContent } from '$lib/schemas/scheme';
 import type { GridWorkbook, Proposal, SavedMapping, Settlement } from '$lib/schemas/sheet';
 import type { SheetWork, TableWork } from '$lib/schemas/sheet-work';
+import { settledAsProposed } from '$lib/assay/as-proposed';
 import { propose, settle, type Checks } from '$lib/assay';
 
 /** What the reader needs to know beside the sheet itself. */
@@ -16,6 +17,8 @@ export interface ExamineTask extends Surroundings {
 	work: SheetWork;
 	/** Only these tables are settled; all, when left out. */
 	only?: string[];
+	/** What is asked counts, not the values: settlements come without points and run, which are long to hand over. */
+	questionsOnly?: boolean;
 }
 
 export interface Examined {
@@ -39,15 +42,11 @@ export function examineHere(task: ExamineTask): Examined {
 	const settlements: Examined['settlements'] = {};
 	for (const key of keys) {
 		const own = workOn(proposal, work, key);
-		if (own)
-			settlements[key] = settle({
-				workbook,
-				species,
-				mapping: own.mapping,
-				answers: own.answers,
-				corrections: own.corrections,
-				checks
-			});
+		if (!own) continue;
+		const { mapping, answers, corrections } = own;
+		const untouched = work.tables[key] ? null : settledAsProposed(mapping);
+		const settled = untouched ?? settle({ workbook, species, mapping, answers, corrections, checks });
+		settlements[key] = task.questionsOnly ? { ...settled, preview: [], run: null } : settled;
 	}
 	return { proposal, settlements };
 }

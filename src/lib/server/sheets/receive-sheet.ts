@@ -174,7 +174,8 @@ export async function receiveSheet(actor: Actor, input: ReceiveSheetInput): Prom
 	const study = await findStudy(actor, input.studyId, 'sheet.upload');
 	const workbook = await read(actor, study, input);
 	const surroundings = await surroundingsOf(study.id, study.groupId);
-	const { proposal, settlements } = await examine({ workbook, work: { tables: {} }, ...surroundings });
+	const work = { tables: {} };
+	const { proposal, settlements } = await examine({ workbook, work, questionsOnly: true, ...surroundings });
 	const open = Object.values(settlements).reduce((sum, s) => sum + s.open, 0);
 	const { sheet, duplicate } = await store(actor, input, workbook, { tables: {}, open });
 	return {

@@ -20,7 +20,7 @@ export interface SaveSheetWorkInput {
 export async function countOpen(sheet: Sheet, work: SheetWork, done: string[] = []): Promise<number> {
 	const surroundings = await surroundingsOf(sheet.studyId, sheet.groupId);
 	const workbook = sheet.reading as GridWorkbook;
-	const { settlements } = await examine({ workbook, work, ...surroundings });
+	const { settlements } = await examine({ workbook, work, questionsOnly: true, ...surroundings });
 	const confirmed = await RunRevision.findAll({
 		where: { sheetId: sheet.id },
 		attributes: ['id', 'tableKey']
