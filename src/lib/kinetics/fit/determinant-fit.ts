@@ -18,6 +18,7 @@ import type { FitContext } from './fit';
 import type { LeastSquaresResult } from './least-squares';
 import type { KineticModel } from './model';
 import { cholesky, invertPositiveDefinite } from './positive-definite';
+import { USUAL_WORK, type ProgressMeter } from './progress';
 import { assembleReport } from './report';
 import { responseDependencies, responseRows } from './response-rows';
 import type { Minimum } from './search';
@@ -36,7 +37,7 @@ interface Found {
 
 /** The report of a request whose `criterion` is 'determinant'. `context.outcome` is its search by least squares. */
 export function determinantReport(context: FitContext): FitReport {
-	const { problem, model, box, outcome, hooks } = context;
+	const { problem, model, box, outcome, hooks, meter } = context;
 	model.watch = watchOver(hooks.cancelled);
 	const layout = responseRows(problem);
 	const dependencies = responseDependencies(problem, layout);
@@ -47,7 +48,8 @@ export function determinantReport(context: FitContext): FitReport {
 		...outcome.minima.map((m) => m.result.x),
 		...startingPoints(box, Math.min(starts, STARTS), seed)
 	];
-	const found = searchAll(criterion, points, box, hooks.onProgress);
+	meter.begin('searching by the determinant criterion', USUAL_WORK.start * points.length, USUAL_WORK.report);
+	const found = searchAll(criterion, points, box, meter);
 	const [best] = found;
 	const u = spreadOf(criterion, best.minimum, layout.rows.length, context);
 	const minima = found.map((f) => asMinimum(f, model));
@@ -84,12 +86,12 @@ function searchAll(
 	criterion: DeterminantCriterion,
 	points: Float64Array[],
 	box: SearchBox,
-	onProgress: FitContext['hooks']['onProgress']
+	meter: ProgressMeter
 ): Found[] {
 	const found: Found[] = [];
 	points.forEach((start, k) => {
 		const minimum = minimiseDeterminant(criterion, start, box, ROUGH_STEPS);
-		onProgress?.({ stage: 'searching by the determinant criterion', done: k + 1, total: points.length });
+		meter.step(k + 1, points.length);
 		if (minimum.value === Infinity) return;
 		const same = found.find((f) => near(f.minimum, minimum, box));
 		if (!same) found.push({ minimum, starts: 1, firstStart: k });

@@ -15,22 +15,14 @@ import type { LeastSquaresResult } from './least-squares';
 import { norm } from './linear-algebra';
 import { KineticModel } from './model';
 import { compileProblem, type KineticProblem } from './problem';
+import { ProgressMeter, USUAL_WORK, type FitProgress } from './progress';
 import { report } from './report';
 import { FitCancelled, searchMinima, type Minimum, type SearchOutcome } from './search';
 import { searchBox, startingPoints, type SearchBox } from './starts';
 
 export { FitCancelled };
 
-export interface FitProgress {
-	/** What is being done now, in words. */
-	stage: string;
-	done: number;
-	total: number;
-	/** Share of the whole work that is done, 0 to 1; never goes back. */
-	fraction?: number;
-	/** Best weighted sum of squares so far. */
-	best?: number;
-}
+export type { FitProgress };
 
 export interface FitHooks {
 	onProgress?: (progress: FitProgress) => void;
@@ -62,13 +54,19 @@ export function fit(request: FitRequest, hooks: FitHooks = {}): FitReport {
 	model.watch = watchOver(hooks.cancelled);
 	const box = searchBox(problem);
 	early.push(...identifiabilityFindings(problem, box, model.watch), ...structuralFindings(problem));
-	const outcome = problem.free.length > 0 ? runSearch(model, box, request, hooks) : nothingToSearch(model);
+	const meter = new ProgressMeter(hooks.onProgress);
+	const outcome =
+		problem.free.length > 0 ? runSearch(model, box, request, hooks, meter) : nothingToSearch(model);
 	outcome.minima = withoutPlateaus(outcome.minima, model.m);
 	if (outcome.minima.length === 0) throw new FitRequestError([noFiniteStart()]);
-	const context = { problem, model, box, outcome, early, hooks };
-	return request.options.criterion === 'determinant' && problem.free.length > 0
-		? determinantReport(context)
-		: report(context);
+	const context = { problem, model, box, outcome, early, hooks, meter };
+	const made =
+		request.options.criterion === 'determinant' && problem.free.length > 0
+			? determinantReport(context)
+			: report(context);
+	meter.begin('finished', 1, 0);
+	meter.step(1, 1, made.weightedSsr);
+	return made;
 }
 
 /**
@@ -96,18 +94,27 @@ function noFiniteStart(): FitFinding {
 	};
 }
 
-function runSearch(model: KineticModel, box: SearchBox, request: FitRequest, hooks: FitHooks): SearchOutcome {
-	const { starts, seed } = request.options;
-	const points = startingPoints(box, starts, seed);
-	return searchMinima(model, box, points, {
+function runSearch(
+	model: KineticModel,
+	box: SearchBox,
+	request: FitRequest,
+	hooks: FitHooks,
+	meter: ProgressMeter
+): SearchOutcome {
+	const { starts, seed, profiles } = request.options;
+	const after = USUAL_WORK.report + (profiles ? USUAL_WORK.profile * model.p : 0);
+	meter.begin(
+		'searching from different starting values',
+		USUAL_WORK.start * starts,
+		USUAL_WORK.refinement + after
+	);
+	return searchMinima(model, box, startingPoints(box, starts, seed), {
 		cancelled: hooks.cancelled,
-		onStart: (done, total, best) =>
-			hooks.onProgress?.({
-				stage: 'searching from different starting values',
-				done,
-				total,
-				...(Number.isFinite(best) ? { best } : {})
-			})
+		onStart: (done, total, best) => meter.step(done, total, best),
+		onRefined: (done, total, best) => {
+			if (done === 1) meter.begin('refining the minima', USUAL_WORK.refinement, after);
+			meter.step(done, total, best);
+		}
 	});
 }
 
@@ -141,4 +148,5 @@ export interface FitContext {
 	outcome: SearchOutcome;
 	early: FitFinding[];
 	hooks: FitHooks;
+	meter: ProgressMeter;
 }

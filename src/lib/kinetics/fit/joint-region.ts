@@ -10,10 +10,12 @@
  * Source: Bates & Watts (1988) 6.1.2 and 6.2; Box & Hunter (1962).
  */
 import type { FitReport, FitRequest } from '../../schemas/fit';
+import { watchOver } from './cancelled';
 import { fQuantile } from './distributions';
 import type { FitHooks } from './fit';
 import { LeastSquaresWorkspace } from './least-squares';
 import { leastSquares } from './levenberg-marquardt';
+import { oneStage } from './progress';
 import { requireLeastSquares, restoreFit, type RestoredFit } from './restore';
 import { FitCancelled } from './search';
 import { toReported, type Slot } from './slots';
@@ -43,6 +45,7 @@ export function jointRegion(
 ): JointRegion {
 	requireLeastSquares(report, 'A joint region');
 	const fitted = restoreFit(report, request);
+	fitted.model.watch = watchOver(hooks.cancelled);
 	const pair = ids.map((id) => report.fittedIds.indexOf(id)) as [number, number];
 	const { covariance, degreesOfFreedom, errors } = fitted.uncertainty;
 	const known = pair.every((j) => j >= 0 && Number.isFinite(errors[j]) && errors[j] > 0);
@@ -70,7 +73,7 @@ export function jointRegion(
 			open
 		});
 		ellipse.push(report2(fitted.x[i] + radius * direction[0], fitted.x[j] + radius * direction[1]));
-		hooks.onProgress?.({ stage: 'joint region', done: k + 1, total: rays });
+		hooks.onProgress?.(oneStage('joint region', k + 1, rays));
 	}
 	return {
 		ids,

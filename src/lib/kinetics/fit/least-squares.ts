@@ -8,6 +8,8 @@ export interface LeastSquaresProblem {
 	m: number;
 	/** Parameters. */
 	p: number;
+	/** Called inside long work between two evaluations; may throw to stop. */
+	watch?: (() => void) | null;
 	/**
 	 * Fills `residuals` (m) and `jacobian` (m × p, column-major) at x.
 	 * Returns false where the model cannot be evaluated; the step is then shortened.

@@ -18,6 +18,7 @@
  * Departure: residuals and Jacobian are computed together at a trial point, because the closed form gives both at little
  * more than the cost of one.
  */
+import { convergence } from './convergence';
 import { finite, norm } from './linear-algebra';
 import {
 	LeastSquaresWorkspace,
@@ -28,8 +29,6 @@ import {
 } from './least-squares';
 import { measureSlope } from './slope';
 import { TrustRadius } from './trust-radius';
-
-const EPSILON = 2.220446049250313e-16;
 
 /**
  * Minimises the sum of squares from `start`.
@@ -100,7 +99,7 @@ class Search {
 		if (this.freeCount === 0 || this.ssr === 0 || this.optimality <= this.gtol) return 'gradient';
 		this.rescale();
 		const { w, problem } = this;
-		w.trust.factor(w.jacobians[this.current], w.residuals[this.current], w.free, this.freeCount);
+		this.factor();
 		for (;;) {
 			const length = this.propose();
 			if (this.iterations === 1) this.trust.radius = Math.min(this.trust.radius, length || this.trust.radius);
@@ -131,13 +130,18 @@ class Search {
 		}
 	}
 
+	private factor(): void {
+		const { w, current } = this;
+		w.trust.factor(w.jacobians[current], w.residuals[current], w.free, this.freeCount, this.problem.watch);
+	}
+
 	/** One full step; kept, and true, where it at least halves the optimality and the sum of squares stays. */
 	private polish(): boolean {
 		const { w, problem } = this;
 		this.measure();
 		const before = this.optimality;
 		if (!(before > this.gtol) || this.freeCount === 0) return false;
-		w.trust.factor(w.jacobians[this.current], w.residuals[this.current], w.free, this.freeCount);
+		this.factor();
 		this.trust.mu = 0;
 		this.trust.radius = Number.MAX_VALUE;
 		this.propose();
@@ -219,14 +223,9 @@ class Search {
 	}
 
 	private verdict(actual: number, ratio: number, length: number): LeastSquaresStatus | null {
-		const still = Math.max(this.ftol, 8 * EPSILON);
-		if (Math.abs(actual) <= still && this.predicted <= this.ftol && (still > this.ftol || ratio <= 2))
-			return 'reduction';
+		const { predicted, ftol, xtol } = this;
 		const reach = this.scaledNorm(this.w.x);
-		if (this.trust.radius <= this.xtol * reach) return 'step';
-		if (length <= EPSILON * reach || this.trust.radius <= EPSILON * reach) return 'rounding';
-		if (Math.abs(actual) <= EPSILON && this.predicted <= EPSILON && ratio < 1e-4) return 'rounding';
-		return null;
+		return convergence({ actual, ratio, predicted, length, reach, radius: this.trust.radius, ftol, xtol });
 	}
 
 	private finish(status: LeastSquaresStatus): LeastSquaresResult {

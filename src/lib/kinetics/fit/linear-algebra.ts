@@ -62,6 +62,7 @@ export function reflect(a: Float64Array, m: number, k: number, target: Float64Ar
  * @param diagonal length n, receives the diagonal of R.
  * @param pivot length n, receives the column order.
  * @param norms length 2n of scratch.
+ * @param watch called before each column: a tall matrix takes long; it may throw to stop.
  */
 export function pivotedQr(
 	a: Float64Array,
@@ -70,7 +71,8 @@ export function pivotedQr(
 	b: Float64Array,
 	diagonal: Float64Array,
 	pivot: Int32Array,
-	norms: Float64Array
+	norms: Float64Array,
+	watch: (() => void) | null = null
 ): void {
 	for (let j = 0; j < n; j++) {
 		norms[j] = norms[n + j] = norm(a, j * m, m);
@@ -78,6 +80,7 @@ export function pivotedQr(
 	}
 	const steps = Math.min(m, n);
 	for (let k = 0; k < steps; k++) {
+		watch?.();
 		let best = k;
 		for (let j = k + 1; j < n; j++) if (norms[j] > norms[best]) best = j;
 		if (best !== k) {

@@ -34,6 +34,9 @@ interface RunState {
 	unassayed: number[];
 }
 
+/** Points between two questions whether to go on: 2ⁿ − 1. */
+const POINTS_UNWATCHED = 511;
+
 /** Whether the areas of a channel make part of the total that area % refers to. */
 const inTotal = (channel: ChannelModel): boolean => channel.areaPercent && !channel.besideTotal;
 
@@ -66,6 +69,7 @@ export class KineticModel implements LeastSquaresProblem {
 		const { m, p, points, gradient, predictions } = this;
 		for (const state of this.states) if (!this.solveRun(state, x)) return false;
 		for (let i = 0; i < m; i++) {
+			if ((i & POINTS_UNWATCHED) === 0) this.watch?.();
 			const point = points[i];
 			const prediction = this.predict(point, x);
 			predictions[i] = prediction;
@@ -82,6 +86,7 @@ export class KineticModel implements LeastSquaresProblem {
 		const { m, p, points, gradient } = this;
 		for (const state of this.states) if (!this.solveRun(state, x)) return false;
 		for (let i = 0; i < m; i++) {
+			if ((i & POINTS_UNWATCHED) === 0) this.watch?.();
 			out[i] = this.predict(points[i], x);
 			for (let j = 0; j < p; j++) jacobian[j * m + i] = gradient[j];
 		}
@@ -99,7 +104,7 @@ export class KineticModel implements LeastSquaresProblem {
 		for (let i = 0; i < charge.length; i++) charge[i] = evaluateLinear(model.charge[i], x);
 		const shift = evaluateLinear(model.offset, x);
 		for (let k = 0; k < times.length; k++) times[k] = Math.max(0, model.timesS[k] + shift);
-		if (state.kernel instanceof ProgramKernel) return state.kernel.evaluate(x, charge, times);
+		if (state.kernel instanceof ProgramKernel) return state.kernel.evaluate(x, charge, times, this.watch);
 		return state.kernel.evaluate(constants, charge, times, this.watch);
 	}
 

@@ -8,7 +8,7 @@ import type { FitFinding, FitRequest } from '../../schemas/fit';
 import { isFitted } from '../../schemas/quantity';
 import { covarianceFromJacobian } from './covariance';
 import type { FindingsInput } from './findings';
-import { KineticModel, watched } from './model';
+import { watched } from './model';
 import { compileProblem } from './problem';
 import { searchMinima } from './search';
 import { runId, toReported } from './slots';
@@ -16,7 +16,7 @@ import { searchBox } from './starts';
 import { aicc } from './statistics';
 import { figure, withUnit } from './words';
 
-export function offsetOrCharge({ problem, best }: FindingsInput): FitFinding[] {
+export function offsetOrCharge({ problem, model: like, best }: FindingsInput): FitFinding[] {
 	return problem.runs.flatMap((run) => {
 		const given = problem.request.runs[run.index];
 		const charged = Object.entries(given.initial).filter(([, a]) => isFitted(a) || a.value !== 0);
@@ -33,7 +33,7 @@ export function offsetOrCharge({ problem, best }: FindingsInput): FitFinding[] {
 			if (j >= 0) return best.x[j];
 			return Number.isFinite(slot.value) ? slot.value : 0;
 		});
-		const model = new KineticModel(both);
+		const model = watched(both, like);
 		const jacobian = new Float64Array(model.m * model.p);
 		if (!model.evaluatePredictions(x, new Float64Array(model.m), jacobian)) return [];
 		const { singularValues } = covarianceFromJacobian(jacobian, model.m, model.p);

@@ -4,18 +4,20 @@
 import type { FitContext } from './fit';
 import type { KineticProblem } from './problem';
 import { profileIntervals, type ProfileInterval } from './profile';
+import { USUAL_WORK } from './progress';
 import { searchMinima } from './search';
 import { uncertainty, type Uncertainty } from './uncertainty';
 
 /** `profiles` is null where none was asked for or none has a meaning. */
 export function profiled(context: FitContext): { u: Uncertainty; profiles: ProfileInterval[] | null } {
-	const { problem, model, outcome, box, hooks } = context;
+	const { problem, model, outcome, box, hooks, meter } = context;
 	const { options } = problem.request;
 	for (let round = 0; ; round++) {
 		const best = outcome.minima[0].result;
 		const u = uncertainty(problem, best);
 		const asked = options.profiles && u.s !== null && best.converged && problem.free.length > 0;
 		if (!asked || withoutScatter(problem, best.ssr)) return { u, profiles: null };
+		meter.begin('profile-likelihood intervals', USUAL_WORK.profile * model.p, USUAL_WORK.report);
 		const { intervals, better, evaluations } = profileIntervals({
 			model,
 			box,
@@ -23,8 +25,7 @@ export function profiled(context: FitContext): { u: Uncertainty; profiles: Profi
 			uncertainty: u,
 			confidence: options.confidenceLevel,
 			cancelled: hooks.cancelled,
-			onParameter: (done, total) =>
-				hooks.onProgress?.({ stage: 'profile-likelihood intervals', done, total, best: best.ssr })
+			onParameter: (done, total) => meter.step(done, total, best.ssr)
 		});
 		outcome.evaluations += evaluations;
 		if (!better || round === 3) return { u, profiles: better ? null : intervals };

@@ -15,6 +15,7 @@
  * Sources: Blanes & Moan, Appl. Numer. Math. 56 (2006) 1519; Alvermann & Fehske, J. Comput. Phys. 230 (2011) 5930.
  */
 import { evaluateLinear, type Linear } from './affine';
+import type { Watch } from './cancelled';
 import type { RunModel } from './run-model';
 import { GAS_CONSTANT, inverseTemperatureGap } from '../rate-laws';
 import { RunKernel } from './run-kernel';
@@ -84,7 +85,7 @@ export class ProgramKernel {
 	}
 
 	/** Fills the arrays at ascending times (s, clock of the log). @returns false where a constant overflows. */
-	evaluate(x: Float64Array, charge: Float64Array, timesS: Float64Array): boolean {
+	evaluate(x: Float64Array, charge: Float64Array, timesS: Float64Array, watch: Watch | null = null): boolean {
 		const { model, c, sensitivity, n, parameters, charges } = this;
 		for (let d = 0; d < this.lnBase.length; d++) {
 			this.lnBase[d] = evaluateLinear(model.rateForms[d].base, x);
@@ -96,6 +97,7 @@ export class ProgramKernel {
 		let t = 0;
 		for (let k = 0; k < timesS.length; k++) {
 			while (t < timesS[k]) {
+				watch?.();
 				const end = Math.min(timesS[k], this.chain.pieceEnd(t));
 				if (!this.advance(t, end - t)) return false;
 				t = end;

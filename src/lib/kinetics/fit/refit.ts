@@ -7,11 +7,13 @@
  * Introduction to the Bootstrap (1993) 6.5 and 13.3 (parametric bootstrap, percentile intervals).
  */
 import type { FitReport, FitRequest } from '../../schemas/fit';
+import { watchOver } from './cancelled';
 import { fit, type FitHooks } from './fit';
 import { LeastSquaresWorkspace } from './least-squares';
 import { leastSquares } from './levenberg-marquardt';
 import { KineticModel } from './model';
 import { compileProblem } from './problem';
+import { oneStage } from './progress';
 import { readSlots } from './read-slots';
 import { fromReported, runId, toReported, type Slot } from './slots';
 import { requireLeastSquares, restoreFit } from './restore';
@@ -46,7 +48,7 @@ export function leaveOneRunOut(report: FitReport, request: FitRequest, hooks: Fi
 	if (request.runs.length < 2) return [];
 	const named = request.runs.map((run, i) => ({ ...run, id: runId(run, i) }));
 	return named.map((left, index) => {
-		hooks.onProgress?.({ stage: 'leaving out one run at a time', done: index, total: named.length });
+		hooks.onProgress?.(oneStage('leaving out one run at a time', index, named.length));
 		const runs = named.filter((r) => r !== left);
 		const parameters = withoutRun(report, { ...request, runs, options: without(request, left.id) }, hooks);
 		const shifts = parameters?.flatMap((p) => (p.shift === null ? [] : [Math.abs(p.shift)])) ?? [];
@@ -76,7 +78,9 @@ function withoutRun(report: FitReport, request: FitRequest, hooks: FitHooks): Ru
 		const found = known.get(slot.id);
 		return found ? inner(slot, found.estimate) : box.guess[j];
 	});
-	const { minima } = searchMinima(new KineticModel(problem), box, [start], { cancelled: hooks.cancelled });
+	const model = new KineticModel(problem);
+	model.watch = watchOver(hooks.cancelled);
+	const { minima } = searchMinima(model, box, [start], { cancelled: hooks.cancelled });
 	if (!minima.length || !minima[0].result.converged) return null;
 	return problem.free.map((slot, j) => {
 		const estimate = natural(slot, minima[0].result.x[j]);
@@ -126,6 +130,7 @@ export function bootstrap(
 	const mean = model.predictions.slice();
 	const points = problem.points.map((p) => ({ ...p }));
 	const simulated = new KineticModel(problem, points);
+	simulated.watch = watchOver(hooks.cancelled);
 	const box = searchBox(problem);
 	const workspace = new LeastSquaresWorkspace(simulated.m, simulated.p);
 	const normal = normalNumbers(uniformNumbers(seed));
@@ -147,7 +152,7 @@ export function bootstrap(
 		if (result.status === 'cancelled') throw new FitCancelled();
 		if (result.converged) draws.push(result.x);
 		else failed++;
-		hooks.onProgress?.({ stage: 'parametric bootstrap', done: d + 1, total });
+		hooks.onProgress?.(oneStage('parametric bootstrap', d + 1, total));
 	}
 	return { draws, intervals: percentiles(problem.free, draws, confidence), failed, seed };
 }

@@ -35,6 +35,8 @@ export interface SearchOutcome {
 
 export interface SearchHooks {
 	onStart?: (done: number, total: number, best: number) => void;
+	/** After each minimum that was followed to its last digits. */
+	onRefined?: (done: number, total: number, best: number) => void;
 	cancelled?: () => boolean;
 }
 
@@ -68,7 +70,8 @@ export function searchMinima(
 	});
 	found.sort((a, b) => a.result.ssr - b.result.ssr);
 	const minima: Minimum[] = [];
-	for (const candidate of found.slice(0, 12)) {
+	const candidates = found.slice(0, 12);
+	candidates.forEach((candidate, k) => {
 		const fine = refined(model, candidate.result.x, common, workspace);
 		evaluations += fine.evaluations;
 		if (fine.status === 'cancelled') throw new FitCancelled();
@@ -78,7 +81,9 @@ export function searchMinima(
 			same.starts += candidate.starts;
 			if (fine.ssr < same.result.ssr) same.result = fine;
 		}
-	}
+		best = Math.min(best, fine.ssr);
+		hooks.onRefined?.(k + 1, candidates.length, best);
+	});
 	minima.sort((a, b) => a.result.ssr - b.result.ssr);
 	const { elimination, inFull } = descent;
 	return { minima, startsRun: starts.length, startsConverged, evaluations, elimination, inFull };

@@ -55,7 +55,13 @@ export class TrustStep {
 	}
 
 	/** Factors the free columns of the Jacobian. */
-	factor(jacobian: Float64Array, residuals: Float64Array, free: Int32Array, count: number): void {
+	factor(
+		jacobian: Float64Array,
+		residuals: Float64Array,
+		free: Int32Array,
+		count: number,
+		watch: (() => void) | null = null
+	): void {
 		const m = this.m;
 		this.n = count;
 		this.free = free;
@@ -64,7 +70,7 @@ export class TrustStep {
 			for (let i = 0; i < m; i++) this.a[k * m + i] = jacobian[from + i];
 		}
 		this.b.set(residuals);
-		pivotedQr(this.a, m, count, this.b, this.diagonal, this.pivot, this.norms);
+		pivotedQr(this.a, m, count, this.b, this.diagonal, this.pivot, this.norms, watch);
 		extractR(this.a, m, count, this.diagonal, this.r);
 		for (let i = 0; i < count; i++) this.qtr[i] = i < m ? this.b[i] : 0;
 		this.rank = 0;

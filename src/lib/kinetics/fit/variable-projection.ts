@@ -91,6 +91,10 @@ export class ProjectedModel implements LeastSquaresProblem {
 		return this.linear.some((j) => !(this.x[j] > lower[j] && this.x[j] < upper[j]));
 	}
 
+	get watch(): LeastSquaresProblem['watch'] {
+		return this.model.watch;
+	}
+
 	private isLn(j: number): boolean {
 		return this.model.problem.free[j].scale === 'ln';
 	}
@@ -105,7 +109,7 @@ export class ProjectedModel implements LeastSquaresProblem {
 			for (let i = 0; i < m; i++) phi[k * m + i] = scale * j[place * m + i];
 		});
 		for (let i = 0; i < m; i++) b[i] = -r[i];
-		pivotedQr(phi, m, linear.length, b, diagonal, this.pivot, this.norms);
+		pivotedQr(phi, m, linear.length, b, diagonal, this.pivot, this.norms, model.watch);
 		const last = Math.abs(diagonal[linear.length - 1]);
 		return last > 1e-12 * Math.abs(diagonal[0]);
 	}
