@@ -61,7 +61,9 @@ function sheet(seed) {
 				? k === 0
 					? 1
 					: 0.001
-				: Math.abs((k === 0 ? Math.exp(-0.5 * time) : 0.1) + 0.01 * Math.sin(12.9 * i + 78.2 * k + seed)).toFixed(5)
+				: Math.abs(
+						(k === 0 ? Math.exp(-0.5 * time) : 0.1) + 0.01 * Math.sin(12.9 * i + 78.2 * k + seed)
+					).toFixed(5)
 		);
 		return [time.toFixed(5), ...values].join(',');
 	});
@@ -84,11 +86,17 @@ async function makeRun(seed) {
 }
 
 async function round(schemeId, runIds, seed) {
-	const { id } = await call('POST', `/studies/${study}/fits`, { schemeId, runIds, options: { starts: 500, seed } });
+	const { id } = await call('POST', `/studies/${study}/fits`, {
+		schemeId,
+		runIds,
+		options: { starts: 500, seed }
+	});
 	let cancelledAt = 0;
 	const running = Promise.withResolvers();
 	const ended = Promise.withResolvers();
-	const stream = await fetch(`${url}/api/v1/fits/${id}/events`, { headers: { authorization: `Bearer ${token}` } });
+	const stream = await fetch(`${url}/api/v1/fits/${id}/events`, {
+		headers: { authorization: `Bearer ${token}` }
+	});
 	void (async () => {
 		for await (const chunk of stream.body.pipeThrough(new TextDecoderStream())) {
 			if (/event: progress/.test(chunk)) running.resolve();
@@ -115,6 +123,7 @@ if (!Promise.withResolvers)
 		return made;
 	};
 const { id: schemeId } = await call('POST', `/studies/${study}/schemes`, scheme);
-const runIds = [await makeRun(1), await makeRun(2)];
+const begun = Date.now() % 1e6;
+const runIds = [await makeRun(begun), await makeRun(begun + 1)];
 console.log(`${2 * Number(rows) * SPECIES.length} values, 14 constants, 500 starts`);
 for (let i = 0; i < Number(rounds); i++) await round(schemeId, runIds, 1000 + i);
