@@ -13,8 +13,10 @@ import {
 	isLimitRow,
 	isNumberedHeader,
 	lookAt,
-	type RowLook
+	type RowLook,
+	speaksOfTime
 } from './rows';
+import { readTime } from './times';
 import { isTotalsRow } from './totals';
 import { sideBySide } from './side-by-side';
 import type { TextLine } from './titles';
@@ -98,7 +100,7 @@ function growBand(view: SheetView, looks: RowLook[], start: number): Band {
 	while (band.stop < looks.length) {
 		const look = looks[band.stop];
 		const gap = look.r - looks[band.stop - 1].r - 1;
-		const between = gap === 0 ? statisticsWithin(looks, band) : 0;
+		const between = gap === 0 ? rowsBetween(view, looks, band) : 0;
 		if (between > 0) {
 			for (const row of looks.slice(band.stop, band.stop + between)) {
 				band.leftOut.push(row.r);
@@ -120,10 +122,10 @@ function growBand(view: SheetView, looks: RowLook[], start: number): Band {
 	return band;
 }
 
-/** How many rows of means or spreads stand between the data rows here; none when no further data follow directly. */
-function statisticsWithin(looks: RowLook[], band: Band): number {
+/** How many rows of means, remarks or repeated headers stand between the data rows here; none when no further data follow directly. */
+function rowsBetween(view: SheetView, looks: RowLook[], band: Band): number {
 	let n = 0;
-	while (looks[band.stop + n] && isFooterRow(looks[band.stop + n]) && !isLimitRow(looks[band.stop + n])) n++;
+	while (isBetween(view, looks, band, band.stop + n)) n++;
 	if (n === 0 || n > MOST_BETWEEN) return 0;
 	const after = looks[band.stop + n];
 	const rows = looks.slice(band.stop - 1, band.stop + n + 1);
@@ -131,7 +133,28 @@ function statisticsWithin(looks: RowLook[], band: Band): number {
 	return close && after && isDataRow(after) && continues(after, band.first, band.last) ? n : 0;
 }
 
-/** Rows of means and spreads after each group of samples. */
+function isBetween(view: SheetView, looks: RowLook[], band: Band, k: number): boolean {
+	const look = looks[k];
+	if (!look || isLimitRow(look)) return false;
+	if (isFooterRow(look)) return true;
+	if (isHeaderRow(look)) return goesOn(view, looks, band, k);
+	return look.values.length === 0 && look.texts.length > 0 && look.texts.length <= 2;
+}
+
+/** The header once more, as at the head of a printed page: the same names, and times that go on rising. */
+function goesOn(view: SheetView, looks: RowLook[], band: Band, k: number): boolean {
+	const head = looks[band.start - 1];
+	const names = (look: RowLook) => JSON.stringify(look.texts);
+	if (!head || !looks[k + 1] || names(head) !== names(looks[k])) return false;
+	const column = head.texts.find(({ text }) => speaksOfTime(text))?.column ?? 0;
+	const [before, after] = [looks[k - 1], looks[k + 1]].map((look) => {
+		const reading = readTime(view.workbook, view.cell(look.r, column), null);
+		return reading.kind === 'number' ? reading.value : reading.kind === 'serial' ? reading.days : NaN;
+	});
+	return after > before;
+}
+
+/** Rows of means and spreads after each group of samples, or of remarks. */
 const MOST_BETWEEN = 4;
 
 /** Sums or means of the rows above, such as the totals row of a table that names none: left to the footers, and asked about. */

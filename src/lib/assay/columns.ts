@@ -157,6 +157,9 @@ function variants(text: string): string[] {
 		.replace(/\s+/g, ' ')
 		.trim();
 	if (bare) found.add(bare);
+	// "HX-14 @ 7.3 min": the retention time is no part of the name.
+	const placed = /^(.+?)\s*@/.exec(text);
+	if (placed) found.add(placed[1].trim());
 	found.delete(text);
 	return [...found];
 }

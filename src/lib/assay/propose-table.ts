@@ -23,6 +23,7 @@ import { columnLetter, rangeText, type SheetView } from './grid';
 import { statedLimits, type StatedLimit } from './limits';
 import { longLayout, peakCounts, peaksOf, useLong } from './long-layout';
 import { decide } from './numbers';
+import { keepAsProposed } from './as-proposed';
 import { asOnSheet } from './orientation';
 import { replicateSpecies } from './replicate-headers';
 import { savedFor, withSaved } from './saved-mapping';
@@ -31,6 +32,7 @@ import { suggestConditions } from './suggestions';
 import { blockOnSheet, type FoundTable, viewOf, viewOfTable, votesOf } from './tables';
 import { timeColumnOf } from './time-column';
 import { partsBehind } from './time-parts';
+import { commonUnit, unitColumn } from './unit-column';
 
 export interface ProposeOptions {
 	saved?: SavedMapping[];
@@ -66,13 +68,18 @@ export function proposeTable(
 		leftOutRows: found.leftOutRows,
 		decimal
 	};
-	if (long) useLong(mapping, columns, long);
+	if (long) {
+		useLong(mapping, columns, long);
+		stateUnit(view, found, mapping);
+	}
 	const names = headers.map((h) => h.header);
 	// Runs that share their headers differ in their columns: a kept mapping is only one of them.
 	const saved = found.only ? undefined : savedFor(options.saved ?? [], names, found.across);
 	if (saved) mapping = withSaved(mapping, saved);
 	const { parameters, checks } = options;
-	const settled = settle({ workbook, species, mapping: asOnSheet(mapping), parameters, checks });
+	const proposed = asOnSheet(mapping);
+	const settled = settle({ workbook, species, mapping: proposed, parameters, checks });
+	if (parameters === undefined) keepAsProposed(proposed, settled);
 	const limits = statedLimits(view, sheet, found, decimal);
 	return {
 		id,
@@ -87,7 +94,7 @@ export function proposeTable(
 			columns.map((c, i) => ({ ...c, role: mapping.columns[i].role }))
 		),
 		...(mapping.peaks ? { peaks: peakCounts(view, found, long?.peak ?? 0, mapping.peaks) } : {}),
-		mapping: asOnSheet(mapping),
+		mapping: proposed,
 		...(saved ? { savedMapping: saved.name } : {}),
 		suggested: {
 			...suggestConditions(view, sheet, found, mapping, species, decimal),
@@ -96,6 +103,14 @@ export function proposeTable(
 		},
 		findings: settled.findings
 	};
+}
+
+/** The unit of the values of a long list, where a column states it. */
+function stateUnit(view: SheetView, found: FoundTable, mapping: Mapping): void {
+	const value = mapping.columns.find((c) => c.role === 'value');
+	const column = unitColumn(view, mapping);
+	if (!value || value.unit !== null || column === 0) return;
+	value.unit = commonUnit(view, view.filledRows(found.block.firstRow, found.block.lastRow), column);
 }
 
 const suggestion = ({ value, unit, source }: StatedLimit) => ({ value, unit: unit ?? '', source });

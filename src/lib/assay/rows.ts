@@ -86,7 +86,11 @@ export function isNumberedHeader(look: RowLook, below: RowLook | undefined): boo
 
 /** Goes on in a table that has begun: any number inside its columns. */
 export const continues = (look: RowLook, first: number, last: number): boolean =>
-	!isFooterRow(look) && look.numbers.some((c) => c >= first && c <= last) && !isHeaderRow(look);
+	!isFooterRow(look) &&
+	!isHeaderRow(look) &&
+	(look.numbers.some((c) => c >= first && c <= last) ||
+		// "<LOQ" or "n.d." alone, behind a cell that holds something else or nothing: no legend.
+		look.values.some((c) => c > first && c <= last && c > look.first));
 
 export const isFooterRow = (look: RowLook): boolean =>
 	look.lead !== '' && (isFooterWord(look.lead) || isLimitWord(look.lead));

@@ -15,19 +15,33 @@ export function temperatureLog(ex: Examination, points: Point[]): TemperatureLog
 	if (!column) return { rows: [], open: false };
 	if (column.unit !== 'degC' && column.unit !== 'K') {
 		const place = `temperature ${ex.places.series(column.column)}`;
+		const head = ex.mapping.headerRows.map((r) => ex.shown(r, column.column)).join(' ');
+		const fahrenheit = /°\s*F\b|deg\.? ?F\b|fahrenheit/i.test(head);
 		const taken = ex.ask({
 			rule: 'B4',
 			level: 'stop',
 			cells: [ex.at(ex.mapping.headerRows.at(-1) ?? ex.mapping.block.firstRow, column.column)],
 			found: `${place} without a unit`,
 			expected: '°C or K',
-			message: `${capital(place)} has no unit. Choose one; we will not assume.`,
+			message: fahrenheit
+				? `${capital(place)} is headed in °F, which is not read here. Convert it to °C on the sheet, or leave the log out.`
+				: `${capital(place)} has no unit. Choose one; we will not assume.`,
 			options: [
-				{ key: 'degC', label: '°C' },
-				{ key: 'K', label: 'K' }
+				...(fahrenheit
+					? []
+					: [
+							{ key: 'degC', label: '°C' },
+							{ key: 'K', label: 'K' }
+						]),
+				{ key: 'ignore', label: 'Do not use the log' }
 			]
 		});
 		if (!taken) return { rows: [], open: true };
+		if (taken.key === 'ignore') {
+			column.role = 'ignore';
+			ex.conversions.push(`${capital(place)}: not used.`);
+			return { rows: [], open: false };
+		}
 		column.unit = taken.key;
 	}
 	const shift = column.unit === 'K' ? -273.15 : 0;

@@ -9,6 +9,7 @@ import { settleZerosAndNegatives } from './low-values';
 import { askMarked } from './marked-values';
 import type { Sample } from './samples';
 import { leaveMissing, type Spot } from './spots';
+import { unitColumn, withOwnUnit } from './unit-column';
 import { askTexts, stopUnusable } from './unusable-cells';
 import { noteFormulas, noteMissing, noteTextNumbers } from './value-notes';
 
@@ -62,6 +63,7 @@ function leaveMarked(ex: Examination, spots: Spot[], leftOut: Set<string>): void
 }
 
 function spotsOf(ex: Examination, samples: Sample[], channel: Channel, values: Values): Spot[] {
+	const units = unitColumn(ex.view, ex.mapping);
 	return samples.flatMap((sample) => {
 		const place = sample.cells.get(channel.id);
 		if (!place) return [];
@@ -71,7 +73,7 @@ function spotsOf(ex: Examination, samples: Sample[], channel: Channel, values: V
 			row: place.row,
 			column: place.column,
 			cell,
-			reading: ex.value(place.row, place.column),
+			reading: withOwnUnit(ex, ex.value(place.row, place.column), place.row, units, channel.unit),
 			set: (value) => void values.get(sample)?.set(channel.id, value)
 		};
 		return [spot];

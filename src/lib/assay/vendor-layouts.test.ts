@@ -216,4 +216,35 @@ describe('headers and layout', () => {
 		expect(first(workbook).findings[0]).toMatchObject({ level: 'stop', rule: 'B6', open: true });
 		expect(first(workbook).findings[0].message).toContain('commas seem to part both columns and decimals');
 	});
+
+	it('B27: a remark or the header once more between the samples does not end the table', () => {
+		const rows = T.map((t, i): TestCell[] => [t, A[i]]);
+		const between = (row: TestCell[]) =>
+			book([['Time (h)', 'A (mol/L)'], ...rows.slice(0, 2), row, ...rows.slice(2)]);
+		const remark = between(['stirrer stopped for 10 min']);
+		expect([first(remark).range, notes(remark)]).toEqual([
+			'A2:B7',
+			['Row 4 between the samples ("stirrer stopped for 10 min") is shown and not used.']
+		]);
+		const again = between(['Time (h)', 'A (mol/L)']);
+		expect(propose(again, species).tables.map((t) => t.range)).toEqual(['A2:B7']);
+		for (const workbook of [remark, again]) expect(valuesOf(answer(workbook, {}))).toEqual(A);
+		const anew = book([['Time (h)', 'A (mol/L)'], ...rows, ['Time (h)', 'A (mol/L)'], ...rows]);
+		expect(propose(anew, species).tables.map((t) => t.range)).toEqual(['A2:B6', 'A8:B12']);
+	});
+
+	it('B4: a log in °F is not taken for °C; a retention time behind a name is no part of it', () => {
+		const workbook = book([
+			['Time (h)', 'T (°F)', 'HX-14 @ 7.31 min (mol/L)'],
+			...T.map((t, i): TestCell[] => [t, 122, A[i]])
+		]);
+		expect(roles(workbook).map(([role, , id]) => [role, id])).toEqual([
+			['time', null],
+			['temperature', null],
+			['species', 'A']
+		]);
+		expect(first(workbook).findings[0].message).toContain('is headed in °F, which is not read here');
+		const { run } = answer(workbook, { B4: { key: 'ignore' } });
+		expect([run?.timepoints.length, run?.temperatureLog]).toEqual([5, undefined]);
+	});
 });

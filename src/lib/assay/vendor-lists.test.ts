@@ -157,4 +157,32 @@ describe('means and spreads', () => {
 		const rows = T.map((t, i): TestCell[] => [`R${i + 1}`, t, A[i]]);
 		expect(timesOf(answer(book([['Sample', 'Time (h)', 'A (mol/L)'], ...rows]), {}))).toEqual(T);
 	});
+
+	it('a list whose units stand in a column of their own: the common one counts, any other is asked (B5)', () => {
+		const rows = T.flatMap((t, i): TestCell[][] => [
+			[t, 'HX-14', i === 2 ? A[i] * 1000 : A[i], i === 2 ? 'mmol/L' : 'mol/L'],
+			[t, 'HX-14b', 0.1, 'mol/L']
+		]);
+		const workbook = book([['Time (h)', 'Compound', 'Amount', 'Unit'], ...rows]);
+		expect(first(workbook).mapping.columns.map((c) => [c.role, c.unit])).toEqual([
+			['time', 'h'],
+			['peak', null],
+			['value', 'mol/L'],
+			['ignore', null]
+		]);
+		expect(open(workbook)).toEqual(['B5 C6']);
+		expect(valuesOf(answer(workbook, { B5: { key: 'convert' } }))).toEqual(A);
+	});
+
+	it('a list that writes sample and time once, with limits alone in a row, is found whole', () => {
+		const list = T.map(
+			(t, i) => `S${i};${t};HX-14;${500 - i * 90}\n;;HX-14b;${i === 0 ? '<LOQ' : i * 88}\n`
+		).join('');
+		const table = first(csv(`Sample;Time (h);Compound;Conc. (mmol/L)\n${list}`));
+		expect([table.range, table.mapping.layout]).toEqual(['A2:D11', 'long']);
+		const workbook = csv(`Sample;Time (h);Compound;Conc. (mmol/L)\n${list}`);
+		const settled = answer(workbook, { B8: { key: 'limit', values: { loq: 2 } } });
+		expect(settled.run?.timepoints.map((p) => p.values.B)[0]).toEqual({ below: 0.002 });
+		expect(timesOf(settled)).toEqual(T);
+	});
 });

@@ -40,6 +40,8 @@ export const isInjectionWord = (text: string): boolean => INJECTION.test(text.tr
 export const isCommentWord = (text: string): boolean => COMMENT.test(text.trim());
 export const isTotalWord = (text: string): boolean => TOTAL.test(text.trim());
 export const isStandardWord = (text: string): boolean => STANDARD.test(text.trim());
+const UNIT = /^(units?|einheit(en)?|unit[ée]s?|unidad(es)?|unit[àa])$/i;
+export const isUnitWord = (text: string): boolean => UNIT.test(text.trim());
 export const isPeakWord = (text: string): boolean => PEAK.test(text.trim());
 export const isPeakValueWord = (text: string): boolean => PEAK_VALUE.test(text.trim());
 
