@@ -126,9 +126,13 @@ function withCounters(system: LinearSystem, counted: readonly Flow[]): LinearSys
 /** A time by which every mode is lost in rounding, t^m of repeated ones included. */
 function settledS(system: LinearSystem, charge: ArrayLike<number>): number {
 	let [slowest, repeats] = [0, 1];
-	for (const { timeConstantS, multiplicity } of solve(system, charge).modes) {
+	const solution = solve(system, charge);
+	for (const { timeConstantS, multiplicity } of solution.modes) {
 		if (Number.isFinite(timeConstantS)) slowest = Math.max(slowest, timeConstantS);
 		repeats = Math.max(repeats, multiplicity);
 	}
+	// Modes that nothing vouches for may lack a slow one.
+	if (solution.method === 'uniformisation' || solution.method === 'extended')
+		for (const { rate } of system.flows ?? []) slowest = Math.max(slowest, 10 / rate);
 	return (50 + 10 * repeats) * slowest;
 }

@@ -1,7 +1,14 @@
 /**
  * The modes as the page shows them: rate, time constant, half-life and amplitudes of each mode of the closed form.
  *
- *     τ = −1/Re λ,   t½ = ln 2 / |Re λ|
+ *     τ = −1/Re λ,   t½ = ln 2 / |Re λ|          (Infinity where Re λ is zero, or a slow rate lost in rounding above it)
+ *
+ * | symbol | name here |
+ * | --- | --- |
+ * | λ | `re`, `im`, 1/s |
+ * | τ, t½ | `timeConstantS`, `halfLifeS` |
+ *
+ * Source: linear systems with constant coefficients; G. H. Golub and C. F. Van Loan, Matrix Computations, 4th ed., 2013, 9.3.
  */
 import type { ClosedForm } from './closed-form';
 import type { Mode } from './types';
@@ -20,8 +27,8 @@ export function modesOf(form: ClosedForm): Mode[] {
 			re,
 			im: form.im[g],
 			multiplicity: form.members[g],
-			timeConstantS: re === 0 ? Infinity : -1 / re,
-			halfLifeS: re === 0 ? Infinity : Math.LN2 / -re,
+			timeConstantS: re < 0 ? -1 / re : Infinity,
+			halfLifeS: re < 0 ? Math.LN2 / -re : Infinity,
 			amplitudes: withoutEmptyTail(amplitudes, form.im[g] > 0 ? 2 : 1)
 		});
 	}

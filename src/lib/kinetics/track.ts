@@ -59,6 +59,8 @@ const MOST_PIECES = 20_000;
 
 /** The track of a closed-form solution up to a horizon, or for ever. */
 export function trackOf(solution: Solution, horizonS = Infinity): Track {
+	// Where the closed form was not accepted its modes are indicative only: a slow one may be lost in rounding.
+	const vouched = solution.method !== 'uniformisation' && solution.method !== 'extended';
 	let fastestPerS = 0;
 	let slowestS = 0;
 	let repeats = 1;
@@ -73,7 +75,7 @@ export function trackOf(solution: Solution, horizonS = Infinity): Track {
 		error: solution.errorEstimate,
 		...(fastestPerS > 0 ? { fastestPerS } : {}),
 		// t^m e^{−t/τ} needs longer: 36 + m ln 60 is more than enough for a rounding of 2e-16.
-		...(slowestS > 0 ? { settledS: (40 + 5 * repeats) * slowestS } : {})
+		...(vouched && slowestS > 0 ? { settledS: (40 + 5 * repeats) * slowestS } : {})
 	});
 }
 
