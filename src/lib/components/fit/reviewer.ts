@@ -110,7 +110,11 @@ export function reviewerRows(report: FitReport, confirmation: ConfirmedCount | n
 		search(report),
 		{
 			label: 'Large residuals',
-			value: large ? `${large} beyond 3 (studentised), marked in the chart` : 'none beyond 3 (studentised)',
+			value: !report.residuals.some((r) => r.studentised !== null)
+				? 'not studentised'
+				: large
+					? `${large} beyond 3 (studentised), marked in the chart`
+					: 'none beyond 3 (studentised)',
 			ask: 'Is one sample far from all others, and has somebody looked into why?'
 		},
 		confirmed(confirmation)

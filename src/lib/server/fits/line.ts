@@ -22,7 +22,12 @@ function unitOf(request: FitRequest | undefined): string {
 export function fitLine(report: FitReport, request?: FitRequest): string {
 	if (report.status !== 'converged') return `last fit ${report.status}`;
 	const s = report.residualStandardError;
-	const size = s === null ? 'no degrees of freedom' : `s ${Number(s.toPrecision(2))}${unitOf(request)}`;
+	const size =
+		report.criterion === 'determinant'
+			? 'determinant criterion'
+			: s === null
+				? 'no degrees of freedom'
+				: `s ${Number(s.toPrecision(2))}${unitOf(request)}`;
 	if (report.findings.some((f) => f.level === 'stop')) return `${size}, fails its checks`;
 	const open = undetermined(report).length;
 	const state = open === 0 ? 'all determined' : `${open} not determined`;
