@@ -13,6 +13,9 @@ const T_REF = 318.15;
 /** A ramp from 25 to 55 °C within two hours, then held; a reading every six minutes. */
 const LOG = Array.from({ length: 61 }, (_, k) => ({ time: k / 10, celsius: Math.min(25 + 1.5 * k, 55) }));
 
+/** Where the ramp ends, h. */
+const BEND = 2;
+
 /** K of the log at a time in h, straight between readings, the first and last one outside. */
 function kelvin(time: number): number {
 	const k = Math.min(Math.max(time * 10, 0), 60);
@@ -30,8 +33,7 @@ function curves([lnK1, e1, lnK2, offset]: number[], times: number[]): number[][]
 	let state = [1, 0];
 	let at = 0;
 	const move = (by: number, d: number[]) => state.map((v, i) => v + by * d[i]);
-	return times.map((time) => {
-		const end = time + offset;
+	const to = (end: number) => {
 		const steps = Math.ceil((end - at) / 0.0015);
 		const h = (end - at) / steps;
 		for (let k = 0; k < steps; k++) {
@@ -43,6 +45,12 @@ function curves([lnK1, e1, lnK2, offset]: number[], times: number[]): number[][]
 			state = state.map((v, i) => v + (h / 6) * (k1[i] + 2 * k2[i] + 2 * k3[i] + k4[i]));
 		}
 		at = end;
+	};
+	return times.map((time) => {
+		const end = time + offset;
+		// No step goes across the bend of the log.
+		if (at < BEND && end > BEND) to(BEND);
+		to(end);
 		return state;
 	});
 }
@@ -131,7 +139,7 @@ describe('a fit over a measured temperature program with a time offset', () => {
 
 	it('reaches the constants, energy, offset and errors of the independent integration', () => {
 		expect(report.status).toBe('converged');
-		expect(report.weightedSsr / hand.ssr).toBeCloseTo(1, 6);
+		expect(report.weightedSsr / hand.ssr).toBeCloseTo(1, 8);
 		expect(of('s1.forward.kRef').estimate / Math.exp(hand.x[0])).toBeCloseTo(1, 6);
 		expect(of('s1.forward.activationEnergy').estimate / (hand.x[1] / 1000)).toBeCloseTo(1, 6);
 		expect(of('s2.forward.kRef').estimate / Math.exp(hand.x[2])).toBeCloseTo(1, 6);
