@@ -153,6 +153,31 @@ describe('derivatives of a table of residence times, by complex steps', () => {
 		expect(relativeError(found.subarray(p * 4, p * 4 + 4), expected)).toBeLessThan(1e-12);
 	});
 
+	it('keep their digits across a fast equilibrium, k t = 1e8: ln K alone counts, and all add up to the times alike', () => {
+		const fast = 1e8;
+		const quick = system(3, [
+			[0, 1, 3 * fast],
+			[1, 0, fast],
+			[1, 2, 0.7]
+		]);
+		const triangle = { timesS: [0, 1, 3], density: [0, 1, 0] };
+		const by: TableParameter[] = [...innerParameters(quick, 0), { kind: 'ln residence' }];
+		const { outlet, sensitivities: s } = segregatedFlow(quick, [1, 0, 0], triangle, by);
+		// One slow mode, e^{−κt} with κ = ¾ · 0.7, but for terms of 1/(k t): ∂/∂ln K of the sum A + B is κ (1 − ¾) ∂/∂κ.
+		const slow = 0.7 * 0.75;
+		const remains = (k: number) =>
+			((1 - Math.exp(-k) * (1 + k)) / k ** 2 +
+				((2 * k - 1) * Math.exp(-k) + Math.exp(-3 * k)) / (2 * k ** 2)) /
+			1.5;
+		const h = 1e-5;
+		const byLnSlow = (slow * (remains(slow + h) - remains(slow - h))) / (2 * h);
+		expect(outlet[0] + outlet[1]).toBeCloseTo(remains(slow), 7);
+		expect(s[0] + s[1]).toBeCloseTo(0.25 * byLnSlow, 7);
+		expect(s[0] + s[1] + s[3] + s[4]).toBeCloseTo(0, 7);
+		expect(s[0] + s[1] + s[2]).toBeCloseTo(0, 12);
+		expect(s[9 + 2]).toBeCloseTo(s[6 + 2], 7);
+	});
+
 	it('name a row that is not there', () => {
 		expect(() => segregatedFlow(own, feed, table, [{ kind: 'time', row: 4 }])).toThrow(
 			'Row 5 is not in the table, which has 4.'

@@ -1,5 +1,6 @@
 /** Derivatives of integrals and of the material map, against formulas and complex steps (`test-complex.ts`). */
 import { describe, expect, it } from 'vitest';
+import { ExtendedPropagator } from './extended';
 import { linearSystem } from './linear-system';
 import { integralSensitivities, materialSensitivities } from './material-sensitivity';
 import { foldParameters, innerParameters } from './parameter-sensitivity';
@@ -17,7 +18,7 @@ import {
 	type ComplexLaw
 } from './test-complex';
 import { everyLaw } from './test-networks';
-import { chain } from './test-systems';
+import { chain, system } from './test-systems';
 import type { Network } from './types';
 
 describe('sensitivities of integrals', () => {
@@ -72,11 +73,11 @@ function relativeError(found: ArrayLike<number>, expected: number[]): number {
 
 describe('sensitivities of integrals and of the material map, by complex steps', () => {
 	const timeS = 5000;
-	const system = linearSystem(everyLaw, rateConstants(everyLaw, conditions));
+	const scheme = linearSystem(everyLaw, rateConstants(everyLaw, conditions));
 	const at = real(conditions.temperatureK);
-	const inner = innerParameters(system);
-	const integrals = integralSensitivities(system, charge, timeS, inner);
-	const folded = foldParameters(everyLaw, system, conditions, integrals.ofIntegral, 4, parameters);
+	const inner = innerParameters(scheme);
+	const integrals = integralSensitivities(scheme, charge, timeS, inner);
+	const folded = foldParameters(everyLaw, scheme, conditions, integrals.ofIntegral, 4, parameters);
 	const map = materialSensitivities(everyLaw, conditions, charge, timeS, parameters);
 	const end = materialSensitivities(everyLaw, conditions, charge, Infinity, parameters);
 
@@ -130,4 +131,37 @@ describe('sensitivities of integrals and of the material map, by complex steps',
 			expect(found[i]).toBeCloseTo(value, 9)
 		);
 	});
+
+	it.each([1e2, 1e5, 1e8])(
+		'of ∫c dt keep their digits across a fast equilibrium, k %g 1/s for 2 s',
+		(fast) => {
+			const quick = system(3, [
+				[0, 1, 3 * fast],
+				[1, 0, fast],
+				[1, 2, 0.7]
+			]);
+			const found = integralSensitivities(quick, [1, 0, 0], 2, innerParameters(quick, 0));
+			quick.flows!.forEach((flow, p) => {
+				// c, ∂c/∂ln k and its integral as one system, in extended precision.
+				const own = quick.transfers.filter((t) => t.step === flow.step);
+				const exact = new ExtendedPropagator({
+					n: 9,
+					outflow: new Float64Array(9),
+					transfers: [
+						...[0, 3].flatMap((by) =>
+							quick.transfers.map((t) => ({ ...t, from: t.from + by, to: t.to + by }))
+						),
+						...own.map((t) => ({ ...t, to: t.to + 3 })),
+						{ ...flow, to: flow.from + 3, coefficient: -1 },
+						...[3, 4, 5].map((from) => ({ ...flow, from, to: from + 3, rate: 1, coefficient: 1 }))
+					],
+					flows: [0, 3].flatMap((by) => quick.flows!.map((f) => ({ ...f, from: f.from + by })))
+				});
+				const truth = exact.apply(2, [1, 0, 0, 0, 0, 0, 0, 0, 0]);
+				expect(
+					relativeError(found.ofIntegral.subarray(3 * p, 3 * p + 3), [...truth.subarray(6)])
+				).toBeLessThan(1e-12);
+			});
+		}
+	);
 });

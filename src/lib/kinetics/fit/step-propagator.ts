@@ -5,7 +5,7 @@
  *     c ← E c,   s_d ← E s_d + L_d c,   E = e^{Kh},  L_d = ∂E/∂ ln k_d
  *
  * Short intervals (q h up to 200, q the largest outflow) are taken on vectors (`step-series.ts`), long ones by squaring matrices
- * (`step-exponential.ts`).
+ * (`../step-exponential.ts`).
  *
  * | symbol | variable |
  * | ------ | -------- |
@@ -14,9 +14,9 @@
  * Sources: Jensen, Skand. Aktuarietidskr. 36 (1953) 87 (uniformisation); Xue & Ye, Numer. Math. 124 (2013) 393 (non-negative
  * scaling and squaring).
  */
+import { StepExponential } from '../step-exponential';
 import type { Watch } from './cancelled';
 import type { Direction } from './spectral';
-import { StepExponential } from './step-exponential';
 import { StepSeries } from './step-series';
 
 /** Largest q h of an interval that is taken on vectors. */

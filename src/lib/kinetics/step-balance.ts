@@ -9,7 +9,7 @@
  *     x ← x + x E,          ∂x ← ∂x + ∂x E + x L           with each squaring, from Σ_m of the row (exits) Aᵐ/(m+1)! …
  *
  * so that E_jj and L_jj are what is left over, or, where little of the column stays with j, the column is divided by its total.
- * A single species has E_jj = e^{−kh} and L_jj = −k_d h e^{−kh}. Blocks with coefficients other than 1 are left as they are.
+ * A single species has E_jj = e^{−kh} and L_jj = −k_d h e^{−kh}, k what leaves it. Blocks with coefficients other than 1 are left as they are.
  *
  * | symbol | variable |
  * | ------ | -------- |
@@ -19,7 +19,12 @@
  * Source: diagonals from what leaves, Grassmann, Taksar & Heyman, Oper. Res. 33 (1985) 1107; Xue & Ye, Numer. Math. 124 (2013)
  * 393. For the derivatives the same identities, differentiated.
  */
-import type { Direction } from './spectral';
+
+/** One step-direction: what it takes from and what it gives. A product that is the reactant itself stays where it is. */
+export interface Direction {
+	from: number;
+	products: { to: number; coefficient: number }[];
+}
 
 export interface FlowPlaces {
 	/** Place of each species in the order of flow. */
@@ -135,28 +140,25 @@ export class StepBalance {
 		x.set(spare);
 	}
 
+	/** Whether every block of several species keeps its mass. */
+	get all(): boolean {
+		return this.keeps.every((kept, j) => kept === 1 || this.places.end[j] - this.places.begin[j] === 1);
+	}
+
 	/** Rebuilds the diagonals of E and L for the interval h. */
-	rebuild(
-		constants: Float64Array,
-		outflow: Float64Array,
-		order: number[],
-		h: number,
-		e: Float64Array,
-		l: Float64Array
-	): void {
+	rebuild(constants: Float64Array, h: number, e: Float64Array, l: Float64Array): void {
 		const { n, keeps } = this;
 		const { begin, end } = this.places;
 		for (let j = 0; j < n; j++) {
-			if (end[j] - begin[j] === 1) this.single(j, outflow[order[j]], h, e);
+			if (end[j] - begin[j] === 1) this.single(j, h, e);
 			else if (keeps[j]) this.column(j, e);
 		}
 		this.derivatives(constants, h, e, l);
 	}
 
-	private single(j: number, outflow: number, h: number, e: Float64Array): void {
-		e[j * this.n + j] = Math.exp(-outflow * h);
-		// What leaves a species that something leaves at all.
-		this.x[j] = -Math.expm1(-outflow * h);
+	private single(j: number, h: number, e: Float64Array): void {
+		e[j * this.n + j] = Math.exp(-this.exits[j] * h);
+		this.x[j] = -Math.expm1(-this.exits[j] * h);
 	}
 
 	private column(j: number, e: Float64Array): void {
@@ -174,13 +176,13 @@ export class StepBalance {
 	}
 
 	private derivatives(constants: Float64Array, h: number, e: Float64Array, l: Float64Array): void {
-		const { n, dx, rates, directions, keeps } = this;
+		const { n, dx, rates, directions, keeps, leaves } = this;
 		const { place, begin, end } = this.places;
 		for (let r = 0; r < rates.length; r++) {
 			const at = place[directions[rates[r]].from];
 			const block = r * n * n;
 			if (end[at] - begin[at] === 1) {
-				l[block + at * n + at] = -constants[rates[r]] * h * e[at * n + at];
+				l[block + at * n + at] = leaves[rates[r]] ? -constants[rates[r]] * h * e[at * n + at] : 0;
 				dx[r * n + at] = -l[block + at * n + at];
 				continue;
 			}

@@ -18,8 +18,8 @@
  * scaling and squaring); Mathias, SIAM J. Matrix Anal. Appl. 14 (1993) 1061 and Al-Mohy & Higham, ibid. 30 (2009) 1639
  * (derivative by differentiating the algorithm).
  */
-import { flowOrder, type Direction } from './spectral';
-import { StepBalance } from './step-balance';
+import { componentsOf } from './components';
+import { StepBalance, type Direction } from './step-balance';
 
 /** ‖A‖ ≤ 1 after scaling; 18 terms leave 1/19! ≈ 1e-17. */
 const TERMS = 18;
@@ -74,6 +74,11 @@ export class StepExponential {
 		this.balance = new StepBalance(n, directions, rates, this);
 	}
 
+	/** True where every block of several species keeps its mass, so that no rounding grows with q h. */
+	get balanced(): boolean {
+		return this.balance.all;
+	}
+
 	/** q; fills `outflow`. */
 	largestOutflow(constants: Float64Array): number {
 		const { outflow, directions } = this;
@@ -97,7 +102,7 @@ export class StepExponential {
 		for (let i = 0; i < e.length; i++) e[i] *= shrink;
 		for (let i = 0; i < l.length; i++) l[i] *= shrink;
 		this.balance.damp(shrink);
-		this.balance.rebuild(constants, this.outflow, this.order, scaled, e, l);
+		this.balance.rebuild(constants, scaled, e, l);
 		for (let s = 0; s < squarings; s++) {
 			this.balance.double(e, l);
 			for (let r = 0; r < rates.length; r++) {
@@ -112,7 +117,7 @@ export class StepExponential {
 			}
 			this.product(e, 0, e, 0, this.spare, 0, n);
 			e.set(this.spare);
-			this.balance.rebuild(constants, this.outflow, this.order, scaled * 2 ** (s + 1), e, l);
+			this.balance.rebuild(constants, scaled * 2 ** (s + 1), e, l);
 		}
 		return true;
 	}
@@ -186,4 +191,11 @@ export class StepExponential {
 			for (let i = 0; i < n * n; i++) e[i] += term[i] = spare[i] / m;
 		}
 	}
+}
+
+/** Species grouped by strongly connected component, upstream first. */
+function flowOrder(n: number, directions: readonly Direction[]): number[][] {
+	const successors: number[][] = Array.from({ length: n }, () => []);
+	for (const { from, products } of directions) for (const { to } of products) successors[from].push(to);
+	return componentsOf(successors).blocks.map((block) => Array.from(block));
 }
