@@ -20,7 +20,7 @@ import { findRun } from '../runs/find';
 import { currentRevision, requireReason, requireRunVersion } from '../runs/revisions';
 import { revise } from '../runs/revise-run';
 import { findStudy } from '../studies/find';
-import { examine, workOn } from './examine';
+import { examine, workOn, type Surroundings } from './examine';
 import { findSheet } from './find';
 import { countOpen } from './save-sheet-work';
 import { keepMapping } from './save-mapping';
@@ -122,12 +122,19 @@ const proposeDrawn = (workbook: GridWorkbook, species: SpeciesContent[], key: st
 		key
 	);
 
+async function proposedMapping(
+	workbook: GridWorkbook,
+	surroundings: Surroundings,
+	tableKey: string
+): Promise<Mapping | undefined> {
+	const { proposal } = await examine({ workbook, work: { tables: {} }, only: [], ...surroundings });
+	return workOn(proposal, { tables: {} }, tableKey)?.mapping;
+}
+
 async function settleTable(actor: Actor, sheet: Sheet, input: ConfirmRun): Promise<Settled> {
 	const workbook = sheet.reading as GridWorkbook;
 	const surroundings = await surroundingsOf(sheet.studyId, sheet.groupId);
-	const { proposal } = await examine({ workbook, work: { tables: {} }, only: [], ...surroundings });
-	const proposed = workOn(proposal, { tables: {} }, input.tableKey);
-	const mapping = input.mapping ?? proposed?.mapping;
+	const mapping = input.mapping ?? (await proposedMapping(workbook, surroundings, input.tableKey));
 	if (!mapping) throw notFound(`table "${input.tableKey}" in this sheet`);
 	const work: TableWork = {
 		mapping: input.conditions ? { ...mapping, conditions: input.conditions } : mapping,
@@ -135,7 +142,7 @@ async function settleTable(actor: Actor, sheet: Sheet, input: ConfirmRun): Promi
 		corrections: signedCorrections(actor, input.corrections, workOf(sheet.work).tables[input.tableKey]),
 		name: input.name
 	};
-	const { settlements } = await examine({
+	const { proposal, settlements } = await examine({
 		workbook,
 		work: { tables: { [input.tableKey]: work } },
 		only: [input.tableKey],

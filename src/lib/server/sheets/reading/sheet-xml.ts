@@ -1,39 +1,15 @@
 /** One worksheet part as a stream: cells with a value, and the facts about rows and columns that the reader needs. */
 import { address, columnNumber } from '$lib/assay/grid';
-import { calendarToSerial } from '$lib/assay/number-format';
 import { CELL } from '$lib/schemas/cell-flags';
 import type { CellValue, GridCell, GridSheet } from '$lib/schemas/sheet';
+import type { CellBudget } from './cell-budget';
 import { CELL_TEXT, type ReadingLimits } from './limits';
 import type { Package } from './package';
 import { RaisedRuns } from './raised';
 import { damaged, SheetRefusal } from './refusal';
+import { addSpan, columnOf, isOn, isoSerial, whole } from './sheet-attributes';
 import type { StyleTable } from './styles';
-import { ownText } from './xml';
-
-/** Counts cells and text over all sheets of a workbook. */
-export class CellBudget {
-	private cells = 0;
-	private empty = 0;
-	private characters = 0;
-	constructor(private readonly limits: ReadingLimits) {}
-
-	cell(sheet: string, text: number): void {
-		this.characters += text;
-		if (++this.cells > this.limits.cells || this.characters > this.limits.textCharacters)
-			throw new SheetRefusal(
-				'too-many-cells',
-				`The workbook holds more than is read at once (${this.limits.cells.toLocaleString('en')} cells; reached in sheet "${sheet}"). Keep only the sheet with the assay values and upload that.`
-			);
-	}
-
-	nothing(sheet: string): void {
-		if (++this.empty > this.limits.emptyElements)
-			throw new SheetRefusal(
-				'too-many-cells',
-				`Sheet "${sheet}" holds more than ${this.limits.emptyElements.toLocaleString('en')} empty formatted rows or cells. Delete the empty rows and columns beside the data, save, and upload it again.`
-			);
-	}
-}
+import { ownText } from './own-text';
 
 export interface SheetSource {
 	name: string;
@@ -252,40 +228,4 @@ class SheetReader {
 			columnNumber(match[3])
 		]);
 	}
-}
-
-const isOn = (value: string | undefined) => value === '1' || value === 'true';
-
-function whole(text: string | undefined, most: number): number {
-	const n = Number(text);
-	if (!Number.isInteger(n) || n < 1 || n > most) throw damaged('a row or column lies outside the sheet');
-	return n;
-}
-
-function columnOf(ref: string): number {
-	let n = 0;
-	let i = 0;
-	for (; i < ref.length; i++) {
-		const code = ref.charCodeAt(i) & 0xdf;
-		if (code < 65 || code > 90) break;
-		n = n * 26 + code - 64;
-	}
-	return i > 3 ? 0 : n;
-}
-
-/** Spans grow when neighbours follow each other, so that a million hidden rows are one span. */
-function addSpan(spans: [number, number][], first: number, last: number): void {
-	const before = spans.at(-1);
-	if (before && first <= before[1] + 1 && first >= before[0]) before[1] = Math.max(before[1], last);
-	else spans.push([first, last]);
-}
-
-function isoSerial(text: string, date1904: boolean): number | null {
-	const m = /^(\d{4})-(\d\d)-(\d\d)(?:T(\d\d):(\d\d)(?::(\d\d(?:\.\d+)?))?)?Z?$/.exec(text.trim());
-	if (!m) return null;
-	const [year, month, day, hour, minute] = [m[1], m[2], m[3], m[4] ?? 0, m[5] ?? 0].map(Number);
-	return calendarToSerial(
-		{ year, month, day, hour, minute, second: Number(m[6] ?? 0) },
-		date1904 ? 1904 : 1900
-	);
 }

@@ -4,9 +4,10 @@ import { CELL_TEXT, type ReadingLimits } from './limits';
 import { Package, workbookPart } from './package';
 import { RaisedRuns } from './raised';
 import { damaged, SheetRefusal } from './refusal';
-import { CellBudget, readSheet, type SheetSource } from './sheet-xml';
+import { CellBudget } from './cell-budget';
+import { readSheet, type SheetSource } from './sheet-xml';
 import { readStyles } from './styles';
-import { ownText } from './xml';
+import { ownText } from './own-text';
 
 interface Listed {
 	name: string;

@@ -250,7 +250,3 @@ function encodingOf(piece: Uint8Array): string {
 	if (piece[0] === 0 && piece[1] === 0x3c) return 'utf-16be';
 	return 'utf-8';
 }
-
-/** A text of its own: a slice would keep the whole piece alive that it was cut from. */
-export const ownText = (text: string): string =>
-	text.length < 13 ? text : Buffer.from(text, 'utf16le').toString('utf16le');
