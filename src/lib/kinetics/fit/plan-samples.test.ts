@@ -85,6 +85,16 @@ describe('a sampling plan before the first run', () => {
 		expect(plan({ samples: 4 }).findings.map((f) => f.code)).not.toContain('plan-no-degrees-of-freedom');
 	});
 
+	it('can be stopped inside the exchange, with nothing else changed', () => {
+		let asked = 0;
+		const request = samplePlanRequest.parse({ ...base, samples: 6 });
+		expect(planSamplesFor(request, { cancelled: () => (asked++, false) })).toEqual(planSamplesFor(request));
+		// At least every 32nd of some 480 candidate times, for each of six samples, in two rounds.
+		expect(asked).toBeGreaterThan(2 * 6 * 14);
+		let left = 20;
+		expect(() => planSamplesFor(request, { cancelled: () => --left < 0 })).toThrow(/cancelled/);
+	});
+
 	it('asks for what is missing by name', () => {
 		const unknown = { ...base.run, initial: { A: { fit: true } } };
 		expect(() => plan({ run: unknown })).toThrow(/r1\.initial\.A/);

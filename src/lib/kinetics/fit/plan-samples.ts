@@ -14,6 +14,7 @@ import type { SamplePlanRequest } from '../../schemas/fit-plan';
 import { isFitted, type Fittable } from '../../schemas/quantity';
 import { isEquilibrium, type StepContent } from '../../schemas/scheme';
 import { toSi } from '../units';
+import type { FitHooks } from './fit';
 import { readSlots } from './read-slots';
 import { samplingPlan, type SamplingPlan } from './sampling-plan';
 
@@ -25,13 +26,14 @@ import { samplingPlan, type SamplingPlan } from './sampling-plan';
  *   run's time unit)
  * @returns times, ln det of the information, and the half-width of each interval that the samples can be expected to give
  *   (`before` is null: there is no fit yet). Energies are taken as known where the run has one temperature.
- * @throws RangeError in words for a guess that is missing, a parameter that is not of this scheme, or limits that leave no room
+ * @throws RangeError in words for a guess that is missing, a parameter that is not of this scheme, or limits that leave no room;
+ *   FitCancelled
  */
-export function planSamplesFor(asked: SamplePlanRequest): SamplingPlan {
+export function planSamplesFor(asked: SamplePlanRequest, hooks: FitHooks = {}): SamplingPlan {
 	const request = requestOf(asked);
 	const held = needGuesses(request);
 	const { samples, earliest, latest, minimumGap, windows, channels, confidenceLevel } = asked;
-	const plan = samplingPlan(request, null, request.runs[0], {
+	const options = {
 		samples,
 		earliest,
 		latest,
@@ -39,7 +41,8 @@ export function planSamplesFor(asked: SamplePlanRequest): SamplingPlan {
 		confidence: confidenceLevel,
 		...(windows.length ? { windows } : {}),
 		...(channels.length ? { channels: knownChannels(asked) } : {})
-	});
+	};
+	const plan = samplingPlan(request, null, request.runs[0], options, hooks);
 	return { ...plan, findings: [...plan.findings, ...remarks(asked, plan, held)] };
 }
 

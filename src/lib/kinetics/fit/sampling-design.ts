@@ -5,6 +5,7 @@
  */
 import type { FitFinding, FitReport, FitRequest } from '../../schemas/fit';
 import type { RunContent } from '../../schemas/run';
+import type { Watch } from './cancelled';
 import { studentQuantile } from './distributions';
 import { cholesky, invertPositiveDefinite } from './positive-definite';
 import { probeModel, type Probe } from './probe';
@@ -32,7 +33,8 @@ export class Design {
 		private readonly report: FitReport | null,
 		private readonly run: RunContent,
 		private readonly options: SamplingOptions,
-		private readonly grid: number[]
+		private readonly grid: number[],
+		private readonly watch: Watch | null = null
 	) {
 		const known = (id: string) => report?.parameters.some((p) => p.id === id) ?? true;
 		this.probe = probeModel(request, run, grid, known);
@@ -98,41 +100,41 @@ export class Design {
 
 	/** Exchange on the grid; a ridge stands in for what the first few samples cannot determine yet. */
 	exchange(samples: number): number[] {
-		const last = this.grid.length - 1;
-		let chosen = spread(this.grid, samples, this.gap);
-		let value = this.ridged(chosen);
+		const chosen = spread(this.grid, samples, this.gap);
+		let value = logDet(this.without(chosen, -1));
 		for (let round = 0; round < 60; round++) {
 			let improved = false;
 			for (let q = 0; q < samples; q++) {
-				let best = chosen[q];
-				for (let k = 0; k <= last; k++) {
-					const trial = chosen.slice();
-					trial[q] = k;
-					if (!this.gapsKept(trial)) continue;
-					const next = this.ridged(trial);
+				const base = this.without(chosen, q);
+				const before = chosen[q];
+				for (let k = 0; k < this.grid.length; k++) {
+					if (!this.gapsKept(chosen, q, k)) continue;
+					if ((k & 31) === 0) this.watch?.();
+					const next = logDet(withRows(base, this.rows[k]));
 					if (next <= value + 1e-10) continue;
 					value = next;
-					best = k;
+					chosen[q] = k;
 				}
-				if (best === chosen[q]) continue;
-				chosen = chosen.slice();
-				chosen[q] = best;
-				improved = true;
+				if (chosen[q] !== before) improved = true;
 			}
 			if (!improved) break;
 		}
 		return chosen;
 	}
 
-	private ridged(chosen: number[]): number {
+	/** Information of what is there and of the chosen times but one, with the ridge. */
+	private without(chosen: number[], left: number): number[][] {
 		const matrix = this.prior.map((r, i) => r.map((v, j) => v + (i === j ? 1e-9 : 0)));
-		for (const k of chosen) for (const g of this.rows[k]) addOuter(matrix, g);
-		return logDet(matrix);
+		chosen.forEach((k, q) => {
+			if (q !== left) for (const g of this.rows[k]) addOuter(matrix, g);
+		});
+		return matrix;
 	}
 
-	private gapsKept(chosen: number[]): boolean {
-		const times = chosen.map((k) => this.grid[k]).sort((a, b) => a - b);
-		return times.every((t, i) => i === 0 || t - times[i - 1] >= this.gap - 1e-12);
+	private gapsKept(chosen: number[], q: number, k: number): boolean {
+		return chosen.every(
+			(other, i) => i === q || Math.abs(this.grid[other] - this.grid[k]) >= this.gap - 1e-12
+		);
 	}
 
 	/** Each time between its neighbours on the grid, on finer and finer grids. */
@@ -175,6 +177,7 @@ export class Design {
 	}
 
 	private rowsAt(times: number[]): number[][][] {
+		this.watch?.();
 		const unique = [...new Set(times)];
 		const known = (id: string) => this.report?.parameters.some((p) => p.id === id) ?? true;
 		const rows = this.sensitivities(probeModel(this.request, this.run, unique, known));
@@ -226,6 +229,12 @@ export class Design {
 			}
 		];
 	}
+}
+
+function withRows(base: number[][], rows: number[][]): number[][] {
+	const matrix = base.map((r) => r.slice());
+	for (const g of rows) addOuter(matrix, g);
+	return matrix;
 }
 
 function addOuter(matrix: number[][], g: number[]): void {

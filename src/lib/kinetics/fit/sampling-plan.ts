@@ -12,6 +12,8 @@
  */
 import type { FitFinding, FitReport, FitRequest } from '../../schemas/fit';
 import type { RunContent } from '../../schemas/run';
+import { watchOver } from './cancelled';
+import type { FitHooks } from './fit';
 import { requireLeastSquares } from './restore';
 import { Design } from './sampling-design';
 import { allowedTimes } from './sampling-grid';
@@ -57,17 +59,18 @@ export interface SamplingPlan {
  * Plans samples of one run.
  * @param run conditions and channels of the run to sample; its timepoints do not matter
  * @param report the fit so far: its estimates, s and information are used; null plans from the request's starting values alone
- * @throws RangeError for limits that leave no room
+ * @throws RangeError for limits that leave no room; FitCancelled
  */
 export function samplingPlan(
 	request: FitRequest,
 	report: FitReport | null,
 	run: RunContent,
-	options: SamplingOptions
+	options: SamplingOptions,
+	hooks: FitHooks = {}
 ): SamplingPlan {
 	if (report) requireLeastSquares(report, 'A sampling plan');
 	const grid = allowedTimes(options);
-	const design = new Design(request, report, run, options, grid);
+	const design = new Design(request, report, run, options, grid, watchOver(hooks.cancelled));
 	const chosen = design.exchange(options.samples);
 	const times = design.refine(chosen.map((k) => grid[k]));
 	return design.describe(times);

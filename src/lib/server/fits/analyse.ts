@@ -50,17 +50,18 @@ function placeOf(request: FitRequest, run: string): number {
 	return index;
 }
 
-function plan({ request, report }: RecordedFit, question: SamplingQuestion): SamplingPlan {
+function plan({ request, report }: RecordedFit, question: SamplingQuestion, hooks: FitHooks): SamplingPlan {
 	const run = request.runs[placeOf(request, question.run)];
 	const { samples, earliest, latest, minimumGap, windows, channels } = question;
-	return samplingPlan(request, report, run, {
+	const options = {
 		samples,
 		earliest,
 		latest,
 		minimumGap,
 		...(windows.length ? { windows } : {}),
 		...(channels.length ? { channels } : {})
-	});
+	};
+	return samplingPlan(request, report, run, options, hooks);
 }
 
 function curves({ request, report }: RecordedFit, runId: string, points: number): Prediction {
@@ -115,13 +116,13 @@ function answer(
 		case 'decisions':
 			return decisions(fit, question, criteria, hooks);
 		case 'sampling':
-			return plan(fit, question);
+			return plan(fit, question, hooks);
 	}
 }
 
 export function analyse(task: AnalysisTask, hooks: FitHooks = {}): unknown {
 	if (task.kind === 'comparison') return compareSchemes(task.schemes) satisfies Comparison;
-	if (task.kind === 'sampling') return planSamplesFor(task.request) satisfies SamplingPlan;
+	if (task.kind === 'sampling') return planSamplesFor(task.request, hooks) satisfies SamplingPlan;
 	if (task.kind === 'question') return answer(task.fit, task.question, task.criteria ?? [], hooks);
 	const { report, request } = task.fit;
 	const only = task.run.channels.map((c) => c.id);
