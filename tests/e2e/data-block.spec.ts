@@ -137,6 +137,8 @@ test('twenty thousand rows scroll to their end, by wheel and by key, with the ri
 		(_, i) => `${(i * 0.001).toFixed(3)},${400 - i * 0.01},${i * 0.01}`
 	);
 	await openSheet(page, 'Twenty thousand rows', csv('long.csv', ['Time (h),A (mmol/L),B (mmol/L)', ...long]));
+	// The reader works beside the page, not in its way.
+	expect(page.workers().filter((w) => /reader\.worker/.test(w.url()))).toHaveLength(1);
 	const grid = page.getByRole('grid');
 	await expect(grid).toHaveAttribute('aria-rowcount', String(count + 2));
 	const scroll = (share: number) =>

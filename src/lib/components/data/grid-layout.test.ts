@@ -38,8 +38,8 @@ describe('the layout of a sheet', () => {
 		expect(layout.widths[0]).toBeLessThan(120);
 	});
 	it('draws the rows in sight and a few more, never beyond the ends', () => {
-		expect(rowsInSight(layout, 0, 260)).toEqual([0, 18]);
-		expect(rowsInSight(layout, 100 * ROW_PX, 260)).toEqual([92, 118]);
+		expect(rowsInSight(layout, 0, 260)).toEqual([0, 16]);
+		expect(rowsInSight(layout, 100 * ROW_PX, 260)).toEqual([94, 116]);
 		expect(rowsInSight(layout, 1e6, 260)[1]).toBe(201);
 	});
 	it('frames the block by the rows that are drawn', () => {

@@ -55,6 +55,9 @@ export function layoutOf(workbook: GridWorkbook, sheet: GridSheet): GridLayout {
 	return { rows, columns, widths, lefts, height: rows.length * ROW_PX };
 }
 
+/** Rows drawn beyond each edge, so that a turn of the wheel finds them there. */
+const SPARE = 6;
+
 /** Place of the first entry of an increasing list that is at least `n`; the length of the list where there is none. */
 export function placeOf(list: number[], n: number): number {
 	let [low, high] = [0, list.length];
@@ -67,14 +70,14 @@ export function placeOf(list: number[], n: number): number {
 }
 
 /** Places of the rows to be drawn, with a few beyond the edge. */
-export function rowsInSight(layout: GridLayout, scrollTop: number, height: number, spare = 8): [number, number] {
+export function rowsInSight(layout: GridLayout, scrollTop: number, height: number, spare = SPARE): [number, number] {
 	const first = Math.max(0, Math.floor(scrollTop / ROW_PX) - spare);
 	const last = Math.min(layout.rows.length, Math.ceil((scrollTop + height) / ROW_PX) + spare);
 	return [first, last];
 }
 
 /** As many lines as are ever drawn at once: a line that leaves on one side comes back on the other with another row. */
-export const linesDrawn = (height: number, spare = 8): number => Math.ceil(height / ROW_PX) + 2 * spare + 2;
+export const linesDrawn = (height: number, spare = SPARE): number => Math.ceil(height / ROW_PX) + 2 * spare + 2;
 
 export interface Frame {
 	top: number;
