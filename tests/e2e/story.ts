@@ -107,7 +107,8 @@ export async function confirmSheet(page: Page, given: SheetConditions): Promise<
 			await charges.getByLabel(`Unit of ${species}`, { exact: true }).selectOption(given.chargeUnit);
 	}
 	await page.getByRole('button', { name: /^Make run/ }).click();
-	await expect(page).toHaveURL(/\/data\/runs\//);
+	// A sheet with thousands of rows takes its time on a busy machine.
+	await expect(page).toHaveURL(/\/data\/runs\//, { timeout: 30_000 });
 }
 
 /** Starts the fit as the page stands and waits for its result. */

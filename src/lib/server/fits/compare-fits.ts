@@ -31,6 +31,8 @@ function ownObstacle(fits: FitView[]): string | null {
 	if (new Set(weights).size > 1) return 'These fits weigh the data by different error models.';
 	if (new Set(fits.map((f) => f.report!.pointsUsed)).size > 1)
 		return 'These fits use different numbers of values (rows at time zero, columns or exclusions).';
+	if (fits.some((f) => f.report!.criterion === 'determinant'))
+		return 'One of these fits is by the determinant criterion, which has no sum of squares to weigh.';
 	if (fits.some((f) => f.report!.status !== 'converged')) return 'One of these fits did not settle.';
 	if (fits.some((f) => f.report!.aicc === null)) return 'One of these fits has too few values for AICc.';
 	return null;
