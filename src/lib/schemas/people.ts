@@ -121,11 +121,10 @@ export const safetyRule = z.object({
 });
 export type SafetyRule = z.infer<typeof safetyRule>;
 
-const percent = (what: string) =>
-	z.coerce
-		.number({ message: `Enter ${what} in percent.` })
-		.min(0.1)
-		.max(100);
+const percent = (what: string) => {
+	const message = `Enter ${what} in percent, from 0.1 to 100.`;
+	return z.coerce.number({ message }).min(0.1, message).max(100, message);
+};
 
 /** From which value on a caution is shown. */
 export const thresholds = z.object({

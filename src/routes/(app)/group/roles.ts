@@ -21,7 +21,7 @@ export const ROLE_TEXTS: { role: Role; may: string; mayNot: string }[] = [
 	},
 	{
 		role: 'group_lead',
-		may: 'All of that; returns recipes with comments, validates and signs them, shares and withdraws them; invites members.',
+		may: 'All of that; returns recipes with comments, validates and signs them, shares and withdraws them; invites members and sets the limits of the group.',
 		mayNot: 'Signs no version that they wrote.'
 	},
 	{
