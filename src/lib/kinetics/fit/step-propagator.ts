@@ -21,6 +21,8 @@ import { StepSeries } from './step-series';
 
 /** Largest q h of an interval that is taken on vectors. */
 const VECTORS_UP_TO = 200;
+/** Difference of two intervals, relative to the time, that is rounding of the times themselves. */
+const SAME_STEP = 4e-16;
 
 export class StepPropagator {
 	private readonly c: Float64Array;
@@ -28,6 +30,8 @@ export class StepPropagator {
 	/** Concentrations, then ∂c/∂ln k of each rate, then ∂c/∂c₀ of each charge. */
 	private readonly state: Float64Array;
 	private readonly onVectors: StepSeries;
+	/** The interval that the exponential at hand was made for. */
+	private made = NaN;
 	private readonly exponential: StepExponential;
 
 	constructor(
@@ -60,10 +64,11 @@ export class StepPropagator {
 		state.set(charge);
 		charges.forEach((species, q) => (state[(1 + rates.length + q) * n + species] = 1));
 		let at = 0;
+		this.made = NaN;
 		for (let k = 0; k < times; k++) {
 			watch?.();
 			const h = timesS[k] - at;
-			if (h > 0 && !this.advance(constants, h)) return false;
+			if (h > 0 && !this.advance(constants, h, timesS[k])) return false;
 			for (let i = 0; i < n; i++) {
 				out.curves[k * n + i] = state[i];
 				for (let r = 0; r < rates.length; r++)
@@ -77,7 +82,7 @@ export class StepPropagator {
 	}
 
 	/** Moves the state on by h: by series on vectors while q h is moderate, else by squaring matrices. */
-	private advance(constants: Float64Array, h: number): boolean {
+	private advance(constants: Float64Array, h: number, t: number): boolean {
 		const { n, rates, state, c, next } = this;
 		const { e, l, end, order, outflow } = this.exponential;
 		const q = this.exponential.largestOutflow(constants);
@@ -85,7 +90,11 @@ export class StepPropagator {
 			this.onVectors.advance(constants, q, outflow, h, state);
 			return true;
 		}
-		if (!this.exponential.compute(constants, h)) return false;
+		// Equally spaced times differ by rounding of the clock alone, and share one exponential.
+		if (!(Math.abs(h - this.made) <= SAME_STEP * t)) {
+			if (!this.exponential.compute(constants, h)) return false;
+			this.made = h;
+		}
 		for (let i = 0; i < n; i++) c[i] = state[order[i]];
 		for (let row = 0; row * n < state.length; row++) {
 			next.fill(0);
