@@ -103,10 +103,25 @@ function searchAll(
 	const byValue = () => found.sort((a, b) => a.minimum.value - b.minimum.value);
 	for (const f of byValue().slice(0, 8))
 		if (!f.minimum.converged) f.minimum = minimiseDeterminant(criterion, f.minimum.x, box);
-	return byValue().filter((f, k) => k === 0 || f.minimum.converged);
+	const settled = byValue().filter((f, k) => k === 0 || f.minimum.converged);
+	return mergeMinima(settled, box);
 }
 
-function near(a: DeterminantMinimum, b: DeterminantMinimum, box: SearchBox): boolean {
+/** Followed to their ends, starts that were apart before can have come to the same minimum. @param found lowest first */
+export function mergeMinima(found: Found[], box: Pick<SearchBox, 'from' | 'to'>): Found[] {
+	const distinct: Found[] = [];
+	for (const one of found) {
+		const same = distinct.find((f) => near(f.minimum, one.minimum, box));
+		if (!same) distinct.push({ ...one });
+		else {
+			same.starts += one.starts;
+			same.firstStart = Math.min(same.firstStart, one.firstStart);
+		}
+	}
+	return distinct;
+}
+
+function near(a: DeterminantMinimum, b: DeterminantMinimum, box: Pick<SearchBox, 'from' | 'to'>): boolean {
 	return a.x.every((v, j) => Math.abs(v - b.x[j]) <= 1e-3 * (Math.abs(box.to[j] - box.from[j]) || 1));
 }
 
