@@ -176,3 +176,28 @@ describe('a sheet with the times across the top', () => {
 		expect(again.proposal.tables[0].savedMapping).toBeTruthy();
 	});
 });
+
+describe('replicates beside each other', () => {
+	it('are asked about once for a group: the answer is kept with the mapping', async () => {
+		const HEADS = 'Time (h),A inj 1 (mol/L),A inj 2 (mol/L)';
+		const rows = [0, 1, 2, 3, 4].map((t) => `${t},${0.5 - t / 10},${0.52 - t / 10}`);
+		const sheet = await receive(HEADS, 'one.csv', rows);
+		const [asked] = sheet.proposal.tables[0].findings.filter((f) => f.open);
+		expect([asked.rule, asked.level]).toEqual(['B13', 'ask']);
+		const answers = { [asked.id]: { key: 'injections' } };
+		const made = await confirmRun(chemist, {
+			sheetId: sheet.id,
+			tableKey: 't1',
+			conditions: CONDITIONS,
+			answers
+		});
+		const { content } = await readRun(chemist, made.id);
+		expect(content.timepoints).toHaveLength(5);
+		expect(content.timepoints[0].values.A).toBeCloseTo(0.51, 12);
+		const next = await receive(HEADS, 'two.csv', [...rows, '5,0.03,0.05']);
+		expect(next.proposal.tables[0].findings.filter((f) => f.open)).toEqual([]);
+		// Nothing was said of equal times in rows: those would still be asked.
+		expect(next.proposal.tables[0].mapping).toMatchObject({ columnReplicates: 'injections' });
+		expect(next.proposal.tables[0].mapping.replicates ?? null).toBeNull();
+	});
+});

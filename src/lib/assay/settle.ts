@@ -205,6 +205,9 @@ function runOf(
 	const conditions = ex.mapping.conditions;
 	if (!conditions?.temperature || log.open) return null;
 	const ids = new Set(channels.map((c) => c.id));
+	// Replicate columns kept apart are samples at equal times, whatever was said of rows.
+	const beside = new Set(points.map((p) => p.time)).size < points.length;
+	const replicates = ex.mapping.replicates ?? (beside ? 'samples' : null);
 	return {
 		temperature: conditions.temperature,
 		...(log.rows.length > 1
@@ -227,7 +230,7 @@ function runOf(
 			...(p.sampleId ? { sampleId: p.sampleId } : {})
 		})),
 		...(ex.corrections.length ? { corrections: ex.corrections } : {}),
-		...(ex.mapping.replicates ? { replicates: ex.mapping.replicates } : {}),
+		...(replicates ? { replicates } : {}),
 		...(ex.conversions.length
 			? { conversions: ex.conversions.slice(0, 500).map((c) => c.slice(0, 400)) }
 			: {})

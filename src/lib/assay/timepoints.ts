@@ -55,11 +55,7 @@ export function settleReplicates(ex: Examination, points: Point[], unit: TimeUni
 		if (p.time !== null) groups.set(key, [...(groups.get(key) ?? []), p]);
 	}
 	const repeated = [...groups.values()].filter((g) => g.length > 1);
-	if (repeated.length === 0) {
-		const beside = new Set(points.map((p) => p.time)).size < points.length;
-		if (beside && points.every((p) => p.time !== null)) ex.mapping.replicates ??= 'samples';
-		return sorted(points);
-	}
+	if (repeated.length === 0) return sorted(points);
 	const rows = repeated.filter((g) => g[0].sample.replicate === 0);
 	const kind = ex.mapping.replicates ?? byIdentity(rows) ?? askReplicates(ex, rows, unit);
 	if (kind) ex.mapping.replicates = kind;

@@ -205,10 +205,13 @@ async function writeRun(
 	return { id, number, name, version, revision: 1, revisionId: revision.id };
 }
 
-/** Whether equal times are samples or injections is an answer, and asked once: it goes into the mapping that is kept. */
+/** Whether replicates are samples or injections is an answer, and asked once: it goes into the mapping that is kept. */
 function asAnswered({ work, settlement }: Settled): TableWork {
-	const replicates = settlement.mapping.replicates ?? work.mapping.replicates;
-	return replicates ? { ...work, mapping: { ...work.mapping, replicates } } : work;
+	const answered = settlement.mapping;
+	const replicates = answered.replicates ?? work.mapping.replicates;
+	const columnReplicates = answered.columnReplicates ?? work.mapping.columnReplicates;
+	const kept = { ...(replicates ? { replicates } : {}), ...(columnReplicates ? { columnReplicates } : {}) };
+	return { ...work, mapping: { ...work.mapping, ...kept } };
 }
 
 /** Work as it was confirmed, so that the page shows it again and the count of open questions is right. */
