@@ -9,7 +9,7 @@
  */
 import type { CriterionPoint, DeterminantCriterion } from './determinant';
 import { cholesky } from './positive-definite';
-import type { Bounds } from './slope';
+import { activeBoundsAt, type Bounds } from './slope';
 
 export interface DeterminantMinimum {
 	x: Float64Array;
@@ -60,9 +60,7 @@ export function minimiseDeterminant(
 		value: point.value,
 		converged,
 		optimality: optimality(point, free),
-		activeBounds: Int8Array.from(x, (v, j) =>
-			bounds.lower[j] === bounds.upper[j] ? 0 : v <= bounds.lower[j] ? -1 : v >= bounds.upper[j] ? 1 : 0
-		)
+		activeBounds: activeBoundsAt(x, bounds)
 	};
 }
 

@@ -27,7 +27,7 @@ import {
 	type LeastSquaresResult,
 	type LeastSquaresStatus
 } from './least-squares';
-import { measureSlope } from './slope';
+import { activeBoundsAt, measureSlope } from './slope';
 import { TrustRadius } from './trust-radius';
 
 /**
@@ -229,13 +229,7 @@ class Search {
 	}
 
 	private finish(status: LeastSquaresStatus): LeastSquaresResult {
-		const { w, problem } = this;
-		const activeBounds = new Int8Array(problem.p);
-		for (let j = 0; j < problem.p; j++) {
-			if (this.lower[j] === this.upper[j]) continue;
-			if (w.x[j] <= this.lower[j]) activeBounds[j] = -1;
-			else if (w.x[j] >= this.upper[j]) activeBounds[j] = 1;
-		}
+		const { w } = this;
 		return {
 			status,
 			converged:
@@ -247,7 +241,7 @@ class Search {
 			evaluations: this.evaluations,
 			iterations: this.iterations,
 			optimality: this.optimality,
-			activeBounds
+			activeBounds: activeBoundsAt(w.x, this)
 		};
 	}
 }

@@ -8,7 +8,7 @@ import { eliminationOf, type Elimination } from './elimination';
 import { LeastSquaresWorkspace, type LeastSquaresResult } from './least-squares';
 import { leastSquares } from './levenberg-marquardt';
 import type { KineticModel } from './model';
-import { measureSlope } from './slope';
+import { activeBoundsAt, measureSlope } from './slope';
 import type { SearchBox } from './starts';
 import { ProjectedModel } from './variable-projection';
 
@@ -86,9 +86,7 @@ export class RoughSearch {
 		const residuals = w.residuals[0].slice();
 		const ssr = residuals.reduce((sum, r) => sum + r * r, 0);
 		const { optimality } = measureSlope(model, w, 0, ssr, box);
-		const activeBounds = Int8Array.from(x, (v, j) =>
-			box.lower[j] === box.upper[j] ? 0 : v <= box.lower[j] ? -1 : v >= box.upper[j] ? 1 : 0
-		);
+		const activeBounds = activeBoundsAt(x, box);
 		return {
 			...found,
 			x: x.slice(),

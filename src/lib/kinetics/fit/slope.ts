@@ -41,3 +41,7 @@ function held(x: number, j: number, gradient: number, { lower, upper }: Bounds):
 	if (lower[j] === upper[j]) return true;
 	return (x <= lower[j] && gradient >= 0) || (x >= upper[j] && gradient <= 0);
 }
+
+/** −1 or +1 for a parameter that lies at its lower or upper bound, else 0; 0 too where equal bounds hold it. */
+export const activeBoundsAt = (x: ArrayLike<number>, { lower, upper }: Bounds): Int8Array =>
+	Int8Array.from(x, (v, j) => (lower[j] === upper[j] ? 0 : v <= lower[j] ? -1 : v >= upper[j] ? 1 : 0));
