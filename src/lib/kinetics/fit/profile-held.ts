@@ -4,7 +4,9 @@
  * It follows the minimum from the last value held, moved along the covariance. That alone can stay in a local minimum (slow
  * and fast steps exchanged), or where a constant has run so far down or up that ln k has no effect and so no gradient. `others`
  * therefore gives further places to begin: the last point and the estimate with every such parameter brought back into the span
- * that the data can show, both with two steps exchanged, then points of the seeded low-discrepancy sequence of the search itself.
+ * that the data can show, both with two steps exchanged (those with the step of the parameter held first), then points of the
+ * seeded low-discrepancy sequence of the search itself. All of them are tried for one limit where the problem is of usual size; a
+ * large one tries as many as WORK allows, counted in evaluations, so that the same request gives the same digits everywhere.
  *
  * | symbol | variable |
  * | ------ | -------- |
@@ -36,6 +38,8 @@ const CONTINUED = 3;
 /** Further starting points of the sequence, and the evaluations that each gets to show that it leads anywhere. */
 const OTHER_STARTS = 8;
 const TRY_EVALUATIONS = 40;
+/** Evaluations × values × parameters that further starting points of one limit may take. */
+const WORK = 8e6;
 /** First trust radius, as a multiple of the size of the parameters: along a foretold path, and where that led astray. */
 const BOLD = 10;
 const GENTLE = 0.01;
@@ -51,6 +55,9 @@ export class HeldFit {
 	private readonly upper: Float64Array;
 	private readonly sequence: Float64Array[];
 	private readonly exchanges: [number, number][][];
+	/** Evaluations that further starting points may take for one limit, and what of them is left for the limit at hand. */
+	private readonly allowance: number;
+	private left: number;
 
 	constructor(private readonly input: HeldFitInput) {
 		const { model, box, best } = input;
@@ -60,6 +67,13 @@ export class HeldFit {
 		this.last = best.x.slice();
 		this.sequence = startingPoints(box, OTHER_STARTS + 1, SEED).slice(1);
 		this.exchanges = exchangesOf(model.problem.free.map((slot) => slot.id));
+		this.allowance = Math.max(2 * TRY_EVALUATIONS, WORK / (model.m * model.p));
+		this.left = this.allowance;
+	}
+
+	/** Further starting points have their whole allowance again. */
+	replenish(): void {
+		this.left = this.allowance;
 	}
 
 	/**
@@ -99,14 +113,17 @@ export class HeldFit {
 		if (this.input.model.p < 2) return false;
 		const kept = this.last.slice();
 		const slope = this.slope;
-		for (const start of this.others()) {
+		for (const start of this.others(j)) {
+			if (this.left <= 0) break;
 			start[j] = value;
+			const before = this.evaluations;
 			const tried = this.run(j, value, start, {
 				ftol: 1e-4,
 				xtol: 1e-4,
 				maxEvaluations: TRY_EVALUATIONS,
 				factor: BOLD
 			});
+			this.left -= this.evaluations - before;
 			if (!(tried.ssr < below)) continue;
 			const ssr = this.minimise(j, value, tried.x);
 			if (ssr !== null && ssr < below) return true;
@@ -123,25 +140,19 @@ export class HeldFit {
 		return false;
 	}
 
-	private others(): Float64Array[] {
+	private others(j: number): Float64Array[] {
 		const near = [this.inSight(this.last), this.inSight(this.input.best.x)];
-		return [...near, ...near.flatMap((x) => this.exchanged(x)), ...this.sequence.map((x) => x.slice())];
+		const own = this.exchanges.filter((pairs) => pairs.flat().includes(j));
+		const rest = this.exchanges.filter((pairs) => !own.includes(pairs));
+		const exchanged = near.flatMap((x) => own.map((pairs) => exchange(x, pairs)));
+		const further = near.flatMap((x) => rest.map((pairs) => exchange(x, pairs)));
+		return [...near, ...exchanged, ...further, ...this.sequence.map((x) => x.slice())];
 	}
 
 	/** Every parameter brought back into the span that the data can show. */
 	private inSight(x: Float64Array): Float64Array {
 		const { from, to } = this.input.box;
 		return x.map((v, k) => Math.min(Math.max(v, from[k]), to[k]));
-	}
-
-	/** The point with the constants and energies of two steps exchanged, for every two steps. */
-	private exchanged(x: Float64Array): Float64Array[] {
-		const { exchanges } = this;
-		return exchanges.map((pairs) => {
-			const y = x.slice();
-			for (const [a, b] of pairs) [y[a], y[b]] = [x[b], x[a]];
-			return y;
-		});
 	}
 
 	/** Null where the model cannot be computed at the start. */
@@ -175,6 +186,13 @@ export class HeldFit {
 		if (result.status === 'cancelled') throw new FitCancelled();
 		return result;
 	}
+}
+
+/** The point with the constants and energies of two steps exchanged. */
+function exchange(x: Float64Array, pairs: [number, number][]): Float64Array {
+	const y = x.slice();
+	for (const [a, b] of pairs) [y[a], y[b]] = [x[b], x[a]];
+	return y;
 }
 
 /** Places of the like parameters of every two forward steps: constants with constants, energies with energies. */

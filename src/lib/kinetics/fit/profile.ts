@@ -103,6 +103,7 @@ export class Profiler {
 		if (this.better) return null;
 		const bound = sense < 0 ? box.lower[j] : box.upper[j];
 		if (sense * (bound - best.x[j]) <= 0) return null;
+		this.held.replenish();
 		let from: ProfilePoint = { value: best.x[j], tau: 0, slope: NaN, x: best.x.slice() };
 		for (let k = 0; k < MOST_BRANCHES; k++) {
 			const limit = this.crossing(j, sense, from, bound);
@@ -233,6 +234,7 @@ export class Profiler {
 
 	/** The same as the lowest of all branches that further starting points lead to. */
 	lowestTau(j: number, value: number, previous: number): number {
+		this.held.replenish();
 		const tau = this.tau(j, value, previous);
 		if (this.better || !(tau > 0.3 * this.t)) return tau;
 		return this.lowerTau(j, value, tau * (1 - 1e-4)) ?? tau;
