@@ -39,7 +39,7 @@ const CONTINUED = 3;
 const OTHER_STARTS = 8;
 const TRY_EVALUATIONS = 40;
 /** Evaluations × values × parameters that further starting points of one limit may take. */
-const WORK = 8e6;
+const WORK = 3e6;
 /** First trust radius, as a multiple of the size of the parameters: along a foretold path, and where that led astray. */
 const BOLD = 10;
 const GENTLE = 0.01;
