@@ -7,6 +7,16 @@ import { askSpots, cellsOf, letter, type NumberSpot, ofKind, type Spot } from '.
 import { isRelative } from './units';
 
 export function askUnits(ex: Examination, channel: Channel, spots: Spot[]): void {
+	// A format that writes the column's own unit says nothing new.
+	for (const s of ofKind(spots, 'with unit'))
+		if (s.reading.format && s.reading.unit.of === 'value' && s.reading.unit.unit === channel.unit)
+			(s as Spot).reading = {
+				kind: 'number',
+				value: s.reading.value,
+				percent: false,
+				text: false,
+				odd: false
+			};
 	const carried = ofKind(spots, 'with unit');
 	const byUnit = new Map<string, typeof carried>();
 	for (const s of carried) {

@@ -1,5 +1,6 @@
 /** What one cell says where a value is expected, before any rule decides what to do about it. */
 import { CELL, type GridCell, type GridWorkbook } from '$lib/schemas/sheet';
+import { textAround } from './format-literals';
 import { cellStyle, displayText, hasFlag } from './grid';
 import { readMark, type Mark } from './marks';
 import { hasOddSigns, numberText, parseNumber, type Decimal } from './numbers';
@@ -10,7 +11,8 @@ export type CellReading =
 	| { kind: 'blank' }
 	/** `percent`: the cell is formatted or written as %, and `value` is already in %. `odd`: signs beyond plain ASCII. */
 	| { kind: 'number'; value: number; percent: boolean; text: boolean; odd: boolean }
-	| { kind: 'with unit'; value: number; unit: UnitReading; text: string }
+	/** `format`: the unit is written by the number format; the cell stores the number alone. */
+	| { kind: 'with unit'; value: number; unit: UnitReading; text: string; format?: boolean }
 	| { kind: 'below'; limit: number | null; which: 'loq' | 'lod' | null; text: string }
 	| { kind: 'above'; limit: number | null; text: string }
 	| { kind: 'not'; text: string }
@@ -48,12 +50,33 @@ export function readCell(
 	if (value === null) return { kind: 'blank' };
 	if (typeof value === 'boolean') return { kind: 'text', text: value ? 'TRUE' : 'FALSE' };
 	if (typeof value === 'string') return readValueText(value, decimal);
-	const { kind } = cellStyle(workbook, cell);
+	const { kind, format } = cellStyle(workbook, cell);
 	if (kind === 'date' || kind === 'datetime' || kind === 'time' || kind === 'duration')
 		return { kind: 'date', text: displayText(workbook, cell) };
 	if (kind === 'percent')
 		return { kind: 'number', value: percentOf(value), percent: true, text: false, odd: false };
-	return { kind: 'number', value, percent: false, text: false, odd: false };
+	return formatted(format, value) ?? { kind: 'number', value, percent: false, text: false, odd: false };
+}
+
+/** What the number format says beside the number: a unit, a limit, a word such as n.d.; null when it says nothing of the kind. */
+function formatted(format: string, value: number): CellReading | null {
+	const text = textAround(format, value);
+	if (text === null) return null;
+	const reading = readValueText(text, '.');
+	switch (reading.kind) {
+		case 'with unit':
+			return reading.unit.of === 'value' ? { ...reading, format: true } : null;
+		case 'number':
+			return reading.percent ? { ...reading, text: false, odd: false } : null;
+		case 'below':
+		case 'above':
+		case 'not':
+		case 'trace':
+		case 'marked':
+			return reading;
+		default:
+			return null;
+	}
 }
 
 /** 0.07 × 100 is 7.000000000000001 in binary; fifteen digits are what the sheet holds. */

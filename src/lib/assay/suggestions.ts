@@ -124,7 +124,9 @@ function chargeFromZeroRow(
 		if (c.role !== 'species' || ids.length !== 1 || !c.unit || initial.some(([id]) => id === ids[0]))
 			continue;
 		const reading = readCell(view.workbook, view.cell(row, c.column), mapping.decimal);
-		if (reading.kind !== 'number' || !(reading.value > 0)) continue;
+		const own = reading.kind === 'with unit' && reading.format && reading.unit.of === 'value';
+		if (reading.kind !== 'number' && !(own && reading.unit.unit === c.unit)) continue;
+		if (!(reading.value > 0)) continue;
 		const relative = ['% of charge', 'mol %', 'area %'].includes(c.unit);
 		if (!relative && !c.unit.includes('mol/L')) continue;
 		initial.push([

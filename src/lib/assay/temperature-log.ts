@@ -1,4 +1,5 @@
 /** The temperature column as a log in °C, and the values far from its middle. */
+import type { CellReading } from './cells';
 import type { Examination } from './examination';
 import { capital, figure } from './wording';
 import { median } from './statistics';
@@ -44,22 +45,29 @@ export function temperatureLog(ex: Examination, points: Point[]): TemperatureLog
 		}
 		column.unit = taken.key;
 	}
-	const shift = column.unit === 'K' ? -273.15 : 0;
 	const seen = new Set<number>();
 	const rows = points.flatMap((p) => {
-		const reading = ex.value(p.row, column.column);
-		if (reading.kind !== 'number' || p.time === null || seen.has(p.row)) return [];
+		const celsius = celsiusOf(ex.value(p.row, column.column), column.unit);
+		if (celsius === null || p.time === null || seen.has(p.row)) return [];
 		seen.add(p.row);
 		return [
 			{
 				time: p.time,
-				celsius: Number((reading.value + shift).toPrecision(12)),
+				celsius: Number(celsius.toPrecision(12)),
 				cell: ex.at(p.row, column.column)
 			}
 		];
 	});
 	noteExcursions(ex, rows);
 	return { rows, open: false };
+}
+
+/** A number in the column's unit, or one that carries its own ("50 °C"); null where the cell holds no temperature. */
+function celsiusOf(reading: CellReading, unit: string | null): number | null {
+	if (reading.kind !== 'number' && reading.kind !== 'with unit') return null;
+	const own = reading.kind === 'with unit' ? reading.unit : null;
+	if (own && own.of !== 'temperature') return null;
+	return (own?.unit ?? unit) === 'K' ? reading.value - 273.15 : reading.value;
 }
 
 function noteExcursions(ex: Examination, rows: TemperatureLog['rows']): void {

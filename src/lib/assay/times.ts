@@ -4,6 +4,7 @@
  * 0.0104166666666667 d = 900.000000000003 s).
  */
 import { CELL, type GridCell, type GridWorkbook, type TimeUnit } from '$lib/schemas/sheet';
+import { textAround } from './format-literals';
 import { cellStyle, displayText, hasFlag } from './grid';
 import { type CalendarTime, calendarToSerial } from './number-format';
 import { type Decimal, parseNumber } from './numbers';
@@ -45,7 +46,7 @@ export function readTime(
 	const value = cell[1];
 	if (typeof value === 'string') return readTimeText(value, decimal);
 	if (typeof value !== 'number') return { kind: 'text', text: displayText(workbook, cell) };
-	const { kind } = cellStyle(workbook, cell);
+	const { kind, format } = cellStyle(workbook, cell);
 	const text = displayText(workbook, cell);
 	if (kind === 'duration') return { kind: 'serial', days: value, wraps: false, text };
 	if (kind === 'time') return { kind: 'serial', days: value, wraps: true, text };
@@ -54,7 +55,10 @@ export function readTime(
 		const days = workbook.dateSystem === 1904 ? value + 1462 : value;
 		return { kind: 'stamp', days, utcOffsetMin: null, orders: 'sure', text };
 	}
-	return { kind: 'number', value };
+	// `0 "min"` shows 60 as "60 min": the format writes the unit.
+	const shown = textAround(format, value);
+	const worded = shown === null ? null : readTimeText(shown, '.');
+	return worded?.kind === 'worded' ? worded : { kind: 'number', value };
 }
 
 export function readTimeText(raw: string, decimal: Decimal | null): TimeReading {
