@@ -45,6 +45,7 @@ export function closedForm(space: ModeSpace, groups: ModeGroup[], c: ModeCoeffic
 		width += (groups[g].degree + 1) * (groups[g].im > 0 ? 2 : 1);
 	}
 	kept.sort((a, b) => groups[a].re - groups[b].re || groups[a].im - groups[b].im);
+	const own = new Float64Array(2 * n * width);
 	const form: ClosedForm = {
 		n,
 		width,
@@ -52,8 +53,8 @@ export function closedForm(space: ModeSpace, groups: ModeGroup[], c: ModeCoeffic
 		im: new Float64Array(kept.length),
 		degree: new Int32Array(kept.length),
 		members: new Int32Array(kept.length),
-		amplitudes: new Float64Array(n * width),
-		sizes: new Float64Array(n * width),
+		amplitudes: own.subarray(0, n * width),
+		sizes: own.subarray(n * width),
 		size: new Float64Array(n),
 		simple: width === kept.length
 	};

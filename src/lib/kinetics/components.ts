@@ -56,7 +56,7 @@ function popComponent(stack: number[], onStack: Uint8Array, root: number): numbe
 		const w = stack.pop()!;
 		onStack[w] = 0;
 		members.push(w);
-		if (w === root) return members.sort((a, b) => a - b);
+		if (w === root) return members.length > 1 ? members.sort((a, b) => a - b) : members;
 	}
 }
 

@@ -163,8 +163,7 @@ function fromRows(columns: Float64Array[], m: number, closed: boolean): RateVect
 	const vectors = identity(m);
 	oneSidedJacobi(rows, vectors);
 	const modes = rows.map((row, j) => ({ rate: -(norm(row) ** 2), vector: vectors[j], image: row }));
-	modes.sort((a, b) => a.rate - b.rate);
-	return closed ? modes.slice(0, -1) : modes;
+	return closed ? modes.sort((a, b) => a.rate - b.rate).slice(0, -1) : modes;
 }
 
 function identity(m: number): Float64Array[] {

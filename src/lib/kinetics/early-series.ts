@@ -17,6 +17,7 @@
  * Source: the expansion is that of A. Jensen, Skand. Aktuarietidskr. 36 (1953) 87, in powers of t.
  */
 import type { Grid } from './grid';
+import { Scratch } from './scratch';
 import type { LinearSystem } from './types';
 
 const TERMS_PAST_REACH = 20;
@@ -65,9 +66,10 @@ function seriesTo(
 	charge: ArrayLike<number>,
 	timeS: number
 ): Float64Array {
-	const series = room((n + TERMS_PAST_REACH) * n);
+	const length = (n + TERMS_PAST_REACH) * n;
+	const series = seriesMemory.room(length);
 	series.set(charge);
-	for (let m = 1, at = n; at < series.length; m++, at += n) {
+	for (let m = 1, at = n; at < length; m++, at += n) {
 		const h = timeS / m;
 		for (let i = 0; i < n; i++) series[at + i] = (shift - outflow[i]) * h * series[at - n + i];
 		for (let e = 0; e < transfers.length; e++) {
@@ -76,16 +78,10 @@ function seriesTo(
 		}
 		if (m >= n && !counts(series, at, n)) return series.subarray(0, at);
 	}
-	return series;
+	return series.subarray(0, length);
 }
 
-let spare = new Float64Array(0);
-
-/** Room for the series, kept from one call to the next. */
-function room(length: number): Float64Array {
-	if (spare.length < length) spare = new Float64Array(length);
-	return spare.subarray(0, length);
-}
+const seriesMemory = new Scratch();
 
 /** Whether some entry of the term at `at` is worth adding to the same entry of the terms before. */
 function counts(series: Float64Array, at: number, n: number): boolean {

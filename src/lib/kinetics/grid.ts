@@ -13,10 +13,11 @@
  * | symbol | name here |
  * | --- | --- |
  * | e^{λ_l jΔ} | `fine[j·width + l]` |
- * | e^{λ_l(t₀ + mBΔ)} | `far[m·width + l]`, of the block at hand `coarse[l]` |
+ * | e^{λ_l(t₀ + mBΔ)} | `far[m·width + l]`, of the block at hand `coarse[place + l]` |
  */
 import type { ClosedForm } from './closed-form';
-import { TermSums } from './term-sums';
+import { Scratch } from './scratch';
+import { TermSums, type Factors } from './term-sums';
 
 /** Fewer times than this are not worth the tables. */
 const FEWEST = 48;
@@ -62,16 +63,15 @@ export function curvesOnGrid(form: ClosedForm, grid: Grid, trust: GridTrust, out
 	const size = Math.min(count, Math.ceil(BLOCK * Math.sqrt(count)));
 	const sums = new TermSums(form);
 	const blocks = Math.ceil(count / size);
-	const fine = room(0, size * width);
-	const far = room(1, blocks * width);
+	const fine = fineMemory.room(size * width);
+	const far = farMemory.room(blocks * width);
 	factors(re, { firstS: 0, stepS, count: size }, fine);
 	factors(re, { firstS, stepS: size * stepS, count: blocks }, far);
 	const unsure: number[] = [];
 	for (let start = 0, m = 0; start < count; start += size, m++) {
 		const rows = Math.min(size, count - start);
-		const coarse = far.subarray(m * width, (m + 1) * width);
-		sums.write(fine, coarse, out, start * n, rows);
-		gatherUnsure(form, trust, { fine, coarse, start }, 0, rows, out, unsure);
+		sums.write({ fine, coarse: far, place: m * width }, out, start * n, rows);
+		gatherUnsure(form, trust, { fine, coarse: far, place: m * width, start }, 0, rows, out, unsure);
 	}
 	return unsure;
 }
@@ -100,17 +100,10 @@ function factors(re: Float64Array, grid: Grid, table: Float64Array): void {
 	}
 }
 
-const spare = [new Float64Array(0), new Float64Array(0)];
+const fineMemory = new Scratch();
+const farMemory = new Scratch();
 
-/** Room for a table, kept from one call to the next: allocating it would cost as much as filling it. */
-function room(which: 0 | 1, length: number): Float64Array {
-	if (spare[which].length < length) spare[which] = new Float64Array(length);
-	return spare[which];
-}
-
-interface Block {
-	fine: Float64Array;
-	coarse: Float64Array;
+interface Block extends Factors {
 	/** Grid index of its first row. */
 	start: number;
 }
@@ -139,7 +132,7 @@ function gatherUnsure(
 function allTrusted(
 	{ n, width, amplitudes }: ClosedForm,
 	{ trusted }: GridTrust,
-	{ fine, coarse }: Block,
+	{ fine, coarse, place }: Block,
 	first: number,
 	last: number
 ): boolean {
@@ -149,7 +142,7 @@ function allTrusted(
 		let lowest = 0;
 		for (let l = 0; l < width; l++, at++) {
 			if (amplitudes[at] === 0) continue;
-			const term = amplitudes[at] * coarse[l];
+			const term = amplitudes[at] * coarse[place + l];
 			lowest += term * fine[(term > 0 ? late : early) + l];
 		}
 		if (!(lowest >= trusted[s])) return false;
@@ -171,13 +164,14 @@ function rowTrusted(form: ClosedForm, trust: GridTrust, block: Block, j: number,
 function decayed(
 	form: ClosedForm,
 	{ smallest }: GridTrust,
-	{ fine, coarse }: Block,
+	{ fine, coarse, place }: Block,
 	j: number,
 	s: number,
 	value: number
 ): boolean {
 	const { width, sizes } = form;
 	let size = 0;
-	for (let l = 0, at = s * width; l < width; l++, at++) size += sizes[at] * coarse[l] * fine[j * width + l];
+	for (let l = 0, at = s * width; l < width; l++, at++)
+		size += sizes[at] * coarse[place + l] * fine[j * width + l];
 	return value >= smallest * size;
 }

@@ -23,6 +23,7 @@
 import type { BlockWeights } from './block-weights';
 import type { Components } from './components';
 import { balanceWeights, symmetricModes, type BlockFlows } from './detailed-balance';
+import { Scratch } from './scratch';
 import { complexSchur, type ComplexMatrix } from './schur';
 import type { LinearSystem } from './types';
 
@@ -52,10 +53,16 @@ export interface ModeSpace {
 /** Spread of ln π beyond which V and W would over- or underflow. */
 const WIDEST_WEIGHTS = 1200;
 
-export function modeSpace(system: LinearSystem, parts: Components, balance: BlockWeights): ModeSpace {
+/** @param scratch memory for the matrices, where the result is not kept */
+export function modeSpace(
+	system: LinearSystem,
+	parts: Components,
+	balance: BlockWeights,
+	scratch = new Scratch()
+): ModeSpace {
 	const { n } = system;
 	// One buffer for all: allocating is what costs here. Imaginary parts are shared zeros until a component needs them.
-	const own = new Float64Array(6 * n * n);
+	const own = scratch.zeros(6 * n * n);
 	const part = (k: number) => own.subarray(k * n * n, (k + 1) * n * n);
 	const real = (k: number): ComplexMatrix => ({ m: n, re: part(k), im: zeros(n) });
 	const space: ModeSpace = {

@@ -236,6 +236,15 @@ describe('promises of a solution', () => {
 			.build();
 		expect(() => solve(growing, [1, 0])).toThrow(/multiply without limit/);
 	});
+	it('is not disturbed by solutions made after it', () => {
+		const times = Float64Array.from({ length: 100 }, (_, k) => 0.05 * k);
+		const before = solve(system, [1, 0, 0, 0, 0]);
+		const alone = [...before.curves(times)];
+		const other = solve(system, [0, 0, 1, 2, 0]);
+		other.curves(times.map((t) => 3 * t));
+		expect([...before.curves(times)]).toEqual(alone);
+		expect(before.modes).toEqual(solve(system, [1, 0, 0, 0, 0]).modes);
+	});
 	it('is linear in the charge', () => {
 		const a = solve(system, [1, 0, 0, 0, 0]).at(1.5);
 		const b = solve(system, [0, 1, 0, 0, 0]).at(1.5);

@@ -31,6 +31,7 @@ import { modeSpace } from './mode-space';
 import { modesOf } from './modes';
 import { Propagator } from './propagator';
 import { withIntegrals } from './linear-system';
+import { Scratch } from './scratch';
 import { triangularModes } from './triangular-modes';
 import type { LinearSystem, Mode, Solution, SolveMethod } from './types';
 import { judge, type Judgement } from './verdict';
@@ -58,6 +59,10 @@ function checkedCharge(system: LinearSystem, charge: ArrayLike<number>): Float64
 /** Runs of at least this many times are worth the matrix of one step. */
 const LONG_RUN = 24;
 
+// Needed while a closed form is made, not after.
+const spaceMemory = new Scratch();
+const modeMemory = new Scratch();
+
 class NetworkSolution implements Solution {
 	readonly n: number;
 	readonly method: SolveMethod;
@@ -82,9 +87,9 @@ class NetworkSolution implements Solution {
 		this.fastest = fastestOutflow(system);
 		this.parts = components(system);
 		this.balance = blockWeights(system, this.parts);
-		const space = modeSpace(system, this.parts, this.balance);
+		const space = modeSpace(system, this.parts, this.balance, spaceMemory);
 		const { groups, groupOf } = modeGroups(space);
-		this.form = closedForm(space, groups, triangularModes(space, groups, groupOf, charge));
+		this.form = closedForm(space, groups, triangularModes(space, groups, groupOf, charge, modeMemory));
 		this.phi = new Float64Array(this.form.width);
 		this.work = new Float64Array(Math.max(this.form.width, this.n));
 		this.verdict = judge(system, charge, space, groups, this.form, () => this.exact());

@@ -43,7 +43,7 @@ function compare(form: ClosedForm, rows: number): { worst: number; outside: numb
 	const fine = new Float64Array(rows * width).map((_, i) => decay(i % width));
 	const coarse = new Float64Array(width).map((_, l) => decay(l));
 	const out = new Float64Array(2 + rows * n + 2).fill(7);
-	new TermSums(form).write(fine, coarse, out, 2, rows);
+	new TermSums(form).write({ fine, coarse: Float64Array.of(9, ...coarse), place: 1 }, out, 2, rows);
 	const expected = plainly(form, fine, coarse, rows);
 	const worst = expected.reduce((top, value, i) => Math.max(top, Math.abs(out[2 + i] - value)), 0);
 	return { worst, outside: [...out.subarray(0, 2), ...out.subarray(2 + rows * n)] };

@@ -11,7 +11,7 @@
  * | symbol | name here |
  * | --- | --- |
  * | a_s0 (sum over modes of rate zero), a_sl | `Pass.terms` |
- * | E_l, F_jl | `coarse[l]`, `fine[j·width + l]` |
+ * | E_l, F_jl | `coarse[place + l]`, `fine[j·width + l]` |
  */
 import type { ClosedForm } from './closed-form';
 
@@ -42,6 +42,15 @@ interface Riders {
 	modes: number[];
 }
 
+/** Factors of the modes. */
+export interface Factors {
+	/** F by row and mode. */
+	fine: Float64Array;
+	/** E, the same for all rows, from coarse[place] on. */
+	coarse: Float64Array;
+	place: number;
+}
+
 /** Where a pass reads and writes. */
 interface Place {
 	fine: Float64Array;
@@ -64,16 +73,12 @@ export class TermSums {
 		this.passes = passesOf(form);
 	}
 
-	/**
-	 * Writes rows × n values from out[offset] on.
-	 * @param fine factors F by row and mode
-	 * @param coarse a further factor E of each mode, the same for all rows
-	 */
-	write(fine: Float64Array, coarse: Float64Array, out: Float64Array, offset: number, rows: number): void {
+	/** Writes rows × n values from out[offset] on. */
+	write(factors: Factors, out: Float64Array, offset: number, rows: number): void {
 		const { n, width } = this.form;
-		const place = { fine, width, out, offset, n, rows };
+		const place = { fine: factors.fine, width, out, offset, n, rows };
 		for (const pass of this.passes) {
-			scale(pass, coarse);
+			scale(pass, factors);
 			if (pass.riders) writeFive(place, pass, pass.riders, scaled);
 			else if (pass.single) (pass.adds ? addOne : writeOne)(place, pass, scaled);
 			else (pass.adds ? addThree : writeThree)(place, pass, scaled);
@@ -81,15 +86,15 @@ export class TermSums {
 	}
 }
 
-function scale({ modes, terms, riders }: Pass, coarse: Float64Array): void {
+function scale({ modes, terms, riders }: Pass, { coarse, place }: Factors): void {
 	for (let k = 0; k < 3; k++) {
-		const factor = coarse[modes[k]];
+		const factor = coarse[place + modes[k]];
 		for (let i = k; i < CONSTANTS; i += 3) scaled[i] = terms[i] * factor;
 		scaled[CONSTANTS + k] = terms[CONSTANTS + k];
 	}
 	if (!riders) return;
 	for (let i = 0; i < 2; i++) {
-		scaled[RIDERS + 2 * i] = terms[RIDERS + 2 * i] * coarse[riders.modes[i]];
+		scaled[RIDERS + 2 * i] = terms[RIDERS + 2 * i] * coarse[place + riders.modes[i]];
 		scaled[RIDERS + 2 * i + 1] = terms[RIDERS + 2 * i + 1];
 	}
 }

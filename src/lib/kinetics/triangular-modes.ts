@@ -17,6 +17,7 @@
  */
 import type { ModeGroup } from './mode-groups';
 import type { ModeSpace } from './mode-space';
+import { Scratch } from './scratch';
 
 export interface ModeCoefficients {
 	width: number;
@@ -26,18 +27,22 @@ export interface ModeCoefficients {
 	size: Float64Array;
 }
 
-/** Coefficients of every mode for one charge. */
+/**
+ * Coefficients of every mode for one charge.
+ * @param scratch memory for them, where they are not kept
+ */
 export function triangularModes(
 	space: ModeSpace,
 	groups: ModeGroup[],
 	groupOf: Int32Array,
-	charge: ArrayLike<number>
+	charge: ArrayLike<number>,
+	scratch = new Scratch()
 ): ModeCoefficients {
 	const { n } = space;
 	const offset = new Int32Array(groups.length + 1);
 	groups.forEach((group, g) => (offset[g + 1] = offset[g] + group.degree + 1));
 	const width = offset[groups.length];
-	const own = new Float64Array(3 * n * width);
+	const own = scratch.zeros(3 * n * width);
 	const part = (k: number) => own.subarray(k * n * width, (k + 1) * n * width);
 	const result: ModeCoefficients = { width, offset, re: part(0), im: part(1), size: part(2) };
 	const start = { re: 0, im: 0, size: 0 };
