@@ -60,6 +60,19 @@ describe('the sentences at the top of a result', () => {
 		]);
 	});
 
+	it('say on which response factors a limit in area % rests, as the row of the table does', () => {
+		const question = {
+			kind: 'criterion' as const,
+			criterion: { species: 'C', relation: 'NMT' as const, limit: 2, unit: 'area %' as const }
+		};
+		const note = 'response factor 1 for every species';
+		const quantities = [{ ...limit.quantities[0], note }];
+		expect(decisionSentences([{ question, quantities, none: null }], 'h')).toEqual([
+			'C NMT 2 area % (response factor 1 for every species) holds until 4.040 h (3.920 to open).'
+		]);
+		expect(quantityWords(question, quantities[0], 'h')).toContain(`(${note}): holds until`);
+	});
+
 	it('go without an interval where there is none', () => {
 		const bare = { ...time, standardError: null, interval: null };
 		const answer = { ...maximum, quantities: [bare, { ...value, standardError: null, interval: null }] };

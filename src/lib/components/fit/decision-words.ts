@@ -35,6 +35,9 @@ export function questionWords(question: AskedDecision, timeUnit: string): string
 	}
 }
 
+/** What a limit in area % takes as response factors. */
+const noteWords = ({ note }: DecisionQuantity): string => (note ? ` (${note})` : '');
+
 /** The name of one quantity in its row. */
 export function quantityWords(question: AskedDecision, q: DecisionQuantity, timeUnit: string): string {
 	switch (q.quantity) {
@@ -45,9 +48,9 @@ export function quantityWords(question: AskedDecision, q: DecisionQuantity, time
 		case 'amount at time':
 			return `${q.species} at ${plain(q.at ?? 0)} ${timeUnit}`;
 		case 'time criterion is met':
-			return `${questionWords(question, timeUnit)}: first met at`;
+			return `${questionWords(question, timeUnit)}${noteWords(q)}: first met at`;
 		case 'time criterion holds until':
-			return `${questionWords(question, timeUnit)}: holds until`;
+			return `${questionWords(question, timeUnit)}${noteWords(q)}: holds until`;
 		default:
 			return `${questionWords(question, timeUnit)} at`;
 	}
@@ -86,7 +89,8 @@ function criterionSentence(answer: AnsweredDecision, timeUnit: string, where: st
 		const range = shownInterval(q).ends ? ` (${rangeWords(q)})` : '';
 		return `${q.quantity === 'time criterion is met' ? 'is met from' : 'holds until'} ${at}${range}`;
 	});
-	return `${questionWords(answer.question, timeUnit)} ${parts.join(' and ')}${where}.`;
+	const [first] = answer.quantities;
+	return `${questionWords(answer.question, timeUnit)}${noteWords(first)} ${parts.join(' and ')}${where}.`;
 }
 
 const MOST_SENTENCES = 3;

@@ -15,6 +15,7 @@ import type { FitReport } from '../../schemas/fit';
 import type { RunContent } from '../../schemas/run';
 import { CriterionError, toCriterion, type Criterion } from '../criteria';
 import { toNetwork } from '../from-scheme';
+import { areaFactors } from './area-factors';
 import { CurveOfSpecies, type Curve } from './decision-curve';
 import { KineticModel } from './model';
 import { probeModel } from './probe';
@@ -34,6 +35,8 @@ export class CurveOfCriterion extends CurveOfSpecies {
 	/** "C NMT 3 % of charge" */
 	readonly text: string;
 	readonly criterion: Criterion;
+	/** What a limit in area % takes as response factors; null for other limits. */
+	readonly note: string | null;
 
 	/** @throws RangeError where the criterion cannot be applied to this scheme and charge */
 	constructor(fitted: RestoredFit, report: FitReport, run: RunContent, content: CriterionContent) {
@@ -41,7 +44,10 @@ export class CurveOfCriterion extends CurveOfSpecies {
 		const n = fitted.problem.species.length;
 		const charge = this.composition(fitted.x, [0]).values;
 		const { network } = toNetwork(fitted.problem.request);
-		const at = (c: ArrayLike<number>): Criterion => toCriterion(content, { network, charge: c });
+		const { factors: responseFactors, note } = areaFactors(content, run, report);
+		this.note = note;
+		const at = (c: ArrayLike<number>): Criterion =>
+			toCriterion(content, { network, charge: c, responseFactors });
 		try {
 			this.criterion = at(charge);
 		} catch (caught) {

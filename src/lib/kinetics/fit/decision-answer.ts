@@ -83,7 +83,7 @@ class Intervals {
 	time(
 		curve: CurveOfSpecies,
 		time: number,
-		named: Pick<DecisionQuantity, 'species' | 'quantity' | 'criterion'>
+		named: Pick<DecisionQuantity, 'species' | 'quantity' | 'criterion' | 'note'>
 	): DecisionQuantity {
 		const { fitted, report, options } = this.asked;
 		const at = curve.at(fitted.x, time);
@@ -150,8 +150,12 @@ function ofCriterion(
 ): DecisionQuantity[] {
 	const { fitted, report } = asked;
 	const { run, reach, last } = intervals;
-	const curve = new CurveOfCriterion(fitted, report, run, criterion);
-	const named = { species: criterion.species, criterion: curve.text };
+	const curve = new CurveOfCriterion(fitted, report, { ...run, id: runId(run, asked.index) }, criterion);
+	const named = {
+		species: criterion.species,
+		criterion: curve.text,
+		...(curve.note ? { note: curve.note } : {})
+	};
 	const met = curve.holdsAtStart ? null : curve.firstTime(fitted.x, reach * last);
 	if (!curve.holdsAtStart && met === null) return [];
 	const until = curve.firstTime(fitted.x, reach * last, met ?? 0);
@@ -181,6 +185,8 @@ export interface CriterionOutlook {
 	/** The limited quantity at the horizon, and what follows the number. */
 	value: number;
 	unitText: string;
+	/** What a limit in area % takes as response factors; null for other limits. */
+	note: string | null;
 }
 
 export function criterionOutlook(
@@ -197,6 +203,7 @@ export function criterionOutlook(
 		holdsAtStart: curve.holdsAtStart,
 		horizon,
 		value: curve.valueAt(horizon),
-		unitText: curve.criterion.unitText
+		unitText: curve.criterion.unitText,
+		note: curve.note
 	};
 }

@@ -55,6 +55,8 @@ export interface DecisionQuantity {
 		| 'amount at time';
 	/** The criterion in words, where it is one. */
 	criterion?: string;
+	/** What a limit in area % takes as response factors, in words. */
+	note?: string;
 	/** The time of an amount, in the run's time unit. */
 	at?: number;
 	value: number;

@@ -26,9 +26,10 @@ function whyNone(fit: RecordedFit, index: number, question: AskedDecision): stri
 		const restored = restoreFit(fit.report, fit.request);
 		const look = criterionOutlook(restored, fit.report, run, question.criterion);
 		const upTo = `${plain(look.horizon)} ${unit}`;
+		const basis = look.note ? ` (${look.note})` : '';
 		return look.holdsAtStart
-			? `holds from the start and, as far as was looked (${upTo}), throughout`
-			: `not met within ${upTo}; there the value is ${plain(look.value)}${look.unitText}`;
+			? `holds from the start and, as far as was looked (${upTo}), throughout${basis}`
+			: `not met within ${upTo}; there the value is ${plain(look.value)}${look.unitText}${basis}`;
 	}
 	const last = Math.max(0, ...run.timepoints.map((p) => p.time));
 	if (question.kind === 'maximum')
