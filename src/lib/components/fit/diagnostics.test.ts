@@ -1,6 +1,13 @@
 import { describe, expect, it } from 'vitest';
 import { fitRequest, type FitReport, type FitResidual } from '$lib/schemas/fit';
-import { largeRows, normalScores, residualPlot, roundTicks, type DiagnosticContext } from './diagnostics';
+import {
+	largeRows,
+	normalScores,
+	residualPlot,
+	roundTicks,
+	sheetRowWords,
+	type DiagnosticContext
+} from './diagnostics';
 
 const residual = (over: Partial<FitResidual>): FitResidual => ({
 	run: 'r1',
@@ -64,6 +71,16 @@ describe('residual plots', () => {
 		const request = { ...context.request, runs: [first, { ...second, timepoints: [at] }] };
 		const found = report([residual({ run: 'r2', studentised: 3.2 })]);
 		expect(residualPlot(found, 'time', { ...context, request }).points[0].href).toBe('/r2/17');
+	});
+
+	it('lead to the column, and name it as one, where the times of the sheet run across', () => {
+		const [first, second] = context.request.runs;
+		const at = { time: 1, values: { A: 0.4 }, source: { sheet: 'Run 2', row: 3, column: 5 } };
+		const request = { ...context.request, runs: [first, { ...second, timepoints: [at] }] };
+		const found = report([residual({ run: 'r2', studentised: 3.2 })]);
+		expect(residualPlot(found, 'time', { ...context, request }).points[0].href).toBe('/r2/5');
+		expect(sheetRowWords(request, 'r2', 0)).toBe('column E');
+		expect(sheetRowWords({ ...request, runs: context.request.runs }, 'r2', 4)).toBe('row 5');
 	});
 
 	it('put runs in different time units on one axis', () => {

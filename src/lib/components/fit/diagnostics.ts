@@ -7,6 +7,7 @@ import { normalQuantile } from '$lib/kinetics/fit/distributions';
 import type { FitReport, FitRequest, FitResidual } from '$lib/schemas/fit';
 import { plain, significant, unitText } from '$lib/client/numbers';
 import { rowNumber } from '../data/point-rows';
+import { sourceWords } from '../data/quantities';
 import { channelSlot } from './panels';
 
 /** Beyond this a studentised residual is marked. */
@@ -49,6 +50,13 @@ export function sheetRow(request: FitRequest, run: string, index: number): numbe
 	const at = request.runs.findIndex((r, i) => (r.id ?? `r${i + 1}`) === run);
 	const point = request.runs[at]?.timepoints[index];
 	return point ? rowNumber(point, index) : index + 1;
+}
+
+/** "row 9", or "column D" of a sheet whose times run across. */
+export function sheetRowWords(request: FitRequest, run: string, index: number): string {
+	const at = request.runs.findIndex((r, i) => (r.id ?? `r${i + 1}`) === run);
+	const source = request.runs[at]?.timepoints[index]?.source;
+	return source ? sourceWords(source) : `row ${index + 1}`;
 }
 
 interface Row extends FitResidual {
