@@ -13,6 +13,7 @@ import type {
 	TimeUnit
 } from '$lib/schemas/sheet';
 import { type Channel, settleChannels } from './channels';
+import { askChargeApart } from './charge';
 import { askCharge, checkCount } from './checks';
 import { askControls } from './control-rows';
 import { convertValues } from './conversions';
@@ -27,6 +28,7 @@ import { asOnSheet, turnBlock } from './orientation';
 import { plausibility } from './plausibility';
 import { averageColumns } from './replicate-columns';
 import { samplesOf, timeColumn } from './samples';
+import { askSecondTimes } from './second-times';
 import { askBlock, dataRows, noteColours, noteFooters, noteMergesAndDates, noteWithin } from './structure';
 import { headersOf, tableOf, viewOf, votesOf } from './tables';
 import { temperatureLog, type TemperatureLog } from './temperature-log';
@@ -69,6 +71,7 @@ export function settle(input: SettleInput): Settlement {
 	const channels = settleChannels(ex, headers);
 	stopWithoutColumns(ex, channels);
 	settleTimeParts(ex, used);
+	askSecondTimes(ex, used, headers);
 	const samples = samplesOf(ex, used, channels);
 	const times = settleTimes(ex, samples, headers, channels);
 	const marked = noteColours(ex, used);
@@ -84,6 +87,7 @@ export function settle(input: SettleInput): Settlement {
 	const points = settleReplicates(ex, read, times.unit);
 	const { channels: contents, complete } = convertValues(ex, channels, points);
 	askCharge(ex, points, channels);
+	if (complete) askChargeApart(ex, points, contents);
 	checkCount(ex, points, channels, input.parameters ?? null);
 	noteCopies(ex, points, channels);
 	noteMergesAndDates(ex, used, timeColumn(ex));

@@ -7,7 +7,7 @@ import { parseNumber, type Decimal } from './numbers';
 import { Places } from './orientation';
 import { median } from './statistics';
 import type { FoundTable } from './tables';
-import { readUnit } from './units';
+import { readUnit, type UnitReading } from './units';
 
 type Suggested = Pick<TableProposal['suggested'], 'temperature' | 'initial'>;
 
@@ -124,8 +124,9 @@ function chargeFromZeroRow(
 		if (c.role !== 'species' || ids.length !== 1 || !c.unit || initial.some(([id]) => id === ids[0]))
 			continue;
 		const reading = readCell(view.workbook, view.cell(row, c.column), mapping.decimal);
-		const own = reading.kind === 'with unit' && reading.format && reading.unit.of === 'value';
-		if (reading.kind !== 'number' && !(own && reading.unit.unit === c.unit)) continue;
+		// A number format that writes the column's own unit says nothing new.
+		const own = reading.kind === 'with unit' && reading.format === true && sameUnit(reading.unit, c.unit);
+		if (reading.kind !== 'number' && !own) continue;
 		if (!(reading.value > 0)) continue;
 		const relative = ['% of charge', 'mol %', 'area %'].includes(c.unit);
 		if (!relative && !c.unit.includes('mol/L')) continue;
@@ -139,3 +140,6 @@ function chargeFromZeroRow(
 	const charged = initial.filter(([, q]) => q.value >= most * 0.05);
 	return charged.length > 0 ? Object.fromEntries(charged) : null;
 }
+
+const sameUnit = (reading: UnitReading, unit: string): boolean =>
+	reading.of === 'value' && reading.unit === unit;

@@ -5,6 +5,7 @@ import type { Examination } from './examination';
 import type { SheetView } from './grid';
 import { readTime, secondsIn, type TimeReading } from './times';
 import { SECONDS } from './units';
+import { isRetention } from './words';
 import { figure } from './wording';
 
 export interface TimePart {
@@ -25,7 +26,7 @@ export function joinTime(parts: TimePart[], readings: TimeReading[]): TimeReadin
 }
 
 const unitOf = (h: ColumnHeader | undefined): TimeUnit | null =>
-	h?.unit?.of === 'time' ? h.unit.unit : null;
+	h?.unit?.of === 'time' && !isRetention(h.header) ? h.unit.unit : null;
 
 /** Columns right behind the time column that hold its smaller parts: their unit goes down, and no part reaches the next larger one. */
 export function partsBehind(

@@ -3,13 +3,14 @@ import type { Block, TimeUnit } from '$lib/schemas/sheet';
 import type { Channel } from './channels';
 import type { ColumnHeader } from './columns';
 import { withDates } from './date-and-time';
+import { readAsDays } from './day-fractions';
 import { elapsed, noteWrapped } from './elapsed-time';
 import type { Examination } from './examination';
 import { type Sample, timeColumn, type Timed } from './samples';
 import { settleTimeCells } from './time-cells';
 import { stopBackwards } from './time-order';
 import { stopMixedKinds, timeUnit } from './time-unit';
-import type { TimeReading } from './times';
+import { daysToSeconds, type TimeReading } from './times';
 
 export interface Times {
 	unit: TimeUnit;
@@ -44,10 +45,15 @@ function unitAndTimes(
 	const column = timeColumn(ex);
 	const unit = timeUnit(ex, kept, readings, header, column);
 	const seconds = dated ? elapsed(ex, kept, readings, header, unit) : kept.map(() => null);
+	const days = readAsDays(ex, kept, readings, unit);
 	const timed: Timed[] = kept.map((sample, i) => {
 		const reading = readings[i];
-		const plain = reading.kind === 'number' && unit.stated ? reading.value : null;
-		return { sample, seconds: seconds[i], plain };
+		if (reading.kind !== 'number' || !unit.stated) return { sample, seconds: seconds[i], plain: null };
+		if (days === null) return { sample, seconds: null, plain: null };
+		// A corrected time is typed in the unit of the column.
+		if (days && !ex.isCorrected(sample.time.row, sample.time.column))
+			return { sample, seconds: daysToSeconds(reading.value), plain: null };
+		return { sample, seconds: seconds[i], plain: reading.value };
 	});
 	noteWrapped(ex, kept, readings);
 	const { samples: ordered, rest } = stopBackwards(ex, timed, unit.unit);

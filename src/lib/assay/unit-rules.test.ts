@@ -26,7 +26,7 @@ describe('units', () => {
 			'B1',
 			'Column B has no unit. Choose one; we will not assume.'
 		]);
-		expect(valuesOf(answer(workbook, { B4: { key: 'mmol/L' } }))).toEqual([
+		expect(valuesOf(answer(workbook, { B4: { key: 'mmol/L' }, B33: { key: 'keep' } }))).toEqual([
 			0.0005, 0.0004, 0.0003, 0.0002, 0.0001, 0.00005
 		]);
 	});

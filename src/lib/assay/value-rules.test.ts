@@ -23,8 +23,12 @@ describe('numbers', () => {
 			'ask',
 			'"5,125" could be 5125 or 5.125. Nothing else in the file tells which.'
 		]);
-		expect(valuesOf(answer(workbook, { B6: { key: 'comma' } }))).toEqual([5.125, 4.25, 3.5, 2.125, 1.25]);
-		expect(valuesOf(answer(workbook, { B6: { key: 'point' } }))).toEqual([5125, 4250, 3500, 2125, 1250]);
+		expect(valuesOf(answer(workbook, { B6: { key: 'comma' }, B33: { key: 'keep' } }))).toEqual([
+			5.125, 4.25, 3.5, 2.125, 1.25
+		]);
+		expect(
+			valuesOf(answer(workbook, { B6: { key: 'point' }, B4: { key: 'keep' }, B33: { key: 'keep' } }))
+		).toEqual([5125, 4250, 3500, 2125, 1250]);
 		expect(first(csv('Time (h);A (mol/L)\n0;5,125\n1;0,250\n')).mapping.decimal).toBe(',');
 	});
 
@@ -43,7 +47,7 @@ describe('numbers', () => {
 		);
 		const [f] = findingsOf(workbook, 'B7');
 		expect([f.level, f.count]).toEqual(['note', 4]);
-		expect(valuesOf(answer(workbook, { B20: { key: 'keep' } }))?.slice(0, 4)).toEqual([
+		expect(valuesOf(answer(workbook, { B20: { key: 'keep' }, B4: { key: 'keep' } }))?.slice(0, 4)).toEqual([
 			0.5, -0.001, 1234.5, 1000
 		]);
 	});

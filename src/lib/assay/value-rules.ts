@@ -2,11 +2,13 @@
 import type { AssayValue } from '$lib/schemas/run';
 import { askUnits, settlePercent } from './cell-units';
 import type { Channel } from './channels';
+import { askDense } from './dense-values';
 import type { Examination } from './examination';
 import { askAbove, askLimits, askNotDetected, askTrace } from './limit-rules';
 import type { StatedLimits } from './limits';
 import { settleZerosAndNegatives } from './low-values';
 import { askMarked } from './marked-values';
+import { askMergedValues } from './merged-values';
 import type { Sample } from './samples';
 import { leaveMissing, type Spot } from './spots';
 import { unitColumn, withOwnUnit } from './unit-column';
@@ -41,10 +43,12 @@ export function settleValues(
 	);
 	askMarked(ex, spots);
 	for (const { channel, spots: own } of spots) {
+		askMergedValues(ex, channel, own);
 		stopUnusable(ex, channel, own);
 		askTexts(ex, channel, own);
 		askUnits(ex, channel, own);
 		settlePercent(ex, channel, own);
+		askDense(ex, channel, own);
 		askLimits(ex, channel, own, limits);
 		askAbove(ex, channel, own);
 	}
