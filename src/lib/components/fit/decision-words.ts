@@ -61,8 +61,10 @@ export function shownInterval(q: DecisionQuantity): {
 	ends: [number | null, number | null] | null;
 	how: string;
 } {
-	if (q.profileInterval) return { ends: q.profileInterval, how: 'profile likelihood' };
+	if (q.profileInterval)
+		return { ends: q.profileInterval, how: `profile likelihood${q.heldBy ? ', within the bounds' : ''}` };
 	if (q.interval) return { ends: q.interval, how: 'linear (delta method)' };
+	if (q.heldBy) return { ends: null, how: `none: decided by the bound of ${q.heldBy.join(', ')}` };
 	return { ends: null, how: 'not determined by these data' };
 }
 

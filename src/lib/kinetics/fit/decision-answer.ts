@@ -9,6 +9,7 @@ import { ConstrainedProfile } from './decision-profile';
 import { studentQuantile } from './distributions';
 import type { RestoredFit } from './restore';
 import { runId } from './slots';
+import { uncertainty } from './uncertainty';
 
 export interface Asked {
 	fitted: RestoredFit;
@@ -69,6 +70,39 @@ class Intervals {
 		return Number.isFinite(found) ? found : null;
 	}
 
+	/**
+	 * Parameters held by a bound that decide the answer: a tenth more or less of one moves it by more than its error without it.
+	 * Such an answer has no symmetric interval, for its error would leave out what matters.
+	 */
+	private held(gradient: Float64Array, scale: number, error: number | null): string[] {
+		const { fitted } = this.asked;
+		const { active } = fitted.uncertainty;
+		return fitted.problem.free.flatMap((slot, j) => {
+			if (active.includes(j)) return [];
+			const tenth = 0.1 * (slot.scale === 'ln' ? 1 : Math.abs(fitted.x[j]));
+			return Math.abs((gradient[j] / scale) * tenth) > (error ?? Infinity) ? [slot.id] : [];
+		});
+	}
+
+	/** Standard error as if no bound held, to set the scale of a profile within the bounds. */
+	private freeError(gradient: Float64Array, scale: number): number | null {
+		const { problem, model, x, uncertainty: u } = this.asked.fitted;
+		const jacobian = new Float64Array(model.m * model.p);
+		if (u.s === null || !model.evaluate(x, new Float64Array(model.m), jacobian)) return null;
+		const activeBounds = new Int8Array(model.p);
+		const ssr = this.asked.report.weightedSsr;
+		const { spread } = uncertainty(problem, { ssr, jacobian, activeBounds });
+		const found =
+			u.s *
+			Math.sqrt(
+				varianceAlong(
+					spread,
+					gradient.map((g) => g / scale)
+				)
+			);
+		return Number.isFinite(found) && found > 0 ? found : null;
+	}
+
 	private about(value: number, error: number | null): [number, number] | null {
 		return error === null || !Number.isFinite(this.t)
 			? null
@@ -88,7 +122,9 @@ class Intervals {
 		const { fitted, report, options } = this.asked;
 		const at = curve.at(fitted.x, time);
 		const { s } = fitted.uncertainty;
-		const error = this.error(at.gapGradient, at.slope);
+		const active = this.error(at.gapGradient, at.slope);
+		const heldBy = this.held(at.gapGradient, at.slope, active);
+		const error = heldBy.length ? this.freeError(at.gapGradient, at.slope) : active;
 		const profiled =
 			options.profiles !== false &&
 			report.criterion !== 'determinant' &&
@@ -103,8 +139,9 @@ class Intervals {
 			...named,
 			value: time,
 			unit: this.run.timeUnit,
-			standardError: error,
-			interval: this.about(time, error),
+			...(heldBy.length ? { heldBy } : {}),
+			standardError: heldBy.length ? null : error,
+			interval: heldBy.length ? null : this.about(time, error),
 			profileInterval: profiled && profiled.interval(time, error!, this.t, 4 * this.reach * this.last),
 			beyondSamples: time > this.last
 		};
@@ -117,8 +154,11 @@ class Intervals {
 		named: Pick<DecisionQuantity, 'species' | 'quantity' | 'at'>
 	): DecisionQuantity {
 		const { value, valueGradient } = curve.at(this.asked.fitted.x, time);
-		const error = this.error(valueGradient, 1);
+		const active = this.error(valueGradient, 1);
+		const heldBy = this.held(valueGradient, 1, active);
+		const error = heldBy.length ? null : active;
 		return {
+			...(heldBy.length ? { heldBy } : {}),
 			...this.common,
 			...named,
 			value,

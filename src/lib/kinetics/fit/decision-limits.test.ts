@@ -14,7 +14,7 @@ const step = (id: string, from: string, to: string, reverse?: number) => ({
 	reverse: reverse ? { kRef: { value: reverse, unit: '1/h' } } : null
 });
 
-function request(steps: object[], curves: Record<string, (t: number) => number>): FitRequest {
+function request(steps: object[], curves: Record<string, (t: number) => number>, bounds = {}): FitRequest {
 	const ids = Object.keys(curves);
 	return fitRequest.parse({
 		species: ids.map((id) => ({ id })),
@@ -33,7 +33,7 @@ function request(steps: object[], curves: Record<string, (t: number) => number>)
 				}))
 			}
 		],
-		options: { starts: 4, profiles: false }
+		options: { starts: 4, profiles: false, bounds }
 	});
 }
 
@@ -94,5 +94,33 @@ describe('a flat maximum', () => {
 		const [low, high] = time.profileInterval!;
 		// Fitted k2 lies near 1e-5 1/h; by 1/(k1 − k2) ln(k1/k2) the time moves by 1 h for a factor e in k2.
 		expect(high === null || high - low! > 1).toBe(true);
+	});
+});
+
+describe('a constant with a bound of the person', () => {
+	const decay = { A: (t: number) => Math.exp(-t), B: (t: number) => 1 - Math.exp(-t) };
+	const question: DecisionQuestion = { kind: 'conversion', species: 'A', conversion: 0.5 };
+	const bounded = (lower: number) =>
+		request([step('s1', 'A', 'B')], decay, { 's1.forward.kRef': { lower: { value: lower, unit: '1/h' } } });
+	const estimate = fit(bounded(0.1)).parameters[0];
+
+	it('closes the profile of a time where the bound leaves no later one', () => {
+		const lower = estimate.estimate - 0.5 * estimate.standardError!;
+		const [time] = asked(bounded(lower))(question);
+		expect(time.heldBy).toBeUndefined();
+		expect(time.profileInterval![1]! / (Math.LN2 / lower)).toBeCloseTo(1, 5);
+		const [free] = asked(bounded(0.1))(question);
+		expect(time.profileInterval![0]! / free.profileInterval![0]!).toBeCloseTo(1, 4);
+	});
+
+	it('gives no interval of width zero where the constant is held by it, but the profile within the bounds', () => {
+		const lower = estimate.estimate + 0.5 * estimate.standardError!;
+		const ask = asked(bounded(lower));
+		const [time] = ask(question);
+		expect(time).toMatchObject({ heldBy: ['s1.forward.kRef'], standardError: null, interval: null });
+		expect(time.profileInterval![1]! / time.value).toBeCloseTo(1, 5);
+		expect(time.profileInterval![0]! / time.value).toBeLessThan(0.999);
+		const [a] = ask({ kind: 'composition', time: 1 });
+		expect(a).toMatchObject({ heldBy: ['s1.forward.kRef'], standardError: null, interval: null });
 	});
 });

@@ -11,6 +11,8 @@ import { searchBox, type SearchBox } from './starts';
 /** How firmly the condition holds: a miss of one standard error of the time counts as this many residuals of size s. */
 const FIRMNESS = 1e5;
 const STEPS = 40;
+/** Missed by more than this many residuals of size s (a thousandth of a standard error), the condition does not hold at all. */
+const MISSED = 1e-3 * FIRMNESS;
 
 export class ConstrainedProfile {
 	private readonly box: SearchBox;
@@ -67,17 +69,22 @@ export class ConstrainedProfile {
 	private root(a: number, tauA: number, b: number, tauB: number, error: number, t: number): number {
 		let [fa, fb] = [tauA - t, tauB - t];
 		for (let k = 0; k < STEPS && Math.abs(b - a) > 1e-6 * error; k++) {
-			const next = Number.isFinite(fb) ? b - (fb * (b - a)) / (fb - fa) : 0.5 * (a + b);
+			const straight = Number.isFinite(fa) && Number.isFinite(fb);
+			const next = straight ? b - (fb * (b - a)) / (fb - fa) : 0.5 * (a + b);
 			const f = this.tau(next) - t;
 			if (Math.abs(f) < 1e-6 * t) return next;
-			if (f > 0 === fb > 0) fa *= 0.5;
-			else [a, fa] = [b, fb];
-			[b, fb] = [next, f];
+			// An end without a number is halved against; the bracket is kept.
+			if (!straight && f > 0 === fa > 0) [a, fa] = [next, f];
+			else {
+				if (f > 0 === fb > 0) fa *= 0.5;
+				else [a, fa] = [b, fb];
+				[b, fb] = [next, f];
+			}
 		}
 		return 0.5 * (a + b);
 	}
 
-	/** τ with the condition held at this time. */
+	/** τ with the condition held at this time; Infinity where the bounds of the fit leave no curve that meets it. */
 	private tau(time: number): number {
 		const { model } = this.fitted;
 		const options = {
@@ -91,6 +98,7 @@ export class ConstrainedProfile {
 		const result = leastSquares(this.problem(time), this.last, options, this.workspace);
 		if (result.status === 'cancelled') throw new FitCancelled();
 		if (!Number.isFinite(result.ssr)) return Infinity;
+		if (Math.abs(result.residuals[model.m]) > MISSED * this.s) return Infinity;
 		this.last = result.x;
 		const own = result.residuals.subarray(0, model.m).reduce((sum, r) => sum + r * r, 0);
 		return Math.sqrt(Math.max(0, own - this.ssr)) / this.s;

@@ -61,6 +61,8 @@ export interface DecisionQuantity {
 	at?: number;
 	value: number;
 	unit: string;
+	/** Parameters at a bound that decide the value: it has no symmetric interval then. */
+	heldBy?: string[];
 	/** Null where the fit determines no such error. */
 	standardError: number | null;
 	/** Student interval about the value. */
