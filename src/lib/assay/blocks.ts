@@ -54,18 +54,27 @@ export function findBlocks(view: SheetView): FoundBlock[] {
 	return found;
 }
 
-/** A row right above the first full one that holds numbers and no text is its first sample, with a cell left blank. */
+/** A row right above the first full one is its first sample, with a cell left blank, or with a text such as "O.5" below the word for time. */
 function upwards(looks: RowLook[], start: number, floor: number): number {
 	const { first, last } = looks[start];
 	let k = start;
 	while (
 		k > floor &&
 		looks[k - 1].r === looks[k].r - 1 &&
-		looks[k - 1].texts.length === 0 &&
-		looks[k - 1].numbers.some((c) => c >= first && c <= last)
+		looks[k - 1].numbers.some((c) => c >= first && c <= last) &&
+		(looks[k - 1].texts.length === 0 || isBelowTime(looks, k - 1, floor))
 	)
 		k--;
 	return k;
+}
+
+/** A number right below the word for time is a time, whatever the cells beside it hold: no row of the header. */
+function isBelowTime(looks: RowLook[], k: number, floor: number): boolean {
+	if (isFooterRow(looks[k])) return false;
+	for (let j = k - 1; j >= floor && j >= k - 3 && looks[j].r === looks[j + 1].r - 1; j--)
+		if (isHeaderRow(looks[j]))
+			return looks[j].texts.some((t) => speaksOfTime(t.text) && looks[k].numbers.includes(t.column));
+	return false;
 }
 
 export interface Band {

@@ -17,6 +17,7 @@ const CEILING: Partial<Record<ValueUnit, { most: number; why: string; smaller?: 
 	'g/L': { most: 3500, why: 'organic liquids weigh at most 3300 g/L', smaller: 'mg/L' },
 	'mg/mL': { most: 3500, why: 'organic liquids weigh at most 3300 mg/mL', smaller: 'mg/L' },
 	'mg/L': { most: 3.5e6, why: 'organic liquids weigh at most 3300 g/L' },
+	'fraction of charge': { most: 5, why: '1 is the whole charge', smaller: '% of charge' },
 	'area %': { most: 101, why: 'all peaks together are 100 %' },
 	'% w/w': { most: 101, why: 'the whole solution is 100 %' }
 };

@@ -42,6 +42,7 @@ export function noteSpreads(ex: Examination, headers: Map<number, ColumnHeader>)
 /** Columns of numbers that no header names: shown, never used without a word. In a text parted by commas they may be decimals. */
 export function noteUnnamed(ex: Examination, headers: Map<number, ColumnHeader>, rows: number[]): void {
 	if (ex.mapping.headerRows.length === 0) return;
+	askShifted(ex, headers, rows);
 	const numeric = (column: number) => rows.filter((r) => ex.value(r, column).kind === 'number').length;
 	const own = ex.mapping.columns.filter(
 		(c) => c.role === 'ignore' && headers.get(c.column)?.header === '' && numeric(c.column) > rows.length / 2
@@ -69,4 +70,30 @@ export function noteUnnamed(ex: Examination, headers: Map<number, ColumnHeader>,
 			expected: 'a name above each column',
 			message: `${where} ${own.length === 1 ? 'holds' : 'hold'} numbers and ${own.length === 1 ? 'has' : 'have'} no header; shown and not used. Say what ${own.length === 1 ? 'it is' : 'they are'} if ${own.length === 1 ? 'it belongs' : 'they belong'} to the data.`
 		});
+}
+
+/** B6: in a text parted by commas, a row with more cells than there are names may hold a decimal comma, and all that follows is shifted. */
+function askShifted(ex: Examination, headers: Map<number, ColumnHeader>, rows: number[]): void {
+	if (ex.workbook.delimiter !== ',') return;
+	const last = ex.mapping.columns.reduce(
+		(most, c) => (headers.get(c.column)?.header ? Math.max(most, c.column) : most),
+		0
+	);
+	const beyond = ex.mapping.columns
+		.filter((c) => c.role === 'ignore' && c.column > last)
+		.map((c) => c.column);
+	const longer = rows.filter((r) => beyond.some((c) => ex.shown(r, c) !== ''));
+	// Where most rows are longer the column is there for all of them.
+	if (last === 0 || longer.length === 0 || longer.length * 2 > rows.length) return;
+	const where = ex.places.samples(longer);
+	ex.ask({
+		rule: 'B6',
+		level: 'ask',
+		cells: longer.map((r) => ex.at(r, beyond[0])),
+		key: 'shifted',
+		found: `${where} with more cells than names`,
+		expected: 'as many cells as names',
+		message: `${capital(where)} ${longer.length === 1 ? 'has' : 'have'} more cells than there are names: a decimal comma there would shift all that follows. Correct the file and upload it again, or do the cells stand where they belong?`,
+		options: [{ key: 'keep', label: 'They stand where they belong' }]
+	});
 }

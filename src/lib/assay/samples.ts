@@ -90,7 +90,9 @@ function longSamples(ex: Examination, rows: number[], channels: Channel[]): Samp
 			sampleId: idOf(ex, row, sample),
 			injection: idOf(ex, row, injection)
 		};
-		const blank = own.time === '';
+		// A blank time is that of the row above only within one sample.
+		const another = own.sampleId !== undefined && own.sampleId !== carried.sampleId;
+		const blank = own.time === '' && !another;
 		const next = {
 			time: blank ? carried.time : own.time,
 			row: blank ? carried.row : row,

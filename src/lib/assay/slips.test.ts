@@ -161,3 +161,51 @@ describe('a temperature log', () => {
 		expect(answer(workbook, {}).run?.temperatureLog?.map((r) => r.celsius)).toEqual([50, 50.5, 50, 50, 49.5]);
 	});
 });
+
+describe('a first sample whose value is a slip', () => {
+	it('B11: is a sample and asked about, not a second header row', () => {
+		const workbook = csv('Time (h),A (mol/L)\n0,O.5\n1,0.4\n2,0.3\n4,0.2\n8,0.1\n');
+		expect(first(workbook).range).toBe('A2:B6');
+		expect(asked(workbook)).toEqual(['B11 B2']);
+	});
+});
+
+describe('B6: a row of a comma file with one cell more than the others', () => {
+	it('may hold a decimal comma, which shifts what follows', () => {
+		const workbook = csv(
+			'Time (h),A (mol/L),B (mol/L)\n0,0.5,0\n1,0.4,0.1\n2,0,3,0.2\n4,0.2,0.3\n8,0.1,0.4\n'
+		);
+		expect(asked(workbook)).toEqual(['B6 D4']);
+		expect(answer(workbook, { B6: { key: 'keep' } }).open).toBe(0);
+	});
+});
+
+describe('B4: shares on the wrong scale', () => {
+	it('headed % and counted in fractions are asked about once, and take that unit', () => {
+		const rows = T.map((t, i) => [t, A[i] * 2, 1 - A[i] * 2]);
+		const workbook = book([['Time (h)', 'A (% of charge)', 'B (% of charge)'], ...rows]);
+		expect(findingsOf(workbook, 'B4').map((f) => f.cells)).toEqual([['B2']]);
+		const settled = answer(workbook, { B4: { key: 'fraction' } });
+		expect(settled.run?.channels.map((c) => c.unit)).toEqual(['fraction of charge', 'fraction of charge']);
+		expect(valuesOf(settled)).toEqual([1, 0.8, 0.6, 0.4, 0.2]);
+	});
+
+	it('headed as fractions and counted in percent are asked about', () => {
+		const workbook = table([100, 80, 60, 40, 20], 'A (fraction of charge)');
+		expect(answer(workbook, { B4: { key: '% of charge' } }).run?.channels[0].unit).toBe('% of charge');
+	});
+
+	it('are no question for percent from 100 down', () => {
+		expect(findingsOf(table([100, 80, 60, 40, 0.9], 'A (% of charge)'), 'B4')).toEqual([]);
+	});
+});
+
+describe('B31: a long list whose second sample has no time', () => {
+	it('is not given the time of the sample before it', () => {
+		const rows = T.flatMap((t, i) => [
+			[`S${i}`, i === 2 ? null : t, 'A', A[i]],
+			[`S${i}`, i === 2 ? null : t, 'B', 0.5 - A[i]]
+		]);
+		expect(asked(book([['Sample', 'Time (h)', 'Peak', 'Conc (mol/L)'], ...rows]))).toEqual(['B31 B6']);
+	});
+});

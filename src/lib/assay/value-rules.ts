@@ -10,6 +10,7 @@ import { settleZerosAndNegatives } from './low-values';
 import { askMarked } from './marked-values';
 import { askMergedValues } from './merged-values';
 import type { Sample } from './samples';
+import { askShareScale } from './share-scale';
 import { leaveMissing, type Spot } from './spots';
 import { unitColumn, withOwnUnit } from './unit-column';
 import { askTexts, stopUnusable } from './unusable-cells';
@@ -42,6 +43,7 @@ export function settleValues(
 		leftOut
 	);
 	askMarked(ex, spots);
+	askShareScale(ex, spots);
 	for (const { channel, spots: own } of spots) {
 		askMergedValues(ex, channel, own);
 		stopUnusable(ex, channel, own);
