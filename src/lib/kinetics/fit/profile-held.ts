@@ -140,6 +140,32 @@ export class HeldFit {
 		return false;
 	}
 
+	/**
+	 * Whether the SSR at the value falls below a limit once the bounds of the search that other parameters have come to are moved out:
+	 * then they, and not the data, made it rise. Bounds that a person gave stay, as does zero for a charge.
+	 */
+	leansOnSearchBounds(j: number, value: number, below: number): boolean {
+		const { model, box } = this.input;
+		const at = this.last.slice();
+		const [lower, upper] = [box.lower.slice(), box.upper.slice()];
+		let any = false;
+		model.problem.free.forEach((slot, k) => {
+			const reach = 1e-6 * (box.upper[k] - box.lower[k]);
+			if (k === j || !(reach > 0)) return;
+			const down = slot.lower === -Infinity && slot.kind !== 'amount' && at[k] - box.lower[k] <= reach;
+			const up = slot.upper === Infinity && box.upper[k] - at[k] <= reach;
+			if (down) lower[k] -= 0.5 * (box.upper[k] - box.lower[k]);
+			if (up) upper[k] += 0.5 * (box.upper[k] - box.lower[k]);
+			any ||= down || up;
+		});
+		if (!any) return false;
+		const start = at.slice();
+		start[j] = value;
+		const limits = { ftol: 1e-9, xtol: 1e-9, maxEvaluations: EVALUATIONS, factor: GENTLE };
+		const { ssr } = this.run(j, value, start, limits, { lower, upper });
+		return ssr < below;
+	}
+
 	private others(j: number): Float64Array[] {
 		const near = [this.inSight(this.last), this.inSight(this.input.best.x)];
 		const own = this.exchanges.filter((pairs) => pairs.flat().includes(j));
@@ -174,11 +200,12 @@ export class HeldFit {
 		j: number,
 		value: number,
 		start: Float64Array,
-		limits: { ftol: number; xtol: number; maxEvaluations: number; factor: number }
+		limits: { ftol: number; xtol: number; maxEvaluations: number; factor: number },
+		bounds: Pick<SearchBox, 'lower' | 'upper'> = this.input.box
 	) {
-		const { model, box, cancelled } = this.input;
-		this.lower.set(box.lower);
-		this.upper.set(box.upper);
+		const { model, cancelled } = this.input;
+		this.lower.set(bounds.lower);
+		this.upper.set(bounds.upper);
 		this.lower[j] = this.upper[j] = value;
 		const options = { ...limits, lower: this.lower, upper: this.upper, cancelled };
 		const result = leastSquares(model, start, options, this.workspace);

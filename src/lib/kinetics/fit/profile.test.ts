@@ -72,3 +72,57 @@ describe('profile intervals', () => {
 		}
 	);
 });
+
+describe('a constant known only in its product with a response factor', () => {
+	// Invented: A → B → C followed while C grows in proportion to k₂ f; scatter larger than the curvature that would tell them apart.
+	const [k1, k2] = [1, 0.02];
+	const c = (t: number) => 1 - (k1 * Math.exp(-k2 * t) - k2 * Math.exp(-k1 * t)) / (k1 - k2);
+	const scatter = [1, -1, 0.5, -0.5, -1, 1, -0.5, 0.5];
+	const request = fitRequest.parse({
+		species: [{ id: 'A' }, { id: 'B' }, { id: 'C' }],
+		steps: [
+			{ id: 's1', reactant: 'A', products: [{ species: 'B' }], forward: { kRef: { value: 1, unit: '1/h' } } },
+			{
+				id: 's2',
+				reactant: 'B',
+				products: [{ species: 'C' }],
+				forward: { kRef: { value: 0.02, unit: '1/h' } }
+			}
+		],
+		referenceTemperature: { value: 50, unit: 'degC' },
+		runs: [
+			{
+				temperature: { value: 50, unit: 'degC' },
+				initial: { A: { value: 1, unit: 'mol/L' } },
+				timeUnit: 'h',
+				channels: [
+					{ id: 'A', weights: { A: 1 }, unit: 'mol/L' },
+					{ id: 'C', weights: { C: 1 }, unit: 'area', responseFactor: { fit: true } }
+				],
+				timepoints: [0.5, 1, 1.5, 2, 3, 4, 5, 6].map((time, i) => ({
+					time,
+					values: { A: Math.exp(-k1 * time) + 0.004 * scatter[i], C: 2 * c(time) + 0.004 * scatter[7 - i] }
+				}))
+			}
+		],
+		options: { starts: 6 }
+	});
+
+	it('is open below, although the response factor meets a bound of the search there', () => {
+		const report = fit(request);
+		const of = (id: string) => report.parameters.find((q) => q.id === id)!.profileCi95!;
+		expect(of('C.responseFactor')[1]).toBeNull();
+		expect(of('s2.forward.kRef')[0]).toBeNull();
+		expect(of('s2.forward.kRef')[1]).toBeGreaterThan(k2);
+		expect(of('s1.forward.kRef').every((end) => end !== null)).toBe(true);
+	});
+
+	it('is limited below where the person gives the bound', () => {
+		const upper = { value: 20, unit: '1' };
+		const bounded = { ...request.options, bounds: { 'C.responseFactor': { upper } } };
+		const report = fit({ ...request, options: bounded });
+		const limit = report.parameters.find((q) => q.id === 's2.forward.kRef')!.profileCi95![0]!;
+		expect(limit).toBeGreaterThan(1e-3);
+		expect(limit).toBeLessThan(3e-3);
+	});
+});

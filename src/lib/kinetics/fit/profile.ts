@@ -6,7 +6,8 @@
  * SSR(θ) is an exact re-optimisation (`profile-held.ts`), not a table to be interpolated. τ is nearly linear in θ, and its slope
  * is known exactly (J_jᵀr/(s²τ) at a constrained optimum), so that Newton steps kept in a bracket find the limit in a few; each
  * starts from the re-optimised parameters of the step before, moved along the covariance. Where τ never reaches t before the
- * bounds of the search, the side is open: the data do not limit the parameter there, and no number is given.
+ * bounds of the search, the side is open: the data do not limit the parameter there, and no number is given. So it is where τ comes
+ * to t only because another parameter has met a bound of the search: with that bound moved out, τ stays below.
  *
  * A limit found on one branch is not yet the limit of the profile, which is the lowest of all branches. Unless the profile is
  * as a linear model foretells and every parameter within sight of the data, the others are therefore fitted from further
@@ -73,6 +74,8 @@ const FORETOLD = 0.15;
 const WELL_KNOWN = 0.1;
 /** τ must fall this much below t, relative, to go on outwards: less is the same branch. */
 const LOWER = 1e-4;
+/** τ must fall this much below t, relative, when a bound of the search is moved out, for the limit to be its doing. */
+const LEANS = 0.01;
 /** How often a limit may turn out not to be one. */
 const MOST_BRANCHES = 15;
 const STEPS = 60;
@@ -109,10 +112,18 @@ export class Profiler {
 			const limit = this.crossing(j, sense, from, bound);
 			if (limit === null || this.better || !this.doubtful(j, limit)) return limit;
 			const tau = this.lowerTau(j, limit, this.t * (1 - LOWER));
-			if (tau === null || this.better) return limit;
+			if (this.better) return limit;
+			if (tau === null) return this.madeBySearch(j, limit) ? null : limit;
 			from = this.point(limit, tau);
 		}
 		return from.value;
+	}
+
+	/** Whether τ came to t only because another parameter met a bound of the search: the data set no limit there. */
+	private madeBySearch(j: number, limit: number): boolean {
+		const { best, uncertainty } = this.input;
+		const s = uncertainty.s ?? NaN;
+		return this.held.leansOnSearchBounds(j, limit, best.ssr + (s * this.t * (1 - LEANS)) ** 2);
 	}
 
 	/** Steps outwards from a point inside until τ passes t; null where the bound comes first. */
