@@ -209,3 +209,36 @@ describe('B31: a long list whose second sample has no time', () => {
 		expect(asked(book([['Sample', 'Time (h)', 'Peak', 'Conc (mol/L)'], ...rows]))).toEqual(['B31 B6']);
 	});
 });
+
+describe('B1: a first sample whose time is a word', () => {
+	it('is counted as header only on that word', () => {
+		const rows = T.map((t, i) => [i === 0 ? 'start' : t, A[i], 0.5 - A[i]]);
+		const [q] = asked(book([['Time (h)', 'A (mol/L)', 'B (mol/L)'], ...rows]));
+		expect(q).toMatch(/^B1[18]? /);
+	});
+
+	it('is no question for columns that are counted', () => {
+		const rows = T.map((t, i) => [t, A[i], 0.5 - A[i]]);
+		const workbook = book([['Time (h)', 'A (mol/L)', 'A (mol/L)'], ['Injection', 1, 2], ...rows]);
+		expect(asked(workbook).filter((q) => q.startsWith('B1 '))).toEqual([]);
+	});
+});
+
+describe('B4: a temperature log below the other unit', () => {
+	const logged = (head: string, value: number) =>
+		book([['Time (h)', head, 'A (mol/L)'], ...T.map((t, i) => [t, value, A[i]])]);
+	const log = (s: ReturnType<typeof answer>) => s.run?.temperatureLog?.map((r) => r.celsius)[0];
+
+	it('is asked about, and read in the unit that is meant', () => {
+		expect(asked(logged('T (°C)', 323.15))).toEqual(['B4 B2 B3 B4 B5 B6']);
+		expect(log(answer(logged('T (°C)', 323.15), { B4: { key: 'K' } }))).toBe(50);
+		expect(log(answer(logged('T (K)', 50), { B4: { key: 'degC' } }))).toBe(50);
+		expect(log(answer(logged('T (°C)', 323.15), { B4: { key: 'keep' } }))).toBe(323.15);
+	});
+
+	it('is none at -78 °C, 195 K or 150 °C', () => {
+		expect(asked(logged('T (°C)', -78))).toEqual([]);
+		expect(asked(logged('T (K)', 195))).toEqual([]);
+		expect(asked(logged('T (°C)', 150))).toEqual([]);
+	});
+});

@@ -37,6 +37,9 @@ export function askBlock(ex: Examination, facts: BlockFacts): void {
 		doubts.push(`${places.samples(facts.doubtfulRows)} ${places.across ? 'at the right' : 'below'} left out`);
 	if (!facts.headers) doubts.push(places.across ? 'no names at the left' : 'no header row above');
 	else if (!facts.timeByHeader) doubts.push(withoutTime(ex, facts.time));
+	const measured = numbersInHeaders(ex);
+	if (measured.length > 0)
+		doubts.push(`${places.samples(measured)} counted as header although numbers stand there`);
 	if (places.across) return askAcross(ex, facts.time, doubts);
 	if (doubts.length === 0) return;
 	ex.ask({
@@ -48,6 +51,19 @@ export function askBlock(ex: Examination, facts: BlockFacts): void {
 		expected: 'the rows and columns that hold the data',
 		message: `We read rows ${block.firstRow}–${block.lastRow} of "${ex.sheet}" as the data (${doubts.join('; ')}). Is that right?`,
 		options: [{ key: 'right', label: 'Yes, these rows' }]
+	});
+}
+
+/** Rows read as further header rows that hold measured numbers: a first sample whose time is no time, such as "start". */
+function numbersInHeaders(ex: Examination): number[] {
+	const columns = ex.mapping.columns.filter((c) => c.role === 'species' || c.role === 'value');
+	return ex.mapping.headerRows.slice(1).filter((row) => {
+		const numbers = columns.flatMap((c) => {
+			const reading = ex.value(row, c.column);
+			return reading.kind === 'number' ? [reading.value] : [];
+		});
+		// Counted columns, "1 | 2 | 3", are numbers of replicates.
+		return numbers.some((n) => !Number.isInteger(n) || n < 1 || n > columns.length);
 	});
 }
 

@@ -1,4 +1,5 @@
 /** The temperature column as a log in °C, and the values far from its middle. */
+import type { ColumnMapping } from '$lib/schemas/sheet';
 import type { CellReading } from './cells';
 import type { Examination } from './examination';
 import { capital, figure } from './wording';
@@ -58,8 +59,43 @@ export function temperatureLog(ex: Examination, points: Point[]): TemperatureLog
 			}
 		];
 	});
+	if (!askOtherScale(ex, rows, column)) return { rows, open: true };
 	noteExcursions(ex, rows);
 	return { rows, open: false };
+}
+
+/** Readings in °C between which the middle of a log lies; outside, the other unit is what is usually meant. */
+const LIKELY = { low: -100, high: 250 };
+
+/** B4: a log of 323 °C or 50 K has the other unit in its header. True when it can be used; readings are corrected in place. */
+function askOtherScale(ex: Examination, rows: TemperatureLog['rows'], column: ColumnMapping): boolean {
+	if (rows.length === 0) return true;
+	const middle = median(rows.map((r) => r.celsius));
+	const kelvin = column.unit === 'K';
+	const other = kelvin ? middle + 273.15 : middle - 273.15;
+	const likely = (t: number) => t >= LIKELY.low && t <= LIKELY.high;
+	if (likely(middle) || !likely(other)) return true;
+	const [unit, meant] = kelvin ? ['K', '°C'] : ['°C', 'K'];
+	const shown = figure(Number((kelvin ? other : middle).toFixed(2)));
+	const taken = ex.ask({
+		rule: 'B4',
+		level: 'ask',
+		cells: rows.map((r) => r.cell),
+		key: `temperature-${ex.places.mark(column.column)}`,
+		found: `about ${shown} ${unit}`,
+		expected: 'temperatures of a solution',
+		message: `The temperatures of ${ex.places.series(column.column)} lie about ${shown} ${unit}, as headed. Or are they in ${meant}?`,
+		options: [
+			{ key: kelvin ? 'degC' : 'K', label: `They are in ${meant}` },
+			{ key: 'keep', label: `${shown} ${unit} is right` }
+		]
+	});
+	if (!taken || taken.key === 'keep') return taken !== null;
+	for (const r of rows)
+		r.celsius = Number((kelvin ? r.celsius + 273.15 : r.celsius - 273.15).toPrecision(12));
+	column.unit = taken.key;
+	ex.conversions.push(`Unit of ${ex.places.series(column.column)}: ${meant}, as chosen, not ${unit}.`);
+	return true;
 }
 
 /** A number in the column's unit, or one that carries its own ("50 °C"); null where the cell holds no temperature. */
