@@ -30,7 +30,7 @@ import { averageColumns } from './replicate-columns';
 import { samplesOf, timeColumn } from './samples';
 import { askSecondTimes } from './second-times';
 import { askBlock, dataRows, noteColours, noteFooters, noteMergesAndDates, noteWithin } from './structure';
-import { headersOf, tableOf, viewOf, votesOf } from './tables';
+import { headersOf, headlessBelow, tableOf, viewOf, votesOf } from './tables';
 import { temperatureLog, type TemperatureLog } from './temperature-log';
 import { timeColumnByHeader } from './time-column';
 import { settleTimeParts } from './time-parts';
@@ -130,6 +130,7 @@ function settleStructure(
 	askBlock(ex, {
 		blank: moved ? [] : found.leftOutRows.filter((r) => !found.withinRows.includes(r)),
 		doubtfulRows: moved ? [] : doubtful,
+		further: goesOnBelow(ex),
 		time: timeColumn(ex),
 		timeByHeader: byHeader > 0 || (moved && !namesTimes(ex)),
 		headers: moved || mapping.headerRows.length > 0
@@ -138,6 +139,18 @@ function settleStructure(
 	noteHeaders(ex, joined);
 	noteSpreads(ex, headers);
 	noteUnnamed(ex, headers, dataRows(ex).slice(0, 500));
+}
+
+/** Rows without a header below the block whose times are later than its last. */
+function goesOnBelow(ex: Examination): ReturnType<typeof headlessBelow> {
+	if (ex.places.across) return null;
+	const below = headlessBelow(ex.workbook, ex.mapping);
+	const time = timeColumn(ex);
+	if (!below || time === 0) return null;
+	const [last, next] = [ex.time(ex.mapping.block.lastRow, time), ex.time(below.firstRow, time)];
+	const later =
+		last.kind === 'number' && next.kind === 'number' ? next.value > last.value : last.kind === next.kind;
+	return later ? below : null;
 }
 
 /** The first name that is read as a time, of a column that is not headed as one. */

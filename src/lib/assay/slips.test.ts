@@ -224,6 +224,34 @@ describe('B1: a first sample whose time is a word', () => {
 	});
 });
 
+describe('B1: rows that blank rows part from the table', () => {
+	const parted = (times: number[]) =>
+		book([
+			['Time (h)', 'A (mol/L)'],
+			[0, 0.5],
+			[1, 0.4],
+			[2, 0.3],
+			[null],
+			[null],
+			[null],
+			...times.map((t, i) => [t, 0.2 - i * 0.02])
+		]);
+
+	it('and whose times go on are not left out without a question', () => {
+		const workbook = parted([4, 8, 12]);
+		expect(findingsOf(workbook, 'B1')[0].message).toContain('rows 8–10 further below, without a header');
+		const { mapping } = first(workbook);
+		const whole = { ...mapping.block, lastRow: 10 };
+		expect(
+			timesOf(answer(workbook, { B1: { key: 'right' } }, { block: whole, leftOutRows: [5, 6, 7] }))
+		).toEqual([0, 1, 2, 4, 8, 12]);
+	});
+
+	it('and whose times begin anew are another table', () => {
+		expect(asked(parted([0, 1, 2]))).toEqual([]);
+	});
+});
+
 describe('B4: a temperature log below the other unit', () => {
 	const logged = (head: string, value: number) =>
 		book([['Time (h)', head, 'A (mol/L)'], ...T.map((t, i) => [t, value, A[i]])]);

@@ -18,6 +18,8 @@ export interface BlockFacts {
 	blank: number[];
 	/** Rows below that hold numbers and whose first cell does not say why they are no data. */
 	doubtfulRows: number[];
+	/** Rows further below, in the same columns and without a header, where the times go on. */
+	further: { firstRow: number; lastRow: number } | null;
 	/** The time column, and whether its header says so. */
 	time: number;
 	timeByHeader: boolean;
@@ -35,6 +37,10 @@ export function askBlock(ex: Examination, facts: BlockFacts): void {
 		);
 	if (facts.doubtfulRows.length > 0)
 		doubts.push(`${places.samples(facts.doubtfulRows)} ${places.across ? 'at the right' : 'below'} left out`);
+	if (facts.further)
+		doubts.push(
+			`rows ${facts.further.firstRow}–${facts.further.lastRow} further below, without a header, are not among them`
+		);
 	if (!facts.headers) doubts.push(places.across ? 'no names at the left' : 'no header row above');
 	else if (!facts.timeByHeader) doubts.push(withoutTime(ex, facts.time));
 	const measured = numbersInHeaders(ex);

@@ -61,6 +61,20 @@ function tablesOfSheet(workbook: GridWorkbook, view: SheetView, sheet: string): 
 	return turned.length === 0 ? down : [...turned, ...down].sort((a, b) => top(a) - top(b));
 }
 
+/** A table without a header right below, in the same columns: what blank rows part may be one table. */
+export function headlessBelow(
+	workbook: GridWorkbook,
+	mapping: Pick<Mapping, 'sheet' | 'block'>
+): Block | null {
+	const { block } = mapping;
+	const below = tablesOf(workbook)
+		.filter((t) => t.sheet === mapping.sheet && !t.across && t.block.firstRow > block.lastRow)
+		.sort((a, b) => a.block.firstRow - b.block.firstRow)[0];
+	if (!below || below.headerRows.length > 0) return null;
+	const same = below.block.firstColumn === block.firstColumn && below.block.lastColumn === block.lastColumn;
+	return same ? below.block : null;
+}
+
 export const overlap = (a: Block, b: Block): boolean =>
 	a.firstRow <= b.lastRow &&
 	a.lastRow >= b.firstRow &&
