@@ -211,6 +211,21 @@ describe('cases without an interval or an end', () => {
 		expect(hold!.spans).toEqual([]);
 	});
 
+	it('says with what factors a limit in area % is counted', () => {
+		const notesFor = (unit: 'area %' | '% of charge', responseFactors = {}) => {
+			const criteria = [{ species: 'A', relation: 'NMT', limit: 1, unit } as const];
+			return firstFormWindow(input(window, at(40, { criteria, responseFactors }), [30, 50])).notes;
+		};
+		const code = 'area-percent-factors';
+		const found = notesFor('area %').find((note) => note.code === code);
+		expect(found).toMatchObject({ level: 'caution' });
+		expect(found!.message).toMatch(/response factor 1 for every species/);
+		expect(notesFor('area %', { B: 1.4 }).find((note) => note.code === code)!.message).toMatch(
+			/B 1\.4, and 1/
+		);
+		expect(notesFor('% of charge').map((note) => note.code)).not.toContain(code);
+	});
+
 	it('names what is missing', () => {
 		const fail = (request: Partial<FirstFormRequestInput>) => () =>
 			firstFormWindow(input(window, at(40, request), [30, 50]));

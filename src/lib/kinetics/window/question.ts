@@ -43,6 +43,7 @@ export function readQuestion({ request, fit }: FirstFormInput, network: Network)
 			'charge'
 		);
 	chargeNotes(charge, network, fit.studied?.chargeMolPerL ?? {}, notes);
+	areaNote(request, notes);
 	const excess = readAmounts(request.excess, network, 'excess');
 	const excessMolPerL = Object.fromEntries(
 		network.species.flatMap((species, i) => (species.id in request.excess ? [[species.id, excess[i]]] : []))
@@ -145,6 +146,25 @@ function chargeNotes(
 			code: 'charge-outside-studied',
 			message: `The charge of ${id}, ${Number(charge[i].toPrecision(4))} mol/L, lies outside what the runs cover (${covered} mol/L). First-order constants may change with concentration.`
 		});
+	});
+}
+
+/** A limit in area % depends on the detector: what it was counted with is said wherever it is used. */
+function areaNote(
+	{ criteria, responseFactors }: FirstFormInput['request'],
+	notes: FirstFormResult['notes']
+): void {
+	if (!criteria.some((criterion) => criterion.unit === 'area %')) return;
+	const stated = Object.entries(responseFactors)
+		.filter(([, factor]) => factor !== 1)
+		.map(([species, factor]) => `${species} ${Number(factor.toPrecision(4))}`);
+	const counted = stated.length
+		? `the relative response factors ${stated.join(', ')}, and 1 for every other species`
+		: 'relative response factor 1 for every species';
+	notes.push({
+		level: 'caution',
+		code: 'area-percent-factors',
+		message: `The limit in area % is counted with ${counted}. Where the detector sees species differently, give the limit in % of charge.`
 	});
 }
 
