@@ -6,7 +6,7 @@
  * This is a product of a (times × modes) with a (modes × species) matrix, most of whose entries may be zero. It is taken in
  * passes of three species by up to three modes: twelve numbers stay in registers, and each factor F_jl is read once for
  * three species. Species with few terms go together, so that few zeros are multiplied; one or two that are left over and
- * have a single mode at most (a reactant, its first product) ride along with the first pass.
+ * have one mode (a reactant, its first product) ride along with a first pass that reads this mode anyway.
  *
  * | symbol | name here |
  * | --- | --- |
@@ -35,11 +35,10 @@ interface Pass {
 	riders: Riders | null;
 }
 
-/** Two species of one mode each, or one twice: how far they stand from the pass's first species, and their modes. */
+/** Two species of the pass's first mode alone, or one twice: how far they stand from its first species. */
 interface Riders {
 	u: number;
 	v: number;
-	modes: number[];
 }
 
 /** Factors of the modes. */
@@ -93,10 +92,11 @@ function scale({ modes, terms, riders }: Pass, { coarse, place }: Factors): void
 		scaled[CONSTANTS + k] = terms[CONSTANTS + k];
 	}
 	if (!riders) return;
-	for (let i = 0; i < 2; i++) {
-		scaled[RIDERS + 2 * i] = terms[RIDERS + 2 * i] * coarse[place + riders.modes[i]];
-		scaled[RIDERS + 2 * i + 1] = terms[RIDERS + 2 * i + 1];
-	}
+	const factor = coarse[place + modes[0]];
+	scaled[RIDERS] = terms[RIDERS] * factor;
+	scaled[RIDERS + 1] = terms[RIDERS + 1];
+	scaled[RIDERS + 2] = terms[RIDERS + 2] * factor;
+	scaled[RIDERS + 3] = terms[RIDERS + 3];
 }
 
 function passesOf(form: ClosedForm): Pass[] {
@@ -104,11 +104,9 @@ function passesOf(form: ClosedForm): Pass[] {
 	const order = byNumberOfTerms(form);
 	const odd = n % 3;
 	const left = order.slice(0, odd);
-	const ride = odd > 0 && n > 3 && left.every((s) => modesOf(form, [s]).length <= 1);
 	const passes: Pass[] = [];
-	if (odd > 0 && !ride) addTile(form, left, passes);
 	for (let from = odd; from < n; from += 3) addTile(form, order.slice(from, from + 3), passes);
-	if (ride) takeAlong(form, left, passes[0]);
+	if (odd > 0 && !(passes.length > 0 && rides(form, left, passes[0]))) addTile(form, left, passes);
 	return passes;
 }
 
@@ -169,15 +167,24 @@ function passOf({ width, amplitudes }: ClosedForm, species: number[], modes: num
 	};
 }
 
-function takeAlong(form: ClosedForm, species: number[], pass: Pass): void {
-	const [first, second] = [species[0], species[species.length - 1]];
-	const modes = [first, second].map((s, i) => {
-		const mode = modesOf(form, [s])[0] ?? -1;
-		if (mode >= 0) pass.terms[RIDERS + 2 * i] = form.amplitudes[s * form.width + mode];
+/** Lets one or two species ride along, where their only mode is one of the pass's; it becomes its first. */
+function rides(form: ClosedForm, species: number[], pass: Pass): boolean {
+	const modes = modesOf(form, species);
+	const at = pass.modes.indexOf(modes[0]);
+	if (modes.length !== 1 || at < 0 || pass.single) return false;
+	toFront(pass, at);
+	const riders = [species[0], species[species.length - 1]];
+	riders.forEach((s, i) => {
+		pass.terms[RIDERS + 2 * i] = form.amplitudes[s * form.width + modes[0]];
 		pass.terms[RIDERS + 2 * i + 1] = constantOf(form, s);
-		return Math.max(mode, 0);
 	});
-	pass.riders = { u: first - pass.s, v: second - pass.s, modes };
+	pass.riders = { u: riders[0] - pass.s, v: riders[1] - pass.s };
+	return true;
+}
+
+function toFront({ modes, terms }: Pass, at: number): void {
+	[modes[0], modes[at]] = [modes[at], modes[0]];
+	for (let i = 0; i < CONSTANTS; i += 3) [terms[i], terms[i + at]] = [terms[i + at], terms[i]];
 }
 
 function writeOne(
@@ -272,8 +279,6 @@ function writeFive(
 		m = modes[1],
 		o = modes[2];
 	const { u, v } = riders;
-	const lu = riders.modes[0],
-		lv = riders.modes[1];
 	const e = t[12],
 		c3 = t[13],
 		i = t[14],
@@ -282,8 +287,8 @@ function writeFive(
 		const f = fine[at + l],
 			g = fine[at + m],
 			h = fine[at + o];
-		out[to + u] = c3 + e * fine[at + lu];
-		out[to + v] = c4 + i * fine[at + lv];
+		out[to + u] = c3 + e * f;
+		out[to + v] = c4 + i * f;
 		out[to] = c + a * f + a1 * g + a2 * h;
 		out[to + p] = c1 + b * f + b1 * g + b2 * h;
 		out[to + q] = c2 + d * f + d1 * g + d2 * h;
