@@ -44,11 +44,11 @@ function stopMixed(ex: Examination, votes: DecimalVotes): '.' | ',' | null {
 	const options: FindingOption[] = [
 		{
 			key: 'point',
-			label: `"." is the decimal sign; the ${votes.counts.comma} others are then asked one by one`
+			label: `"." is the decimal sign; ${askedThen(votes.counts.comma)}`
 		},
 		{
 			key: 'comma',
-			label: `"," is the decimal sign; the ${votes.counts.point} others are then asked one by one`
+			label: `"," is the decimal sign; ${askedThen(votes.counts.point)}`
 		}
 	];
 	const taken = ex.ask({
@@ -97,3 +97,6 @@ function voteCell(votes: DecimalVotes, text: string, sheet: string, row: number,
 	if (!text.includes('.') && !text.includes(',')) return;
 	vote(votes, numberPart(text), `${sheet}!${address(row, column)}`);
 }
+
+const askedThen = (others: number): string =>
+	others === 1 ? 'the other number is then asked about' : `the ${others} others are then asked one by one`;
