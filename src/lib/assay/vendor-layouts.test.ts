@@ -6,26 +6,19 @@ import {
 	conditions,
 	csv,
 	first,
+	notesIn as notes,
+	openIn as open,
+	rolesOf as roles,
 	species,
 	timesOf,
 	valuesOf
 } from '../server/sheets/reading/test-tables';
 import type { TestCell } from '../server/sheets/reading/test-workbook';
-import type { GridWorkbook } from '../schemas/sheet';
 import { propose, settle } from './index';
 
 const T = [0, 1, 2, 4, 8];
 const A = [0.5, 0.4, 0.3, 0.2, 0.1];
 const B = [0, 0.1, 0.2, 0.3, 0.4];
-const roles = (workbook: GridWorkbook) => first(workbook).columns.map((c) => [c.role, c.unit, c.species]);
-const open = (workbook: GridWorkbook) => {
-	const mapping = { ...first(workbook).mapping, conditions };
-	return settle({ workbook, species, mapping }).findings.flatMap((f) =>
-		f.open ? [`${f.rule} ${f.cells[0]}`] : []
-	);
-};
-const notes = (workbook: GridWorkbook) =>
-	first(workbook).findings.flatMap((f) => (f.level === 'note' ? [f.message] : []));
 
 describe('several runs on a sheet', () => {
 	it('under labels of their own with one time column are two runs, each with its temperature', () => {

@@ -72,6 +72,21 @@ export const fitForm = z.object({
 });
 export type FitForm = z.output<typeof fitForm>;
 
+/** What a fit begins from besides scheme and runs: kept with it, and offered to the next one. */
+export type KeptChoices = Pick<
+	FitForm,
+	| 'weighting'
+	| 'errors'
+	| 'reference'
+	| 'parameters'
+	| 'local'
+	| 'criterion'
+	| 'timeZeroRow'
+	| 'confidence'
+	| 'starts'
+	| 'seed'
+>;
+
 function timeZeroRow(form: FitForm): Pick<FitOptions, 'useTimeZeroRow'> {
 	if (form.timeZeroRow === 'use') return { useTimeZeroRow: true };
 	if (form.timeZeroRow === 'leave') return { useTimeZeroRow: false };

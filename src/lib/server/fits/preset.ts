@@ -1,26 +1,13 @@
 /** The choices behind a fit, so that the next one can begin from them: the form's fields, filled in. */
 import type { FitRequest } from '$lib/schemas/fit';
-import type { FitForm, ParameterSetting, ParameterSettings } from '$lib/schemas/fit-form';
+import type { FitForm, KeptChoices, ParameterSetting, ParameterSettings } from '$lib/schemas/fit-form';
 import { compileProblem } from '$lib/kinetics/fit/problem';
 import { toReported, type Slot } from '$lib/kinetics/fit/slots';
 import type { FitView } from './read-fit';
 import { centreOf, fitsAnEnergy, type ReferenceChoice } from './reference';
 
-export type FitPreset = Pick<
-	FitForm,
-	| 'schemeId'
-	| 'runIds'
-	| 'weighting'
-	| 'errors'
-	| 'reference'
-	| 'parameters'
-	| 'local'
-	| 'criterion'
-	| 'timeZeroRow'
-	| 'confidence'
-	| 'starts'
-	| 'seed'
-> & { energies: FitForm['energies'] };
+export type FitPreset = Pick<FitForm, 'schemeId' | 'runIds'> &
+	KeptChoices & { energies: FitForm['energies'] };
 
 /** Opened by nobody unless somebody asked: has to be asked for again. */
 const OPENED = new Set<Slot['kind']>(['amount', 'offset', 'response', 'energy', 'enthalpy']);

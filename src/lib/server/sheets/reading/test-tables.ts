@@ -68,3 +68,16 @@ export const valuesOf = (s: ReturnType<typeof settle>, id = 'A') =>
 	s.run?.timepoints.map((p) => p.values[id]);
 export const timesOf = (s: ReturnType<typeof settle>) => s.run?.timepoints.map((p) => p.time);
 export const summary = (f: Finding | undefined) => f && [f.level, f.cells.join(' ')];
+
+/** Role, unit and species of every column as proposed. */
+export const rolesOf = (workbook: GridWorkbook) =>
+	first(workbook).columns.map((c) => [c.role, c.unit, c.species]);
+/** Rule and first cell of every question that is open once the conditions are given. */
+export const openIn = (workbook: GridWorkbook) => {
+	const mapping = { ...first(workbook).mapping, conditions };
+	return settle({ workbook, species, mapping }).findings.flatMap((f) =>
+		f.open ? [`${f.rule} ${f.cells[0]}`] : []
+	);
+};
+export const notesIn = (workbook: GridWorkbook) =>
+	first(workbook).findings.flatMap((f) => (f.level === 'note' ? [f.message] : []));
