@@ -214,3 +214,13 @@ for (const shift of ['day', 'night'])
 		await signIn(page, PEOPLE.admin);
 		for (const path of admin) await check(path);
 	});
+
+test('a limit of the group that is refused stays in its field to be corrected', async ({ page }) => {
+	await signInAsLead(page);
+	await page.goto('/group', { waitUntil: 'networkidle' });
+	const limit = page.getByLabel(/gap noted/);
+	await limit.fill('seven');
+	await limit.press('Enter');
+	await expect(page.getByText('Enter the gap in percent, from 0.1 to 100.')).toBeVisible();
+	await expect(limit).toHaveValue('seven');
+});
